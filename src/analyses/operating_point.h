@@ -1,0 +1,58 @@
+/*
+ * operating_point.h: the search for a resting state of a system, and moving along as a value
+ * changes.
+ */
+#ifndef ANALYSES_OPERATING_POINT_H
+#define ANALYSES_OPERATING_POINT_H
+
+#include "analyses/analysis.h"
+#include "analyses/system.h"
+
+struct operating_point {
+    struct system *system;
+    double *x;            /* [n] last accepted point */
+    long double *refined; /* [n] polished, after operating_point_polish */
+    long double *values;  /* [nonzeros] Jacobian there; the system's solver holds its factors */
+    long double *linear;  /* [4 n] workspace of linearised.c */
+    double *saved;        /* [n] scratch of operating_point_move */
+    struct solver_result solver;
+    bool (*stopped)(void *self);
+    void *stopped_self;
+    int stalled_equation; /* of the last failure, -1 */
+    int stalled_column;
+    double best_residual;
+    struct newton_report report; /* iterations add up over the whole search */
+};
+
+/* Workspaces from the system's arena. False when memory is short. */
+bool operating_point_create(struct operating_point *point, struct system *system,
+                            const struct analysis_options *options);
+
+/*
+ * operating_point_find: from cold: damped Newton from a guess that turns every diode-like device
+ * on, then source stepping, conductance stepping, arclength continuation; then the polish.
+ *
+ * Returns STATUS_OK (solver filled in), STATUS_UNSOLVED (trouble and advice say why),
+ * STATUS_STOPPED, STATUS_MEMORY.
+ */
+enum status operating_point_find(struct operating_point *point);
+
+/* Refines x to the end of long double and measures worst_residual. */
+enum status operating_point_polish(struct operating_point *point);
+
+/*
+ * operating_point_move: changes one value of one instance from `from` (where x is a root) to `to`,
+ * and follows the root: tangent step and Newton, then smaller steps, then continuation.
+ *
+ * jumped  out: the root could not be followed; the state at `to` was found in another way
+ */
+enum status operating_point_move(struct operating_point *point, int instance, int parameter,
+                                 double from, double to, bool *jumped);
+
+/* Newton from the x at hand with the values in force, without any fallback. */
+enum newton_status operating_point_newton(struct operating_point *point);
+
+/* A start for the search in which diode-like devices conduct, [n] out. */
+void operating_point_guess(const struct system *system, double *x);
+
+#endif

@@ -1,0 +1,470 @@
+/*
+ * output.c: one output, swept around the operating point.
+ *
+ * The sweep walks from `at` to both ends. Each solved place carries its state, current and exact
+ * slope, so that the distance between the curve and its chord is known (two cubic Hermite pieces)
+ * and a segment is split until the straight line misses the curve by less than the tolerance.
+ * Compliance and band edges are roots on a bracketed segment.
+ */
+#include "analyses/output.h"
+
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "analyses/linearised.h"
+#include "analyses/measure.h"
+#include "base/root.h"
+
+enum { FIRST_SEGMENTS = 16, DEPTH_LIMIT = 24, EVENT_LIMIT = 20 };
+
+/* Promised: 0.1 % of nominal or 1 % of the local value. Aimed at: half of it. */
+static const double share_nominal = 0.5e-3, share_local = 0.5e-2;
+/* Root finding in the load voltage, V. */
+static const double volts_tolerance = 1e-9;
+
+struct place {
+    double v, i, slope; /* current into the direction of `at`, positive there */
+    double *x;
+};
+
+struct sweeper {
+    struct operating_point *point;
+    const struct output *output;
+    struct arena *arena;
+    struct output_result *result;
+    int parameter, branch;
+    double sign;          /* current in the direction at `at` = sign * branch current */
+    double nominal;       /* A, positive */
+    double *rhs;          /* [n] */
+    struct place *places; /* one direction, from `at` outwards */
+    int count, capacity;
+    struct place *spare; /* states for bisection */
+    int *held;           /* transistors saturated at `at` */
+    int held_count;
+    enum status status;
+};
+
+/* --- places ---------------------------------------------------------------------------------- */
+
+static bool keep_state(struct sweeper *w, struct place *place)
+{
+    const size_t n = (size_t)w->point->system->n;
+    place->x = arena_new_array(w->arena, double, n);
+    if (place->x == NULL) {
+        w->status = STATUS_MEMORY;
+        return false;
+    }
+    memcpy(place->x, w->point->x, n * sizeof *place->x);
+    return true;
+}
+
+/* Current and slope at the state in point->x, whose factors the solver holds. */
+static void read_place(struct sweeper *w, struct place *place)
+{
+    struct system *s = w->point->system;
+    memset(w->rhs, 0, (size_t)s->n * sizeof *w->rhs);
+    w->rhs[w->branch] = 1;
+    linear_solve(s->solver, w->rhs);
+    place->i = w->sign * w->point->x[w->branch];
+    place->slope = w->sign * w->rhs[w->branch];
+}
+
+/* The fold or jump is part of the answer, not a lost point. */
+static void add_event(struct sweeper *w, double at, const char *text)
+{
+    struct output_result *r = w->result;
+    if (r->event_count >= EVENT_LIMIT) {
+        return;
+    }
+    if (r->events == NULL) {
+        r->events = arena_new_array(w->arena, struct sweep_event, EVENT_LIMIT);
+    }
+    if (r->events == NULL) {
+        w->status = STATUS_MEMORY;
+        return;
+    }
+    r->events[r->event_count++] = (struct sweep_event){at, text};
+}
+
+/*
+ * Solves at v from a near state. A root that cannot be followed is looked for in another way and
+ * told as an event; false when there is none (also an event), or when the work is to end.
+ */
+static bool solve_at(struct sweeper *w, const struct place *near, double v, struct place *place)
+{
+    struct operating_point *p = w->point;
+    const size_t n = (size_t)p->system->n;
+    const double h = v - near->v;
+    bool jumped = false;
+    memcpy(p->x, near->x, n * sizeof *p->x);
+    (void)h;
+    const enum status status =
+        operating_point_move(p, w->output->instance, w->parameter, near->v, v, &jumped);
+    if (status == STATUS_UNSOLVED) {
+        add_event(w, v, "no state was found at this load voltage");
+        return false;
+    }
+    if (status != STATUS_OK) {
+        w->status = status;
+        return false;
+    }
+    if (jumped) {
+        add_event(w, v, "the state cannot be followed: it folds or jumps here");
+        if (operating_point_newton(p) != NEWTON_CONVERGED) {
+            return false;
+        }
+    }
+    place->v = v;
+    read_place(w, place);
+    return keep_state(w, place);
+}
+
+static bool add_place(struct sweeper *w, const struct place *place)
+{
+    struct place *list = arena_grow(w->arena, w->places, w->count, &w->capacity, sizeof *list);
+    if (list == NULL) {
+        w->status = STATUS_MEMORY;
+        return false;
+    }
+    w->places = list;
+    list[w->count++] = *place;
+    return true;
+}
+
+/* --- the adaptive curve ---------------------------------------------------------------------- */
+
+static double tolerance_at(const struct sweeper *w, double i)
+{
+    return fmax(share_nominal * w->nominal, share_local * fabs(i));
+}
+
+/* Bound on the distance between a cubic with these end slopes and its chord (4/27 is the extreme of
+ * t (1-t)^2). */
+static double chord_error(const struct place *a, const struct place *b)
+{
+    const double h = b->v - a->v, chord = (b->i - a->i) / h;
+    return fabs(h) * (4.0 / 27) * (fabs(a->slope - chord) + fabs(b->slope - chord));
+}
+
+static double hermite_middle(const struct place *a, const struct place *b)
+{
+    return (a->i + b->i) / 2 + (b->v - a->v) * (a->slope - b->slope) / 8;
+}
+
+/* Adds all places after a up to b, whose state is known. */
+static bool fill(struct sweeper *w, const struct place *a, const struct place *b, int depth)
+{
+    struct place middle;
+    if (!solve_at(w, a, (a->v + b->v) / 2, &middle)) {
+        return w->status == STATUS_OK && add_place(w, b);
+    }
+    const double tolerance = tolerance_at(w, fmin(fabs(a->i), fabs(b->i)));
+    const bool smooth = chord_error(a, &middle) <= tolerance &&
+                        chord_error(&middle, b) <= tolerance &&
+                        fabs(middle.i - hermite_middle(a, b)) <= 2 * tolerance;
+    if (smooth) {
+        return add_place(w, &middle) && add_place(w, b);
+    }
+    if (depth >= DEPTH_LIMIT) {
+        add_event(w, middle.v, "the current jumps at this load voltage");
+        return add_place(w, b);
+    }
+    return fill(w, a, &middle, depth + 1) && fill(w, &middle, b, depth + 1);
+}
+
+static bool walk(struct sweeper *w, const struct place *home, double end)
+{
+    w->count = 0;
+    if (!add_place(w, home)) {
+        return false;
+    }
+    const double span = w->output->to - w->output->from;
+    const int segments = (int)ceil(FIRST_SEGMENTS * fabs(end - home->v) / span);
+    for (int k = 1; k <= segments; k++) {
+        const struct place last = w->places[w->count - 1];
+        const double v = k == segments ? end : home->v + (end - home->v) * k / segments;
+        struct place next;
+        if (!solve_at(w, &last, v, &next)) {
+            if (w->status != STATUS_OK) {
+                return false;
+            }
+            continue;
+        }
+        if (!fill(w, &last, &next, 0)) {
+            return false;
+        }
+    }
+    return true;
+}
+
+/* --- roots on the curve ---------------------------------------------------------------------- */
+
+struct root_task {
+    struct sweeper *sweeper;
+    const struct place *near;
+    double (*distance)(struct sweeper *w, const struct place *place);
+};
+
+/* The least headroom of the transistors that held at `at`; the device is remembered. */
+static double headroom_left(struct sweeper *w, const struct place *place)
+{
+    double least = INFINITY;
+    for (int k = 0; k < w->held_count; k++) {
+        const double headroom = measure_headroom(w->point->system, w->held[k], place->x, NULL);
+        if (!(headroom >= least)) {
+            least = headroom;
+            w->result->compliance_device = w->point->system->circuit->instances[w->held[k]].name;
+        }
+    }
+    return least;
+}
+
+static double band_left(struct sweeper *w, const struct place *place)
+{
+    return w->output->within * w->nominal - fabs(place->i - w->nominal);
+}
+
+static double slope_left(struct sweeper *w, const struct place *place)
+{
+    (void)w;
+    return place->slope;
+}
+
+static double distance_at(void *self, double v)
+{
+    struct root_task *task = self;
+    struct place place;
+    if (!solve_at(task->sweeper, task->near, v, &place)) {
+        return NAN;
+    }
+    return task->distance(task->sweeper, &place);
+}
+
+/* First place outwards where distance() turns from positive to negative, as a root; NAN when it
+ * does not. */
+static double first_loss(struct sweeper *w,
+                         double (*distance)(struct sweeper *, const struct place *))
+{
+    for (int k = 1; k < w->count; k++) {
+        const double after = distance(w, &w->places[k]);
+        if (after > 0) {
+            continue;
+        }
+        struct root_task task = {w, &w->places[k - 1], distance};
+        const double before = distance(w, &w->places[k - 1]);
+        return root_bracketed(distance_at, &task, w->places[k - 1].v, before, w->places[k].v, after,
+                              volts_tolerance);
+    }
+    return NAN;
+}
+
+/* --- what the curve says ---------------------------------------------------------------------- */
+
+static bool list_held(struct sweeper *w)
+{
+    const struct system *s = w->point->system;
+    w->held = arena_new_array(w->arena, int, s->circuit->instance_count);
+    for (int k = 0; w->held != NULL && k < s->circuit->instance_count; k++) {
+        unsigned region;
+        if (s->circuit->instances[k].type->is_transistor) {
+            const double headroom = measure_headroom(s, k, w->point->x, &region);
+            if ((region & REGION_SATURATED) != 0 && headroom > 0) {
+                w->held[w->held_count++] = k;
+            }
+        }
+    }
+    return w->held != NULL;
+}
+
+/* Compliance lies towards ground for a sink, towards the supply for a source. */
+static void find_compliance(struct sweeper *w)
+{
+    struct output_result *r = w->result;
+    if (w->held_count == 0) {
+        return;
+    }
+    r->compliance = first_loss(w, headroom_left);
+    if (isnan(r->compliance)) {
+        r->compliance_beyond = true;
+        r->compliance_device = NULL;
+        return;
+    }
+    /* The device is the one whose headroom is least just there. */
+    struct root_task task = {w, &w->places[0], headroom_left};
+    for (int k = 0; k < w->count; k++) {
+        if (fabs(w->places[k].v - r->compliance) < fabs(task.near->v - r->compliance)) {
+            task.near = &w->places[k];
+        }
+    }
+    distance_at(&task, r->compliance);
+}
+
+/* Largest and smallest current between compliance and the far end. Extremes inside are roots of the
+ * slope. */
+struct extremes {
+    double least, most;
+};
+
+static void include(struct extremes *e, double i)
+{
+    e->least = fmin(e->least, i);
+    e->most = fmax(e->most, i);
+}
+
+static void scan_extremes(struct sweeper *w, double limit, struct extremes *e)
+{
+    const double side = w->count > 1 ? w->places[1].v - w->places[0].v : 0;
+    for (int k = 0; k < w->count; k++) {
+        const struct place *place = &w->places[k];
+        if (!isnan(limit) && (place->v - limit) * side > 0) {
+            struct place edge;
+            if (solve_at(w, &w->places[k - 1], limit, &edge)) {
+                include(e, edge.i);
+            }
+            return;
+        }
+        include(e, place->i);
+        if (k > 0 && place->slope * w->places[k - 1].slope < 0) {
+            struct root_task task = {w, &w->places[k - 1], slope_left};
+            const double v = root_bracketed(distance_at, &task, w->places[k - 1].v,
+                                            w->places[k - 1].slope, place->v, place->slope, 1e-6);
+            struct place top;
+            if (isfinite(v) && (isnan(limit) || (v - limit) * side <= 0) &&
+                solve_at(w, &w->places[k - 1], v, &top)) {
+                include(e, top.i);
+            }
+        }
+    }
+}
+
+/* --- small changes ---------------------------------------------------------------------------- */
+
+static bool find_derivatives(struct operating_point *home, int branch, double sign,
+                             struct arena *arena, struct output_result *r)
+{
+    const struct circuit *c = home->system->circuit;
+    const long double g = linearised_conductance(home, branch);
+    r->resistance = (double)(1 / g);
+    /* What is lost in the rounding of extended precision, or beyond 1e18 ohm, is no figure. */
+    r->resistance_unlimited = !(fabsl(g) > 1e-18L);
+    if (r->resistance_unlimited) {
+        r->resistance = NAN;
+    }
+    double *line = arena_new_array(arena, double, c->rail_count);
+    if (line == NULL) {
+        return false;
+    }
+    for (int k = 0; k < c->rail_count; k++) {
+        const int driver = system_branch(&c->instances[c->rails[k].instance]);
+        line[k] = sign * (double)linearised_transfer(home, branch, driver) / r->current;
+    }
+    r->line = line;
+    r->tempco = sign * (double)linearised_temperature(home, branch) / r->current;
+    r->sigma = linearised_sigma(home, branch) / r->current;
+    return true;
+}
+
+/* --- the whole -------------------------------------------------------------------------------- */
+
+static bool make_curve(struct sweeper *w, const struct place *down, int down_count)
+{
+    struct curve_points *curve = &w->result->curve;
+    const int count = down_count + w->count - 1;
+    double *v = arena_new_array(w->arena, double, count);
+    double *i = arena_new_array(w->arena, double, count);
+    if (v == NULL || i == NULL) {
+        return false;
+    }
+    int used = 0;
+    for (int k = down_count - 1; k > 0; k--, used++) {
+        v[used] = down[k].v;
+        i[used] = down[k].i;
+    }
+    for (int k = 0; k < w->count; k++, used++) {
+        v[used] = w->places[k].v;
+        i[used] = w->places[k].i;
+    }
+    *curve = (struct curve_points){v, i, used};
+    return true;
+}
+
+static void sweep_both(struct sweeper *w, const struct place *home)
+{
+    struct output_result *r = w->result;
+    struct extremes e = {home->i, home->i};
+    if (!walk(w, home, w->output->from)) {
+        return;
+    }
+    r->low = first_loss(w, band_left);
+    if (r->is_sink) {
+        find_compliance(w);
+    }
+    struct place *down = w->places;
+    const int down_count = w->count;
+    w->places = NULL;
+    w->count = w->capacity = 0;
+    if (!walk(w, home, w->output->to)) {
+        return;
+    }
+    r->high = first_loss(w, band_left);
+    if (!r->is_sink) {
+        find_compliance(w);
+    }
+    scan_extremes(w, r->is_sink ? NAN : r->compliance, &e);
+    const struct sweeper up = *w;
+    w->places = down;
+    w->count = down_count;
+    scan_extremes(w, r->is_sink ? r->compliance : NAN, &e);
+    w->places = up.places;
+    w->count = up.count;
+    r->flatness = (e.most - e.least) / w->nominal;
+    if (!make_curve(w, down, down_count)) {
+        w->status = STATUS_MEMORY;
+    }
+}
+
+enum status analyse_output(struct operating_point *home, int index, struct arena *arena,
+                           struct output_result *r)
+{
+    struct system *s = home->system;
+    const struct output *output = &s->circuit->outputs[index];
+    struct arena *scratch = arena_create();
+    if (scratch == NULL) {
+        return STATUS_MEMORY;
+    }
+    const int branch = system_branch(&s->circuit->instances[output->instance]);
+    const double i = (double)home->refined[branch];
+    *r = (struct output_result){.output = output,
+                                .is_sink = i <= 0,
+                                .current = fabs(i),
+                                .compliance = NAN,
+                                .low = NAN,
+                                .high = NAN,
+                                .flatness = NAN,
+                                .tempco = NAN,
+                                .sigma = NAN};
+    struct sweeper w = {.point = home,
+                        .output = output,
+                        .arena = arena,
+                        .result = r,
+                        .parameter = s->circuit->instances[output->instance].type->value_parameter,
+                        .branch = branch,
+                        .sign = i <= 0 ? -1 : 1,
+                        .nominal = fabs(i)};
+    w.rhs = arena_new_array(scratch, double, s->n);
+    const bool good =
+        w.rhs != NULL && find_derivatives(home, branch, w.sign, arena, r) && list_held(&w);
+    struct place start = {.v = output->at};
+    if (good) {
+        read_place(&w, &start);
+        if (keep_state(&w, &start)) {
+            sweep_both(&w, &start);
+        }
+        system_set(s, output->instance, w.parameter, output->at);
+        memcpy(home->x, start.x, (size_t)s->n * sizeof *home->x);
+        operating_point_newton(home);
+    }
+    arena_destroy(scratch);
+    return good ? w.status : STATUS_MEMORY;
+}

@@ -1,0 +1,139 @@
+/*
+ * result.h: what the analyses found, as plain data. Reports read it and compute nothing. A NAN is a
+ * value that does not apply. All of a result lives in one arena and borrows the circuit.
+ */
+#ifndef ANALYSES_RESULT_H
+#define ANALYSES_RESULT_H
+
+#include "circuit/circuit.h"
+
+enum view { VIEW_FULL, VIEW_HAND };
+
+/* How the operating point was found, and how good it is. */
+struct solver_result {
+    bool converged;
+    const char *method;     /* "direct", "source stepping", "conductance stepping", "arclength
+                               continuation" */
+    int iterations;         /* Newton iterations in all */
+    double worst_residual;  /* largest |sum of currents| / sum of |currents|, extended precision */
+    const char *worst_name; /* node or branch where it is */
+    const char *limited_by; /* what keeps worst_residual above 1e-12; NULL when it is below */
+    const char *trouble;    /* not converged: what happened, in circuit words; NULL otherwise */
+    const char *advice;     /* not converged: what to look at; NULL otherwise */
+};
+
+struct device_result {
+    const struct instance *instance;
+    unsigned region;
+    const char *region_text; /* "" when it has none */
+    const double *q;         /* [type->quantity_count] */
+};
+
+struct rail_result {
+    const struct rail *rail;
+    double v, current, power; /* current delivered to the cell */
+};
+
+struct point_result {
+    struct solver_result solver;
+    const double *x;               /* [unknown_count] rounded to double */
+    struct device_result *devices; /* [device_count] hidden instances left out */
+    int device_count;
+    struct rail_result *rails; /* [circuit->rail_count] */
+    double least_headroom;     /* V, NAN when there is no transistor */
+    const char *least_headroom_device;
+    double cell_power; /* W delivered by all rails and sources */
+};
+
+struct curve_points {
+    const double *v, *current; /* [count] rising v; current is the magnitude with the sign of the
+                                  direction at `at` positive */
+    int count;
+};
+
+/* A place where the state jumps or folds while a voltage is swept. */
+struct sweep_event {
+    double at;        /* swept value */
+    const char *text; /* what happened, in circuit words */
+};
+
+struct output_result {
+    const struct output *output;
+    bool is_sink; /* current into the cell at `at` */
+    double current;
+    double resistance; /* ohm; NAN when unlimited */
+    bool resistance_unlimited;
+    double compliance; /* V; NAN when nothing lost its headroom within the sweep, or nothing was
+                          saturated */
+    const char *compliance_device;
+    bool compliance_beyond; /* everything still held at the end of the sweep in that direction */
+    double low, high;       /* V; NAN where the band is not left within the sweep */
+    double flatness;        /* share */
+    const double *line;     /* [rail_count] relative change per volt, 1/V */
+    double tempco;          /* 1/K */
+    double sigma;           /* share; NAN when no mismatch coefficients are given */
+    struct curve_points curve;
+    struct sweep_event *events;
+    int event_count;
+};
+
+struct hand_result {
+    const struct hand_line *hand;
+    double computed;
+    double difference;   /* computed - hand */
+    double in_hand_view; /* the same quantity under the square law, NAN when that was not solved */
+};
+
+enum judgement {
+    JUDGED_MET,
+    JUDGED_NOT_MET,
+    JUDGED_NOT,    /* scope not judged by this command */
+    JUDGED_UNKNOWN /* the quantity has no value; counts as not met */
+};
+
+struct requirement_result {
+    const struct requirement *requirement;
+    double computed;
+    enum judgement judgement;
+    double margin;      /* distance to the limit in the quantity's unit, negative when not met */
+    const char *remark; /* "held down to the end of the sweep", "..." or NULL */
+};
+
+enum verdict { VERDICT_MET, VERDICT_NOT_MET, VERDICT_NO_REQUIREMENTS, VERDICT_UNSOLVED };
+
+struct sweep_series {
+    double family_value; /* NAN without a family */
+    int count;
+    const double *knob;   /* [count] */
+    const double *values; /* [count * shown_count] row by row */
+    struct sweep_event *events;
+    int event_count;
+};
+
+struct sweep_table {
+    const struct sweep *sweep;
+    struct sweep_series *series;
+    int series_count;
+};
+
+/* Everything one run found. Parts that a command does not make are empty. */
+struct result {
+    struct arena *arena;
+    const struct circuit *circuit;
+    const char *command;
+    enum view view;
+    double kelvin;
+    enum verdict verdict;
+    struct point_result point;
+    struct output_result *outputs;
+    int output_count;
+    struct hand_result *hands;
+    int hand_count;
+    struct requirement_result *requirements;
+    int requirement_count;
+    struct sweep_table *sweeps;
+    int sweep_count;
+    struct caution_list cautions;
+};
+
+#endif

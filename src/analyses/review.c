@@ -1,0 +1,228 @@
+/*
+ * review.c: the commands: point, review, sweep.
+ */
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "analyses/analysis.h"
+#include "analyses/judge.h"
+#include "analyses/measure.h"
+#include "analyses/output.h"
+#include "analyses/remarks.h"
+#include "analyses/sweep.h"
+
+static unsigned effects_of(enum view view)
+{
+    return view == VIEW_HAND ? EFFECTS_HAND : EFFECTS_FULL;
+}
+
+static struct result *new_result(const struct circuit *circuit,
+                                 const struct analysis_options *options, const char *command)
+{
+    struct arena *arena = arena_create();
+    struct result *result = arena == NULL ? NULL : arena_new(arena, struct result);
+    if (result == NULL) {
+        arena_destroy(arena);
+        return NULL;
+    }
+    result->arena = arena;
+    result->circuit = circuit;
+    result->command = command;
+    result->view = options->view;
+    result->kelvin = circuit->kelvin;
+    result->verdict = VERDICT_UNSOLVED;
+    result->cautions.arena = arena;
+    return result;
+}
+
+void result_free(struct result *result)
+{
+    if (result != NULL) {
+        arena_destroy(result->arena);
+    }
+}
+
+/* Texts of the solver live in the system's arena: the result keeps its own. */
+static const char *keep(struct arena *arena, const char *text)
+{
+    return text == NULL ? NULL : arena_copy(arena, text, strlen(text));
+}
+
+static void keep_solver(struct result *result, const struct solver_result *solver)
+{
+    struct solver_result *s = &result->point.solver;
+    *s = *solver;
+    s->method = keep(result->arena, solver->method);
+    s->worst_name = keep(result->arena, solver->worst_name);
+    s->limited_by = keep(result->arena, solver->limited_by);
+    s->trouble = keep(result->arena, solver->trouble);
+    s->advice = keep(result->arena, solver->advice);
+}
+
+struct session {
+    struct system *system;
+    struct operating_point point;
+};
+
+static void close_session(struct session *session)
+{
+    system_free(session->system);
+}
+
+/* The operating point, measured into the result. */
+static enum status solve_point(struct circuit *circuit, const struct analysis_options *options,
+                               struct session *session, struct result *result)
+{
+    session->system = system_create(circuit, circuit->kelvin, effects_of(options->view));
+    if (session->system == NULL ||
+        !operating_point_create(&session->point, session->system, options)) {
+        return STATUS_MEMORY;
+    }
+    const enum status status = operating_point_find(&session->point);
+    keep_solver(result, &session->point.solver);
+    if (status == STATUS_OK && !measure_point(&session->point, result->arena, &result->point)) {
+        return STATUS_MEMORY;
+    }
+    return status;
+}
+
+static enum status solve_outputs(const struct circuit *circuit,
+                                 const struct analysis_options *options, struct session *session,
+                                 struct result *result)
+{
+    result->outputs = arena_new_array(result->arena, struct output_result, circuit->output_count);
+    if (result->outputs == NULL) {
+        return STATUS_MEMORY;
+    }
+    for (int k = 0; k < circuit->output_count; k++) {
+        if (options->progress != NULL) {
+            options->progress(options->progress_self, circuit->outputs[k].name,
+                              (double)k / circuit->output_count);
+        }
+        /* The sweep of an output leaves the point where it found it, but not the factors. */
+        enum status status = k == 0 ? STATUS_OK : operating_point_polish(&session->point);
+        if (status == STATUS_OK) {
+            status = analyse_output(&session->point, k, result->arena, &result->outputs[k]);
+        }
+        if (status != STATUS_OK) {
+            return status == STATUS_UNSOLVED ? STATUS_OK : status;
+        }
+        result->output_count++;
+    }
+    return STATUS_OK;
+}
+
+/* What the square law alone gives for the hand lines; a cell that has no such state leaves them
+ * empty. */
+static enum status solve_hand_view(struct circuit *circuit, const struct analysis_options *options,
+                                   struct result *result)
+{
+    if (result->hand_count == 0 || options->view == VIEW_HAND) {
+        return STATUS_OK;
+    }
+    struct analysis_options hand = *options;
+    struct session session = {0};
+    struct result *other = new_result(circuit, options, "hand");
+    hand.view = VIEW_HAND;
+    hand.progress = NULL;
+    enum status status =
+        other == NULL ? STATUS_MEMORY : solve_point(circuit, &hand, &session, other);
+    bool outputs = false;
+    for (int k = 0; k < result->hand_count; k++) {
+        outputs |= result->hands[k].hand->probe.kind == PROBE_OUTPUT;
+    }
+    if (status == STATUS_OK && outputs) {
+        status = solve_outputs(circuit, &hand, &session, other);
+    }
+    for (int k = 0; status == STATUS_OK && k < result->hand_count; k++) {
+        result->hands[k].in_hand_view = result_value(other, &result->hands[k].hand->probe);
+    }
+    close_session(&session);
+    result_free(other);
+    return status == STATUS_UNSOLVED ? STATUS_OK : status;
+}
+
+static enum status finish(enum status status, struct session *session, struct result **result)
+{
+    close_session(session);
+    if (status == STATUS_MEMORY || arena_failed((*result)->arena)) {
+        result_free(*result);
+        *result = NULL;
+        return STATUS_MEMORY;
+    }
+    return status;
+}
+
+enum status analysis_point(struct circuit *circuit, const struct analysis_options *options,
+                           struct result **result)
+{
+    struct session session = {0};
+    *result = new_result(circuit, options, "point");
+    if (*result == NULL) {
+        return STATUS_MEMORY;
+    }
+    enum status status = solve_point(circuit, options, &session, *result);
+    if (status == STATUS_OK) {
+        (*result)->verdict = VERDICT_NO_REQUIREMENTS;
+        if (!remarks_add(&session.point, *result)) {
+            status = STATUS_MEMORY;
+        }
+    }
+    return finish(status, &session, result);
+}
+
+enum status analysis_review(struct circuit *circuit, const struct analysis_options *options,
+                            struct result **result)
+{
+    struct session session = {0};
+    *result = new_result(circuit, options, "review");
+    if (*result == NULL) {
+        return STATUS_MEMORY;
+    }
+    enum status status = solve_point(circuit, options, &session, *result);
+    if (status == STATUS_OK) {
+        status = solve_outputs(circuit, options, &session, *result);
+        if (status != STATUS_MEMORY &&
+            (!judge_all(*result) || !remarks_add(&session.point, *result))) {
+            status = STATUS_MEMORY;
+        }
+    }
+    if (status == STATUS_OK) {
+        status = solve_hand_view(circuit, options, *result);
+    }
+    return finish(status, &session, result);
+}
+
+enum status analysis_sweep(struct circuit *circuit, const struct analysis_options *options,
+                           struct result **result)
+{
+    struct session session = {0};
+    *result = new_result(circuit, options, "sweep");
+    if (*result == NULL) {
+        return STATUS_MEMORY;
+    }
+    const struct sweep *sweeps =
+        options->extra_sweep != NULL ? options->extra_sweep : circuit->sweeps;
+    const int count = options->extra_sweep != NULL ? 1 : circuit->sweep_count;
+    enum status status = solve_point(circuit, options, &session, *result);
+    if (status == STATUS_UNSOLVED) {
+        status = STATUS_OK; /* the cell may have a state elsewhere on the sweep */
+    }
+    (*result)->sweeps = arena_new_array((*result)->arena, struct sweep_table, count);
+    if ((*result)->sweeps == NULL) {
+        status = STATUS_MEMORY;
+    }
+    for (int k = 0; status == STATUS_OK && k < count; k++) {
+        if (options->progress != NULL) {
+            options->progress(options->progress_self, sweeps[k].knob.name, (double)k / count);
+        }
+        status =
+            analyse_sweep(circuit, &sweeps[k], options, (*result)->arena, &(*result)->sweeps[k]);
+        (*result)->sweep_count = k + 1;
+    }
+    if (status == STATUS_OK) {
+        (*result)->verdict = VERDICT_NO_REQUIREMENTS;
+    }
+    return finish(status, &session, result);
+}

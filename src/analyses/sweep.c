@@ -1,0 +1,302 @@
+/*
+ * sweep.c: quantities over a range of anything that can be turned.
+ *
+ * A rail, source, resistor, output or device value is turned in place and the state followed. A let
+ * or the temperature changes many values at once: the circuit is built anew for each point, and the
+ * search starts from the last state.
+ */
+#include "analyses/sweep.h"
+
+#include <math.h>
+#include <string.h>
+
+#include "analyses/judge.h"
+#include "analyses/measure.h"
+#include "analyses/output.h"
+
+enum { POINTS_STANDARD = 51, EVENT_LIMIT = 20 };
+
+struct setting {
+    const struct knob *knob;
+    double value;
+};
+
+/* The circuit and system in force, which may be this sweep's own. */
+struct stage {
+    struct circuit *circuit, *own_circuit;
+    struct system *system;
+    struct operating_point point;
+    unsigned effects;
+    const struct analysis_options *options;
+    bool is_solved;
+};
+
+static void stage_close(struct stage *stage)
+{
+    system_free(stage->system);
+    circuit_free(stage->own_circuit);
+    *stage = (struct stage){.options = stage->options, .effects = stage->effects};
+}
+
+/* Builds circuit and system with all settings in force. */
+static enum status stage_open(struct stage *stage, struct circuit *base,
+                              const struct setting *settings, int count)
+{
+    struct circuit_settings wanted = base->settings;
+    struct set_value *sets =
+        arena_new_array(base->arena, struct set_value, wanted.set_count + count);
+    if (sets == NULL) {
+        return STATUS_MEMORY;
+    }
+    if (wanted.set_count > 0) {
+        memcpy(sets, wanted.sets, (size_t)wanted.set_count * sizeof *sets);
+    }
+    bool anew = false;
+    wanted.sets = sets;
+    for (int k = 0; k < count; k++) {
+        const struct knob *knob = settings[k].knob;
+        if (knob->kind == KNOB_TEMPERATURE) {
+            wanted.kelvin = settings[k].value;
+            anew = true;
+        } else if (knob->kind == KNOB_LET) {
+            struct quantity value = base->lets[knob->parameter].value;
+            value.value = settings[k].value;
+            sets[wanted.set_count++] =
+                (struct set_value){.name = knob->name, .value = value, .where = SPAN_NONE};
+            anew = true;
+        }
+    }
+    stage->circuit = base;
+    if (anew) {
+        struct diagnostics unseen = {.arena = base->arena};
+        const enum status status = circuit_build(base->cell, &wanted, &unseen, &stage->own_circuit);
+        if (status != STATUS_OK) {
+            return status == STATUS_INPUT ? STATUS_UNSOLVED : status;
+        }
+        stage->circuit = stage->own_circuit;
+    }
+    stage->system = system_create(stage->circuit, stage->circuit->kelvin, stage->effects);
+    if (stage->system == NULL ||
+        !operating_point_create(&stage->point, stage->system, stage->options)) {
+        return STATUS_MEMORY;
+    }
+    for (int k = 0; k < count; k++) {
+        const struct knob *knob = settings[k].knob;
+        if (knob->kind == KNOB_VALUE) {
+            system_set(stage->system, knob->instance, knob->parameter, settings[k].value);
+        }
+    }
+    return STATUS_OK;
+}
+
+/* --- one point -------------------------------------------------------------------------------- */
+
+static bool wants_output(const struct probe *probe)
+{
+    return probe->kind == PROBE_OUTPUT && probe->quantity != OUTPUT_CURRENT;
+}
+
+static enum status read_outputs(struct stage *stage, const struct sweep *sweep, struct result *into)
+{
+    const struct circuit *c = stage->circuit;
+    into->outputs = arena_new_array(into->arena, struct output_result, c->output_count);
+    if (into->outputs == NULL) {
+        return STATUS_MEMORY;
+    }
+    into->output_count = c->output_count;
+    for (int k = 0; k < c->output_count; k++) {
+        bool wanted = false;
+        for (int q = 0; q < sweep->shown_count; q++) {
+            wanted |= wants_output(&sweep->shown[q]) && sweep->shown[q].index == k;
+        }
+        const enum status status =
+            !wanted ? STATUS_OK : analyse_output(&stage->point, k, into->arena, &into->outputs[k]);
+        if (status != STATUS_OK) {
+            return status;
+        }
+    }
+    return STATUS_OK;
+}
+
+static enum status read_point(struct stage *stage, const struct sweep *sweep, double *row)
+{
+    bool outputs = false;
+    for (int q = 0; q < sweep->shown_count; q++) {
+        outputs |= wants_output(&sweep->shown[q]);
+    }
+    enum status status = operating_point_polish(&stage->point);
+    if (status != STATUS_OK) {
+        return status;
+    }
+    for (int q = 0; q < sweep->shown_count; q++) {
+        row[q] = measure_probe(stage->system, &sweep->shown[q], stage->point.x);
+    }
+    if (!outputs) {
+        return STATUS_OK;
+    }
+    struct result scratch = {.arena = arena_create(), .circuit = stage->circuit};
+    if (scratch.arena == NULL) {
+        return STATUS_MEMORY;
+    }
+    status = read_outputs(stage, sweep, &scratch);
+    for (int q = 0; status == STATUS_OK && q < sweep->shown_count; q++) {
+        if (wants_output(&sweep->shown[q])) {
+            row[q] = result_value(&scratch, &sweep->shown[q]);
+        }
+    }
+    arena_destroy(scratch.arena);
+    return status;
+}
+
+/* --- one series ------------------------------------------------------------------------------- */
+
+struct series_task {
+    struct circuit *circuit;
+    const struct sweep *sweep;
+    const struct analysis_options *options;
+    struct arena *arena;
+    struct sweep_series *series;
+    double *knob, *values;
+    unsigned effects;
+};
+
+static bool add_event(struct series_task *t, double at, const char *text)
+{
+    struct sweep_series *series = t->series;
+    if (series->event_count >= EVENT_LIMIT) {
+        return true;
+    }
+    if (series->events == NULL) {
+        series->events = arena_new_array(t->arena, struct sweep_event, EVENT_LIMIT);
+    }
+    if (series->events == NULL) {
+        return false;
+    }
+    series->events[series->event_count++] = (struct sweep_event){at, text};
+    return true;
+}
+
+/* Moves the stage to the next value and solves there, from the state at the last value where there
+ * is one. */
+static enum status advance(struct series_task *t, struct stage *stage, int k)
+{
+    const struct sweep *sweep = t->sweep;
+    const double v = t->knob[k];
+    bool jumped = false;
+    if (sweep->knob.kind == KNOB_VALUE && stage->system != NULL) {
+        if (!stage->is_solved) {
+            system_set(stage->system, sweep->knob.instance, sweep->knob.parameter, v);
+            return operating_point_find(&stage->point);
+        }
+        const enum status status = operating_point_move(
+            &stage->point, sweep->knob.instance, sweep->knob.parameter, t->knob[k - 1], v, &jumped);
+        if (status == STATUS_OK && jumped &&
+            !add_event(t, v, "the state cannot be followed: it folds or jumps here")) {
+            return STATUS_MEMORY;
+        }
+        return status;
+    }
+    const struct setting settings[2] = {{&sweep->knob, v},
+                                        {&sweep->family, t->series->family_value}};
+    struct arena *scratch = arena_create();
+    const int n = stage->system == NULL || !stage->is_solved ? 0 : stage->system->n;
+    double *last = scratch == NULL ? NULL : arena_new_array(scratch, double, n);
+    if (last == NULL) {
+        arena_destroy(scratch);
+        return STATUS_MEMORY;
+    }
+    if (n > 0) {
+        memcpy(last, stage->point.x, (size_t)n * sizeof *last);
+    }
+    stage_close(stage);
+    enum status status = stage_open(stage, t->circuit, settings, sweep->has_family ? 2 : 1);
+    if (status == STATUS_OK) {
+        bool followed = false;
+        if (n == stage->system->n) {
+            memcpy(stage->point.x, last, (size_t)n * sizeof *last);
+            followed = operating_point_newton(&stage->point) == NEWTON_CONVERGED;
+        }
+        status = followed ? STATUS_OK : operating_point_find(&stage->point);
+    }
+    arena_destroy(scratch);
+    return status;
+}
+
+static enum status run_series(struct series_task *t)
+{
+    const struct sweep *sweep = t->sweep;
+    struct stage stage = {.options = t->options, .effects = t->effects};
+    enum status status = STATUS_OK;
+    int solved = 0;
+    for (int k = 0; k < t->series->count; k++) {
+        double *row = t->values + (size_t)k * (size_t)sweep->shown_count;
+        if (t->options->stopped != NULL && t->options->stopped(t->options->stopped_self)) {
+            status = STATUS_STOPPED;
+            t->series->count = k;
+            break;
+        }
+        for (int q = 0; q < sweep->shown_count; q++) {
+            row[q] = NAN;
+        }
+        status = advance(t, &stage, k);
+        if (status == STATUS_OK) {
+            status = read_point(&stage, sweep, row);
+        }
+        stage.is_solved = status == STATUS_OK;
+        if (status == STATUS_UNSOLVED) {
+            status =
+                add_event(t, t->knob[k], "no state was found here") ? STATUS_OK : STATUS_MEMORY;
+        } else if (status == STATUS_OK) {
+            solved++;
+        }
+        if (status != STATUS_OK) {
+            t->series->count = k;
+            break;
+        }
+    }
+    stage_close(&stage);
+    return status == STATUS_OK && solved == 0 ? STATUS_UNSOLVED : status;
+}
+
+enum status analyse_sweep(struct circuit *circuit, const struct sweep *sweep,
+                          const struct analysis_options *options, struct arena *arena,
+                          struct sweep_table *table)
+{
+    const int points = sweep->points > 0 ? sweep->points : POINTS_STANDARD;
+    const int families = sweep->has_family ? sweep->family_count : 1;
+    *table = (struct sweep_table){.sweep = sweep};
+    table->series = arena_new_array(arena, struct sweep_series, families);
+    if (table->series == NULL) {
+        return STATUS_MEMORY;
+    }
+    enum status worst = STATUS_OK;
+    for (int f = 0; f < families && worst != STATUS_MEMORY && worst != STATUS_STOPPED; f++) {
+        struct sweep_series *series = &table->series[f];
+        struct series_task task = {.circuit = circuit,
+                                   .sweep = sweep,
+                                   .options = options,
+                                   .arena = arena,
+                                   .series = series,
+                                   .effects =
+                                       options->view == VIEW_HAND ? EFFECTS_HAND : EFFECTS_FULL};
+        task.knob = arena_new_array(arena, double, points);
+        task.values = arena_new_array(arena, double, (size_t)points *(size_t)sweep->shown_count);
+        if (task.knob == NULL || task.values == NULL) {
+            return STATUS_MEMORY;
+        }
+        for (int k = 0; k < points; k++) {
+            task.knob[k] = k == points - 1
+                               ? sweep->to
+                               : sweep->from + (sweep->to - sweep->from) * k / (points - 1);
+        }
+        *series =
+            (struct sweep_series){.family_value = sweep->has_family ? sweep->family_values[f] : NAN,
+                                  .count = points,
+                                  .knob = task.knob,
+                                  .values = task.values};
+        const enum status status = run_series(&task);
+        table->series_count = f + 1;
+        worst = status == STATUS_OK ? worst : status;
+    }
+    return worst;
+}

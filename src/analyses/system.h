@@ -1,0 +1,75 @@
+/*
+ * system.h: a circuit as a nonlinear system: prepared devices, sparse pattern, assembly.
+ *
+ * A system owns a copy of all instance values, so that a sweep or a sample can change them without
+ * touching the circuit; each thread has its own system. Not safe to share.
+ */
+#ifndef ANALYSES_SYSTEM_H
+#define ANALYSES_SYSTEM_H
+
+#include "circuit/circuit.h"
+#include "numerics/newton.h"
+
+/* Which embedding the continuation parameter drives. */
+enum embedding {
+    EMBED_NONE,
+    EMBED_SOURCES,     /* independent sources at lambda times their value */
+    EMBED_CONDUCTANCE, /* a conductance from every node to its place in `anchor`, gone at lambda = 1
+                        */
+    EMBED_KNOB         /* one value moves from knob_from to knob_to */
+};
+
+struct system {
+    struct arena *arena;
+    const struct circuit *circuit;
+    struct device_conditions conditions;
+    int n, node_count; /* unknowns; the first node_count are node voltages */
+    int nonzeros;
+    double **own;    /* [instance] values in force */
+    char *prepared;  /* blocks of all instances */
+    size_t *block;   /* [instance] offset into prepared */
+    int *slots;      /* entries of all instances in the value array, then the node diagonals */
+    int *first_slot; /* [instance] */
+    double *weight;  /* [n] */
+    enum embedding embedding;
+    double lambda;
+    const double *anchor; /* [n] EMBED_CONDUCTANCE */
+    int knob_instance, knob_parameter;
+    double knob_from, knob_to;
+    struct nonlinear_system face;
+    struct linear_solver *solver;
+    double *work;               /* of the solvers */
+    long double *extended_work; /* of the polish and of linear_refine */
+    int evaluations;
+};
+
+/* A system for the conditions; owned by the caller (system_free). NULL when memory is short. */
+struct system *system_create(const struct circuit *circuit, double kelvin, unsigned effects);
+void system_free(struct system *system);
+
+/* Prepares all devices anew, for other conditions. */
+void system_conditions(struct system *system, double kelvin, unsigned effects);
+
+/* Changes one value and prepares its device. */
+void system_set(struct system *system, int instance, int parameter, double value);
+
+/* The prepared block of an instance. */
+const void *system_block(const struct system *system, int instance);
+
+/* The branch unknown of an instance that has one. */
+int system_branch(const struct instance *instance);
+
+/*
+ * system_slope: derivative of the residual in one instance value, at x, by a central difference in
+ * long double (relative error about 1e-9); [n] out, zero where the instance is not.
+ */
+void system_slope(struct system *system, int instance, int parameter, const long double *x,
+                  long double *slope);
+
+/* The same in the temperature, 1/K. */
+void system_temperature_slope(struct system *system, const long double *x, long double *slope);
+
+/* Local unknowns of an instance from the whole vector; gnd is 0. */
+void system_gather(const struct instance *instance, const double *x, double *local);
+
+#endif

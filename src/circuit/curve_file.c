@@ -1,0 +1,159 @@
+/*
+ * curve_file.c: the CSV file of a `table`: two columns, voltage in V and current in A, one header
+ * line allowed, `#` comments, blank lines free. Rows may come in any order of voltage.
+ */
+#include "circuit/build.h"
+
+#include <stdlib.h>
+#include <string.h>
+
+#include "devices/curve.h"
+#include "language/source.h"
+
+enum { CURVE_POINT_LIMIT = 100000 };
+
+struct row {
+    double v, i;
+    uint32_t begin, end;
+};
+
+struct reader {
+    struct builder *builder;
+    uint32_t file;
+    struct row *rows;
+    int count, capacity;
+    bool seen_line; /* a line with text was met: no header may come any more */
+};
+
+static uint32_t skip_blanks(const char *text, uint32_t k, uint32_t end)
+{
+    while (k < end && (text[k] == ' ' || text[k] == '\t' || text[k] == '\r')) {
+        k++;
+    }
+    return k;
+}
+
+/* One row; false after an error or when memory is short. */
+static bool read_row(struct reader *r, const char *text, uint32_t begin, uint32_t end)
+{
+    struct builder *b = r->builder;
+    struct row row = {.begin = begin, .end = end};
+    uint32_t k = skip_blanks(text, begin, end);
+    if (k == end || text[k] == '#') {
+        return true;
+    }
+    size_t used = number_parse(text + k, end - k, &row.v);
+    const bool may_be_header = !r->seen_line;
+    r->seen_line = true;
+    if (used == 0 && may_be_header) {
+        return true;
+    }
+    const uint32_t comma = skip_blanks(text, k + (uint32_t)used, end);
+    size_t second = 0;
+    uint32_t after = comma;
+    if (used > 0 && comma < end && text[comma] == ',') {
+        const uint32_t start = skip_blanks(text, comma + 1, end);
+        second = number_parse(text + start, end - start, &row.i);
+        after = skip_blanks(text, start + (uint32_t)second, end);
+    }
+    if (second == 0 || after != end || !isfinite(row.v) || !isfinite(row.i)) {
+        diagnostics_add(b->diagnostics, (struct span){r->file, k, end}, "0.65, 1.2e-6",
+                        "a row of a table is a voltage and a current");
+        return false;
+    }
+    struct row *list = arena_grow(b->arena, r->rows, r->count, &r->capacity, sizeof *list);
+    if (list == NULL) {
+        return false;
+    }
+    r->rows = list;
+    list[r->count++] = row;
+    return true;
+}
+
+static int by_voltage(const void *a, const void *b)
+{
+    const struct row *x = a, *y = b;
+    return (x->v > y->v) - (x->v < y->v);
+}
+
+static bool read_rows(struct reader *r, const struct source_file *file)
+{
+    bool good = true;
+    for (uint32_t begin = 0; begin < file->length;) {
+        const char *line_end = memchr(file->text + begin, '\n', file->length - begin);
+        const uint32_t end = line_end == NULL ? file->length : (uint32_t)(line_end - file->text);
+        good &= read_row(r, file->text, begin, end);
+        begin = end + 1;
+        if (r->count > CURVE_POINT_LIMIT) {
+            diagnostics_add(r->builder->diagnostics, (struct span){r->file, 0, 0}, NULL,
+                            "a table may hold at most %d points", CURVE_POINT_LIMIT);
+            return false;
+        }
+    }
+    return good;
+}
+
+static const struct curve *make_curve(struct builder *b, const struct reader *r)
+{
+    struct curve *curve = arena_new(b->arena, struct curve);
+    double *v = arena_new_array(b->arena, double, r->count);
+    double *i = arena_new_array(b->arena, double, r->count);
+    double *slope = arena_new_array(b->arena, double, r->count);
+    if (curve == NULL || v == NULL || i == NULL || slope == NULL) {
+        return NULL;
+    }
+    for (int k = 0; k < r->count; k++) {
+        v[k] = r->rows[k].v;
+        i[k] = r->rows[k].i;
+        if (k > 0 && !(v[k] > v[k - 1])) {
+            diagnostics_add(b->diagnostics,
+                            (struct span){r->file, r->rows[k].begin, r->rows[k].end}, NULL,
+                            "this voltage stands in the table twice");
+            return NULL;
+        }
+    }
+    curve_slopes(v, i, slope, r->count);
+    *curve = (struct curve){v, i, slope, r->count};
+    return curve;
+}
+
+/* The file's text, read once a cell however many circuits are built from it. */
+static bool find_source(struct builder *b, const char *path, const struct statement *statement,
+                        uint32_t *file)
+{
+    struct cell *cell = b->cell;
+    for (int k = 0; k < cell->sources.count; k++) {
+        if (cell->sources.files[k].name == statement->text) {
+            *file = (uint32_t)k;
+            return true;
+        }
+    }
+    return source_read(cell->arena, &cell->sources, path, statement->text, statement->text_span,
+                       b->diagnostics, file) == STATUS_OK;
+}
+
+const struct curve *build_curve(const struct frame *frame, const struct statement *statement)
+{
+    struct builder *b = frame->builder;
+    if (statement->text == NULL) {
+        diagnostics_add(b->diagnostics, statement->name.span, "table T1 a -> b \"curve.csv\"",
+                        "a table needs the name of its file");
+        return NULL;
+    }
+    const char *slash = strrchr(b->cell->path, '/');
+    const int folder =
+        statement->text[0] == '/' || slash == NULL ? 0 : (int)(slash - b->cell->path) + 1;
+    const char *path = arena_format(b->arena, "%.*s%s", folder, b->cell->path, statement->text);
+    struct reader reader = {.builder = b};
+    if (path == NULL || !find_source(b, path, statement, &reader.file) ||
+        !read_rows(&reader, &b->cell->sources.files[reader.file])) {
+        return NULL;
+    }
+    if (reader.count < 2) {
+        diagnostics_add(b->diagnostics, statement->text_span, NULL,
+                        "table \"%s\" has fewer than two points", statement->text);
+        return NULL;
+    }
+    qsort(reader.rows, (size_t)reader.count, sizeof *reader.rows, by_voltage);
+    return make_curve(b, &reader);
+}

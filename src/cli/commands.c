@@ -1,0 +1,199 @@
+/* commands.c: a request from the options, and its results to where they are wanted. */
+#include "cli/commands.h"
+
+#include <langinfo.h>
+#include <stdlib.h>
+#include <string.h>
+#include <sys/ioctl.h>
+#include <time.h>
+#include <unistd.h>
+
+#include "cli/output.h"
+#include "library/ampstead.h"
+
+/* What the callbacks of a run share. */
+struct watch {
+    const volatile sig_atomic_t *stop;
+    struct timespec start;
+    bool shows_progress; /* standard error is a terminal */
+    bool has_line;       /* a progress line stands there */
+};
+
+static int ask_stopped(void *self)
+{
+    const struct watch *watch = self;
+    return *watch->stop != 0;
+}
+
+/* Progress is shown only once the work has taken half a second. */
+static void show_progress(void *self, const char *what, double share)
+{
+    struct watch *watch = self;
+    struct timespec now;
+    if (!watch->shows_progress || clock_gettime(CLOCK_MONOTONIC, &now) != 0) {
+        return;
+    }
+    double seconds = (double)(now.tv_sec - watch->start.tv_sec) +
+                     1e-9 * (double)(now.tv_nsec - watch->start.tv_nsec);
+    if (seconds >= 0.5) {
+        fprintf(stderr, "\r%3.0f %%  %-60.60s", 100.0 * share, what);
+        watch->has_line = true;
+    }
+}
+
+static void end_progress(struct watch *watch)
+{
+    if (watch->has_line) {
+        fprintf(stderr, "\r%68s\r", "");
+    }
+}
+
+static bool wants_color(const struct options *options, int file)
+{
+    const char *choice = options->values[OPTION_COLOR];
+    if (choice != NULL && strcmp(choice, "auto") != 0) {
+        return strcmp(choice, "always") == 0;
+    }
+    const char *none = getenv("NO_COLOR"), *terminal = getenv("TERM");
+    return isatty(file) && (none == NULL || *none == '\0') &&
+           !(terminal != NULL && strcmp(terminal, "dumb") == 0);
+}
+
+/* Only a terminal says by its locale that it shows no UTF-8; files and pipes always get it. */
+static unsigned text_flags(const struct options *options)
+{
+    unsigned flags = wants_color(options, STDOUT_FILENO) ? AMPSTEAD_COLOR : 0;
+    if (isatty(STDOUT_FILENO) && strcmp(nl_langinfo(CODESET), "UTF-8") != 0) {
+        flags |= AMPSTEAD_ASCII;
+    }
+    return flags;
+}
+
+/* Width of the terminal; 0 when standard output is none. */
+static int text_columns(void)
+{
+    struct winsize size;
+    if (isatty(STDOUT_FILENO) && ioctl(STDOUT_FILENO, TIOCGWINSZ, &size) == 0) {
+        return size.ws_col;
+    }
+    return 0;
+}
+
+static bool is_stdout(const char *path)
+{
+    return path == NULL || *path == '\0' || strcmp(path, "-") == 0;
+}
+
+/* One text to its file or to standard output; NULL is a failure of memory. */
+static bool deliver(const char *path, const char *text)
+{
+    if (text == NULL) {
+        fputs("ampstead: memory is short\n", stderr);
+        return false;
+    }
+    if (is_stdout(path)) {
+        output_text(text);
+        return true;
+    }
+    return output_file(path, text);
+}
+
+/* Writes what was asked for; false when something could not be written. */
+static bool deliver_all(const struct options *options, struct ampstead_result *result)
+{
+    bool wants_text = true, is_written = true;
+    if (options->given[OPTION_JSON]) {
+        const char *path = options->values[OPTION_JSON];
+        wants_text = wants_text && !is_stdout(path);
+        is_written = deliver(path, ampstead_result_json(result)) && is_written;
+    }
+    if (options->given[OPTION_CSV] && ampstead_result_status(result) != AMPSTEAD_UNSOLVED) {
+        const char *path = options->values[OPTION_CSV];
+        wants_text = wants_text && !is_stdout(path);
+        is_written = deliver(path, ampstead_result_csv(result)) && is_written;
+    }
+    if (wants_text) {
+        const char *text = ampstead_result_text(result, text_flags(options), text_columns());
+        is_written = deliver(NULL, text) && is_written;
+    }
+    return is_written;
+}
+
+/* Two streams into one would be neither. */
+static bool check_outputs(const struct options *options)
+{
+    if (options->given[OPTION_JSON] && options->given[OPTION_CSV] &&
+        is_stdout(options->values[OPTION_JSON]) && is_stdout(options->values[OPTION_CSV])) {
+        fputs("ampstead: '--json' and '--csv' cannot both go to standard output\n", stderr);
+        return false;
+    }
+    return true;
+}
+
+static int run_cell(const struct options *options, const volatile sig_atomic_t *stop)
+{
+    struct watch watch = {.stop = stop, .shows_progress = isatty(STDERR_FILENO)};
+    struct ampstead_request request = AMPSTEAD_REQUEST;
+    struct ampstead_result *result = NULL;
+    const char *view = options->values[OPTION_VIEW];
+    if (!check_outputs(options)) {
+        return AMPSTEAD_INPUT;
+    }
+    (void)clock_gettime(CLOCK_MONOTONIC, &watch.start);
+    request.command = verb_rows[options->verb].word;
+    request.path = options->file;
+    request.view =
+        view != NULL && strcmp(view, "hand") == 0 ? AMPSTEAD_VIEW_HAND : AMPSTEAD_VIEW_FULL;
+    request.temperature = options->values[OPTION_TEMPERATURE];
+    request.corner = options->values[OPTION_CORNER];
+    request.sets = options->sets;
+    request.set_count = options->set_count;
+    request.sweep = options->values[OPTION_SWEEP];
+    request.stopped = ask_stopped;
+    request.stopped_self = &watch;
+    request.progress = show_progress;
+    request.progress_self = &watch;
+    int status = (int)ampstead_run(&request, &result);
+    end_progress(&watch);
+    fputs(
+        ampstead_result_messages(result, wants_color(options, STDERR_FILENO) ? AMPSTEAD_COLOR : 0),
+        stderr);
+    if (status == AMPSTEAD_UNSOLVED) {
+        fprintf(stderr, "ampstead: %s: no operating point was found\n", options->file);
+    } else if (status == AMPSTEAD_STOPPED) {
+        fputs("ampstead: stopped\n", stderr);
+    }
+    if (status != AMPSTEAD_INPUT && status != AMPSTEAD_MACHINE && !deliver_all(options, result)) {
+        status = AMPSTEAD_MACHINE;
+    }
+    ampstead_result_free(result);
+    return status;
+}
+
+static void show_help(const struct options *options)
+{
+    if (options->verb != VERB_HELP) {
+        help_verb(stdout, options->verb);
+    } else if (options->file == NULL) {
+        help_general(stdout);
+    } else {
+        for (int k = 0; k < VERB_COUNT; k++) {
+            if (strcmp(verb_rows[k].word, options->file) == 0) {
+                help_verb(stdout, (enum verb)k);
+            }
+        }
+    }
+}
+
+int command_run(const struct options *options, const volatile sig_atomic_t *stop)
+{
+    int status = AMPSTEAD_WELL;
+    if (options->given[OPTION_VERSION]) {
+        printf("ampstead %s\n", ampstead_version());
+    } else if (options->given[OPTION_HELP] || options->verb == VERB_HELP) {
+        show_help(options);
+    } else {
+        status = run_cell(options, stop);
+    }
+    return output_close() ? status : AMPSTEAD_MACHINE;
+}

@@ -1,0 +1,71 @@
+/*
+ * options.h: the command line. The two tables here are all there is to know about verbs and
+ * options: parsing, messages and help read them.
+ */
+#ifndef CLI_OPTIONS_H
+#define CLI_OPTIONS_H
+
+#include <stdbool.h>
+#include <stdio.h>
+
+enum verb { VERB_REVIEW, VERB_POINT, VERB_SWEEP, VERB_MODELS, VERB_HELP, VERB_COUNT };
+
+struct verb_row {
+    const char *word;
+    const char *argument; /* "FILE.cell" */
+    const char *summary;  /* one line */
+    const char *text;     /* a few lines for `help VERB` */
+};
+extern const struct verb_row verb_rows[VERB_COUNT];
+
+enum option {
+    OPTION_SET,
+    OPTION_TEMPERATURE,
+    OPTION_CORNER,
+    OPTION_VIEW,
+    OPTION_SWEEP,
+    OPTION_JSON,
+    OPTION_CSV,
+    OPTION_COLOR,
+    OPTION_HELP,
+    OPTION_VERSION,
+    OPTION_COUNT
+};
+
+enum argument { ARGUMENT_NONE, ARGUMENT_NEEDED, ARGUMENT_OPTIONAL };
+
+struct option_row {
+    const char *name; /* without the dashes */
+    char letter;      /* 0: none */
+    enum argument argument;
+    const char *argument_name;  /* "FILE" */
+    const char *const *choices; /* allowed words, NULL-terminated; NULL: any */
+    const char *standard;       /* what holds when the option is left out, in words */
+    const char *text;           /* meaning and unit */
+    unsigned verbs;             /* sum of 1 << verb */
+};
+extern const struct option_row option_rows[OPTION_COUNT];
+
+/* The command line as read. Texts are borrowed from argv. */
+struct options {
+    enum verb verb;
+    const char *file; /* the cell; for `help` the verb asked about, or NULL */
+    bool given[OPTION_COUNT];
+    const char *values[OPTION_COUNT]; /* last given; NULL: none */
+    const char **sets;                /* [set_count], all --set; freed by options_free */
+    int set_count;
+};
+
+/*
+ * options_parse: reads argv. False after a usage error, which was written to `errors`, or when
+ * memory was short (*out_of_memory).
+ */
+bool options_parse(int argc, char **argv, FILE *errors, struct options *options,
+                   bool *out_of_memory);
+void options_free(struct options *options);
+
+/* Help about everything, or about one verb. */
+void help_general(FILE *out);
+void help_verb(FILE *out, enum verb verb);
+
+#endif

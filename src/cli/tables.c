@@ -1,0 +1,61 @@
+/* tables.c: every verb and every option, once. */
+#include <stddef.h>
+
+#include "cli/options.h"
+
+enum {
+    RESULT_VERBS = 1 << VERB_REVIEW | 1 << VERB_POINT | 1 << VERB_SWEEP,
+    CELL_VERBS = RESULT_VERBS | 1 << VERB_MODELS,
+    ALL_VERBS = CELL_VERBS | 1 << VERB_HELP
+};
+
+const struct verb_row verb_rows[VERB_COUNT] = {
+    [VERB_REVIEW] =
+        {"review", "FILE.cell", "does the hand design hold? one page (also without a verb)",
+         "Finds the operating point, moves the load of every output over its range, compares\n"
+         "the `hand` lines with what was computed, and judges the `require` lines. --csv\n"
+         "writes the curves: columns output,v,current in V and A."},
+    [VERB_POINT] =
+        {"point", "FILE.cell", "the operating point alone, with every quantity of every device",
+         "Finds the operating point and shows all node voltages, rail currents and device\n"
+         "quantities."},
+    [VERB_SWEEP] =
+        {"sweep", "FILE.cell", "the `sweep` lines of the cell, or one given by --sweep",
+         "Moves a rail, let, source, resistor, output or the temperature, and shows what\n"
+         "follows. --csv writes one row a point: number of the sweep, the swept thing, the\n"
+         "family, and each quantity, with SI units in the header."},
+    [VERB_MODELS] = {"models", "FILE", "every model value in force, given or default",
+                     "FILE is a cell, or a process file by itself."},
+    [VERB_HELP] = {"help", "[VERB]", "this overview, or what one verb does and takes",
+                   "ampstead VERB --help shows the same."},
+};
+
+static const char *const view_words[] = {"full", "hand", NULL};
+static const char *const color_words[] = {"auto", "always", "never", NULL};
+
+const struct option_row option_rows[OPTION_COUNT] = {
+    [OPTION_SET] = {"set", 's', ARGUMENT_NEEDED, "NAME=EXPR", NULL, "the value in the cell",
+                    "overrides a `let`; may be given often", CELL_VERBS},
+    [OPTION_TEMPERATURE] = {"temperature", 't', ARGUMENT_NEEDED, "T", NULL, "the cell's, else 27 C",
+                            "such as \"60 C\" or \"333 K\"", CELL_VERBS},
+    [OPTION_CORNER] = {"corner", 0, ARGUMENT_NEEDED, "NAME", NULL, "typical",
+                       "a corner of the process", CELL_VERBS},
+    [OPTION_VIEW] = {"view", 0, ARGUMENT_NEEDED, "full|hand", view_words, "full",
+                     "hand: the assumptions of a paper design (square law, no Early effect)",
+                     RESULT_VERBS},
+    [OPTION_SWEEP] = {"sweep", 0, ARGUMENT_NEEDED, "TEXT", NULL, "the cell's sweeps",
+                      "\"THING from A to B points N show Q, Q\", as in a cell", 1 << VERB_SWEEP},
+    [OPTION_JSON] = {"json", 0, ARGUMENT_OPTIONAL, "FILE", NULL, "off",
+                     "writes JSON (SI units) to FILE, or without FILE to standard output instead "
+                     "of the text; the next word is FILE only if it ends with .json, else "
+                     "write --json=FILE",
+                     CELL_VERBS},
+    [OPTION_CSV] = {"csv", 0, ARGUMENT_NEEDED, "FILE", NULL, "off",
+                    "writes CSV (SI units) to FILE; - is standard output instead of the text",
+                    1 << VERB_REVIEW | 1 << VERB_SWEEP},
+    [OPTION_COLOR] = {"color", 0, ARGUMENT_NEEDED, "auto|always|never", color_words, "auto",
+                      "auto: on a terminal, unless NO_COLOR is set", ALL_VERBS},
+    [OPTION_HELP] = {"help", 'h', ARGUMENT_NONE, NULL, NULL, "off", "what a verb does and takes",
+                     ALL_VERBS},
+    [OPTION_VERSION] = {"version", 0, ARGUMENT_NONE, NULL, NULL, "off", "the version", ALL_VERBS},
+};

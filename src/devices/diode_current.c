@@ -1,0 +1,29 @@
+/*
+ * diode_current.c: junction diode with breakdown.
+ *
+ *   I = I_S (exp(V/(n UT)) - 1) - I_Z exp(-(V_Z + V)/(n_Z UT))
+ *
+ * Shockley (1949) for the forward part; the exponential breakdown keeps the curve smooth. The
+ * series resistance is a hidden resistor of the circuit.
+ */
+#include "devices/diode.h"
+
+#include "devices/smooth.h"
+
+void REAL_NAME(diode_evaluate)(const void *prepared, const real *x, real *f, real *jac)
+{
+    const struct diode_prepared *p = prepared;
+    real v = x[DIODE_A] - x[DIODE_K];
+    real slope;
+    real current = (real)p->saturation * limited_expm1(v / (real)p->thermal, &slope);
+    real conductance = (real)p->saturation * slope / (real)p->thermal;
+    if (p->breakdown > 0) {
+        real beyond = -((real)p->breakdown_voltage + v) / (real)p->breakdown_thermal;
+        current -= (real)p->breakdown * limited_exp(beyond, &slope);
+        conductance += (real)p->breakdown * slope / (real)p->breakdown_thermal;
+    }
+    f[DIODE_A] = current;
+    f[DIODE_K] = -current;
+    jac[0] = jac[3] = conductance;
+    jac[1] = jac[2] = -conductance;
+}

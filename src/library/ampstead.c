@@ -1,0 +1,365 @@
+/* ampstead.c: the public functions: a request is read, built, solved, and kept for its reports. */
+#include "library/ampstead.h"
+
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "analyses/analysis.h"
+#include "library/request.h"
+#include "library/value.h"
+#include "report/report.h"
+
+enum { REQUEST_SET_LIMIT = 1000 };
+
+enum command { COMMAND_REVIEW, COMMAND_POINT, COMMAND_SWEEP, COMMAND_MODELS, COMMAND_COUNT };
+
+static const char *const command_words[COMMAND_COUNT] = {
+    [COMMAND_REVIEW] = "review",
+    [COMMAND_POINT] = "point",
+    [COMMAND_SWEEP] = "sweep",
+    [COMMAND_MODELS] = "models",
+};
+
+struct ampstead_result {
+    enum ampstead_status status;
+    enum command command;
+    const char *trouble; /* a wrong request, before any cell was read; NULL otherwise */
+    struct cell *cell;
+    struct circuit *circuit;
+    struct result *found; /* NULL for `models` and after errors */
+    struct sweep sweep;   /* the one of the request */
+    struct buffer messages, text, json, csv;
+};
+
+const char *ampstead_version(void)
+{
+    return AMPSTEAD_VERSION;
+}
+
+static enum ampstead_status public_status(enum status status)
+{
+    switch (status) {
+    case STATUS_OK:
+        return AMPSTEAD_WELL;
+    case STATUS_INPUT:
+    case STATUS_FILE:
+        return AMPSTEAD_INPUT;
+    case STATUS_UNSOLVED:
+        return AMPSTEAD_UNSOLVED;
+    case STATUS_STOPPED:
+        return AMPSTEAD_STOPPED;
+    case STATUS_MEMORY:
+        break;
+    }
+    return AMPSTEAD_MACHINE;
+}
+
+static bool ends_with(const char *text, const char *end)
+{
+    size_t length = strlen(text), end_length = strlen(end);
+    return length >= end_length && strcmp(text + length - end_length, end) == 0;
+}
+
+/* `models` of a process file: a cell that names only it. */
+static char *process_cell(const char *path)
+{
+    static const char before[] = "process \"", after[] = "\"\n";
+    const char *slash = strrchr(path, '/');
+    const char *name = slash == NULL ? path : slash + 1;
+    char *text = malloc(sizeof before + strlen(name) + sizeof after);
+    if (text != NULL) {
+        strcpy(text, before);
+        strcat(text, name);
+        strcat(text, after);
+    }
+    return text;
+}
+
+static enum status read_cell(const struct ampstead_request *request, struct ampstead_result *result)
+{
+    const char *folders[3];
+    int count = 0;
+    if (request->model_folder_count > 0 && request->model_folders != NULL) {
+        folders[count++] = request->model_folders[0];
+    }
+    folders[count++] = AMPSTEAD_MODEL_FOLDER;
+    folders[count++] = AMPSTEAD_SOURCE_MODELS;
+    if (result->command == COMMAND_MODELS && request->text == NULL &&
+        ends_with(request->path, ".process")) {
+        char *text = process_cell(request->path);
+        if (text == NULL) {
+            return STATUS_MEMORY;
+        }
+        enum status status =
+            cell_read(request->path, text, strlen(text), folders, count, &result->cell);
+        free(text);
+        return status;
+    }
+    return cell_read(request->path, request->text, request->text_length, folders, count,
+                     &result->cell);
+}
+
+/* Reads the texts of the request, then builds the circuit. Errors of all of them are found. */
+static enum status build(const struct ampstead_request *request, struct ampstead_result *result)
+{
+    struct cell *cell = result->cell;
+    struct circuit_settings settings = {.kelvin = NAN, .corner = request->corner};
+    int count = request->sets == NULL || request->set_count < 0 ? 0 : request->set_count;
+    struct set_value *sets = arena_new_array(cell->arena, struct set_value, count);
+    if (sets == NULL) {
+        return STATUS_MEMORY;
+    }
+    enum status worst = STATUS_OK;
+    for (int k = 0; k < count && worst != STATUS_MEMORY; k++) {
+        enum status status = request_set(cell, request->sets[k], &sets[k]);
+        worst = status == STATUS_OK ? worst : status;
+    }
+    if (worst != STATUS_MEMORY && request->temperature != NULL) {
+        enum status status = request_temperature(cell, request->temperature, &settings.kelvin);
+        worst = status == STATUS_OK ? worst : status;
+    }
+    if (worst != STATUS_OK) {
+        return worst;
+    }
+    settings.sets = sets;
+    settings.set_count = count;
+    return circuit_build(cell, &settings, &cell->diagnostics, &result->circuit);
+}
+
+struct hooks {
+    const struct ampstead_request *request;
+};
+
+static bool ask_stopped(void *self)
+{
+    const struct hooks *hooks = self;
+    return hooks->request->stopped(hooks->request->stopped_self) != 0;
+}
+
+static enum status analyse(const struct ampstead_request *request, struct ampstead_result *result)
+{
+    struct hooks hooks = {request};
+    struct analysis_options options = {
+        .view = request->view == AMPSTEAD_VIEW_HAND ? VIEW_HAND : VIEW_FULL,
+        .stopped = request->stopped != NULL ? ask_stopped : NULL,
+        .stopped_self = &hooks,
+        .progress = request->progress,
+        .progress_self = request->progress_self,
+    };
+    switch (result->command) {
+    case COMMAND_REVIEW:
+        return analysis_review(result->circuit, &options, &result->found);
+    case COMMAND_POINT:
+        return analysis_point(result->circuit, &options, &result->found);
+    case COMMAND_SWEEP:
+        if (request->sweep != NULL) {
+            enum status status =
+                request_sweep(result->cell, result->circuit, request->sweep, &result->sweep);
+            if (status != STATUS_OK) {
+                return status;
+            }
+            options.extra_sweep = &result->sweep;
+        }
+        return analysis_sweep(result->circuit, &options, &result->found);
+    case COMMAND_MODELS:
+    case COMMAND_COUNT:
+        break;
+    }
+    return STATUS_OK;
+}
+
+/* What is wrong with the request itself, or NULL. */
+static const char *check_request(const struct ampstead_request *request, enum command *command)
+{
+    if (request->size != sizeof *request) {
+        return "the request was made for another version of the library";
+    }
+    if (request->path == NULL) {
+        return "the request names no cell";
+    }
+    if (request->set_count > REQUEST_SET_LIMIT) {
+        return "more than 1000 values are set";
+    }
+    if (request->sweep != NULL &&
+        (request->command == NULL || strcmp(request->command, "sweep") != 0)) {
+        return "a sweep is given to a command other than sweep";
+    }
+    *command = COMMAND_REVIEW;
+    for (int k = 0; k < COMMAND_COUNT && request->command != NULL; k++) {
+        if (strcmp(request->command, command_words[k]) == 0) {
+            *command = (enum command)k;
+            return NULL;
+        }
+    }
+    return request->command == NULL ? NULL : "the request has an unknown command";
+}
+
+static enum status run(const struct ampstead_request *request, struct ampstead_result *result)
+{
+    result->trouble = check_request(request, &result->command);
+    if (result->trouble != NULL) {
+        return STATUS_INPUT;
+    }
+    enum status status = read_cell(request, result);
+    /* A cell with errors is built as far as it goes: all that is wrong is told in one run. */
+    if (status == STATUS_OK || (status == STATUS_INPUT && result->cell != NULL)) {
+        status = build(request, result);
+    }
+    if (status == STATUS_OK) {
+        status = analyse(request, result);
+    }
+    if (result->cell != NULL && result->cell->diagnostics.out_of_memory) {
+        return STATUS_MEMORY;
+    }
+    return status;
+}
+
+enum ampstead_status ampstead_run(const struct ampstead_request *request,
+                                  struct ampstead_result **result)
+{
+    *result = calloc(1, sizeof **result);
+    if (*result == NULL) {
+        return AMPSTEAD_MACHINE;
+    }
+    enum ampstead_status status = public_status(run(request, *result));
+    const struct result *found = (*result)->found;
+    if (status == AMPSTEAD_WELL && found != NULL && found->verdict == VERDICT_NOT_MET) {
+        status = AMPSTEAD_NOT_MET;
+    }
+    (*result)->status = status;
+    return status;
+}
+
+void ampstead_result_free(struct ampstead_result *result)
+{
+    if (result == NULL) {
+        return;
+    }
+    buffer_free(&result->messages);
+    buffer_free(&result->text);
+    buffer_free(&result->json);
+    buffer_free(&result->csv);
+    result_free(result->found);
+    circuit_free(result->circuit);
+    cell_free(result->cell);
+    free(result);
+}
+
+enum ampstead_status ampstead_result_status(const struct ampstead_result *result)
+{
+    return result == NULL ? AMPSTEAD_MACHINE : result->status;
+}
+
+static void restart(struct buffer *buffer)
+{
+    buffer_free(buffer);
+    *buffer = BUFFER_EMPTY;
+}
+
+/* The finished text, or NULL after a failed allocation, which is then the status too. */
+static const char *finished(struct ampstead_result *result, const struct buffer *buffer)
+{
+    if (buffer->failed) {
+        result->status = AMPSTEAD_MACHINE;
+        return NULL;
+    }
+    return buffer->data == NULL ? "" : buffer->data;
+}
+
+const char *ampstead_result_messages(struct ampstead_result *result, unsigned flags)
+{
+    static const char short_memory[] = "ampstead: memory is short\n";
+    if (result == NULL) {
+        return short_memory;
+    }
+    restart(&result->messages);
+    if (result->trouble != NULL) {
+        buffer_format(&result->messages, "ampstead: %s\n", result->trouble);
+    } else if (result->cell != NULL) {
+        diagnostics_print(&result->cell->diagnostics, &result->cell->sources,
+                          (flags & AMPSTEAD_COLOR) != 0, &result->messages);
+    }
+    if (result->status == AMPSTEAD_MACHINE) {
+        buffer_text(&result->messages, short_memory);
+    }
+    const char *text = finished(result, &result->messages);
+    return text == NULL ? short_memory : text;
+}
+
+/* Whether the command came far enough to have something to report. */
+static bool has_report(const struct ampstead_result *result)
+{
+    if (result == NULL || result->circuit == NULL) {
+        return false;
+    }
+    return result->command == COMMAND_MODELS || result->found != NULL;
+}
+
+const char *ampstead_result_text(struct ampstead_result *result, unsigned flags, int columns)
+{
+    if (!has_report(result)) {
+        return NULL;
+    }
+    const struct report_style style = {
+        .color = (flags & AMPSTEAD_COLOR) != 0,
+        .ascii = (flags & AMPSTEAD_ASCII) != 0,
+        .stopped = result->status == AMPSTEAD_STOPPED,
+        .columns = columns,
+    };
+    restart(&result->text);
+    switch (result->command) {
+    case COMMAND_POINT:
+        report_point(result->found, &style, &result->text);
+        break;
+    case COMMAND_SWEEP:
+        report_sweep(result->found, &style, &result->text);
+        break;
+    case COMMAND_MODELS:
+        report_models(result->circuit, &style, &result->text);
+        break;
+    case COMMAND_REVIEW:
+    case COMMAND_COUNT:
+        report_page(result->found, &style, &result->text);
+        break;
+    }
+    return finished(result, &result->text);
+}
+
+const char *ampstead_result_json(struct ampstead_result *result)
+{
+    if (!has_report(result)) {
+        return NULL;
+    }
+    restart(&result->json);
+    if (result->command == COMMAND_MODELS) {
+        report_json_models(result->circuit, AMPSTEAD_VERSION, &result->json);
+    } else {
+        report_json(result->found, AMPSTEAD_VERSION, &result->json);
+    }
+    return finished(result, &result->json);
+}
+
+const char *ampstead_result_csv(struct ampstead_result *result)
+{
+    if (!has_report(result) ||
+        (result->command != COMMAND_REVIEW && result->command != COMMAND_SWEEP)) {
+        return NULL;
+    }
+    restart(&result->csv);
+    report_csv(result->found, &result->csv);
+    return finished(result, &result->csv);
+}
+
+int ampstead_result_value(const struct ampstead_result *result, const char *name, double *value)
+{
+    if (result == NULL || result->found == NULL || name == NULL) {
+        return 0;
+    }
+    double found = value_of(result->found, name);
+    if (isnan(found)) {
+        return 0;
+    }
+    *value = found;
+    return 1;
+}

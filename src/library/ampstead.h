@@ -1,0 +1,145 @@
+/*
+ * ampstead.h: DC operating points of bias cells, as a library. The one public header; C and C++.
+ *
+ *     struct ampstead_request request = AMPSTEAD_REQUEST;
+ *     struct ampstead_result *result = NULL;
+ *     double current;
+ *     request.path = "tail.cell";
+ *     if (ampstead_run(&request, &result) <= AMPSTEAD_NOT_MET &&
+ *         ampstead_result_value(result, "tail.current", &current)) {
+ *         printf("%g A\n", current);
+ *     } else {
+ *         fputs(ampstead_result_messages(result, 0), stderr);
+ *     }
+ *     ampstead_result_free(result);
+ *
+ * Units are SI. Threads: the library keeps no state of its own, so that different results may be
+ * made and used in different threads at the same time; one result belongs to one thread at a time.
+ * Strings are UTF-8, end with NUL, and belong to the result that gave them. The library never
+ * prints, never exits, and opens files only to read the cell, its process files and its tables.
+ */
+#ifndef AMPSTEAD_H
+#define AMPSTEAD_H
+
+#include <stddef.h>
+
+#if defined(__GNUC__)
+#define AMPSTEAD_API __attribute__((visibility("default")))
+#else
+#define AMPSTEAD_API
+#endif
+
+#ifdef __cplusplus
+extern "C" {
+#endif
+
+/* How a run ended; the numbers are the exit statuses of the program. */
+enum ampstead_status {
+    AMPSTEAD_WELL = 0,     /* done; every requirement that was judged is met */
+    AMPSTEAD_NOT_MET = 1,  /* done; a requirement is not met */
+    AMPSTEAD_INPUT = 2,    /* the request, the cell or a file it names is wrong; see the messages */
+    AMPSTEAD_UNSOLVED = 3, /* no operating point was found; the text says where the search ended */
+    AMPSTEAD_MACHINE = 4,  /* memory was short */
+    AMPSTEAD_STOPPED = 130 /* `stopped` said so; what was done until then can be read */
+};
+
+/* Whose assumptions are in force: design values of the paper, or the whole model. */
+enum ampstead_view { AMPSTEAD_VIEW_FULL = 0, AMPSTEAD_VIEW_HAND = 1 };
+
+/* What to do. Start from AMPSTEAD_REQUEST and fill in. Everything is read during ampstead_run only
+ * and stays the caller's. */
+struct ampstead_request {
+    size_t size;             /* sizeof(struct ampstead_request): set by AMPSTEAD_REQUEST */
+    const char *command;     /* "review", "point", "sweep" or "models"; NULL: review */
+    const char *path;        /* the cell file; "-": standard input. With text: its name. Required */
+    const char *text;        /* the cell itself, instead of the file; NULL: read the file */
+    size_t text_length;      /* bytes of text */
+    enum ampstead_view view; /* which effects are in force */
+    const char *temperature; /* "60 C", an expression; NULL: the cell's own */
+    const char *corner;      /* a corner of the process; NULL: typical */
+    const char *const *sets; /* [set_count] "NAME=expression": overrides a `let`; NULL: none */
+    int set_count;
+    const char *const *model_folders; /* [model_folder_count] searched for process files before the
+                                         installed ones; at most 1 is used. NULL: none */
+    int model_folder_count;
+    const char *sweep; /* for command "sweep": "THING from A to B [points N] show Q, Q"; NULL: the
+                          sweeps of the cell */
+    int (*stopped)(void *self); /* asked often during long work; not 0 ends it. NULL: never */
+    void *stopped_self;
+    void (*progress)(void *self, const char *what, double share); /* share: 0 to 1. NULL: none */
+    void *progress_self;
+};
+
+#define AMPSTEAD_REQUEST                                                                           \
+    {                                                                                              \
+        sizeof(struct ampstead_request), 0, 0, 0, 0, AMPSTEAD_VIEW_FULL, 0, 0, 0, 0, 0, 0, 0, 0,   \
+            0, 0, 0                                                                                \
+    }
+
+struct ampstead_result;
+
+/*
+ * ampstead_run: reads the cell and does what is asked.
+ *
+ * request  not NULL
+ * result   out, not NULL: owned by the caller (ampstead_result_free), also after errors, so that
+ *          the messages can be read; NULL only when there was not even memory for that
+ */
+AMPSTEAD_API enum ampstead_status ampstead_run(const struct ampstead_request *request,
+                                               struct ampstead_result **result);
+
+/* Frees a result with all of its strings; NULL is allowed. */
+AMPSTEAD_API void ampstead_result_free(struct ampstead_result *result);
+
+/*
+ * The status of the run again; AMPSTEAD_MACHINE for NULL, and once a text could not be made.
+ */
+AMPSTEAD_API enum ampstead_status ampstead_result_status(const struct ampstead_result *result);
+
+/* Flags of ampstead_result_text and ampstead_result_messages. */
+enum {
+    AMPSTEAD_COLOR = 1, /* ANSI colour escapes */
+    AMPSTEAD_ASCII = 2  /* no characters beyond ASCII (text only) */
+};
+
+/*
+ * Each of the next four makes a text, kept until the same function is called again for this result
+ * or the result is freed. A NULL result gives "out of memory" as messages and NULL elsewhere.
+ */
+
+/* What is wrong with the input, one or many messages with line ends; "" when nothing is. Never
+ * NULL. */
+AMPSTEAD_API const char *ampstead_result_messages(struct ampstead_result *result, unsigned flags);
+
+/*
+ * The report of the command for people; `columns` is the widest line, 72 to 100 (0: 100). NULL
+ * when there is no result (AMPSTEAD_INPUT) or memory is short.
+ */
+AMPSTEAD_API const char *ampstead_result_text(struct ampstead_result *result, unsigned flags,
+                                              int columns);
+
+/* The same as one JSON object. NULL as above. */
+AMPSTEAD_API const char *ampstead_result_json(struct ampstead_result *result);
+
+/* Curves (review) or sweeps (sweep) as CSV. NULL as above, and for the other commands. */
+AMPSTEAD_API const char *ampstead_result_csv(struct ampstead_result *result);
+
+/*
+ * ampstead_result_value: one quantity by its name in the cell language: "tail.current", "M1.vgs",
+ * "ref.v", "vbat.power", "all.headroom", "cell.power". For tail.line the value of greatest size
+ * over the rails; an unlimited resistance is infinite.
+ *
+ * Returns 1 and sets *value, or 0 when there is no such name, the value does not apply, or there
+ * is no operating point; *value is then kept.
+ */
+AMPSTEAD_API int ampstead_result_value(const struct ampstead_result *result, const char *name,
+                                       double *value);
+
+/* "1.0.0"; lives as long as the program. */
+AMPSTEAD_API const char *ampstead_version(void);
+
+#ifdef __cplusplus
+}
+#endif
+
+#endif

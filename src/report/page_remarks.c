@@ -1,0 +1,54 @@
+/* page_remarks.c: cautions with the rule behind each, and the numerical evidence. */
+#include "report/page_parts.h"
+
+#include <math.h>
+#include <string.h>
+
+#include "report/show.h"
+
+void page_cautions(struct layout *layout, const struct result *result)
+{
+    layout_part(layout, "cautions");
+    for (int k = 0; k < result->cautions.count; k++) {
+        const struct caution *caution = &result->cautions.list[k];
+        const char *thing = layout_clean(layout, caution->thing);
+        const char *text = layout_clean(layout, caution->text);
+        if (strncmp(text, thing, strlen(thing)) == 0) {
+            thing = ""; /* the text names it already */
+        }
+        const char *place = "";
+        if (caution->line > 0) {
+            place = layout_format(layout, ", line %d", caution->line);
+        }
+        layout_paragraph(layout, TONE_PLAIN, 2,
+                         layout_format(layout, "%s %s%s%s  [%s%s]",
+                                       layout->style.ascii ? "-" : "\xC2\xB7", thing,
+                                       *thing != '\0' ? ": " : "", text, caution->code, place));
+        if (caution->rule != NULL) {
+            layout_paragraph(
+                layout, TONE_QUIET, 2,
+                layout_format(layout, "  rule: %s", layout_clean(layout, caution->rule)));
+        }
+    }
+}
+
+void page_evidence(struct layout *layout, const struct result *result)
+{
+    const struct solver_result *solver = &result->point.solver;
+    if (!solver->converged) {
+        return;
+    }
+    layout_part(layout, "evidence");
+    layout_paragraph(
+        layout, TONE_PLAIN, 0,
+        layout_format(layout, "%s, %d Newton iterations; worst residual %s of the currents%s%s",
+                      solver->method, solver->iterations,
+                      show_value(layout, solver->worst_residual, DIMENSION_NONE),
+                      solver->worst_name != NULL ? " at " : "",
+                      solver->worst_name != NULL ? layout_clean(layout, solver->worst_name) : ""));
+    if (solver->limited_by != NULL) {
+        layout_paragraph(layout, TONE_WARN, 0,
+                         layout_format(layout, "above 1e-12 because of %s",
+                                       layout_clean(layout, solver->limited_by)));
+    }
+}
