@@ -1,0 +1,155 @@
+#!/bin/sh
+# cli_test.sh PROGRAM SOURCE_DIR: the built program from outside: help, usage errors, exit statuses,
+# files and streams that cannot be written.
+set -u
+program=$1
+source=$2
+cell=$source/netlists/mirror.cell
+work=$(mktemp -d) || exit 1
+trap 'rm -rf "$work"' EXIT
+failures=0
+unset NO_COLOR
+
+fail() {
+    echo "FAILED: $*"
+    sed 's/^/    out: /' "$work/out" | head -5
+    sed 's/^/    err: /' "$work/err" | head -5
+    failures=$((failures + 1))
+}
+
+# run STATUS ARGUMENTS...: standard output and error go to $work/out and $work/err
+run() {
+    wanted=$1
+    shift
+    "$program" "$@" >"$work/out" 2>"$work/err"
+    status=$?
+    [ $status -eq "$wanted" ] || fail "status $status instead of $wanted: ampstead $*"
+}
+
+out_has() { grep -qF -e "$1" "$work/out" || fail "standard output lacks: $1"; }
+err_has() { grep -qF -e "$1" "$work/err" || fail "standard error lacks: $1"; }
+err_begins() { case $(head -1 "$work/err") in "$1"*) ;; *) fail "standard error must begin: $1" ;; esac; }
+out_empty() { [ ! -s "$work/out" ] || fail "standard output must be empty"; }
+err_empty() { [ ! -s "$work/err" ] || fail "standard error must be empty"; }
+
+# Help and version
+run 0 help && out_has "--temperature T, -t" && err_empty
+run 0 --help && out_has "Verbs:"
+run 0 -h && out_has "Verbs:"
+for verb in review point sweep models help; do
+    run 0 help $verb && out_has "ampstead $verb" && out_has "Exit status: 0 all well"
+    run 0 $verb --help && out_has "Exit status: 0 all well"
+done
+run 0 --version && out_has "ampstead 1."
+
+# Usage errors: the bad word first, the near one, nothing on standard output
+run 2 && err_begins "ampstead: a cell is wanted" && out_empty
+run 2 --jsn "$cell" && err_begins "ampstead: '--jsn' is no option; did you mean '--json'?" && out_empty
+run 2 -q "$cell" && err_begins "ampstead: '-q' is no option"
+run 2 reviw "$cell" && err_begins "ampstead: 'reviw' is no verb; did you mean 'review'?"
+run 2 pont && err_begins "ampstead: 'pont' is neither a verb nor a file; did you mean 'point'?"
+run 2 help swep && err_begins "ampstead: 'swep' is no verb; did you mean 'sweep'?"
+run 2 point && err_begins "ampstead: 'point' wants a file"
+run 2 "$cell" --set && err_begins "ampstead: '--set' wants a value: --set NAME=EXPR"
+run 2 "$cell" --view=hnd && err_begins "ampstead: 'hnd' is no value of --view (full|hand); did you mean 'hand'?"
+run 2 "$cell" --color blue && err_begins "ampstead: 'blue' is no value of --color"
+run 2 --help=yes && err_begins "ampstead: '--help=yes' takes no value"
+run 2 point "$cell" --csv x.csv && err_begins "ampstead: '--csv' does not go with \`point\`, only with \`review\` \`sweep\`"
+run 2 review "$cell" again && err_begins "ampstead: 'again' is one word too many"
+run 2 "$cell" --json --csv - && err_begins "ampstead: '--json' and '--csv' cannot both"
+
+# Options anywhere, --opt=value, short forms, -- ends them
+run 0 --view hand point -t "60 C" "$cell" && out_has "hand view"
+run 0 point --temperature="60 C" -- "$cell" && out_has "60 "
+run 0 point "-t60 C" "$cell" && out_has "60 "
+
+# Exit statuses
+run 0 "$cell" && out_has "MET " && err_empty
+run 1 "$cell" --set "ITAIL=40 uA" && out_has "NOT MET" && err_empty
+run 2 "$work/none.cell" && err_has "none.cell" && out_empty
+run 2 "$cell" --set NOPE=1 && err_begins "--set:1:1: " && out_empty
+printf 'rail vcc 3 V\nresistor R vcc -> gnd 3 uA\n' >"$work/wrong.cell"
+run 2 "$work/wrong.cell" && err_begins "$work/wrong.cell:2:23: "
+# no finite current can solve v = 1 V over a law that draws no current at any voltage it could reach
+cat >"$work/never.cell" <<'CELL'
+rail vcc 1 V
+current I vcc -> x 1 uA
+law L x -> gnd i = 1 nA * (1 + sqrt((x.v / 1 V)^2)) / (1 + sqrt((x.v / 1 V)^2))
+CELL
+run 3 point "$work/never.cell" && out_has "UNSOLVED" && err_has "no operating point was found"
+
+# Standard input
+"$program" - <"$cell" >"$work/out" 2>"$work/err" || fail "a cell from standard input"
+out_has "MET "
+
+# Data: the next word is a file only when it ends with .json
+run 0 "$cell" --json && out_has '"verdict": "met"'
+run 0 --json "$cell" && out_has '"verdict": "met"'
+run 0 "$cell" --json "$work/a.json" && out_has "MET " && [ -s "$work/a.json" ] || fail "--json FILE"
+run 0 "$cell" --json="$work/b.data" && [ -s "$work/b.data" ] || fail "--json=FILE"
+run 0 "$cell" --csv - && out_has "output,v,current"
+"$program" "$cell" --json >"$work/one" 2>&1
+"$program" "$cell" --json >"$work/two" 2>&1
+cmp -s "$work/one" "$work/two" || fail "two runs differ"
+
+# Colour: only on demand here, where standard output is no terminal; NO_COLOR holds for auto
+escape=$(printf '\033')
+run 0 "$cell" && ! grep -q "$escape" "$work/out" || fail "colour without a terminal"
+run 0 "$cell" --color always && grep -q "$escape" "$work/out" || fail "--color always"
+run 0 "$cell" --color=never && ! grep -q "$escape" "$work/out" || fail "--color never"
+if command -v script >/dev/null; then
+    TERM=xterm script -qec "$program $cell" /dev/null >"$work/out" 2>"$work/err" </dev/null
+    grep -q "$escape\[" "$work/out" || fail "colour on a terminal"
+    NO_COLOR=1 TERM=xterm script -qec "$program $cell" /dev/null >"$work/out" 2>"$work/err" </dev/null
+    ! grep -q "$escape\[" "$work/out" || fail "NO_COLOR on a terminal"
+fi
+
+# What cannot be written is reported
+if [ -c /dev/full ]; then
+    "$program" "$cell" >/dev/full 2>"$work/err"
+    [ $? -eq 4 ] || fail "full disk on standard output: status"
+    err_has "No space left"
+    run 4 "$cell" --json=/dev/full && err_has "/dev/full: cannot be written"
+    [ -c /dev/full ] || fail "/dev/full was replaced"
+    "$program" help >/dev/full 2>"$work/err"
+    [ $? -eq 4 ] || fail "full disk under help: status"
+fi
+{ sleep 1; "$program" "$cell" 2>"$work/err"; echo $? >"$work/status"; } | true
+[ "$(cat "$work/status")" = 4 ] || fail "closed pipe: status $(cat "$work/status")"
+err_has "closed before everything was written"
+run 4 "$cell" --json="$work/none/x.json" && err_has "cannot be written"
+run 4 "$cell" --json="$cell/x.json" && err_has "cannot be written"
+
+# An output that fails keeps the old file, and leaves nothing beside it. A file size limit of 0
+# makes every write fail, also for root.
+mkdir "$work/folder"
+echo old >"$work/folder/x.json"
+(ulimit -f 0; trap '' XFSZ; "$program" "$cell" --json="$work/folder/x.json" 2>/dev/null | cat >/dev/null)
+[ "$(cat "$work/folder/x.json")" = old ] || fail "the old file is gone"
+[ "$(ls -A "$work/folder")" = x.json ] || fail "a temporary file was left: $(ls -A "$work/folder")"
+
+# Permissions: the umask for a new file, those of the old one for a new version; links stay links
+(umask 027; "$program" "$cell" --json="$work/folder/y.json" >/dev/null)
+[ "$(stat -c %a "$work/folder/y.json")" = 640 ] || fail "umask"
+chmod 604 "$work/folder/x.json"
+ln -s x.json "$work/folder/link.json"
+run 0 "$cell" --json="$work/folder/link.json"
+[ -L "$work/folder/link.json" ] && grep -q verdict "$work/folder/x.json" || fail "link"
+[ "$(stat -c %a "$work/folder/x.json")" = 604 ] || fail "permissions of the old file"
+
+# Ctrl-C: 130, and what was done
+"$program" sweep "$cell" --sweep "vdd from 1 V to 3 V points 100000 show tail.current" \
+    >"$work/out" 2>"$work/err" &
+job=$!
+sleep 0.4
+kill -INT $job 2>/dev/null
+wait $job
+status=$?
+if [ $status -ne 0 ]; then # a machine that was done before is no failure
+    [ $status -eq 130 ] || fail "interrupt: status $status"
+    err_has "stopped"
+    out_has "STOPPED"
+fi
+
+[ $failures -eq 0 ] && echo "all command line tests passed"
+exit $((failures > 0))
