@@ -130,13 +130,13 @@ static void find_span(struct guess *g)
     }
 }
 
-void operating_point_guess(const struct system *system, double *x)
+bool operating_point_guess(const struct system *system, double *x)
 {
     struct guess g = {.system = system, .x = x};
     memset(x, 0, (size_t)system->n * sizeof *x);
     g.known = calloc((size_t)system->node_count + 1, sizeof *g.known);
     if (g.known == NULL) {
-        return; /* a poorer start, not a failure */
+        return false;
     }
     find_span(&g);
     run_pass(&g, PASS_SOURCES);
@@ -150,4 +150,5 @@ void operating_point_guess(const struct system *system, double *x)
         }
     }
     free(g.known);
+    return true;
 }

@@ -72,7 +72,11 @@ enum newton_status operating_point_newton(struct operating_point *p)
         p->report.residual < near_root) {
         double worst = INFINITY;
         int equation;
-        if (polish(p, &worst, &equation) == NEWTON_CONVERGED && worst < polished) {
+        const enum newton_status refined = polish(p, &worst, &equation);
+        if (refined == NEWTON_MEMORY) {
+            return NEWTON_MEMORY;
+        }
+        if (refined == NEWTON_CONVERGED && worst < polished) {
             for (int k = 0; k < s->n; k++) {
                 p->x[k] = (double)p->refined[k];
             }
@@ -94,12 +98,16 @@ static void note_failure(struct operating_point *p, enum newton_status status)
     }
 }
 
+static bool ends_search(enum newton_status status)
+{
+    return status == NEWTON_STOPPED || status == NEWTON_MEMORY;
+}
+
 /* --- the ladder: each starts from p->x and leaves a root of the plain system there ------------ */
 
 static enum newton_status try_direct(struct operating_point *p)
 {
-    operating_point_guess(p->system, p->x);
-    return operating_point_newton(p);
+    return operating_point_guess(p->system, p->x) ? operating_point_newton(p) : NEWTON_MEMORY;
 }
 
 static enum newton_status walk(struct operating_point *p, enum embedding embedding, double from)
@@ -124,10 +132,9 @@ static enum newton_status try_sources(struct operating_point *p)
 static enum newton_status try_conductance(struct operating_point *p)
 {
     double *anchor = arena_new_array(p->system->arena, double, p->system->n);
-    if (anchor == NULL) {
+    if (anchor == NULL || !operating_point_guess(p->system, anchor)) {
         return NEWTON_MEMORY;
     }
-    operating_point_guess(p->system, anchor);
     memcpy(p->x, anchor, (size_t)p->system->n * sizeof *anchor);
     p->system->anchor = anchor;
     return walk(p, EMBED_CONDUCTANCE, 0);
@@ -154,7 +161,7 @@ static enum newton_status try_arclength(struct operating_point *p)
 {
     memset(p->x, 0, (size_t)p->system->n * sizeof *p->x);
     enum newton_status status = trace(p, EMBED_SOURCES);
-    if (status != NEWTON_CONVERGED && status != NEWTON_STOPPED && status != NEWTON_MEMORY) {
+    if (status != NEWTON_CONVERGED && !ends_search(status)) {
         if (p->system->anchor != NULL) {
             memcpy(p->x, p->system->anchor, (size_t)p->system->n * sizeof *p->x);
         }
@@ -176,7 +183,7 @@ static enum newton_status try_blended(struct operating_point *p)
     }
     system_conditions(s, s->conditions.kelvin, effects | EFFECT_INVERSION);
     enum newton_status status = try_direct(p);
-    if (status != NEWTON_CONVERGED && status != NEWTON_STOPPED) {
+    if (status != NEWTON_CONVERGED && !ends_search(status)) {
         status = try_sources(p);
     }
     system_conditions(s, s->conditions.kelvin, effects);
@@ -359,7 +366,7 @@ enum status operating_point_polish(struct operating_point *p)
     return STATUS_OK;
 }
 
-static enum status from_newton(enum newton_status status)
+enum status operating_point_status(enum newton_status status)
 {
     return status == NEWTON_CONVERGED ? STATUS_OK
            : status == NEWTON_STOPPED ? STATUS_STOPPED
@@ -376,8 +383,8 @@ enum status operating_point_move(struct operating_point *p, int instance, int pa
     memcpy(start, p->x, (size_t)s->n * sizeof *start);
     system_set(s, instance, parameter, to);
     enum newton_status status = operating_point_newton(p);
-    if (status == NEWTON_CONVERGED || status == NEWTON_STOPPED || status == NEWTON_MEMORY) {
-        return from_newton(status);
+    if (status == NEWTON_CONVERGED || ends_search(status)) {
+        return operating_point_status(status);
     }
     memcpy(p->x, start, (size_t)s->n * sizeof *start);
     s->knob_instance = instance;
@@ -386,8 +393,8 @@ enum status operating_point_move(struct operating_point *p, int instance, int pa
     s->knob_to = to;
     status = walk(p, EMBED_KNOB, 0);
     system_set(s, instance, parameter, to);
-    if (status == NEWTON_CONVERGED || status == NEWTON_STOPPED || status == NEWTON_MEMORY) {
-        return from_newton(status);
+    if (status == NEWTON_CONVERGED || ends_search(status)) {
+        return operating_point_status(status);
     }
     *jumped = true;
     const enum status found = operating_point_find(p);

@@ -211,12 +211,14 @@ static enum status advance(struct series_task *t, struct stage *stage, int k)
     stage_close(stage);
     enum status status = stage_open(stage, t->circuit, settings, sweep->has_family ? 2 : 1);
     if (status == STATUS_OK) {
-        bool followed = false;
+        status = STATUS_UNSOLVED;
         if (n == stage->system->n) {
             memcpy(stage->point.x, last, (size_t)n * sizeof *last);
-            followed = operating_point_newton(&stage->point) == NEWTON_CONVERGED;
+            status = operating_point_status(operating_point_newton(&stage->point));
         }
-        status = followed ? STATUS_OK : operating_point_find(&stage->point);
+        if (status == STATUS_UNSOLVED) {
+            status = operating_point_find(&stage->point);
+        }
     }
     arena_destroy(scratch);
     return status;
