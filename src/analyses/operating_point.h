@@ -44,7 +44,8 @@ enum status operating_point_polish(struct operating_point *point);
  * operating_point_move: changes one value of one instance from `from` (where x is a root) to `to`,
  * and follows the root: tangent step and Newton, then smaller steps, then continuation.
  *
- * jumped  out: the root could not be followed; the state at `to` was found in another way
+ * jumped  in: false. Out: true when the root could not be followed and the state at `to` was looked
+ *         for in another way. NULL: it is only followed, else STATUS_UNSOLVED and x as it was
  */
 enum status operating_point_move(struct operating_point *point, int instance, int parameter,
                                  double from, double to, bool *jumped);
@@ -52,7 +53,8 @@ enum status operating_point_move(struct operating_point *point, int instance, in
 /* Newton from the x at hand with the values in force, without any fallback. */
 enum newton_status operating_point_newton(struct operating_point *point);
 
-/* The same in the words of the layer: all that is not done, stopped or short of memory is unsolved. */
+/* The same in the words of the layer: all that is not done, stopped or short of memory is unsolved.
+ */
 enum status operating_point_status(enum newton_status status);
 
 /* A start for the search in which diode-like devices conduct, [n] out. False when memory is short.

@@ -117,7 +117,8 @@ static void fail_each(const struct scenario *s, bool onward)
         allocator_fail(0, false);
         if (outcome.status != AMPSTEAD_MACHINE) {
             spared++;
-            if (!resize || outcome.status != whole.status || strcmp(outcome.texts, whole.texts) != 0) {
+            if (!resize || outcome.status != whole.status ||
+                strcmp(outcome.texts, whole.texts) != 0) {
                 fail_msg("%s: request %ld of %ld failed, status %d, other texts", s->name, k,
                          requests, outcome.status);
             }

@@ -83,8 +83,7 @@ int LLVMFuzzerTestOneInput(const uint8_t *bytes, size_t size)
         cell_read("fuzz.cell", (const char *)bytes, size - 1, folders, 1, &cell);
     if (cell != NULL) {
         const struct circuit_settings settings = {.kelvin = NAN, .part_limit = PARTS};
-        const enum status built =
-            circuit_build(cell, &settings, &cell->diagnostics, &circuit);
+        const enum status built = circuit_build(cell, &settings, &cell->diagnostics, &circuit);
         if (status == STATUS_OK && (built == STATUS_OK) != (cell->diagnostics.count == 0)) {
             abort();
         }

@@ -21,8 +21,7 @@ int LLVMFuzzerTestOneInput(const uint8_t *bytes, size_t size)
     const size_t skipped = size > 0 ? 1 : 0;
     if (source_add_text(arena, &sources, "fuzz", (const char *)bytes + skipped, size - skipped,
                         &diagnostics, &file) == STATUS_OK) {
-        const enum status status =
-            parse_source(arena, &sources, file, role, &diagnostics, &tree);
+        const enum status status = parse_source(arena, &sources, file, role, &diagnostics, &tree);
         if (status == STATUS_MEMORY || (status == STATUS_INPUT) != (diagnostics.count > 0)) {
             abort(); /* an error without a message, or a message without an error */
         }
