@@ -413,7 +413,11 @@ static bool find_derivatives(struct operating_point *home, int branch, double si
         line[k] = sign * (double)linearised_transfer(home, branch, driver) / r->current;
     }
     r->line = line;
-    r->tempco = sign * (double)linearised_temperature(home, branch) / r->current;
+    long double per_kelvin;
+    if (!linearised_temperature(home, branch, &per_kelvin)) {
+        return false;
+    }
+    r->tempco = sign * (double)per_kelvin / r->current;
     r->sigma = linearised_sigma(home, branch) / r->current;
     return true;
 }

@@ -3,8 +3,9 @@
 # for SECONDS (60), or for a number of inputs ("4000000i"), from the seeds of tests and netlists.
 # Fails when one finds a crash, a leak, an input that takes 10 s, or one that takes 1 GB.
 set -eu
-source=$1
-build=$2
+source=$(cd "$1" && pwd)
+mkdir -p "$2"
+build=$(cd "$2" && pwd)
 amount=${3:-60}
 case $amount in
 *i) limit=-runs=${amount%i} ;;

@@ -9,7 +9,7 @@
 #include "analyses/analysis.h"
 #include "report/report.h"
 
-enum { PARTS = 200, QUESTIONS = 400, TEXT = 4000 };
+enum { PARTS = 200, QUESTIONS = 100, TEXT = 4000 };
 
 int LLVMFuzzerTestOneInput(const uint8_t *bytes, size_t size);
 
