@@ -152,6 +152,7 @@ static enum status finish(enum status status, struct session *session, struct re
         *result = NULL;
         return STATUS_MEMORY;
     }
+    (*result)->is_stopped = status == STATUS_STOPPED;
     return status;
 }
 

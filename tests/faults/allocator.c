@@ -1,12 +1,14 @@
 /* allocator.c: see allocator.h. */
 #include "allocator.h"
 
+#include <signal.h>
+
 #include <jansson.h>
 #include <suitesparse/SuiteSparse_config.h>
 
 /* The functions that are replaced take no context. */
 static struct {
-    long requests, at, live;
+    long requests, at, interrupt_at, live;
     bool onward, failed_resize;
 } state;
 
@@ -22,6 +24,9 @@ void __wrap_free(void *block);
 static bool must_fail(void)
 {
     state.requests++;
+    if (state.requests == state.interrupt_at) {
+        (void)raise(SIGINT);
+    }
     return state.at > 0 &&
            (state.requests == state.at || (state.onward && state.requests > state.at));
 }
@@ -81,6 +86,11 @@ void allocator_fail(long at, bool onward)
     state.at = at;
     state.onward = onward;
     state.failed_resize = false;
+}
+
+void allocator_interrupt(long at)
+{
+    state.interrupt_at = at;
 }
 
 long allocator_requests(void)

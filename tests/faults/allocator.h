@@ -15,6 +15,9 @@ void allocator_install(void);
 /* Counts from 0 again; request number `at` (from 1) fails, 0: none. `onward`: all after it too. */
 void allocator_fail(long at, bool onward);
 
+/* SIGINT arrives at request number `at` (from 1), 0: never. */
+void allocator_interrupt(long at);
+
 /* Requests since allocator_fail. */
 long allocator_requests(void);
 
