@@ -295,6 +295,7 @@ static void unknown_key(const struct part *part, const struct word *key)
             buffer_format(&list, "%s%s", k == 0 ? "known: " : ", ", b->known[k]);
         }
         hint = list.length == 0 ? "it takes none" : arena_copy(b->arena, list.data, list.length);
+        b->diagnostics->out_of_memory |= list.failed;
         buffer_free(&list);
     }
     diagnostics_add(b->diagnostics, key->span, hint, "%s %s has no parameter '%s'", article(type),

@@ -102,6 +102,7 @@ static void unknown_quantity(const struct sort *sorts, int count, const char *th
     const char *hint = near != NULL ? arena_format(diagnostics->arena, "did you mean '%s'?", near)
                        : all.length > 0 ? arena_copy(diagnostics->arena, all.data, all.length)
                                         : NULL;
+    diagnostics->out_of_memory |= all.failed;
     buffer_free(&all);
     if (strcmp(thing, "gnd") == 0) {
         hint = "gnd is 0 V by itself";

@@ -261,7 +261,12 @@ bool circuit_sweep(const struct circuit *circuit, const struct statement *statem
     for (int k = 0; k < circuit->let_count; k++) {
         b.lets[k].state = LET_DONE;
     }
-    return read_sweep(&b, statement, sweep);
+    const bool good = read_sweep(&b, statement, sweep);
+    if (arena_failed(circuit->arena) || arena_failed(diagnostics->arena)) {
+        diagnostics->out_of_memory = true;
+        return false;
+    }
+    return good;
 }
 
 static bool add_sweep(struct builder *b, const struct statement *statement)
