@@ -69,7 +69,7 @@ static void read_place(struct sweeper *w, struct place *place)
     memset(w->rhs, 0, (size_t)s->n * sizeof *w->rhs);
     w->rhs[w->branch] = 1;
     linear_solve(s->solver, w->rhs);
-    place->i = w->sign * w->point->x[w->branch];
+    place->i = w->sign * w->point->x[w->branch] + 0.0; /* never a negative zero */
     place->slope = w->sign * w->rhs[w->branch];
 }
 
@@ -410,7 +410,7 @@ static bool find_derivatives(struct operating_point *home, int branch, double si
     }
     for (int k = 0; k < c->rail_count; k++) {
         const int driver = system_branch(&c->instances[c->rails[k].instance]);
-        line[k] = sign * (double)linearised_transfer(home, branch, driver) / r->current;
+        line[k] = sign * (double)linearised_transfer(home, branch, driver) / r->current + 0.0;
     }
     r->line = line;
     long double per_kelvin;

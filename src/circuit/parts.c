@@ -169,7 +169,7 @@ static void unknown_word(struct builder *b, const struct statement *statement)
     }
     const char *near = near_name(statement->type.text, b->known, count);
     diagnostics_add(b->diagnostics, statement->type.span,
-                    near == NULL ? "`ampstead help language` lists the statements"
+                    near == NULL ? "docs/language.md lists the statements"
                                  : arena_format(b->arena, "did you mean '%s'?", near),
                     "'%s' is neither a statement nor a device", statement->type.text);
 }
