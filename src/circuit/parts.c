@@ -110,6 +110,7 @@ static bool join(struct builder *b, struct instance *instance, const int *outer,
         return false;
     }
     for (int t = 0; t < terminals; t++) {
+        /* NOLINTNEXTLINE(clang-analyzer-core.CallAndMessage): callers give all terminals */
         instance->outer[t] = node_unknown(outer[t]);
         instance->local[t] = node_unknown(local[t]);
     }
@@ -534,6 +535,8 @@ static bool add_series(struct builder *b, const struct part *part, const double 
         const struct series_row *row = &type->series[k];
         const int p = parameter_find(type->model_parameters, type->model_parameter_count,
                                      row->model_parameter);
+        /* NOLINTNEXTLINE(clang-analyzer-core.NullDereference): types with series rows have models
+         */
         if (!(model[p] > 0)) {
             continue;
         }
