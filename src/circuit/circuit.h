@@ -19,7 +19,7 @@ enum { CIRCUIT_GROUND = -1 };
 /* Limits; each message that meets one prints it. A cell of a few lines can ask for any number of
  * parts by blocks that use blocks. */
 enum {
-    CIRCUIT_PART_LIMIT = 2000000, /* parts and uses of blocks */
+    CIRCUIT_PART_LIMIT = 3000000, /* parts and uses of blocks */
     CIRCUIT_MEMORY_LIMIT = 2048,  /* MiB of all that is built from a cell, before it is solved */
     CIRCUIT_NAME_LIMIT = 1000,    /* pins, parameters and lets of one block */
     CIRCUIT_MODEL_LIMIT = 10000,

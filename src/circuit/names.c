@@ -12,12 +12,17 @@ struct slot {
     int index;
 };
 
+/* Names of one sort as they came. */
+struct order {
+    const char **list;
+    int count, capacity;
+};
+
 struct names {
     struct arena *arena;
     struct slot *slots; /* [size] in hash order; name NULL: free */
-    size_t size;
-    struct slot *order; /* as they came */
-    int count, capacity;
+    size_t size, count;
+    struct order orders[NAME_SORT_COUNT];
 };
 
 enum { FIRST_SIZE = 64 };
@@ -66,8 +71,11 @@ static bool widen(struct names *names)
     if (slots == NULL) {
         return false;
     }
-    for (int k = 0; k < names->count; k++) {
-        *place(slots, size, names->order[k].sort, names->order[k].name) = names->order[k];
+    for (size_t k = 0; k < names->size; k++) {
+        const struct slot *old = &names->slots[k];
+        if (old->name != NULL) {
+            *place(slots, size, old->sort, old->name) = *old;
+        }
     }
     names->slots = slots;
     names->size = size;
@@ -76,28 +84,28 @@ static bool widen(struct names *names)
 
 bool names_add(struct names *names, enum name_sort sort, const char *name, int index)
 {
-    if (2 * ((size_t)names->count + 1) > names->size && !widen(names)) {
+    if (2 * (names->count + 1) > names->size && !widen(names)) {
         return false;
     }
-    struct slot *order =
-        arena_grow(names->arena, names->order, names->count, &names->capacity, sizeof *order);
-    if (order == NULL) {
+    struct order *order = &names->orders[sort];
+    const char **list =
+        arena_grow(names->arena, order->list, order->count, &order->capacity, sizeof *list);
+    if (list == NULL) {
         return false;
     }
-    names->order = order;
-    const struct slot slot = {name, sort, index};
-    names->order[names->count++] = slot;
-    *place(names->slots, names->size, sort, name) = slot;
+    order->list = list;
+    list[order->count++] = name;
+    names->count++;
+    *place(names->slots, names->size, sort, name) = (struct slot){name, sort, index};
     return true;
 }
 
 int names_list(const struct names *names, enum name_sort sort, const char **list, int limit)
 {
-    int count = 0;
-    for (int k = 0; k < names->count && count < limit; k++) {
-        if (names->order[k].sort == sort) {
-            list[count++] = names->order[k].name;
-        }
+    const struct order *order = &names->orders[sort];
+    const int count = order->count < limit ? order->count : limit;
+    for (int k = 0; k < count; k++) {
+        list[k] = order->list[k];
     }
     return count;
 }

@@ -14,7 +14,8 @@ enum name_sort {
     NAME_OUTPUT,
     NAME_LET,
     NAME_MODEL,
-    NAME_BLOCK
+    NAME_BLOCK,
+    NAME_SORT_COUNT
 };
 
 struct names;
