@@ -201,10 +201,19 @@ static enum status run(const struct ampstead_request *request, struct ampstead_r
     if (result->trouble != NULL) {
         return STATUS_INPUT;
     }
+    if (result->command != COMMAND_MODELS && ends_with(request->path, ".process")) {
+        result->trouble = "this is a process file: ampstead models FILE shows it";
+        return STATUS_INPUT;
+    }
     enum status status = read_cell(request, result);
     /* A cell with errors is built as far as it goes: all that is wrong is told in one run. */
     if (status == STATUS_OK || (status == STATUS_INPUT && result->cell != NULL)) {
         status = build(request, result);
+    }
+    if (status == STATUS_OK && result->command != COMMAND_MODELS &&
+        result->circuit->instance_count == 0) {
+        diagnostics_add(&result->cell->diagnostics, SPAN_NONE, NULL, "the cell holds no parts");
+        status = STATUS_INPUT;
     }
     if (status == STATUS_OK) {
         status = analyse(request, result);

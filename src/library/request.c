@@ -51,6 +51,12 @@ enum status request_set(struct cell *cell, const char *text, struct set_value *s
     if (status != STATUS_OK) {
         return status;
     }
+    if (memchr(text, '.', length) != NULL) {
+        diagnostics_add(&cell->diagnostics, (struct span){file, 0, (uint32_t)length},
+                        "set a let of the cell that the `use` line passes on",
+                        "what is inside a block cannot be set");
+        return STATUS_INPUT;
+    }
     if (!is_name(text, length)) {
         const struct span where = {file, 0, (uint32_t)(length > 0 ? length : strlen(text))};
         diagnostics_add(&cell->diagnostics, where, "such as RE=51k",

@@ -207,7 +207,8 @@ static void put_output(struct writer *writer, json_t *outputs, const struct circ
         put_number(writer, object, "resistance", row->resistance);
     }
     put_number(writer, object, "compliance", row->compliance);
-    put_text(writer, object, "compliance_device", row->compliance_device);
+    put_text(writer, object, "compliance_device",
+             row->unheld_device != NULL ? row->unheld_device : row->compliance_device);
     put_number(writer, object, "low", row->low);
     put_number(writer, object, "high", row->high);
     put_number(writer, object, "flatness", row->flatness);
