@@ -20,7 +20,8 @@ struct builder {
     bool failed;
 };
 
-/* --- groups ------------------------------------------------------------------------------------- */
+/* --- groups -------------------------------------------------------------------------------------
+ */
 
 /* The voltage that an instance holds between its first two terminals; false when it holds none. */
 static bool held_voltage(const struct system *s, int k, double *volts)
@@ -37,8 +38,8 @@ static bool held_voltage(const struct system *s, int k, double *volts)
 }
 
 /*
- * Walks from the start node over held voltages and gives every node on the way its shift. `start` -1
- * is gnd.
+ * Walks from the start node over held voltages and gives every node on the way its shift. `start`
+ * -1 is gnd.
  */
 static void spread_group(struct builder *b, int start, int group, int *parent)
 {
@@ -98,7 +99,8 @@ static bool find_groups(struct builder *b, int *count)
     return true;
 }
 
-/* --- rows and arguments --------------------------------------------------------------------------- */
+/* --- rows and arguments
+ * --------------------------------------------------------------------------- */
 
 static int row_of(const struct builder *b, int node)
 {
@@ -172,7 +174,8 @@ static void add_linear(struct builder *b, int from, int to, double resistance)
     }
 }
 
-/* --- devices ------------------------------------------------------------------------------------ */
+/* --- devices ------------------------------------------------------------------------------------
+ */
 
 /* coefficient (exp(u/thermal) - 1) from plus to minus in the frame of the polarity. */
 static void add_junction(struct builder *b, int plus, int minus, double coefficient, double thermal,
@@ -215,8 +218,8 @@ static void add_bipolar(struct builder *b, const int *local, const struct bipola
 {
     const int c = local[BIPOLAR_C], base = local[BIPOLAR_B], emitter = local[BIPOLAR_E];
     const double sign = p->polarity;
-    const bool plain = !(p->per_early > 0) && !(p->per_early_reverse > 0) &&
-                       !(p->per_knee > 0) && !(p->per_knee_reverse > 0);
+    const bool plain = !(p->per_early > 0) && !(p->per_early_reverse > 0) && !(p->per_knee > 0) &&
+                       !(p->per_knee_reverse > 0);
     struct element f = new_element(&element_junction, NULL), r = f;
     f.coefficient = r.coefficient = p->saturation;
     f.thermal = p->thermal_f;
@@ -292,8 +295,8 @@ static void add_opamp(struct builder *b, const int *local, const struct opamp_pr
     e.arguments[0] = difference(b, local[OPAMP_PLUS], local[OPAMP_MINUS]);
     e.arguments[1] = p->high_node ? node_argument(b, local[OPAMP_HIGH])
                                   : network_node(-1, interval_point(p->high));
-    e.arguments[2] = p->low_node ? node_argument(b, local[OPAMP_LOW])
-                                 : network_node(-1, interval_point(p->low));
+    e.arguments[2] =
+        p->low_node ? node_argument(b, local[OPAMP_LOW]) : network_node(-1, interval_point(p->low));
     e.terms[e.term_count++] = (struct element_term){row, -1};
     b->failed |= !network_add(n, row, row, interval_point(1));
     network_add_constant(n, row, b->map->shift[local[OPAMP_OUT]]);
@@ -301,8 +304,8 @@ static void add_opamp(struct builder *b, const int *local, const struct opamp_pr
 }
 
 /*
- * Inputs that are only ever seen as a difference, `a.v - b.v`, become one argument: the range of the
- * difference is narrower than what two ranges give.
+ * Inputs that are only ever seen as a difference, `a.v - b.v`, become one argument: the range of
+ * the difference is narrower than what two ranges give.
  */
 static bool rewrite_law(struct builder *b, const int *local, const struct law_program *program,
                         bool pairs, struct law_step *steps, struct law_program *copy,
@@ -415,13 +418,14 @@ static void add_instance(struct builder *b, int k)
     }
 }
 
-/* --- where to look -------------------------------------------------------------------------------- */
+/* --- where to look
+ * -------------------------------------------------------------------------------- */
 
 /*
- * No node of a cell of these devices lies outside the rails, spread by its floating sources: none of
- * the devices has voltage gain from the rails on (Willson, Bell System Technical Journal 54 (1975)
- * 1479). An amplifier has its limits. Current sources, laws and tables have no such bound: there
- * the range is a choice, and is said to be one.
+ * No node of a cell of these devices lies outside the rails, spread by its floating sources: none
+ * of the devices has voltage gain from the rails on (Willson, Bell System Technical Journal 54
+ * (1975) 1479). An amplifier has its limits. Current sources, laws and tables have no such bound:
+ * there the range is a choice, and is said to be one.
  */
 static void find_range(struct builder *b)
 {
@@ -459,10 +463,10 @@ static void find_range(struct builder *b)
     if (map->is_assumed) {
         spread += 2 + (map->high - map->low) / 2 + fmin(drive * ohms, 100);
     }
-    map->low -= spread + 1e-6;
-    map->high += spread + 1e-6;
-    for (int k = 0; k < map->network->node_count; k++) {
-        map->network->start[k] = (struct interval){map->low, map->high};
+    map->low -= spread;
+    map->high += spread;
+    for (int k = 0; k < map->network->node_count; k++) { /* a margin for rounding at the ends */
+        map->network->start[k] = (struct interval){map->low - 1e-6, map->high + 1e-6};
     }
 }
 

@@ -89,9 +89,7 @@ static void exchange(struct program *p, int r, int j, double value)
 /* -1 below its range, 1 above, 0 inside. */
 static int violation(const struct program *p, int i)
 {
-    return p->value[i] < -tolerance                            ? -1
-           : p->value[i] > top_of(p, p->basic[i]) + tolerance ? 1
-                                                               : 0;
+    return p->value[i] < -tolerance ? -1 : p->value[i] > top_of(p, p->basic[i]) + tolerance ? 1 : 0;
 }
 
 /* Entering variable by the largest reduced cost, after many pivots by the lowest number (Bland). */
@@ -113,8 +111,8 @@ static int choose_column(const struct program *p, bool lowest)
 }
 
 /*
- * One step along nonbasic j in its improving direction. With `repairs`, a basic variable outside its
- * range goes on to its bound. False when nothing stops it.
+ * One step along nonbasic j in its improving direction. With `repairs`, a basic variable outside
+ * its range goes on to its bound. False when nothing stops it.
  */
 static bool step(struct program *p, int j)
 {

@@ -1,7 +1,7 @@
 /*
  * program.h: small linear programs in plain double arithmetic, whose multipliers are then used in a
- * safe bound (Neumaier and Shcherbina, Math. Programming 99 (2004) 283): the answer here need not be
- * exact, since the caller checks with intervals what the multipliers prove.
+ * safe bound (Neumaier and Shcherbina, Math. Programming 99 (2004) 283): the answer here need not
+ * be exact, since the caller checks with intervals what the multipliers prove.
  *
  * Variables t[columns], each from 0 to 1. Rows: sum a t = b, or sum a t <= b. Bounded-variable
  * simplex in dictionary form (Chvatal, Linear Programming, 1983, chapter 8).
@@ -14,13 +14,13 @@
 
 struct program {
     int rows, columns;
-    double *a;       /* [rows * columns] dictionary: basic = value - a * nonbasic */
-    double *value;   /* [rows] of the basic variables */
-    int *basic;      /* [rows] variable in each row: below `columns` a t, else a row's slack */
-    int *nonbasic;   /* [columns] */
-    bool *at_top;    /* [columns] the nonbasic one is at its upper bound */
-    double *cost;    /* [columns] reduced costs, scratch */
-    bool *equality;  /* [rows] */
+    double *a;      /* [rows * columns] dictionary: basic = value - a * nonbasic */
+    double *value;  /* [rows] of the basic variables */
+    int *basic;     /* [rows] variable in each row: below `columns` a t, else a row's slack */
+    int *nonbasic;  /* [columns] */
+    bool *at_top;   /* [columns] the nonbasic one is at its upper bound */
+    double *cost;   /* [columns] reduced costs, scratch */
+    bool *equality; /* [rows] */
 };
 
 /* Doubles and ints of workspace for a program of this size. */

@@ -31,9 +31,9 @@ struct certifier *certifier_create(const struct network *network)
     c->n = network->node_count;
     c->z = arena_new_array(arena, struct interval, network->variable_count);
     c->jacobian = arena_new_array(arena, struct interval, n * n);
-    c->inverse = arena_new_array(arena, double, n * n);
+    c->inverse = arena_new_array(arena, double, n *n);
     c->middle = arena_new_array(arena, double, 2 * n * n);
-    c->defect = arena_new_array(arena, double, n * n);
+    c->defect = arena_new_array(arena, double, n *n);
     c->residual = arena_new_array(arena, struct interval, n);
     c->step = arena_new_array(arena, struct interval, n);
     c->image = arena_new_array(arena, struct interval, n);
@@ -66,8 +66,8 @@ static void find_residual(struct certifier *c)
         for (int k = 0; k < n->rows[r].term_count; k++) {
             const struct network_term *term = &n->rows[r].terms[k];
             if (term->index < n->variable_count) {
-                c->residual[r] = interval_add(
-                    c->residual[r], interval_mul(term->coefficient, c->z[term->index]));
+                c->residual[r] = interval_add(c->residual[r],
+                                              interval_mul(term->coefficient, c->z[term->index]));
             }
         }
     }
@@ -309,8 +309,8 @@ bool certify_exactly(struct certifier *c, const double *centre, struct interval 
             const bool inside = c->image[i].lo > box[i].lo && c->image[i].hi < box[i].hi;
             proved = proved && inside;
             if (!inside) {
-                const double reach = fmax(fabs(c->image[i].lo - centre[i]),
-                                          fabs(c->image[i].hi - centre[i]));
+                const double reach =
+                    fmax(fabs(c->image[i].lo - centre[i]), fabs(c->image[i].hi - centre[i]));
                 c->radius[i] = 1.5 * fmax(reach, c->radius[i]);
             }
         }

@@ -7,8 +7,8 @@
  *
  * holds every solution in X; if K(X) lies inside X there is exactly one (Krawczyk, Computing 4
  * (1969) 187; Moore, SIAM J. Numer. Anal. 14 (1977) 611). If |I - Y J(X)| p < p for some p > 0 then
- * every matrix in J(X) is regular and X holds at most one (Neumaier, Interval Methods for Systems of
- * Equations, 1990, chapters 3 and 5).
+ * every matrix in J(X) is regular and X holds at most one (Neumaier, Interval Methods for Systems
+ * of Equations, 1990, chapters 3 and 5).
  */
 #ifndef PROOF_CERTIFY_H
 #define PROOF_CERTIFY_H

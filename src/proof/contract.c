@@ -53,8 +53,7 @@ struct contractor *contractor_create(const struct network *n)
     c->is_argument = arena_new_array(arena, bool, n->variable_count);
     c->diagonal = arena_new_array(arena, double, n->node_count);
     if (c->parts == NULL || c->before == NULL || c->planes == NULL || c->block == NULL ||
-        c->multipliers == NULL || c->sum == NULL || c->is_argument == NULL ||
-        c->diagonal == NULL) {
+        c->multipliers == NULL || c->sum == NULL || c->is_argument == NULL || c->diagonal == NULL) {
         return NULL;
     }
     for (int e = 0; e < n->element_count; e++) {
@@ -226,7 +225,8 @@ bool contract_propagate(struct contractor *c, struct interval *box)
     return true;
 }
 
-/* --- planes ------------------------------------------------------------------------------------- */
+/* --- planes -------------------------------------------------------------------------------------
+ */
 
 /*
  * sign y <= sign (value + sum slope (argument - corner)), with value the end of the range at the
@@ -264,7 +264,8 @@ static void add_plane(struct contractor *c, int index, double sign, double value
     }
 }
 
-/* Both planes through one corner: the lower by the slopes that fall short, the upper by the rest. */
+/* Both planes through one corner: the lower by the slopes that fall short, the upper by the rest.
+ */
 static void corner_planes(struct contractor *c, int index, const struct interval *arguments,
                           const struct interval *slopes, bool high)
 {
@@ -310,8 +311,7 @@ static void add_chord(struct contractor *c, int index, struct interval argument,
         return;
     }
     /* the worse end decides */
-    const struct interval rise =
-        interval_scale(slope, interval_sub(ends[1], ends[0]));
+    const struct interval rise = interval_scale(slope, interval_sub(ends[1], ends[0]));
     const struct interval from_high = interval_sub(high, rise);
     const double value = bend > 0 ? fmax(low.hi, from_high.hi) : fmin(low.lo, from_high.lo);
     add_plane(c, index, bend, value, &slope, &argument.lo);
@@ -390,7 +390,8 @@ static void make_planes(struct contractor *c, const struct interval *box)
     }
 }
 
-/* --- programs ------------------------------------------------------------------------------------ */
+/* --- programs ------------------------------------------------------------------------------------
+ */
 
 /* Fills row r of the program: the entries are shares of the widths of the box, the row scaled. */
 static void fill_row(struct program *p, int r, const int *index, const double *coefficient,
@@ -446,8 +447,8 @@ static void fill_program(struct contractor *c, struct program *p, const struct i
 }
 
 /*
- * The sum of all rows with the multipliers: D z <= beta. Returns a lower bound of (extra z[column] +
- * D z) - beta over the box; *own gets the coefficient that D has at `column`.
+ * The sum of all rows with the multipliers: D z <= beta. Returns a lower bound of (extra z[column]
+ * + D z) - beta over the box; *own gets the coefficient that D has at `column`.
  */
 static double aggregate(struct contractor *c, const struct interval *box, const double *multipliers,
                         int column, double extra)
@@ -504,8 +505,7 @@ static bool bound_variable(struct contractor *c, struct program *p, struct inter
     const double width = interval_width(box[k]);
     for (int end = 0; end < 2; end++) {
         const double sign = end == 0 ? 1 : -1;
-        if (!(width > 0) ||
-            program_least(p, k, sign, c->multipliers) != PROGRAM_DONE) {
+        if (!(width > 0) || program_least(p, k, sign, c->multipliers) != PROGRAM_DONE) {
             continue;
         }
         /* the program counts in shares of the width */
@@ -556,7 +556,8 @@ bool contract_program(struct contractor *c, struct interval *box, bool narrows)
     return true;
 }
 
-/* --- where to cut --------------------------------------------------------------------------------- */
+/* --- where to cut
+ * --------------------------------------------------------------------------------- */
 
 static double slope_size(struct interval slope)
 {
@@ -564,7 +565,8 @@ static double slope_size(struct interval slope)
     return size < 1e30 ? size : 1e30;
 }
 
-/* Largest conductance of a node against its own voltage over the box: what turns current into volts.
+/* Largest conductance of a node against its own voltage over the box: what turns current into
+ * volts.
  */
 static void find_diagonals(struct contractor *c, const struct interval *box)
 {
@@ -586,9 +588,9 @@ static void find_diagonals(struct contractor *c, const struct interval *box)
             const int v = e->arguments[k].variable;
             for (int t = 0; t < e->term_count && v >= 0; t++) {
                 const int row = e->terms[t].row;
-                const bool own = row >= 0 && (v == row || (v >= n->node_count &&
-                                                           (n->pairs[v][0] == row ||
-                                                            n->pairs[v][1] == row)));
+                const bool own =
+                    row >= 0 && (v == row || (v >= n->node_count &&
+                                              (n->pairs[v][0] == row || n->pairs[v][1] == row)));
                 if (own) {
                     c->diagonal[row] += fabs(e->terms[t].factor) * slope_size(slopes[k]);
                 }

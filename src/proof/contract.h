@@ -6,10 +6,10 @@
  *   propagation  each row and each element is solved for each of its terms, round after round
  *                (hull consistency: Benhamou, Goualard, Granvilliers and Puget, ICLP 1999);
  *   programs     every element lies between planes through opposite corners of its box (Araya,
- *                Trombettoni and Neveu, CPAIOR 2012), an exponential between its chord and tangents;
- *                linear programs over rows and planes then bound each argument. What their
- *                multipliers prove is worked out in intervals (Neumaier and Shcherbina 2004), so
- *                that no rounding in a program can lose a solution.
+ *                Trombettoni and Neveu, CPAIOR 2012), an exponential between its chord and
+ * tangents; linear programs over rows and planes then bound each argument. What their multipliers
+ * prove is worked out in intervals (Neumaier and Shcherbina 2004), so that no rounding in a program
+ * can lose a solution.
  */
 #ifndef PROOF_CONTRACT_H
 #define PROOF_CONTRACT_H

@@ -1,10 +1,10 @@
 /*
  * element.h: the nonlinear parts of the devices as functions with proved ranges.
  *
- * A device is a linear part and a few elements: functions of one to four voltage differences (a law:
- * up to 16), each with the range of its value and of its slopes over a box of arguments. The
- * formulas are those of devices/, in interval arithmetic; what is evaluated is the model itself, not
- * its rounding in double.
+ * A device is a linear part and a few elements: functions of one to four voltage differences (a
+ * law: up to 16), each with the range of its value and of its slopes over a box of arguments. The
+ * formulas are those of devices/, in interval arithmetic; what is evaluated is the model itself,
+ * not its rounding in double.
  */
 #ifndef PROOF_ELEMENT_H
 #define PROOF_ELEMENT_H

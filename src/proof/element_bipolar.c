@@ -1,6 +1,6 @@
 /*
- * element_bipolar.c: transport current (IF - IR)/qb with Early effect and high injection; symbols as
- * in devices/bipolar_current.c.
+ * element_bipolar.c: transport current (IF - IR)/qb with Early effect and high injection; symbols
+ * as in devices/bipolar_current.c.
  */
 #include "devices/bipolar.h"
 #include "proof/element.h"
@@ -60,10 +60,10 @@ static void share_dual(const struct bipolar_prepared *p, const struct dual *be,
     const struct interval f = interval_point(p->per_knee), r = interval_point(p->per_knee_reverse);
     dual_chain2(&q2, interval_add(interval_mul(f, IF->v), interval_mul(r, IR->v)), f, IF, r, IR,
                 COUNT);
-    /* h = 2/(1 + s), s = sqrt(1 + 4 q2); dh/dq2 = -h^2/s; the smooth floor of the model is 1e-20 off */
-    const struct interval inside =
-        interval_add(interval_add(interval_point(1), interval_scale(4, q2.v)),
-                     (struct interval){-1e-19, 2e-10});
+    /* h = 2/(1 + s), s = sqrt(1 + 4 q2); dh/dq2 = -h^2/s; the smooth floor of the model is 1e-20
+     * off */
+    const struct interval inside = interval_add(
+        interval_add(interval_point(1), interval_scale(4, q2.v)), (struct interval){-1e-19, 2e-10});
     struct interval s = interval_sqrt(inside);
     s.lo = fmax(s.lo, 1e-12);
     const struct interval h = interval_div(interval_point(2), interval_add(interval_point(1), s));

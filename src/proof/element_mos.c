@@ -19,7 +19,8 @@ enum { G, A, B, COUNT };
 static struct interval smooth_at(double x, double e, struct interval *slope)
 {
     const struct interval u = interval_point(x);
-    const struct interval four = interval_mul(interval_scale(4, interval_point(e)), interval_point(e));
+    const struct interval four =
+        interval_mul(interval_scale(4, interval_point(e)), interval_point(e));
     const struct interval root = interval_sqrt(interval_add(interval_square(u), four));
     struct interval value;
     if (x > 0) {
@@ -155,8 +156,7 @@ static void find_threshold(const struct mos_prepared *p, const struct bias *s, s
     value = smooth_range(shifted, 0.1, &slope);
     dual_chain(&body, value, interval_scale(p->dibl_body, slope), &s->a, COUNT);
     dual_product(&xs, &xs, &body, COUNT);
-    dual_chain(&out->vt,
-               interval_sub(interval_point(p->vt), interval_scale(p->sigma, xs.v)),
+    dual_chain(&out->vt, interval_sub(interval_point(p->vt), interval_scale(p->sigma, xs.v)),
                interval_point(-p->sigma), &xs, COUNT);
 }
 
@@ -182,8 +182,8 @@ static void find_pinch_off(const struct mos_prepared *p, const struct bias *s, s
     }
     const struct interval g = interval_point(p->g);
     struct interval slope;
-    const struct interval offset = interval_add(
-        interval_point(p->phi), interval_mul(g, interval_point(p->root_phi)));
+    const struct interval offset =
+        interval_add(interval_point(p->phi), interval_mul(g, interval_point(p->root_phi)));
     const struct interval y = smooth_range(interval_add(u.v, offset), 0.001, &slope);
     struct interval half_low, half_high;
     const struct interval low = root_at(p->g, y.lo, &half_low);
@@ -194,8 +194,7 @@ static void find_pinch_off(const struct mos_prepared *p, const struct bias *s, s
                                    fmin(interval_div(high, half_high).hi, 1)};
     dual_chain(&out->VP, interval_sub(interval_square(root), interval_point(p->phi)),
                interval_mul(share, slope), &u, COUNT);
-    const struct interval square =
-        interval_add(interval_square(root), interval_point(p->four_ut));
+    const struct interval square = interval_add(interval_square(root), interval_point(p->four_ut));
     const struct interval sb = interval_sqrt(square);
     /* dsb/du = (r/sb) S'/(2 half); dn/du = -g/(2 sb^2) of it */
     const struct interval half = {half_low.lo, half_high.hi};
@@ -216,8 +215,8 @@ static void find_saturation(const struct mos_prepared *p, struct parts *s)
     const struct interval wl = interval_mul(w, lam), q = s->qs.v;
     const struct interval end = {0.0366312777774683, 0.0366312777774685}; /* 2 exp(-4) */
     const struct interval base = interval_add(interval_point(2), wl);
-    const struct interval R = interval_sqrt(
-        interval_add(interval_square(base), interval_scale(8, interval_mul(lam, q))));
+    const struct interval R =
+        interval_sqrt(interval_add(interval_square(base), interval_scale(8, interval_mul(lam, q))));
     const struct interval R_slope = interval_div(interval_scale(4, lam), R);
     const struct interval lq = interval_scale(2, interval_mul(lam, q));
     const struct interval sum = interval_add(interval_add(base, lq), R);
@@ -230,10 +229,9 @@ static void find_saturation(const struct mos_prepared *p, struct parts *s)
     const struct interval rest = interval_add(interval_mul(lam, interval_add(w, q)), end);
     struct interval value = interval_scale(2, drop), slope = interval_scale(2, drop_slope);
     if (p->w > 0) {
-        value = interval_add(
-            value, interval_log(interval_div(sum, interval_scale(2, rest))));
-        slope = interval_add(slope, interval_sub(interval_div(sum_slope, sum),
-                                                 interval_div(lam, rest)));
+        value = interval_add(value, interval_log(interval_div(sum, interval_scale(2, rest))));
+        slope = interval_add(slope,
+                             interval_sub(interval_div(sum_slope, sum), interval_div(lam, rest)));
     }
     value = interval_scale(p->U, value);
     value.lo = fmax(value.lo, 0); /* a voltage of saturation is never negative */
@@ -245,8 +243,7 @@ static void find_saturation(const struct mos_prepared *p, struct parts *s)
 static struct interval knee_factor(double ratio, double power)
 {
     const struct interval r12 = interval_power(interval_point(ratio), 12);
-    const struct interval shrink =
-        interval_scale(power / 12, interval_log1p(r12));
+    const struct interval shrink = interval_scale(power / 12, interval_log1p(r12));
     return interval_exp(interval_neg(shrink));
 }
 
@@ -315,8 +312,8 @@ static void find_charges(const struct mos_prepared *p, const struct bias *s, str
                     interval_point(1), &out->vs, interval_neg(per_U), &drop, COUNT);
     } else {
         drop = s->x;
-        dual_chain2(&out->vd, interval_mul(interval_sub(out->VP.v, s->b.v), per_U), per_U,
-                    &out->VP, interval_neg(per_U), &s->b, COUNT);
+        dual_chain2(&out->vd, interval_mul(interval_sub(out->VP.v, s->b.v), per_U), per_U, &out->VP,
+                    interval_neg(per_U), &s->b, COUNT);
     }
     const struct interval qd = charge_range(p, out->vd.v);
     dual_chain(&out->qd, qd, charge_slope(p, out->vd.v, qd), &out->vd, COUNT);
@@ -335,8 +332,7 @@ static void find_charges(const struct mos_prepared *p, const struct bias *s, str
     struct interval charges = {
         interval_sub(full_charge(p, out->qs.v.lo), full_charge(p, qd.hi)).lo,
         interval_sub(full_charge(p, out->qs.v.hi), full_charge(p, qd.lo)).hi};
-    const struct interval level =
-        interval_add(interval_add(out->qs.v, qd), interval_point(p->w));
+    const struct interval level = interval_add(interval_add(out->qs.v, qd), interval_point(p->w));
     interval_meet(&charges, interval_mul(difference, level));
     charges.lo = fmax(charges.lo, 0);
     charges.hi = fmax(charges.hi, charges.lo);
@@ -344,12 +340,12 @@ static void find_charges(const struct mos_prepared *p, const struct bias *s, str
     for (int k = 0; k < COUNT; k++) {
         /* qs dvs - qd dvd; without velocity saturation what both share counts with qs - qd */
         if (p->lam > 0) {
-            out->charges.d[k] = interval_sub(interval_mul(out->qs.v, out->vs.d[k]),
-                                             interval_mul(qd, out->vd.d[k]));
+            out->charges.d[k] =
+                interval_sub(interval_mul(out->qs.v, out->vs.d[k]), interval_mul(qd, out->vd.d[k]));
             /* the same as (qs - qd) dvs + qd d(drop)/U */
-            const struct interval other = interval_add(
-                interval_mul(difference, out->vs.d[k]),
-                interval_mul(qd, interval_mul(per_U, drop.d[k])));
+            const struct interval other =
+                interval_add(interval_mul(difference, out->vs.d[k]),
+                             interval_mul(qd, interval_mul(per_U, drop.d[k])));
             interval_meet(&out->charges.d[k], other);
         } else {
             struct interval d = interval_mul(difference, interval_mul(per_U, out->VP.d[k]));
@@ -380,9 +376,8 @@ static void modulate(const struct mos_prepared *p, const struct bias *s, const s
         dual_chain(&factor, interval_add(interval_point(1), gain),
                    interval_div(per_volt, interval_add(interval_point(1), share)), beyond, COUNT);
     } else {
-        dual_chain(&factor,
-                   interval_add(interval_point(1), interval_mul(per_volt, beyond->v)), per_volt,
-                   beyond, COUNT);
+        dual_chain(&factor, interval_add(interval_point(1), interval_mul(per_volt, beyond->v)),
+                   per_volt, beyond, COUNT);
     }
     dual_product(current, current, &factor, COUNT);
 }
@@ -412,9 +407,8 @@ static void one_way(const struct mos_prepared *p, struct interval vg, struct int
     dual_product(&gate, &parts.n, &sum, COUNT);
     const struct interval ti = interval_mul(interval_point(p->gate_mobility), interval_point(p->U));
     const struct interval bulk = interval_point(p->bulk_mobility);
-    const struct interval mobility =
-        interval_add(interval_add(interval_point(1), interval_mul(bulk, parts.sb.v)),
-                     interval_mul(ti, gate.v));
+    const struct interval mobility = interval_add(
+        interval_add(interval_point(1), interval_mul(bulk, parts.sb.v)), interval_mul(ti, gate.v));
     dual_chain2(&mu, mobility, bulk, &parts.sb, ti, &gate, COUNT);
     const struct interval lam = interval_point(p->lam);
     dual_chain(&speed, interval_add(interval_point(1), interval_mul(lam, parts.difference.v)), lam,

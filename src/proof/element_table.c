@@ -17,8 +17,8 @@ static void piece_range(const struct curve *curve, int k, struct interval x, str
     const struct interval d0 = interval_scale(curve->slope[k], h);
     const struct interval d1 = interval_scale(curve->slope[k + 1], h);
     /* c2 = 3 rise - 2 d0 - d1, c3 = d0 + d1 - 2 rise */
-    const struct interval c2 = interval_sub(
-        interval_sub(interval_scale(3, rise), interval_scale(2, d0)), d1);
+    const struct interval c2 =
+        interval_sub(interval_sub(interval_scale(3, rise), interval_scale(2, d0)), d1);
     const struct interval c3 = interval_sub(interval_add(d0, d1), interval_scale(2, rise));
     struct interval inner = interval_add(c2, interval_mul(c3, t));
     inner = interval_add(d0, interval_mul(t, inner));

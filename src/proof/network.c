@@ -28,8 +28,8 @@ static bool add_term(struct network *n, int row, int index, struct interval coef
             return true;
         }
     }
-    struct network_term *grown = arena_grow(n->arena, r->terms, r->term_count, &r->term_capacity,
-                                            sizeof *grown);
+    struct network_term *grown =
+        arena_grow(n->arena, r->terms, r->term_count, &r->term_capacity, sizeof *grown);
     if (grown == NULL) {
         return false;
     }
@@ -103,8 +103,8 @@ bool network_difference(struct network *n, struct argument a, struct argument b,
 
 bool network_element(struct network *n, const struct element *element, int *index)
 {
-    struct element *grown = arena_grow(n->arena, n->elements, n->element_count,
-                                       &n->element_capacity, sizeof *grown);
+    struct element *grown =
+        arena_grow(n->arena, n->elements, n->element_count, &n->element_capacity, sizeof *grown);
     if (grown == NULL) {
         return false;
     }
@@ -122,8 +122,8 @@ bool network_finish(struct network *n)
         const struct element *element = &n->elements[e];
         for (int t = 0; t < element->term_count; t++) {
             const struct element_term *term = &element->terms[t];
-            if (term->row >= 0 && !add_term(n, term->row, n->variable_count + e,
-                                            interval_point(term->factor))) {
+            if (term->row >= 0 &&
+                !add_term(n, term->row, n->variable_count + e, interval_point(term->factor))) {
                 return false;
             }
         }

@@ -1,10 +1,10 @@
 /*
- * search.c: branch and prune (Hansen and Walster, Global Optimization Using Interval Analysis, 2004,
- * chapters 11 and 14).
+ * search.c: branch and prune (Hansen and Walster, Global Optimization Using Interval Analysis,
+ * 2004, chapters 11 and 14).
  *
- * A box is cut down by contraction and by the operator of Krawczyk. It is done with when it is empty,
- * or lies in a region known to hold one known solution only, or is proved to hold at most one and
- * that one is found. Else it is cut in two.
+ * A box is cut down by contraction and by the operator of Krawczyk. It is done with when it is
+ * empty, or lies in a region known to hold one known solution only, or is proved to hold at most
+ * one and that one is found. Else it is cut in two.
  */
 #include "proof/search.h"
 
@@ -164,8 +164,8 @@ bool search_add(struct search *s, const double *nodes, int *index)
     memcpy(centre, nodes, (size_t)n * sizeof *centre);
     s->result.states = grown;
     *index = s->result.state_count++;
-    s->result.states[*index] = (struct search_state){
-        centre, box, certify_determinant(s->certifier, centre)};
+    s->result.states[*index] =
+        (struct search_state){centre, box, certify_determinant(s->certifier, centre)};
     find_region(s, *index);
     return true;
 }
@@ -181,8 +181,8 @@ static bool look_for(struct search *s, const struct interval *box, int *index)
 }
 
 /*
- * A box with at most one solution is done with when that one is known: a state whose own box touches
- * it, so that both together still hold at most one.
+ * A box with at most one solution is done with when that one is known: a state whose own box
+ * touches it, so that both together still hold at most one.
  */
 static bool settled(struct search *s, const struct interval *box)
 {
@@ -258,8 +258,7 @@ static bool push(struct search *s, const struct interval *box, double share)
     if (s->depth == s->capacity) {
         const int wider = s->capacity == 0 ? 64 : 2 * s->capacity;
         struct arena *arena = s->network->arena;
-        struct interval *stack =
-            arena_array(arena, (size_t)wider * (size_t)s->size, sizeof *stack);
+        struct interval *stack = arena_array(arena, (size_t)wider * (size_t)s->size, sizeof *stack);
         double *shares = arena_new_array(arena, double, wider);
         if (stack == NULL || shares == NULL) {
             return false;

@@ -27,10 +27,10 @@ struct search_state {
 struct search_result {
     struct search_state *states;
     int state_count, state_capacity;
-    bool complete;              /* every box was discarded or holds exactly one state found */
-    long boxes;                 /* looked at */
-    long undecided;             /* left over */
-    struct interval *rest;      /* [node_count] hull of what is left over */
+    bool complete;         /* every box was discarded or holds exactly one state found */
+    long boxes;            /* looked at */
+    long undecided;        /* left over */
+    struct interval *rest; /* [node_count] hull of what is left over */
 };
 
 struct search;
