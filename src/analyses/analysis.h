@@ -15,9 +15,9 @@ struct analysis_options {
     void (*progress)(void *self, const char *what, double share); /* NULL: none */
     void *progress_self;
     struct sweep *extra_sweep; /* a sweep given by options, for analysis_sweep; NULL: the cell's */
-    bool certify;   /* analysis_point: proves the point unique in a small box */
-    long boxes;     /* analysis_states: boxes to look at, then it gives up */
-    double leakage; /* analysis_states: A, a start-up push below it is at risk */
+    bool certify;              /* analysis_point: proves the point unique in a small box */
+    long boxes;                /* analysis_states: boxes to look at, then it gives up */
+    double leakage;            /* analysis_states: A, a start-up push below it is at risk */
 };
 
 /*

@@ -3,6 +3,7 @@
 
 #include <string.h>
 
+#include "analyses/network_law.h"
 #include "devices/bipolar.h"
 #include "devices/curve.h"
 #include "devices/diode.h"
@@ -17,6 +18,8 @@ struct builder {
     struct arena *arena;
     const struct system *system;
     struct network_map *map;
+    int *held; /* instances that hold a voltage */
+    int held_count;
     bool failed;
 };
 
@@ -52,12 +55,10 @@ static void spread_group(struct builder *b, int start, int group, int *parent)
     }
     while (again) {
         again = false;
-        for (int k = 0; k < s->circuit->instance_count; k++) {
-            const int *local = s->circuit->instances[k].local;
-            double volts;
-            if (!held_voltage(s, k, &volts)) {
-                continue;
-            }
+        for (int i = 0; i < b->held_count; i++) {
+            const int *local = s->circuit->instances[b->held[i]].local;
+            double volts = 0;
+            held_voltage(s, b->held[i], &volts);
             for (int end = 0; end < 2; end++) {
                 const int from = local[end], to = local[1 - end];
                 const bool is_in = from < 0 ? group == -1 : parent[from] == group;
@@ -84,6 +85,16 @@ static bool find_groups(struct builder *b, int *count)
     map->driven = arena_new_array(b->arena, bool, s->node_count);
     if (map->group == NULL || map->shift == NULL || map->node == NULL || map->driven == NULL) {
         return false;
+    }
+    b->held = arena_new_array(b->arena, int, s->circuit->instance_count);
+    if (b->held == NULL) {
+        return false;
+    }
+    for (int k = 0; k < s->circuit->instance_count; k++) {
+        double volts;
+        if (held_voltage(s, k, &volts)) {
+            b->held[b->held_count++] = k;
+        }
     }
     for (int k = 0; k < s->node_count; k++) {
         map->group[k] = -2;
@@ -303,63 +314,57 @@ static void add_opamp(struct builder *b, const int *local, const struct opamp_pr
     put_element(b, &e, false);
 }
 
-/*
- * Inputs that are only ever seen as a difference, `a.v - b.v`, become one argument: the range of
- * the difference is narrower than what two ranges give.
- */
-static bool rewrite_law(struct builder *b, const int *local, const struct law_program *program,
-                        bool pairs, struct law_step *steps, struct law_program *copy,
-                        struct element *e)
+static struct argument law_argument(struct builder *b, const int *local, const int *input)
 {
-    int count = 0, from[ELEMENT_ARGUMENT_LIMIT][2] = {{0}};
-    e->argument_count = 0;
-    for (int k = 0; k < program->step_count; k++) {
-        steps[count] = program->steps[k];
-        if (steps[count].operation != LAW_INPUT) {
-            count++;
+    return input[1] < 0 ? node_argument(b, local[2 + input[0]])
+                        : difference(b, local[2 + input[0]], local[2 + input[1]]);
+}
+
+/* slope (shift + sign z), or a constant: a coefficient and a constant at both ends. */
+static void add_line(struct builder *b, const int *local, const struct element *e)
+{
+    const struct argument argument = e->arguments[0];
+    struct network *n = b->map->network;
+    const struct interval zero = interval_point(0);
+    struct interval value, slope = zero;
+    e->kind->range(e, &zero, &value, &slope);
+    const int at = e->argument_count == 0 ? -1 : argument.variable;
+    for (int end = 0; end < 2; end++) {
+        const int row = current_row(b, local[end]);
+        const struct interval s = end == 0 ? slope : interval_neg(slope);
+        if (row < 0) {
             continue;
         }
-        int pair[2] = {steps[count].index, -1}, at = 0;
-        if (pairs && k + 2 < program->step_count && program->steps[k + 1].operation == LAW_INPUT &&
-            program->steps[k + 2].operation == LAW_SUBTRACT) {
-            pair[1] = program->steps[k + 1].index;
+        if (at >= 0) {
+            b->failed |= !network_add(n, row, at, argument.sign > 0 ? s : interval_neg(s));
         }
-        while (at < e->argument_count && (from[at][0] != pair[0] || from[at][1] != pair[1])) {
-            at++;
-        }
-        if (at == ELEMENT_ARGUMENT_LIMIT) {
-            return false;
-        }
-        if (at == e->argument_count) {
-            from[at][0] = pair[0];
-            from[at][1] = pair[1];
-            e->arguments[at] = pair[1] < 0 ? node_argument(b, local[2 + pair[0]])
-                                           : difference(b, local[2 + pair[0]], local[2 + pair[1]]);
-            e->argument_count++;
-        }
-        steps[count++].index = at;
-        k += pair[1] < 0 ? 0 : 2;
+        network_add_constant(n, row, interval_mul(s, argument.shift));
+        network_add_constant(n, row, end == 0 ? value : interval_neg(value)); /* at argument 0 */
     }
-    *copy = (struct law_program){steps, count, e->argument_count};
-    return true;
 }
 
 static void add_law(struct builder *b, const int *local, const struct law_program *program)
 {
-    struct law_program *copy = arena_new(b->arena, struct law_program);
-    struct law_step *steps = arena_new_array(b->arena, struct law_step, program->step_count);
-    struct element e = new_element(&element_law, copy);
-    if (copy == NULL || steps == NULL) {
+    struct law_part *parts;
+    int count;
+    if (!network_law_parts(b->arena, program, &parts, &count)) {
         b->failed = true;
         return;
     }
-    /* more pairs than arguments: the inputs one by one always fit */
-    if (!rewrite_law(b, local, program, true, steps, copy, &e)) {
-        rewrite_law(b, local, program, false, steps, copy, &e);
+    for (int k = 0; k < count; k++) {
+        struct element e = new_element(&element_law, &parts[k].program);
+        e.argument_count = parts[k].program.input_count;
+        for (int i = 0; i < e.argument_count; i++) {
+            e.arguments[i] = law_argument(b, local, parts[k].inputs[i]);
+        }
+        if (parts[k].is_linear || parts[k].is_constant) {
+            add_line(b, local, &e);
+            continue;
+        }
+        add_term(b, &e, local[0], 1);
+        add_term(b, &e, local[1], -1);
+        put_element(b, &e, false);
     }
-    add_term(b, &e, local[0], 1);
-    add_term(b, &e, local[1], -1);
-    put_element(b, &e, false);
 }
 
 static void add_table(struct builder *b, const int *local, const struct curve *curve)
@@ -461,7 +466,7 @@ static void find_range(struct builder *b)
         }
     }
     if (map->is_assumed) {
-        spread += 2 + (map->high - map->low) / 2 + fmin(drive * ohms, 100);
+        spread += 100 + 10 * (map->high - map->low) + fmin(drive * ohms, 1e3);
     }
     map->low -= spread;
     map->high += spread;
@@ -472,7 +477,7 @@ static void find_range(struct builder *b)
 
 bool network_build(struct arena *arena, const struct system *system, struct network_map *map)
 {
-    struct builder b = {arena, system, map, false};
+    struct builder b = {.arena = arena, .system = system, .map = map};
     const struct circuit *circuit = system->circuit;
     int count;
     *map = (struct network_map){0};

@@ -43,9 +43,14 @@ static bool begin_work(struct states_work *w, struct operating_point *point, str
 {
     *w = (struct states_work){
         .point = point, .system = point->system, .arena = arena, .options = options};
+    w->is_large = w->system->circuit->instance_count > STATES_PART_LIMIT;
+    if (w->is_large) {
+        return true;
+    }
     if (!network_build(arena, w->system, &w->map)) {
         return false;
     }
+    w->is_large = w->map.network->node_count > STATES_NODE_LIMIT;
     w->nodes = arena_new_array(arena, double, w->map.network->node_count);
     w->x = arena_new_array(arena, double, w->system->n);
     return w->nodes != NULL && w->x != NULL;
@@ -105,10 +110,20 @@ bool states_certify(struct operating_point *p, struct result *result)
     if (found == NULL || state == NULL || !begin_work(&w, p, result->arena, &options)) {
         return false;
     }
+    if (!put_state(&w, p->x, state)) {
+        return false;
+    }
+    found->states = state;
+    found->state_count = 1;
+    found->push = NAN;
+    result->states = found;
+    if (w.is_large) {
+        return true;
+    }
     const struct search_options plain = {0};
     struct search *search = search_create(w.map.network, &plain);
     int index;
-    if (search == NULL || !put_state(&w, p->x, state)) {
+    if (search == NULL) {
         return false;
     }
     network_from_system(&w.map, p->x, w.nodes);
@@ -120,10 +135,6 @@ bool states_certify(struct operating_point *p, struct result *result)
             return false;
         }
     }
-    found->states = state;
-    found->state_count = 1;
-    found->push = NAN;
-    result->states = found;
     return true;
 }
 
@@ -280,6 +291,17 @@ static enum status find_states(struct states_work *w, struct states_result *foun
     return status;
 }
 
+/* Nothing can be proved: the one state known, and why there is no more. */
+static bool put_large(const struct states_work *w, struct states_result *found)
+{
+    found->is_large = true;
+    found->startup = STARTUP_AT_RISK;
+    found->reasons[found->reason_count++] = "the cell is too large for the proof";
+    found->states = arena_new(w->arena, struct state_result);
+    found->state_count = 1;
+    return found->states != NULL && put_state(w, w->wanted, found->states);
+}
+
 static enum status work_all(struct operating_point *point, const struct analysis_options *options,
                             struct result *result)
 {
@@ -291,6 +313,15 @@ static enum status work_all(struct operating_point *point, const struct analysis
     }
     memcpy(wanted, point->x, (size_t)point->system->n * sizeof *wanted);
     w.wanted = wanted;
+    found->push = found->push_at = found->push_off = found->ramp_break = NAN;
+    found->ramp_state = -1;
+    found->probe_unknown = -1;
+    found->push_bound = options->leakage;
+    found->box_limit = options->boxes;
+    result->states = found;
+    if (w.is_large) {
+        return put_large(&w, found) ? STATUS_OK : STATUS_MEMORY;
+    }
     const struct search_options search = {.box_limit = options->boxes,
                                           .refine = refine,
                                           .refine_self = &w,
@@ -305,12 +336,6 @@ static enum status work_all(struct operating_point *point, const struct analysis
     found->low = w.map.low;
     found->high = w.map.high;
     found->is_assumed = w.map.is_assumed;
-    found->box_limit = options->boxes;
-    found->push = found->push_at = found->push_off = found->ramp_break = NAN;
-    found->push_bound = options->leakage;
-    found->ramp_state = -1;
-    found->probe_unknown = -1;
-    result->states = found;
     enum status status = find_states(&w, found);
     if (status == STATUS_OK) {
         status = startup_judge(&w, found);
@@ -424,6 +449,9 @@ bool states_glance(struct operating_point *p, struct result *result)
     }
     memcpy(wanted, p->x, (size_t)p->system->n * sizeof *wanted);
     w.wanted = wanted;
+    if (w.is_large) {
+        return true;
+    }
     if (!loops_find(w.arena, w.system, &w.map, &w.loop)) {
         return false;
     }

@@ -7,6 +7,9 @@
 
 #include "analyses/operating_point.h"
 
+/* The proofs work on full matrices. */
+enum { STATES_NODE_LIMIT = 250, STATES_PART_LIMIT = 2000 };
+
 struct state_result {
     bool is_certified;
     bool can_hold;            /* the sign of the determinant does not forbid it */
@@ -44,6 +47,7 @@ struct states_result {
     struct state_result *states; /* [state_count] rising power */
     int state_count;
     bool is_complete;
+    bool is_large; /* more than STATES_NODE_LIMIT unknown nodes: nothing was tried */
     long boxes, box_limit;
     double low, high; /* V: where states were looked for */
     bool is_assumed;  /* that range is a choice: see network_build.h */

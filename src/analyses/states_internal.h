@@ -17,6 +17,7 @@ struct states_work {
     struct arena *arena; /* of the result */
     const struct analysis_options *options;
     struct network_map map;
+    bool is_large; /* beyond the limits of states.h: map is empty */
     struct search *search;
     struct loop loop;
     const double *wanted; /* [n] the wanted state */

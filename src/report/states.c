@@ -36,6 +36,15 @@ static void proof_part(struct layout *layout, const struct states_result *found)
         layout_format(layout, "%s to %s", show_value(layout, found->low, DIMENSION_VOLTAGE),
                       show_value(layout, found->high, DIMENSION_VOLTAGE));
     layout_part(layout, "states");
+    if (found->is_large) {
+        layout_paragraph(
+            layout, TONE_WARN, 0,
+            layout_format(layout,
+                          "nothing proved: the proof takes cells of at most %d devices "
+                          "and %d unknown nodes",
+                          STATES_PART_LIMIT, STATES_NODE_LIMIT));
+        return;
+    }
     if (found->is_complete) {
         layout_paragraph(layout, TONE_GOOD, 0,
                          layout_format(layout,
@@ -290,7 +299,7 @@ void report_states(const struct result *result, const struct report_style *style
         }
         state_lines(&layout, found);
         undecided_part(&layout, found);
-        if (!style->stopped) {
+        if (!style->stopped && !found->is_large) {
             startup_part(&layout, found);
         }
     } else if (!result->point.solver.converged && !style->stopped) {
