@@ -237,8 +237,10 @@ enum status startup_push(struct states_work *w, int points, double *push)
     if (x == NULL) {
         return STATUS_MEMORY;
     }
-    return w->loop.probe < 0 ? STATUS_OK
-                             : least_push(w, w->wanted, off_end(w), points, push, &at, x);
+    if (w->loop.probe < 0 || fabs(probe_voltage(w, w->wanted) - off_end(w)) < 1e-3) {
+        return STATUS_OK;
+    }
+    return least_push(w, w->wanted, off_end(w), points, push, &at, x);
 }
 
 /* --- the start-up branch
@@ -329,6 +331,7 @@ static enum status find_starters(struct states_work *w, struct states_result *fo
     return status;
 }
 
+/* The push of the loop out of its off end; none where the wanted state is that end. */
 static enum status judge_push(struct states_work *w, struct states_result *found)
 {
     double *x = arena_new_array(w->arena, double, w->system->n);
@@ -339,6 +342,10 @@ static enum status judge_push(struct states_work *w, struct states_result *found
         return STATUS_OK;
     }
     found->push_off = off_end(w);
+    found->rests_off = fabs(probe_voltage(w, w->wanted) - found->push_off) < 1e-3;
+    if (found->rests_off) {
+        return STATUS_OK;
+    }
     enum status status =
         least_push(w, w->wanted, found->push_off, WAY_POINTS, &found->push, &found->push_at, x);
     return status == STATUS_OK && isfinite(found->push) ? find_starters(w, found, x) : status;
@@ -368,7 +375,11 @@ static bool holds_at(struct states_work *w, int instance, int parameter, double 
     const size_t size = (size_t)w->system->n * sizeof *x;
     system_set(w->system, instance, parameter, volts);
     memcpy(w->point->x, x, size);
-    if (operating_point_newton(w->point) != NEWTON_CONVERGED) {
+    const enum newton_status status = operating_point_newton(w->point);
+    if (status != NEWTON_CONVERGED) {
+        w->broken = status == NEWTON_MEMORY    ? STATUS_MEMORY
+                    : status == NEWTON_STOPPED ? STATUS_STOPPED
+                                               : w->broken;
         *reason = "the state ends";
         return false;
     }
@@ -410,7 +421,7 @@ static enum status lower_rail(struct states_work *w, struct states_result *found
     system_set(w->system, rail->instance, parameter, full);
     found->supplies[found->supply_count++] =
         (struct supply_result){rail, good, isfinite(bad) ? reason : NULL};
-    return STATUS_OK;
+    return w->broken;
 }
 
 static enum status lower_supplies(struct states_work *w, struct states_result *found)

@@ -31,7 +31,9 @@ static bool refine(void *self, double *nodes)
     struct states_work *w = self;
     memset(w->x, 0, (size_t)w->system->n * sizeof *w->x);
     network_to_system(&w->map, w->system->node_count, nodes, w->x);
-    if (states_settle(w->point, w->x) != STATUS_OK) {
+    const enum status status = states_settle(w->point, w->x);
+    if (status != STATUS_OK) {
+        w->broken = status == STATUS_UNSOLVED ? w->broken : status;
         return false;
     }
     network_from_system(&w->map, w->point->x, nodes);
@@ -203,7 +205,7 @@ static enum status put_states(struct states_work *w, struct states_result *found
         memcpy(w->nodes, search->states[k].centre,
                (size_t)w->map.network->node_count * sizeof *w->nodes);
         if (!refine(w, w->nodes)) {
-            return STATUS_UNSOLVED; /* cannot be: it came from there */
+            return w->broken == STATUS_OK ? STATUS_UNSOLVED : w->broken;
         }
         if (!put_state(w, w->point->x, &state)) {
             return STATUS_MEMORY;
@@ -276,6 +278,7 @@ static enum status find_states(struct states_work *w, struct states_result *foun
     }
     if (status == STATUS_OK) {
         status = search_run(w->search);
+        status = w->broken == STATUS_OK ? status : w->broken;
     }
     const struct search_result *search = search_found(w->search);
     found->boxes = search->boxes;
@@ -403,6 +406,9 @@ enum status analysis_states(struct circuit *circuit, const struct analysis_optio
         status = work_all(&point, options, *result);
     }
     system_free(system);
+    if (*result != NULL) {
+        (*result)->is_stopped = status == STATUS_STOPPED;
+    }
     if (status == STATUS_MEMORY || *result == NULL || arena_failed((*result)->arena)) {
         result_free(*result);
         *result = NULL;

@@ -71,6 +71,7 @@ struct states_result {
     double push_at;    /* V of the probe there */
     double push_off;   /* V of the probe where the way begins */
     double push_bound; /* A */
+    bool rests_off;    /* the wanted state is the off end of the loop: there is no way to push */
     enum startup startup;
     const char *reasons[6]; /* for "at risk" */
     int reason_count;

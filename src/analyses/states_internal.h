@@ -20,6 +20,7 @@ struct states_work {
     bool is_large; /* beyond the limits of states.h: map is empty */
     struct search *search;
     struct loop loop;
+    enum status broken;   /* STATUS_MEMORY or STATUS_STOPPED inside a search for states */
     const double *wanted; /* [n] the wanted state */
     double *nodes;        /* [network node_count] scratch */
     double *x;            /* [n] scratch */

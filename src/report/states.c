@@ -10,12 +10,12 @@
 
 enum { STATES_ABREAST = 5 };
 
-/* "3.1 pV"; what is held needs no proof. */
+/* "±4 pV": one digit, rounded up, since only the order of it says something. */
 static const char *width_text(struct layout *layout, double half)
 {
-    return half > 0
-               ? layout_format(layout, "within ±%s", show_value(layout, half, DIMENSION_VOLTAGE))
-               : "held";
+    const double unit = half > 0 ? pow(10, floor(log10(half))) : 1;
+    return layout_format(layout, "±%s",
+                         show_round(layout, ceil(half / unit) * unit, DIMENSION_VOLTAGE));
 }
 
 static const char *state_name(struct layout *layout, int k)
@@ -55,12 +55,17 @@ static void proof_part(struct layout *layout, const struct states_result *found)
                          layout_format(layout, "%s found; not proved that these are all",
                                        count_text(layout, found)));
     }
+    if (!found->is_complete) {
+        layout_paragraph(layout, TONE_QUIET, 0,
+                         layout_format(layout, "looked for at node voltages from %s", range));
+    }
     if (found->is_assumed) {
         layout_paragraph(layout, TONE_QUIET, 0,
                          "that range is a choice: a current source, law or table could push a "
                          "node further");
     } else {
-        layout_paragraph(layout, TONE_QUIET, 0, "no node of these devices can lie outside it");
+        layout_paragraph(layout, TONE_QUIET, 0,
+                         "no node of a cell of these devices can lie outside that range");
     }
 }
 
@@ -113,8 +118,8 @@ static void state_lines(struct layout *layout, const struct states_result *found
         const struct state_result *state = &found->states[k];
         const char *proof =
             state->is_certified
-                ? layout_format(layout, "proved unique within ±%s at every node",
-                                show_value(layout, state->widest, DIMENSION_VOLTAGE))
+                ? layout_format(layout, "proved unique within %s at every node",
+                                width_text(layout, state->widest))
                 : "found, but not certified: the equations are nearly singular there";
         layout_line(layout, state->can_hold ? TONE_PLAIN : TONE_WARN,
                     layout_format(layout, "%s: %s%s%s", state_name(layout, k), proof,
@@ -177,6 +182,8 @@ static void loop_lines(struct layout *layout, const struct states_result *found)
                                        layout_clean(layout, found->probe),
                                        show_value(layout, found->push_at, DIMENSION_VOLTAGE),
                                        show_value(layout, found->push_off, DIMENSION_VOLTAGE)));
+    } else if (found->rests_off) {
+        layout_paragraph(layout, TONE_PLAIN, 0, "the wanted state is the off end of that loop");
     } else {
         layout_paragraph(layout, TONE_PLAIN, 0,
                          "no start-up push: the loop could not be followed from its off end");
@@ -267,8 +274,8 @@ void page_certificate(struct layout *layout, const struct result *result)
         return;
     }
     layout_line(layout, TONE_GOOD,
-                layout_format(layout, "proved unique within ±%s",
-                              show_value(layout, found->states[0].widest, DIMENSION_VOLTAGE)));
+                layout_format(layout, "proved unique within %s",
+                              width_text(layout, found->states[0].widest)));
     table_begin(&table, layout);
     table_column(&table, (struct table_column){.head = ""});
     table_column(&table, (struct table_column){.head = "", .right = true});
@@ -276,7 +283,8 @@ void page_certificate(struct layout *layout, const struct result *result)
         if (!c->nodes[k].is_hidden) {
             table_row(&table, TONE_STRONG);
             table_cell(&table, 0, layout_clean(layout, c->nodes[k].name));
-            table_cell(&table, 1, width_text(layout, found->states[0].half_width[k - 1]));
+            const double half = found->states[0].half_width[k - 1];
+            table_cell(&table, 1, half > 0 ? width_text(layout, half) : "held");
         }
     }
     table_write(&table);
