@@ -253,28 +253,54 @@ static bool put_uncertified(struct states_work *w, struct states_result *found)
     return put_state(w, w->wanted, &found->states[found->state_count++]);
 }
 
-static enum status find_states(struct states_work *w, struct states_result *found)
+/* States on the curve of the open loop, from the wanted one. */
+static enum status follow_loop(struct states_work *w, struct states_result *found)
 {
     struct loop_curve curve = {0};
-    int index;
-    if (!loops_find(w->arena, w->system, &w->map, &w->loop)) {
-        return STATUS_MEMORY;
+    const enum status status = startup_curve(w, CURVE_POINTS, &curve);
+    found->curve_v = curve.v;
+    found->curve_push = curve.push;
+    found->curve_count = curve.count;
+    return status == STATUS_OK ? collect_crossings(w, &curve) : status;
+}
+
+/* Where `point` finds none, the state of the largest power that can be held is the wanted one. */
+static enum status choose_wanted(struct states_work *w, struct states_result *found)
+{
+    found->wanted = found->state_count - 1;
+    for (int k = 0; k < found->state_count; k++) {
+        found->wanted = found->states[k].can_hold ? k : found->wanted;
     }
+    if (found->wanted < 0) {
+        return STATUS_UNSOLVED;
+    }
+    w->wanted = found->states[found->wanted].x;
+    return follow_loop(w, found);
+}
+
+static void put_loop(const struct states_work *w, struct states_result *found)
+{
     found->has_loop = w->loop.found;
     found->loop_unsure = w->loop.unsure;
     found->loop_path = w->loop.path;
     found->probe_unknown = w->loop.probe;
-    network_from_system(&w->map, w->wanted, w->nodes);
-    search_add(w->search, w->nodes, &index);
-    enum status status = startup_curve(w, CURVE_POINTS, &curve);
-    if (status == STATUS_OK) {
-        found->curve_v = curve.v;
-        found->curve_push = curve.push;
-        found->curve_count = curve.count;
-        status = collect_crossings(w, &curve);
-    }
     if (w->loop.probe >= 0) {
         found->probe = w->system->circuit->nodes[w->loop.probe + 1].name;
+    }
+}
+
+static enum status find_states(struct states_work *w, struct states_result *found)
+{
+    enum status status = STATUS_OK;
+    int index;
+    if (!loops_find(w->arena, w->system, &w->map, &w->loop)) {
+        return STATUS_MEMORY;
+    }
+    put_loop(w, found);
+    if (w->wanted != NULL) {
+        network_from_system(&w->map, w->wanted, w->nodes);
+        search_add(w->search, w->nodes, &index);
+        status = follow_loop(w, found);
     }
     if (status == STATUS_OK) {
         status = search_run(w->search);
@@ -283,15 +309,19 @@ static enum status find_states(struct states_work *w, struct states_result *foun
     const struct search_result *search = search_found(w->search);
     found->boxes = search->boxes;
     found->is_complete = status == STATUS_OK && search->complete;
-    if (status == STATUS_OK || status == STATUS_STOPPED) {
-        const enum status put = put_states(w, found);
-        status = put == STATUS_OK ? status : put;
+    if (status != STATUS_OK && status != STATUS_STOPPED) {
+        return status;
     }
-    if ((status == STATUS_OK || status == STATUS_STOPPED) &&
-        (!put_undecided(w, found) || !put_uncertified(w, found))) {
-        return STATUS_MEMORY;
+    enum status put = put_states(w, found);
+    if (put == STATUS_OK && !put_undecided(w, found)) {
+        put = STATUS_MEMORY;
     }
-    return status;
+    if (put == STATUS_OK && w->wanted == NULL) {
+        put = choose_wanted(w, found);
+    } else if (put == STATUS_OK && !put_uncertified(w, found)) {
+        put = STATUS_MEMORY;
+    }
+    return put == STATUS_OK ? status : put;
 }
 
 /* Nothing can be proved: the one state known, and why there is no more. */
@@ -305,8 +335,9 @@ static bool put_large(const struct states_work *w, struct states_result *found)
     return found->states != NULL && put_state(w, w->wanted, found->states);
 }
 
-static enum status work_all(struct operating_point *point, const struct analysis_options *options,
-                            struct result *result)
+/* has_point: `point` holds a state; else the search is all there is. */
+static enum status work_all(struct operating_point *point, bool has_point,
+                            const struct analysis_options *options, struct result *result)
 {
     struct states_work w;
     struct states_result *found = arena_new(result->arena, struct states_result);
@@ -315,13 +346,16 @@ static enum status work_all(struct operating_point *point, const struct analysis
         return STATUS_MEMORY;
     }
     memcpy(wanted, point->x, (size_t)point->system->n * sizeof *wanted);
-    w.wanted = wanted;
+    w.wanted = has_point ? wanted : NULL;
     found->push = found->push_at = found->push_off = found->ramp_break = NAN;
     found->ramp_state = -1;
     found->probe_unknown = -1;
     found->push_bound = options->leakage;
     found->box_limit = options->boxes;
     result->states = found;
+    if (w.is_large && !has_point) {
+        return STATUS_UNSOLVED;
+    }
     if (w.is_large) {
         return put_large(&w, found) ? STATUS_OK : STATUS_MEMORY;
     }
@@ -385,6 +419,47 @@ static struct result *new_result(const struct circuit *circuit,
     return result;
 }
 
+/* The search found what `point` did not: its wanted state becomes the point of the result. */
+static enum status adopt_point(struct operating_point *point, const struct states_result *found)
+{
+    const enum status status = states_settle(point, found->states[found->wanted].x);
+    if (status == STATUS_OK) {
+        point->solver.method = "search for all states";
+        point->solver.trouble = point->solver.advice = NULL;
+    }
+    return status;
+}
+
+static bool put_point(struct operating_point *point, struct result *result)
+{
+    keep_solver(result, &point->solver);
+    result->verdict = VERDICT_NO_REQUIREMENTS;
+    return measure_point(point, result->arena, &result->point) && remarks_add(point, result);
+}
+
+static enum status find_all(struct operating_point *point, const struct analysis_options *options,
+                            struct result *result)
+{
+    enum status status = operating_point_find(point);
+    const bool has_point = status == STATUS_OK;
+    if (status != STATUS_OK && status != STATUS_UNSOLVED) {
+        return status;
+    }
+    keep_solver(result, &point->solver);
+    if (has_point && !put_point(point, result)) {
+        return STATUS_MEMORY;
+    }
+    status = work_all(point, has_point, options, result);
+    const struct states_result *found = result->states;
+    if ((status == STATUS_OK || status == STATUS_STOPPED) && !has_point && found->state_count > 0) {
+        const enum status adopted = adopt_point(point, found);
+        if (adopted == STATUS_MEMORY || (adopted == STATUS_OK && !put_point(point, result))) {
+            return STATUS_MEMORY;
+        }
+    }
+    return status;
+}
+
 enum status analysis_states(struct circuit *circuit, const struct analysis_options *options,
                             struct result **result)
 {
@@ -394,26 +469,17 @@ enum status analysis_states(struct circuit *circuit, const struct analysis_optio
     *result = new_result(circuit, options);
     enum status status = STATUS_MEMORY;
     if (*result != NULL && system != NULL && operating_point_create(&point, system, options)) {
-        status = operating_point_find(&point);
-        keep_solver(*result, &point.solver);
+        status = find_all(&point, options, *result);
     }
-    if (status == STATUS_OK && (!measure_point(&point, (*result)->arena, &(*result)->point) ||
-                                !remarks_add(&point, *result))) {
-        status = STATUS_MEMORY;
-    }
-    if (status == STATUS_OK) {
-        (*result)->verdict = VERDICT_NO_REQUIREMENTS;
-        status = work_all(&point, options, *result);
-    }
+    const bool texts_failed = system != NULL && arena_failed(system->arena);
     system_free(system);
-    if (*result != NULL) {
-        (*result)->is_stopped = status == STATUS_STOPPED;
-    }
-    if (status == STATUS_MEMORY || *result == NULL || arena_failed((*result)->arena)) {
+    if (status == STATUS_MEMORY || texts_failed || *result == NULL ||
+        arena_failed((*result)->arena)) {
         result_free(*result);
         *result = NULL;
         return STATUS_MEMORY;
     }
+    (*result)->is_stopped = status == STATUS_STOPPED;
     return status;
 }
 

@@ -264,8 +264,8 @@ void report_json(const struct result *result, const char *version, struct buffer
         put_hands(&writer, root, result);
         put_requirements(&writer, root, result);
         put_sweeps(&writer, root, result);
-        json_put_states(&writer, root, result);
     }
+    json_put_states(&writer, root, result);
     put_cautions(&writer, root, &result->cautions);
     finish(&writer, root, out);
 }

@@ -136,5 +136,7 @@ void json_put_states(struct writer *writer, json_t *root, const struct result *r
     put(writer, root, "complete", json_boolean(found->is_complete));
     put_search(writer, root, found);
     put_loop(writer, root, found);
-    put_startup(writer, root, found);
+    if (found->state_count > 0) {
+        put_startup(writer, root, found);
+    }
 }

@@ -110,8 +110,12 @@ static void state_rows(struct layout *layout, const struct result *result, int f
 }
 
 /* One line a state: what is proved of it. */
-static void state_lines(struct layout *layout, const struct states_result *found)
+static void state_lines(struct layout *layout, const struct result *result)
 {
+    const struct states_result *found = result->states;
+    const bool by_point = strcmp(result->point.solver.method, "search for all states") != 0;
+    const char *wanted =
+        by_point ? "; the wanted one: `point` shows it" : "; taken as the wanted one";
     bool all_hold = true;
     layout_gap(layout);
     for (int k = 0; k < found->state_count; k++) {
@@ -124,7 +128,7 @@ static void state_lines(struct layout *layout, const struct states_result *found
         layout_line(layout, state->can_hold ? TONE_PLAIN : TONE_WARN,
                     layout_format(layout, "%s: %s%s%s", state_name(layout, k), proof,
                                   state->can_hold ? "" : "; cannot be held",
-                                  k == found->wanted ? "; the one that `point` shows" : ""));
+                                  k == found->wanted ? wanted : ""));
         all_hold = all_hold && state->can_hold;
     }
     layout_paragraph(layout, TONE_QUIET, 0,
@@ -290,6 +294,20 @@ void page_certificate(struct layout *layout, const struct result *result)
     table_write(&table);
 }
 
+/* The search came to an end and found nothing: that is a proof too. */
+static void no_state_part(struct layout *layout, const struct states_result *found)
+{
+    if (found != NULL && found->is_complete) {
+        layout_part(layout, "states");
+        layout_paragraph(layout, TONE_BAD, 0,
+                         layout_format(layout, "none: proved for all node voltages from %s to %s",
+                                       show_value(layout, found->low, DIMENSION_VOLTAGE),
+                                       show_value(layout, found->high, DIMENSION_VOLTAGE)));
+    } else if (found != NULL) {
+        undecided_part(layout, found);
+    }
+}
+
 void report_states(const struct result *result, const struct report_style *style,
                    struct buffer *out)
 {
@@ -305,12 +323,13 @@ void report_states(const struct result *result, const struct report_style *style
             const int left = found->state_count - first;
             state_rows(&layout, result, first, left < STATES_ABREAST ? left : STATES_ABREAST);
         }
-        state_lines(&layout, found);
+        state_lines(&layout, result);
         undecided_part(&layout, found);
         if (!style->stopped && !found->is_large) {
             startup_part(&layout, found);
         }
     } else if (!result->point.solver.converged && !style->stopped) {
+        no_state_part(&layout, found);
         page_unsolved(&layout, result);
     }
     page_evidence(&layout, result);
