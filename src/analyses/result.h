@@ -117,6 +117,8 @@ struct sweep_table {
     int series_count;
 };
 
+struct states_result; /* states.h */
+
 /* Everything one run found. Parts that a command does not make are empty. */
 struct result {
     struct arena *arena;
@@ -136,6 +138,7 @@ struct result {
     struct sweep_table *sweeps;
     int sweep_count;
     struct caution_list cautions;
+    struct states_result *states; /* of `states`, or of one certified point; NULL: none */
 };
 
 #endif

@@ -94,6 +94,19 @@ enum status request_temperature(struct cell *cell, const char *text, double *kel
                                                                                   : STATUS_INPUT;
 }
 
+enum status request_current(struct cell *cell, const char *name, const char *text, double *amperes)
+{
+    const struct expression *expression = NULL;
+    const struct expression_scope scope = {.find = find_nothing, .thermal_voltage = NAN};
+    enum status status = read_expression(cell, name, text, &expression);
+    if (status != STATUS_OK) {
+        return status;
+    }
+    return expression_wanted(expression, &scope, DIMENSION_CURRENT, &cell->diagnostics, amperes)
+               ? STATUS_OK
+               : STATUS_INPUT;
+}
+
 enum status request_sweep(struct cell *cell, const struct circuit *circuit, const char *text,
                           struct sweep *sweep)
 {
