@@ -79,8 +79,17 @@ void diagnostics_print(const struct diagnostics *diagnostics, const struct sourc
 /*
  * near_name: the candidate that a mistyped name most likely meant, or NULL when none is near
  * (Damerau-Levenshtein distance in the restricted form, at most a third of the length, at least 1;
- * letter case alone counts half).
+ * letter case alone counts half; a name that differs in nothing else is always near).
  */
 const char *near_name(const char *wanted, const char *const *candidates, int count);
+
+/* "did you mean 'NAME'?" with the near name, else `otherwise` (may be NULL). */
+const char *hint_near(struct arena *arena, const char *wanted, const char *const *candidates,
+                      int count, const char *otherwise);
+
+/* "BEFOREa, b, c" with at most HINT_LIST_LIMIT names, each once; `otherwise` for an empty list. */
+enum { HINT_LIST_LIMIT = 24 };
+const char *hint_list(struct arena *arena, const char *before, const char *const *names, int count,
+                      const char *otherwise);
 
 #endif

@@ -52,6 +52,16 @@ static int distance(const char *a, int m, const char *b, int n)
     return last[n];
 }
 
+/* Whether two names differ only in case. */
+static bool same_letters(const char *a, const char *b)
+{
+    while (*a != '\0' && lower(*a) == lower(*b)) {
+        a++;
+        b++;
+    }
+    return *a == *b;
+}
+
 const char *near_name(const char *wanted, const char *const *candidates, int count)
 {
     size_t length = strlen(wanted);
@@ -62,6 +72,11 @@ const char *near_name(const char *wanted, const char *const *candidates, int cou
     int limit = m < 3 ? WHOLE : WHOLE * m / 3;
     if (m == 1) {
         limit = HALF; /* another single letter is not near */
+    }
+    for (int k = 0; k < count; k++) {
+        if (strcmp(wanted, candidates[k]) != 0 && same_letters(wanted, candidates[k])) {
+            return candidates[k];
+        }
     }
     const char *best = NULL;
     for (int k = 0; k < count; k++) {
@@ -77,4 +92,39 @@ const char *near_name(const char *wanted, const char *const *candidates, int cou
         }
     }
     return best;
+}
+
+const char *hint_near(struct arena *arena, const char *wanted, const char *const *candidates,
+                      int count, const char *otherwise)
+{
+    const char *near = near_name(wanted, candidates, count);
+    return near == NULL ? otherwise : arena_format(arena, "did you mean '%s'?", near);
+}
+
+static bool listed_before(const char *const *names, int index)
+{
+    for (int k = 0; k < index; k++) {
+        if (strcmp(names[k], names[index]) == 0) {
+            return true;
+        }
+    }
+    return false;
+}
+
+const char *hint_list(struct arena *arena, const char *before, const char *const *names, int count,
+                      const char *otherwise)
+{
+    const char *text = NULL;
+    int shown = 0;
+    for (int k = 0; k < count && shown < HINT_LIST_LIMIT; k++) {
+        if (!listed_before(names, k)) {
+            text = shown == 0 ? arena_format(arena, "%s%s", before, names[k])
+                              : arena_format(arena, "%s, %s", text, names[k]);
+            shown++;
+            if (text == NULL) {
+                return NULL;
+            }
+        }
+    }
+    return shown == 0 ? otherwise : text;
 }

@@ -3,6 +3,8 @@
  */
 #include "circuit/build.h"
 
+#include <math.h>
+#include <stdio.h>
 #include <string.h>
 
 static bool is_plain(struct dimension dimension)
@@ -16,7 +18,6 @@ static bool read_as(struct builder *b, const struct expression *e, struct dimens
 {
     const struct frame top = {.builder = b, .prefix = ""};
     struct expression_scope scope = frame_scope(&top);
-    frame_names(&top, &scope);
     if (e == NULL) {
         return false;
     }
@@ -75,9 +76,15 @@ static bool read_tolerance(struct builder *b, const struct expression *e, struct
 {
     const struct frame top = {.builder = b, .prefix = ""};
     struct expression_scope scope = frame_scope(&top);
-    frame_names(&top, &scope);
     struct quantity found;
     if (e == NULL || !expression_value(e, &scope, b->diagnostics, &found)) {
+        return false;
+    }
+    if (found.bare && !is_plain(r->probe.dimension)) {
+        char number[40], hint[80];
+        number_exact(found.value, number, sizeof number);
+        (void)snprintf(hint, sizeof hint, "write '%s%%', or give it a unit", number);
+        diagnostics_add(b->diagnostics, e->span, hint, "a tolerance is a share or has a unit");
         return false;
     }
     const bool is_share = is_plain(found.dimension) && !found.bare;
@@ -141,7 +148,6 @@ static bool read_knob(struct builder *b, const struct knob *knob, const struct e
     if (e != NULL && knob->kind == KNOB_LET && b->circuit->lets[knob->parameter].value.bare) {
         const struct frame top = {.builder = b, .prefix = ""};
         struct expression_scope scope = frame_scope(&top);
-        frame_names(&top, &scope);
         struct quantity found;
         if (!expression_value(e, &scope, b->diagnostics, &found)) {
             return false;
@@ -179,12 +185,22 @@ static bool read_range(struct builder *b, const struct knob *knob,
            in_range(b, knob, *to, statement->to->span);
 }
 
+static bool is_same_knob(const struct knob *a, const struct knob *b)
+{
+    return a->kind == b->kind && a->instance == b->instance && a->parameter == b->parameter;
+}
+
 static bool read_family(struct builder *b, const struct statement *statement, struct sweep *sweep)
 {
     struct circuit *c = b->circuit;
     sweep->has_family = true;
     if (!circuit_knob(c, statement->thing2.text, statement->thing2.span, b->diagnostics,
                       &sweep->family)) {
+        return false;
+    }
+    if (is_same_knob(&sweep->knob, &sweep->family)) {
+        diagnostics_add(b->diagnostics, statement->thing2.span, NULL, "%s is already swept",
+                        statement->thing2.text);
         return false;
     }
     sweep->family_values = arena_new_array(c->arena, double, statement->value_count);
@@ -225,6 +241,10 @@ static bool read_sweep(struct builder *b, const struct statement *statement, str
             diagnostics_add(b->diagnostics, statement->points->span, NULL,
                             "a sweep has 2 to %d points", CIRCUIT_POINT_LIMIT);
             good = false;
+        } else if (good && points != floor(points)) {
+            diagnostics_add(b->diagnostics, statement->points->span, NULL,
+                            "the number of points is a whole number");
+            good = false;
         } else if (good) {
             sweep->points = (int)points;
         }
@@ -235,8 +255,8 @@ static bool read_sweep(struct builder *b, const struct statement *statement, str
                               &sweep->shown[k]);
     }
     sweep->shown_count = statement->word_count;
-    if (statement->thing2.text != NULL) {
-        good &= read_family(b, statement, sweep);
+    if (good && statement->thing2.text != NULL) {
+        good = read_family(b, statement, sweep);
     }
     return good && sweep->shown != NULL && count_values(b, sweep);
 }
@@ -304,6 +324,14 @@ static bool add_condition(struct builder *b, const struct statement *statement)
                !read_range(b, &condition.knob, statement, &condition.from, &condition.to)) {
         return true;
     }
+    for (int k = 0; k < c->condition_count; k++) {
+        if (is_same_knob(&c->conditions[k].knob, &condition.knob)) {
+            diagnostics_add(b->diagnostics, statement->name.span, NULL,
+                            "%s is already varied on line %d", statement->name.text,
+                            source_line(&b->cell->sources, c->conditions[k].where));
+            return true;
+        }
+    }
     struct condition *list = arena_grow(b->arena, c->conditions, c->condition_count,
                                         &c->condition_capacity, sizeof *list);
     if (list == NULL) {
@@ -352,10 +380,9 @@ static void check_quiet(struct builder *b, const struct statement *statement)
         }
     }
     if (count >= 0) {
-        const char *near = near_name(code->text, b->known, count);
         diagnostics_add(b->diagnostics, code->span,
-                        near == NULL ? "the codes stand beside the cautions of a review"
-                                     : arena_format(b->arena, "did you mean '%s'?", near),
+                        hint_near(b->arena, code->text, b->known, count,
+                                  "the codes stand beside the cautions of a review"),
                         "there is no caution '%s'", code->text);
     }
     static const enum name_sort sorts[] = {NAME_INSTANCE, NAME_NODE, NAME_OUTPUT, NAME_MODEL,
@@ -368,9 +395,8 @@ static void check_quiet(struct builder *b, const struct statement *statement)
         count += names_list(names, sorts[k], b->known + count, LIST_LIMIT - count);
     }
     if (name->text != NULL) {
-        const char *near = near_name(name->text, b->known, count);
         diagnostics_add(b->diagnostics, name->span,
-                        near == NULL ? NULL : arena_format(b->arena, "did you mean '%s'?", near),
+                        hint_near(b->arena, name->text, b->known, count, NULL),
                         "nothing is called '%s'", name->text);
     }
 }

@@ -14,8 +14,9 @@
 struct expression_scope {
     bool (*find)(void *self, const char *name, struct span where, struct quantity *value);
     void *self;
-    const char *const *names; /* all names known, for near names; may be NULL */
-    int name_count;
+    /* All names known, for near names: fills *names, returns how many; asked only when a name is
+     * unknown. NULL: none. */
+    int (*list)(void *self, const char *const **names);
     double thermal_voltage; /* kT/q at the cell's temperature, V */
 };
 
@@ -32,7 +33,7 @@ bool expression_wanted(const struct expression *expression, const struct express
                        struct dimension wanted, struct diagnostics *diagnostics, double *value);
 
 /* An absolute temperature in K. A plain number is kelvin; below 100 K it is an error that suggests
- * C. Never below 0 K. */
+ * C. Never below 0 K, at most 1000 K. */
 bool expression_temperature(const struct expression *expression,
                             const struct expression_scope *scope, struct diagnostics *diagnostics,
                             double *kelvin);
