@@ -4,6 +4,8 @@
 #ifndef ANALYSES_ANALYSIS_H
 #define ANALYSES_ANALYSIS_H
 
+#include <stdint.h>
+
 #include "analyses/result.h"
 #include "base/status.h"
 
@@ -15,6 +17,11 @@ struct analysis_options {
     void (*progress)(void *self, const char *what, double share); /* NULL: none */
     void *progress_self;
     struct sweep *extra_sweep; /* a sweep given by options, for analysis_sweep; NULL: the cell's */
+    bool all_conditions; /* analysis_review: reads every quantity that the cell asks for over all
+                            `vary` conditions, not only those of `everywhere` lines */
+    int jobs;            /* threads; 0: one a processor */
+    int samples;         /* analysis_spread: 0 leaves the sampled part out */
+    uint64_t seed;
 };
 
 /*
@@ -29,6 +36,9 @@ enum status analysis_review(struct circuit *circuit, const struct analysis_optio
                             struct result **result);
 enum status analysis_sweep(struct circuit *circuit, const struct analysis_options *options,
                            struct result **result);
+/* Review, then conditions, mismatch and yield. */
+enum status analysis_spread(struct circuit *circuit, const struct analysis_options *options,
+                            struct result **result);
 void result_free(struct result *result);
 
 #endif

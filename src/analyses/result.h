@@ -97,6 +97,9 @@ struct requirement_result {
     enum judgement judgement;
     double margin;      /* distance to the limit in the quantity's unit, negative when not met */
     const char *remark; /* "held down to the end of the sweep", "..." or NULL */
+    const double *worst_at;           /* SCOPE_EVERYWHERE: where `computed` is, [axis_count of
+                                         result->conditions]; NULL: at the cell's own conditions */
+    const struct yield_result *yield; /* NULL: not sampled */
 };
 
 enum verdict { VERDICT_MET, VERDICT_NOT_MET, VERDICT_NO_REQUIREMENTS, VERDICT_UNSOLVED };
@@ -116,6 +119,10 @@ struct sweep_table {
     int series_count;
 };
 
+struct yield_result;
+struct conditions_result; /* spread_result.h */
+struct mismatch_result;
+
 /* Everything one run found. Parts that a command does not make are empty. */
 struct result {
     struct arena *arena;
@@ -134,6 +141,8 @@ struct result {
     struct sweep_table *sweeps;
     int sweep_count;
     struct caution_list cautions;
+    struct conditions_result *conditions;
+    struct mismatch_result *mismatch;
 };
 
 #endif

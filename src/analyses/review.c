@@ -6,6 +6,7 @@
 #include <string.h>
 
 #include "analyses/analysis.h"
+#include "analyses/conditions.h"
 #include "analyses/judge.h"
 #include "analyses/measure.h"
 #include "analyses/output.h"
@@ -172,6 +173,15 @@ enum status analysis_point(struct circuit *circuit, const struct analysis_option
     return finish(status, &session, result);
 }
 
+static bool wants_conditions(const struct circuit *circuit, const struct analysis_options *options)
+{
+    bool wanted = options->all_conditions;
+    for (int k = 0; k < circuit->requirement_count; k++) {
+        wanted |= circuit->requirements[k].scope == SCOPE_EVERYWHERE;
+    }
+    return wanted;
+}
+
 enum status analysis_review(struct circuit *circuit, const struct analysis_options *options,
                             struct result **result)
 {
@@ -187,6 +197,9 @@ enum status analysis_review(struct circuit *circuit, const struct analysis_optio
             (!judge_all(*result) || !remarks_add(&session.point, *result))) {
             status = STATUS_MEMORY;
         }
+    }
+    if (status == STATUS_OK && wants_conditions(circuit, options)) {
+        status = analyse_conditions(circuit, &session.point, options, *result);
     }
     if (status == STATUS_OK) {
         status = solve_hand_view(circuit, options, *result);

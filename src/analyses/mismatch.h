@@ -1,0 +1,40 @@
+/*
+ * mismatch.h: the random deviates of all devices of a cell, and what they do to first order.
+ */
+#ifndef ANALYSES_MISMATCH_H
+#define ANALYSES_MISMATCH_H
+
+#include "analyses/operating_point.h"
+#include "analyses/spread_result.h"
+
+/* One independent deviate: sigma times a standard normal number is added to a hidden value. */
+struct mismatch_row {
+    int instance;
+    const struct deviate *deviate;
+    double sigma;
+};
+
+struct mismatch {
+    struct mismatch_row *rows; /* in the order of the cell */
+    int count;
+};
+
+/* All deviates of a system whose sigma is above 0. False when memory is short. */
+bool mismatch_list(const struct system *system, struct arena *arena, struct mismatch *mismatch);
+
+/* Sets the hidden values: row k at deviates[k] standard deviations; NULL: all at 0. */
+void mismatch_apply(struct system *system, const struct mismatch *mismatch, const double *deviates);
+
+/*
+ * mismatch_slopes: change of a quantity per standard deviation of each row, by one adjoint solve at
+ * the polished point.
+ *
+ * slopes  [count] out
+ *
+ * Returns STATUS_OK, STATUS_UNSOLVED for a quantity that is no function of the point alone, or
+ * STATUS_MEMORY.
+ */
+enum status mismatch_slopes(struct operating_point *point, const struct mismatch *mismatch,
+                            const struct probe *probe, double *slopes);
+
+#endif
