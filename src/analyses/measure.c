@@ -33,6 +33,14 @@ unsigned measure_device(const struct system *system, int k, const long double *x
     return type->describe(system_block(system, k), outer, inner, q);
 }
 
+double measure_device_quantity(const struct system *system, int k, int quantity,
+                               const long double *x)
+{
+    double q[QUANTITY_LIMIT];
+    measure_device(system, k, x, q);
+    return q[quantity];
+}
+
 static unsigned describe_plain(const struct system *system, int k, const double *x, double *q)
 {
     const struct instance *instance = &system->circuit->instances[k];
@@ -70,14 +78,20 @@ static bool is_output(const struct circuit *c, int instance)
     return false;
 }
 
-/* What rails and sources deliver; the load at an output is not part of the cell. */
+/* Rails and sources deliver power; the load at an output is not part of the cell. */
+bool measure_is_supply(const struct circuit *c, int k)
+{
+    const struct device_type *type = c->instances[k].type;
+    return type->drive != NULL && type->quantity_power >= 0 && !is_output(c, k);
+}
+
 static double source_power(const struct system *system, const double *x)
 {
     const struct circuit *c = system->circuit;
     double sum = 0;
     for (int k = 0; k < c->instance_count; k++) {
         const struct device_type *type = c->instances[k].type;
-        if (type->drive == NULL || type->quantity_power < 0 || is_output(c, k)) {
+        if (!measure_is_supply(c, k)) {
             continue;
         }
         double q[QUANTITY_LIMIT];
@@ -103,6 +117,13 @@ static double least_headroom(const struct system *system, const double *x, int *
         }
     }
     return least;
+}
+
+int measure_tightest(const struct system *system, const double *x)
+{
+    int where = -1;
+    least_headroom(system, x, &where);
+    return where;
 }
 
 double measure_probe(const struct system *system, const struct probe *probe, const double *x)
