@@ -2,6 +2,7 @@
 #include "cli/commands.h"
 
 #include <langinfo.h>
+#include <stdint.h>
 #include <stdlib.h>
 #include <string.h>
 #include <sys/ioctl.h>
@@ -17,6 +18,7 @@ struct watch {
     struct timespec start;
     bool shows_progress; /* standard error is a terminal */
     bool has_line;       /* a progress line stands there */
+    double shown;        /* s after the start, of the last line */
 };
 
 static int ask_stopped(void *self)
@@ -25,9 +27,11 @@ static int ask_stopped(void *self)
     return *watch->stop != 0;
 }
 
-/* Progress is shown only once the work has taken half a second. */
+/* Progress is shown only once the work has taken half a second, and ten times a second. */
 static void show_progress(void *self, const char *what, double share)
 {
+    static const char full[] = "########################################";
+    enum { BAR = sizeof full - 1 };
     struct watch *watch = self;
     struct timespec now;
     if (!watch->shows_progress || clock_gettime(CLOCK_MONOTONIC, &now) != 0) {
@@ -35,16 +39,18 @@ static void show_progress(void *self, const char *what, double share)
     }
     double seconds = (double)(now.tv_sec - watch->start.tv_sec) +
                      1e-9 * (double)(now.tv_nsec - watch->start.tv_nsec);
-    if (seconds >= 0.5) {
-        fprintf(stderr, "\r%3.0f %%  %-60.60s", 100.0 * share, what);
+    if (seconds >= 0.5 && seconds >= watch->shown + 0.1) {
+        int done = share > 0 ? (int)(share * BAR) : 0;
+        fprintf(stderr, "\r[%-*.*s] %3.0f %%  %-28.28s", BAR, done, full, 100.0 * share, what);
         watch->has_line = true;
+        watch->shown = seconds;
     }
 }
 
 static void end_progress(struct watch *watch)
 {
     if (watch->has_line) {
-        fprintf(stderr, "\r%68s\r", "");
+        fprintf(stderr, "\r%79s\r", "");
     }
 }
 
@@ -130,13 +136,57 @@ static bool check_outputs(const struct options *options)
     return true;
 }
 
+/* A whole number of an option; `value` is kept when the option was not given. False after a
+ * message.
+ */
+static bool read_number(const struct options *options, enum option option, unsigned long long most,
+                        unsigned long long *value)
+{
+    const char *text = options->values[option];
+    if (text == NULL) {
+        return true;
+    }
+    unsigned long long found = 0;
+    const char *at = text;
+    for (; *at >= '0' && *at <= '9'; at++) {
+        const unsigned digit = (unsigned)(*at - '0');
+        if (found > (most - digit) / 10) {
+            break;
+        }
+        found = 10 * found + digit;
+    }
+    if (*at != '\0') {
+        fprintf(stderr, "ampstead: '%s' is no value of --%s: a whole number from 0 to %llu\n", text,
+                option_rows[option].name, most);
+        return false;
+    }
+    *value = found;
+    return true;
+}
+
+/* The numbers of the request; false after a message. */
+static bool read_numbers(const struct options *options, struct ampstead_request *request)
+{
+    enum { JOB_LIMIT = 256 };
+    unsigned long long samples = AMPSTEAD_SAMPLES, jobs = 0, seed = request->seed;
+    if (!read_number(options, OPTION_SAMPLES, AMPSTEAD_SAMPLE_LIMIT, &samples) ||
+        !read_number(options, OPTION_SEED, INT64_MAX, &seed) ||
+        !read_number(options, OPTION_JOBS, JOB_LIMIT, &jobs)) {
+        return false;
+    }
+    request->samples = (int)samples;
+    request->seed = seed;
+    request->jobs = (int)jobs;
+    return true;
+}
+
 static int run_cell(const struct options *options, const volatile sig_atomic_t *stop)
 {
     struct watch watch = {.stop = stop, .shows_progress = isatty(STDERR_FILENO)};
     struct ampstead_request request = AMPSTEAD_REQUEST;
     struct ampstead_result *result = NULL;
     const char *view = options->values[OPTION_VIEW];
-    if (!check_outputs(options)) {
+    if (!check_outputs(options) || !read_numbers(options, &request)) {
         return AMPSTEAD_INPUT;
     }
     (void)clock_gettime(CLOCK_MONOTONIC, &watch.start);

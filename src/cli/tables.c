@@ -4,7 +4,7 @@
 #include "cli/options.h"
 
 enum {
-    RESULT_VERBS = 1 << VERB_REVIEW | 1 << VERB_POINT | 1 << VERB_SWEEP,
+    RESULT_VERBS = 1 << VERB_REVIEW | 1 << VERB_POINT | 1 << VERB_SWEEP | 1 << VERB_SPREAD,
     CELL_VERBS = RESULT_VERBS | 1 << VERB_MODELS,
     ALL_VERBS = CELL_VERBS | 1 << VERB_HELP
 };
@@ -24,6 +24,13 @@ const struct verb_row verb_rows[VERB_COUNT] = {
          "Moves a rail, let, source, resistor, output or the temperature, and shows what\n"
          "follows. --csv writes one row a point: number of the sweep, the swept thing, the\n"
          "family, and each quantity, with SI units in the header."},
+    [VERB_SPREAD] =
+        {"spread", "FILE.cell", "the `vary` conditions, corners, mismatch and yield",
+         "Solves all combinations of the `vary` ends, every corner and a fine sweep of each\n"
+         "thing, and names the worst place of every quantity; then mismatch, to first order\n"
+         "with its causes, and sampled with the yield of each `require` line. Judges\n"
+         "`everywhere` and `for P%`. --csv writes one row a sample: number, state, and each\n"
+         "quantity, with SI units in the header."},
     [VERB_MODELS] = {"models", "FILE", "every model value in force, given or default",
                      "FILE is a cell, or a process file by itself."},
     [VERB_HELP] = {"help", "[VERB]", "this overview, or what one verb does and takes",
@@ -45,6 +52,12 @@ const struct option_row option_rows[OPTION_COUNT] = {
                      RESULT_VERBS},
     [OPTION_SWEEP] = {"sweep", 0, ARGUMENT_NEEDED, "TEXT", NULL, "the cell's sweeps",
                       "\"THING from A to B points N show Q, Q\", as in a cell", 1 << VERB_SWEEP},
+    [OPTION_SAMPLES] = {"samples", 'n', ARGUMENT_NEEDED, "N", NULL, "2000",
+                        "mismatch samples, each a full solve; 0 leaves them out", 1 << VERB_SPREAD},
+    [OPTION_SEED] = {"seed", 0, ARGUMENT_NEEDED, "N", NULL, "1",
+                     "the same seed gives the same samples, however many jobs", 1 << VERB_SPREAD},
+    [OPTION_JOBS] = {"jobs", 'j', ARGUMENT_NEEDED, "N", NULL, "one a processor",
+                     "threads for conditions and samples", 1 << VERB_SPREAD | 1 << VERB_REVIEW},
     [OPTION_JSON] = {"json", 0, ARGUMENT_OPTIONAL, "FILE", NULL, "off",
                      "writes JSON (SI units) to FILE, or without FILE to standard output instead "
                      "of the text; the next word is FILE only if it ends with .json, else "
@@ -52,7 +65,7 @@ const struct option_row option_rows[OPTION_COUNT] = {
                      CELL_VERBS},
     [OPTION_CSV] = {"csv", 0, ARGUMENT_NEEDED, "FILE", NULL, "off",
                     "writes CSV (SI units) to FILE; - is standard output instead of the text",
-                    1 << VERB_REVIEW | 1 << VERB_SWEEP},
+                    1 << VERB_REVIEW | 1 << VERB_SWEEP | 1 << VERB_SPREAD},
     [OPTION_COLOR] = {"color", 0, ARGUMENT_NEEDED, "auto|always|never", color_words, "auto",
                       "auto: on a terminal, unless NO_COLOR is set", ALL_VERBS},
     [OPTION_HELP] = {"help", 'h', ARGUMENT_NONE, NULL, NULL, "off", "what a verb does and takes",

@@ -12,13 +12,18 @@
 
 enum { REQUEST_SET_LIMIT = 1000 };
 
-enum command { COMMAND_REVIEW, COMMAND_POINT, COMMAND_SWEEP, COMMAND_MODELS, COMMAND_COUNT };
+enum command {
+    COMMAND_REVIEW,
+    COMMAND_POINT,
+    COMMAND_SWEEP,
+    COMMAND_SPREAD,
+    COMMAND_MODELS,
+    COMMAND_COUNT
+};
 
 static const char *const command_words[COMMAND_COUNT] = {
-    [COMMAND_REVIEW] = "review",
-    [COMMAND_POINT] = "point",
-    [COMMAND_SWEEP] = "sweep",
-    [COMMAND_MODELS] = "models",
+    [COMMAND_REVIEW] = "review", [COMMAND_POINT] = "point",   [COMMAND_SWEEP] = "sweep",
+    [COMMAND_SPREAD] = "spread", [COMMAND_MODELS] = "models",
 };
 
 struct ampstead_result {
@@ -146,6 +151,9 @@ static enum status analyse(const struct ampstead_request *request, struct ampste
         .stopped_self = &hooks,
         .progress = request->progress,
         .progress_self = request->progress_self,
+        .jobs = request->jobs,
+        .samples = request->samples,
+        .seed = request->seed,
     };
     switch (result->command) {
     case COMMAND_REVIEW:
@@ -162,6 +170,8 @@ static enum status analyse(const struct ampstead_request *request, struct ampste
             options.extra_sweep = &result->sweep;
         }
         return analysis_sweep(result->circuit, &options, &result->found);
+    case COMMAND_SPREAD:
+        return analysis_spread(result->circuit, &options, &result->found);
     case COMMAND_MODELS:
     case COMMAND_COUNT:
         break;
@@ -184,6 +194,9 @@ static const char *check_request(const struct ampstead_request *request, enum co
     if (request->sweep != NULL &&
         (request->command == NULL || strcmp(request->command, "sweep") != 0)) {
         return "a sweep is given to a command other than sweep";
+    }
+    if (request->samples < 0 || request->samples > AMPSTEAD_SAMPLE_LIMIT) {
+        return "the number of samples must lie between 0 and 10000000";
     }
     *command = COMMAND_REVIEW;
     for (int k = 0; k < COMMAND_COUNT && request->command != NULL; k++) {
@@ -315,6 +328,9 @@ const char *ampstead_result_text(struct ampstead_result *result, unsigned flags,
     case COMMAND_SWEEP:
         report_sweep(result->found, &style, &result->text);
         break;
+    case COMMAND_SPREAD:
+        report_spread(result->found, &style, &result->text);
+        break;
     case COMMAND_MODELS:
         report_models(result->circuit, &style, &result->text);
         break;
@@ -343,7 +359,8 @@ const char *ampstead_result_json(struct ampstead_result *result)
 const char *ampstead_result_csv(struct ampstead_result *result)
 {
     if (!has_report(result) ||
-        (result->command != COMMAND_REVIEW && result->command != COMMAND_SWEEP)) {
+        (result->command != COMMAND_REVIEW && result->command != COMMAND_SWEEP &&
+         result->command != COMMAND_SPREAD)) {
         return NULL;
     }
     restart(&result->csv);

@@ -50,7 +50,7 @@ enum ampstead_view { AMPSTEAD_VIEW_FULL = 0, AMPSTEAD_VIEW_HAND = 1 };
  * and stays the caller's. */
 struct ampstead_request {
     size_t size;             /* sizeof(struct ampstead_request): set by AMPSTEAD_REQUEST */
-    const char *command;     /* "review", "point", "sweep" or "models"; NULL: review */
+    const char *command;     /* "review", "point", "sweep", "spread" or "models"; NULL: review */
     const char *path;        /* the cell file; "-": standard input. With text: its name. Required */
     const char *text;        /* the cell itself, instead of the file; NULL: read the file */
     size_t text_length;      /* bytes of text */
@@ -68,12 +68,17 @@ struct ampstead_request {
     void *stopped_self;
     void (*progress)(void *self, const char *what, double share); /* share: 0 to 1. NULL: none */
     void *progress_self;
+    int samples; /* for command "spread": mismatch samples, 0 to AMPSTEAD_SAMPLE_LIMIT */
+    unsigned long long seed; /* the same seed gives the same samples, whatever `jobs` is */
+    int jobs;                /* threads, for "spread" and `everywhere`; 0: one a processor */
 };
+
+enum { AMPSTEAD_SAMPLES = 2000, AMPSTEAD_SAMPLE_LIMIT = 10000000 };
 
 #define AMPSTEAD_REQUEST                                                                           \
     {                                                                                              \
         sizeof(struct ampstead_request), 0, 0, 0, 0, AMPSTEAD_VIEW_FULL, 0, 0, 0, 0, 0, 0, 0, 0,   \
-            0, 0, 0                                                                                \
+            0, 0, 0, AMPSTEAD_SAMPLES, 1, 0                                                        \
     }
 
 struct ampstead_result;
@@ -121,7 +126,8 @@ AMPSTEAD_API const char *ampstead_result_text(struct ampstead_result *result, un
 /* The same as one JSON object. NULL as above. */
 AMPSTEAD_API const char *ampstead_result_json(struct ampstead_result *result);
 
-/* Curves (review) or sweeps (sweep) as CSV. NULL as above, and for the other commands. */
+/* Curves (review), sweeps (sweep) or samples (spread) as CSV. NULL as above, and for the other
+ * commands. */
 AMPSTEAD_API const char *ampstead_result_csv(struct ampstead_result *result);
 
 /*

@@ -4,91 +4,12 @@
  */
 #include "report/report.h"
 
-#include <jansson.h>
 #include <math.h>
-#include <stdlib.h>
 #include <string.h>
 
+#include "report/json_parts.h"
+
 enum { SCHEMA_VERSION = 1, DIGITS = 17 };
-
-/* The functions below add one key. A failed allocation marks the writer and the rest does nothing
- * harmful: jansson takes a NULL as a refusal. */
-struct writer {
-    bool failed;
-};
-
-static void put(struct writer *writer, json_t *object, const char *key, json_t *value)
-{
-    if (json_object_set_new(object, key, value) != 0) {
-        writer->failed = true;
-    }
-}
-
-static void append(struct writer *writer, json_t *array, json_t *value)
-{
-    if (json_array_append_new(array, value) != 0) {
-        writer->failed = true;
-    }
-}
-
-static void put_number(struct writer *writer, json_t *object, const char *key, double value)
-{
-    if (isfinite(value)) {
-        put(writer, object, key, json_real(value));
-    }
-}
-
-/* A string; bytes that are no UTF-8 (a file name may hold any) become '?'. */
-static json_t *make_text(const char *text)
-{
-    json_t *value = json_string(text);
-    char *plain = value == NULL ? strdup(text) : NULL;
-    if (plain != NULL) {
-        for (char *at = plain; *at != '\0'; at++) {
-            *at = (char)((unsigned char)*at < 0x80 ? *at : '?');
-        }
-        value = json_string(plain);
-        free(plain);
-    }
-    return value;
-}
-
-static void put_text(struct writer *writer, json_t *object, const char *key, const char *text)
-{
-    if (text != NULL) {
-        put(writer, object, key, make_text(text));
-    }
-}
-
-static void put_numbers(struct writer *writer, json_t *object, const char *key,
-                        const double *values, int count, int stride)
-{
-    json_t *array = json_array();
-    for (int k = 0; k < count; k++) {
-        double value = values[k * stride];
-        append(writer, array, isfinite(value) ? json_real(value) : json_null());
-    }
-    put(writer, object, key, array);
-}
-
-/* An object or array under a key; borrowed by the caller, NULL when memory is short. */
-static json_t *put_object(struct writer *writer, json_t *object, const char *key)
-{
-    put(writer, object, key, json_object());
-    return json_object_get(object, key);
-}
-
-static json_t *put_array(struct writer *writer, json_t *object, const char *key)
-{
-    put(writer, object, key, json_array());
-    return json_object_get(object, key);
-}
-
-static json_t *append_object(struct writer *writer, json_t *array)
-{
-    append(writer, array, json_object());
-    return json_array_get(array, json_array_size(array) - 1);
-}
 
 static const char *verdict_text(enum verdict verdict)
 {
@@ -235,6 +156,7 @@ static void put_requirements(struct writer *writer, json_t *root, const struct r
         } else {
             put(writer, object, "met", json_boolean(row->judgement == JUDGED_MET));
         }
+        json_put_spread_of(writer, object, result, row);
     }
 }
 
@@ -340,6 +262,7 @@ void report_json(const struct result *result, const char *version, struct buffer
         }
         put_hands(&writer, root, result);
         put_requirements(&writer, root, result);
+        json_put_spread(&writer, root, result);
         put_sweeps(&writer, root, result);
     }
     put_cautions(&writer, root, &result->cautions);

@@ -112,7 +112,9 @@ static void name_failures(struct layout *layout, const struct result *result)
         }
         named++;
         const char *value =
-            row->judgement == JUDGED_UNKNOWN
+            row->requirement->scope == SCOPE_YIELD && row->yield != NULL
+                ? yield_text(layout, row->yield)
+            : row->judgement == JUDGED_UNKNOWN
                 ? "it has no value"
                 : layout_format(layout, "it is %s",
                                 show_probe(layout, &row->requirement->probe, row->computed));

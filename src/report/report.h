@@ -32,6 +32,10 @@ void report_point(const struct result *result, const struct report_style *style,
 void report_sweep(const struct result *result, const struct report_style *style,
                   struct buffer *out);
 
+/* Conditions, mismatch and yield. */
+void report_spread(const struct result *result, const struct report_style *style,
+                   struct buffer *out);
+
 /* Every model value in force. */
 void report_models(const struct circuit *circuit, const struct report_style *style,
                    struct buffer *out);
@@ -43,7 +47,8 @@ void report_json_models(const struct circuit *circuit, const char *version, stru
 /*
  * report_csv: curves of the outputs (columns output,v,current; V and A), or, when the result has
  * sweeps, one row a point: the swept thing, the family, and each quantity with its SI unit in the
- * header. RFC 4180: CRLF, quotes where needed. A value that does not apply is empty.
+ * header; of a spread, one row a sample. RFC 4180: CRLF, quotes where needed. A value that does not
+ * apply is empty.
  */
 void report_csv(const struct result *result, struct buffer *out);
 
