@@ -15,6 +15,14 @@
 
 enum { FINE_POINTS = 41 };
 
+/* Values closer than this share are equal: of equal cases the first, the cell's own, is named. */
+static const double equal_share = 1e-9;
+
+static bool is_less(double a, double b)
+{
+    return a < b - equal_share * fabs(b);
+}
+
 /* --- axes and points -------------------------------------------------------------------------- */
 
 static double own_value(const struct circuit *c, const struct knob *knob)
@@ -213,11 +221,11 @@ static bool find_ranges(struct conditions_result *r, struct arena *arena)
         *range = (struct condition_range){r->points[0].values[q], NAN, NAN, NULL, NULL};
         for (int k = 0; k < r->point_count; k++) {
             const double value = r->points[k].values[q];
-            if (!isnan(value) && !(value >= range->least)) {
+            if (!isnan(value) && (range->least_at == NULL || is_less(value, range->least))) {
                 range->least = value;
                 range->least_at = r->points[k].at;
             }
-            if (!isnan(value) && !(value <= range->most)) {
+            if (!isnan(value) && (range->most_at == NULL || is_less(range->most, value))) {
                 range->most = value;
                 range->most_at = r->points[k].at;
             }
@@ -235,7 +243,7 @@ static void judge_everywhere(const struct conditions_result *r, int k, int probe
         const struct condition_point *point = &r->points[p];
         const double margin = point->margins[k];
         if (worst == NULL || (isnan(margin) && !isnan(worst->margins[k])) ||
-            margin < worst->margins[k]) {
+            is_less(margin, worst->margins[k])) {
             worst = point;
         }
         if (!point->is_solved) {

@@ -22,7 +22,7 @@ void random_normals(uint64_t seed, uint64_t stream, int count, double *deviates)
 
 /*
  * normal_quantile: z with P(Z < z) = p for 0 < p < 1; -INFINITY and INFINITY at 0 and 1, NAN
- * outside. Relative error about 1e-16. Algorithm AS 241, PPND16, of Wichura (1988).
+ * outside. Relative error below 1e-15. Algorithm AS 241, PPND16, of Wichura (1988).
  */
 double normal_quantile(double p);
 

@@ -68,8 +68,9 @@ static void put_ranges(struct writer *writer, json_t *object, const struct resul
     }
 }
 
-static void put_drift(struct writer *writer, json_t *object, const struct conditions_result *r)
+static void put_drift(struct writer *writer, json_t *object, const struct result *result)
 {
+    const struct conditions_result *r = result->conditions;
     json_t *drifts = put_array(writer, object, "drift");
     for (int k = 0; k < r->drift_count; k++) {
         const struct condition_drift *drift = &r->drifts[k];
@@ -82,6 +83,7 @@ static void put_drift(struct writer *writer, json_t *object, const struct condit
     for (int k = 0; k < r->supply_count; k++) {
         const struct supply_limit *limit = &r->supplies[k];
         json_t *row = append_object(writer, supplies);
+        put_text(writer, row, "rail", result->circuit->rails[limit->rail].name);
         put_text(writer, row, "quantity", r->probes[limit->probe].text);
         put_number(writer, row, "within", limit->within);
         put_number(writer, row, "v", limit->least);
@@ -99,7 +101,7 @@ static void put_conditions(struct writer *writer, json_t *root, const struct res
     put(writer, object, "unsolved", json_integer(r->unsolved_count));
     put_place(writer, object, "unsolved_at", result, r->unsolved_at);
     put_ranges(writer, object, result);
-    put_drift(writer, object, r);
+    put_drift(writer, object, result);
 }
 
 /* --- mismatch --------------------------------------------------------------------------------- */
