@@ -194,8 +194,12 @@ static bool probe_gradient(const struct functional *it)
     }
     case PROBE_CELL:
         for (int k = 0; k < c->instance_count; k++) {
-            if (measure_is_supply(c, k)) {
-                add_device_gradient(it, k, c->instances[k].type->quantity_power, -1);
+            const int power = c->instances[k].type->quantity_power;
+            /* a source that takes power is not counted: see measure.c */
+            if (measure_is_supply(c, k) &&
+                (c->instances[k].is_hidden ||
+                 measure_device_quantity(s, k, power, it->point->refined) < 0)) {
+                add_device_gradient(it, k, power, -1);
             }
         }
         return true;

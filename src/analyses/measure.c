@@ -85,6 +85,10 @@ bool measure_is_supply(const struct circuit *c, int k)
     return type->drive != NULL && type->quantity_power >= 0 && !is_output(c, k);
 }
 
+/*
+ * What rails and sources deliver. The load at an output is not part of the cell, and a source that
+ * takes power stands for a part that does: it is not given back.
+ */
 static double source_power(const struct system *system, const double *x)
 {
     const struct circuit *c = system->circuit;
@@ -96,8 +100,9 @@ static double source_power(const struct system *system, const double *x)
         }
         double q[QUANTITY_LIMIT];
         describe_plain(system, k, x, q);
-        if (isfinite(q[type->quantity_power])) {
-            sum -= q[type->quantity_power];
+        const double delivered = -q[type->quantity_power];
+        if (isfinite(delivered) && (delivered > 0 || c->instances[k].is_hidden)) {
+            sum += delivered;
         }
     }
     return sum;
