@@ -6,6 +6,8 @@
  */
 #include "analyses/mismatch.h"
 
+#include <math.h>
+
 #include "analyses/derivative.h"
 
 static struct device_values values_of(const struct system *s, int k)
@@ -15,25 +17,39 @@ static struct device_values values_of(const struct system *s, int k)
                                   s->circuit->resistor_factor};
 }
 
+static void add_row(struct mismatch *m, int instance, const struct deviate *deviate,
+                    const struct device_values *values, bool is_even)
+{
+    const double sigma = deviate == NULL ? 0 : deviate->sigma(values);
+    if (sigma > 0) {
+        m->rows[m->count++] = (struct mismatch_row){instance, deviate, sigma, is_even};
+    }
+}
+
 bool mismatch_list(const struct system *s, struct arena *arena, struct mismatch *m)
 {
     const struct circuit *c = s->circuit;
     int most = 0;
     for (int k = 0; k < c->instance_count; k++) {
-        most += c->instances[k].type->deviate_count;
+        most += c->instances[k].type->deviate_count + 1;
     }
     *m = (struct mismatch){.rows = arena_new_array(arena, struct mismatch_row, most)};
     for (int k = 0; m->rows != NULL && k < c->instance_count; k++) {
         const struct device_values values = values_of(s, k);
         const struct device_type *type = c->instances[k].type;
         for (int d = 0; d < type->deviate_count; d++) {
-            const double sigma = type->deviates[d].sigma(&values);
-            if (sigma > 0) {
-                m->rows[m->count++] = (struct mismatch_row){k, &type->deviates[d], sigma};
-            }
+            add_row(m, k, &type->deviates[d], &values, false);
         }
+        add_row(m, k, type->tolerance, &values, true);
     }
     return m->rows != NULL;
+}
+
+/* An even number with the same sigma comes from the normal one by its own distribution: 2 Phi(z) -
+ * 1 is even between -1 and 1, whose sigma is 1/sqrt(3). */
+static double shift_of(const struct mismatch_row *row, double z)
+{
+    return row->sigma * (row->is_even ? sqrt(3) * erf(z / sqrt(2)) : z);
 }
 
 void mismatch_apply(struct system *s, const struct mismatch *m, const double *deviates)
@@ -41,13 +57,15 @@ void mismatch_apply(struct system *s, const struct mismatch *m, const double *de
     for (int k = 0; k < m->count; k++) {
         const struct mismatch_row *row = &m->rows[k];
         const int parameter = row->deviate->own_parameter;
-        const double base = s->circuit->instances[row->instance].own[parameter];
-        const double value = base + (deviates == NULL ? 0 : row->sigma * deviates[k]);
+        double *own = s->own[row->instance];
+        const bool again = k > 0 && m->rows[k - 1].instance == row->instance &&
+                           m->rows[k - 1].deviate->own_parameter == parameter;
+        const double base =
+            again ? own[parameter] : s->circuit->instances[row->instance].own[parameter];
+        own[parameter] = base + shift_of(row, deviates[k]);
         /* a device is prepared once, after its last row */
-        if (k + 1 < m->count && m->rows[k + 1].instance == row->instance) {
-            s->own[row->instance][parameter] = value;
-        } else {
-            system_set(s, row->instance, parameter, value);
+        if (k + 1 == m->count || m->rows[k + 1].instance != row->instance) {
+            system_set(s, row->instance, parameter, own[parameter]);
         }
     }
 }

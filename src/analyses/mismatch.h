@@ -7,11 +7,12 @@
 #include "analyses/operating_point.h"
 #include "analyses/spread_result.h"
 
-/* One independent deviate: sigma times a standard normal number is added to a hidden value. */
+/* One independent deviate that is added to a hidden value: normal, or even (a tolerance). */
 struct mismatch_row {
     int instance;
     const struct deviate *deviate;
     double sigma;
+    bool is_even;
 };
 
 struct mismatch {
@@ -22,7 +23,7 @@ struct mismatch {
 /* All deviates of a system whose sigma is above 0. False when memory is short. */
 bool mismatch_list(const struct system *system, struct arena *arena, struct mismatch *mismatch);
 
-/* Sets the hidden values: row k at deviates[k] standard deviations; NULL: all at 0. */
+/* Sets the hidden values from standard normal numbers, one a row. */
 void mismatch_apply(struct system *system, const struct mismatch *mismatch, const double *deviates);
 
 /*

@@ -127,8 +127,10 @@ enum status setup_solve(struct setup *setup, const double *near, int near_count,
         if (status == NEWTON_STOPPED || status == NEWTON_MEMORY) {
             return status == NEWTON_STOPPED ? STATUS_STOPPED : STATUS_MEMORY;
         }
-        if (status == NEWTON_CONVERGED && operating_point_polish(p) == STATUS_OK) {
-            return STATUS_OK;
+        const enum status polished =
+            status == NEWTON_CONVERGED ? operating_point_polish(p) : STATUS_UNSOLVED;
+        if (polished != STATUS_UNSOLVED) {
+            return polished;
         }
     }
     if (searched != NULL) {

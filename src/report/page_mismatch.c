@@ -186,7 +186,7 @@ void page_mismatch(struct layout *layout, const struct result *result)
     if (r->deviate_count == 0) {
         layout_paragraph(layout, TONE_PLAIN, 0,
                          "no device here has a mismatch coefficient (match_... of a model, match= "
-                         "of a resistor)");
+                         "or tol= of a resistor)");
         return;
     }
     layout_paragraph(layout, r->failed > 0 ? TONE_WARN : TONE_PLAIN, 0, samples_text(layout, r));

@@ -448,6 +448,42 @@ static void failures_count(void **state)
     end_run(&run);
 }
 
+/*
+ * A tolerance is even: of mid.v = 1 V RB/(RA + RB) with one resistor of 4 %, d mid.v = 1/4 V a
+ * relative change, sigma = 0.04/sqrt(3)/4 V, and no sample leaves the exact ends.
+ */
+static void tolerance_is_even(void **state)
+{
+    (void)state;
+    struct run run;
+    const struct analysis_options options = options_of(4000, 0);
+    run_spread(&run,
+               "rail vcc 1 V\n"
+               "resistor RA vcc -> mid 1k\n"
+               "resistor RB mid -> gnd 1k tol=4%\n"
+               "require mid.v within 5 mV of 0.5 V for 40%\n",
+               &options);
+    const struct spread_of_probe *row = spread_of(run.result, "mid.v");
+    check_near(row->linear_sigma, 0.04 / sqrt(3) / 4, 1e-8);
+    assert_string_equal(row->contributors[0].cause, "tolerance");
+    assert_true(row->sampled.least >= 0.96 / 1.96 && row->sampled.most <= 1.04 / 2.04);
+    assert_true(fabs(row->sampled.sigma - row->linear_sigma) < 4 * row->sampled.sigma_error);
+    /* 5 mV is half of the way to the ends, to first order: half of the samples */
+    assert_true(fabs(run.result->requirements[0].yield->share - 0.5) < 4 * sqrt(0.25 / 4000));
+    end_run(&run);
+    /* with match= the two add: variances 0.04^2/3 and 0.03^2 */
+    run_spread(&run,
+               "rail vcc 1 V\n"
+               "resistor RA vcc -> mid 1k\n"
+               "resistor RB mid -> gnd 1k tol=4% match=3%\n"
+               "require mid.v within 5 mV of 0.5 V for 10%\n",
+               &options);
+    row = spread_of(run.result, "mid.v");
+    check_near(row->linear_sigma, sqrt(0.04 * 0.04 / 3 + 0.03 * 0.03) / 4, 1e-8);
+    assert_true(fabs(row->sampled.sigma - row->linear_sigma) < 4 * row->sampled.sigma_error);
+    end_run(&run);
+}
+
 static void no_coefficients(void **state)
 {
     (void)state;
@@ -518,6 +554,7 @@ int main(void)
         cmocka_unit_test(samples_stand_alone),
         cmocka_unit_test(lognormal_is_not_linear),
         cmocka_unit_test(failures_count),
+        cmocka_unit_test(tolerance_is_even),
         cmocka_unit_test(no_coefficients),
         cmocka_unit_test(stops_with_what_there_is),
     };
