@@ -96,7 +96,9 @@ static void draw_histogram(struct layout *layout, const struct spread_of_probe *
         }
         most = sum > most ? sum : most;
     }
-    layout_line(layout, TONE_STRONG, layout_short(layout, row->probe->text, 50));
+    layout_line(layout, TONE_STRONG,
+                layout_format(layout, "%s of the samples; each bar from",
+                              layout_short(layout, row->probe->text, 50)));
     for (int b = 0; b < h->bins; b += join) {
         int sum = 0;
         for (int k = b; k < b + join && k < h->bins; k++) {

@@ -48,6 +48,11 @@ static void conditions_part(struct layout *layout, const struct result *result)
 {
     const struct conditions_result *r = result->conditions;
     layout_part(layout, "conditions");
+    if (r->probe_count == 0) {
+        layout_paragraph(layout, TONE_WARN, 0,
+                         "there is nothing to follow: the cell has no `output` and no `require` "
+                         "line");
+    }
     if (r->axis_count == 0) {
         layout_paragraph(layout, TONE_PLAIN, 0,
                          "the cell has no `vary` line: its own conditions only");
