@@ -51,6 +51,10 @@ struct builder {
     int let_capacity;
     int let_depth;
     double thermal_voltage;
+    int placed;           /* parts and uses of blocks so far */
+    int errors_before;    /* this build began */
+    bool is_over_limit;   /* reported: what is left is not built */
+    double sweep_values;  /* of all sweeps */
     bool process_missing; /* a process was not read: its models and corners are unknown */
     struct block_entry *blocks;
     int block_count, block_capacity;
@@ -64,6 +68,9 @@ bool build_models(struct builder *builder);
 bool build_parts(struct builder *builder);
 bool build_requests(struct builder *builder);
 bool build_checks(struct builder *builder);
+
+/* True once a limit is met: the rest is not built. The first time it is reported at `where`. */
+bool build_is_over_limit(struct builder *builder, struct span where);
 
 /* Expression scope of a frame; valid as long as the frame. */
 struct expression_scope frame_scope(const struct frame *frame);

@@ -130,6 +130,11 @@ static bool add_model(struct builder *b, const struct statement *statement,
                         "there are two models called '%s'", statement->name.text);
         return true;
     }
+    if (c->model_count >= CIRCUIT_MODEL_LIMIT) {
+        diagnostics_add(b->diagnostics, statement->name.span, NULL,
+                        "the cell has more than %d models, the limit", CIRCUIT_MODEL_LIMIT);
+        return true;
+    }
     struct model *list =
         arena_grow(b->arena, c->models, c->model_count, &c->model_capacity, sizeof *list);
     if (list == NULL || !names_add(c->names, NAME_MODEL, statement->name.text, c->model_count)) {

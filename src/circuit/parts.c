@@ -680,8 +680,16 @@ static bool add_use(const struct frame *outer, const struct statement *use);
 
 static bool add_body(const struct frame *frame, struct statement *const *body, int count)
 {
+    struct builder *b = frame->builder;
     for (int k = 0; k < count; k++) {
         const struct statement *statement = body[k];
+        if (statement->kind != STATEMENT_PART && statement->kind != STATEMENT_USE) {
+            continue;
+        }
+        if (build_is_over_limit(b, statement->type.span)) {
+            break;
+        }
+        b->placed++;
         if (statement->kind == STATEMENT_PART && !add_part(frame, statement)) {
             return false;
         }
@@ -846,6 +854,16 @@ static bool add_use(const struct frame *outer, const struct statement *use)
            add_body(&frame, block->body, block->body_count);
 }
 
+/* Names of a block: pins, parameters and lets. */
+static int block_names(const struct statement *block)
+{
+    int count = block->word_count + block->assignment_count;
+    for (int k = 0; k < block->body_count; k++) {
+        count += block->body[k]->kind == STATEMENT_LET;
+    }
+    return count;
+}
+
 static bool collect_blocks(struct builder *b)
 {
     for (int k = 0; k < b->cell->tree.count; k++) {
@@ -856,6 +874,12 @@ static bool collect_blocks(struct builder *b)
         if (names_find(b->circuit->names, NAME_BLOCK, statement->name.text) >= 0) {
             diagnostics_add(b->diagnostics, statement->name.span, "give it another name",
                             "there are two blocks called '%s'", statement->name.text);
+            continue;
+        }
+        if (block_names(statement) > CIRCUIT_NAME_LIMIT) {
+            diagnostics_add(b->diagnostics, statement->name.span, NULL,
+                            "block '%s' has more than %d pins, parameters and lets, the limit",
+                            statement->name.text, CIRCUIT_NAME_LIMIT);
             continue;
         }
         struct block_entry *list =

@@ -177,8 +177,6 @@ static bool read_range(struct builder *b, const struct knob *knob,
            in_range(b, knob, *to, statement->to->span);
 }
 
-enum { SWEEP_POINT_LIMIT = 100000 };
-
 static bool read_family(struct builder *b, const struct statement *statement, struct sweep *sweep)
 {
     struct circuit *c = b->circuit;
@@ -198,6 +196,19 @@ static bool read_family(struct builder *b, const struct statement *statement, st
     return sweep->family_values != NULL;
 }
 
+/* False after an error: the tables of all sweeps would be too long. */
+static bool count_values(struct builder *b, const struct sweep *sweep)
+{
+    const double points = sweep->points > 0 ? sweep->points : CIRCUIT_POINT_STANDARD;
+    b->sweep_values += points * sweep->shown_count * (sweep->has_family ? sweep->family_count : 1);
+    if (b->sweep_values <= CIRCUIT_SWEEP_LIMIT) {
+        return true;
+    }
+    diagnostics_add(b->diagnostics, sweep->where, "fewer points, quantities or families",
+                    "the sweeps have more than %d values, the limit", CIRCUIT_SWEEP_LIMIT);
+    return false;
+}
+
 static bool read_sweep(struct builder *b, const struct statement *statement, struct sweep *sweep)
 {
     struct circuit *c = b->circuit;
@@ -208,9 +219,9 @@ static bool read_sweep(struct builder *b, const struct statement *statement, str
     if (statement->points != NULL) {
         double points = 0;
         good &= read_as(b, statement->points, DIMENSION_NONE, false, &points);
-        if (good && !(points >= 2 && points <= SWEEP_POINT_LIMIT)) {
+        if (good && !(points >= 2 && points <= CIRCUIT_POINT_LIMIT)) {
             diagnostics_add(b->diagnostics, statement->points->span, NULL,
-                            "a sweep has 2 to %d points", SWEEP_POINT_LIMIT);
+                            "a sweep has 2 to %d points", CIRCUIT_POINT_LIMIT);
             good = false;
         } else if (good) {
             sweep->points = (int)points;
@@ -225,7 +236,7 @@ static bool read_sweep(struct builder *b, const struct statement *statement, str
     if (statement->thing2.text != NULL) {
         good &= read_family(b, statement, sweep);
     }
-    return good && sweep->shown != NULL;
+    return good && sweep->shown != NULL && count_values(b, sweep);
 }
 
 bool circuit_sweep(const struct circuit *circuit, const struct statement *statement,
@@ -399,7 +410,11 @@ bool build_requests(struct builder *b)
 {
     b->circuit->title = "";
     for (int k = 0; k < b->cell->tree.count; k++) {
-        if (!add_request(b, b->cell->tree.statements[k])) {
+        const struct statement *statement = b->cell->tree.statements[k];
+        if (build_is_over_limit(b, statement->span)) {
+            break;
+        }
+        if (!add_request(b, statement)) {
             return false;
         }
     }

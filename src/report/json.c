@@ -252,7 +252,8 @@ void report_json(const struct result *result, const char *version, struct buffer
     json_t *root = json_object();
     put_heading(&writer, root, version, result->command, result->circuit, result->kelvin);
     put_text(&writer, root, "view", result->view == VIEW_HAND ? "hand" : "full");
-    put_text(&writer, root, "verdict", verdict_text(result->verdict));
+    put_text(&writer, root, "verdict",
+             result->is_stopped ? "stopped" : verdict_text(result->verdict));
     put_solver(&writer, root, &result->point.solver);
     if (result->point.solver.converged) {
         put_point(&writer, root, result);
