@@ -67,6 +67,18 @@ bool build_is_over_limit(struct builder *b, struct span where)
     return b->is_over_limit;
 }
 
+/* Rails first: they decide the bulk of p-channel devices. */
+static bool build_parts(struct builder *b)
+{
+    const struct frame top = {.builder = b, .prefix = ""};
+    if (!build_rails(b) || !build_blocks(b) ||
+        !build_body(&top, b->cell->tree.statements, b->cell->tree.count) || !build_outputs(b)) {
+        return false;
+    }
+    build_finish_unknowns(b->circuit);
+    return true;
+}
+
 /* All steps; false when memory is short. */
 static bool build(struct builder *b)
 {

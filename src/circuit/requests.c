@@ -16,7 +16,6 @@ static bool read_as(struct builder *b, const struct expression *e, struct dimens
 {
     const struct frame top = {.builder = b, .prefix = ""};
     struct expression_scope scope = frame_scope(&top);
-    frame_names(&top, &scope);
     if (e == NULL) {
         return false;
     }
@@ -75,7 +74,6 @@ static bool read_tolerance(struct builder *b, const struct expression *e, struct
 {
     const struct frame top = {.builder = b, .prefix = ""};
     struct expression_scope scope = frame_scope(&top);
-    frame_names(&top, &scope);
     struct quantity found;
     if (e == NULL || !expression_value(e, &scope, b->diagnostics, &found)) {
         return false;
@@ -141,7 +139,6 @@ static bool read_knob(struct builder *b, const struct knob *knob, const struct e
     if (e != NULL && knob->kind == KNOB_LET && b->circuit->lets[knob->parameter].value.bare) {
         const struct frame top = {.builder = b, .prefix = ""};
         struct expression_scope scope = frame_scope(&top);
-        frame_names(&top, &scope);
         struct quantity found;
         if (!expression_value(e, &scope, b->diagnostics, &found)) {
             return false;
@@ -345,10 +342,9 @@ static void check_quiet(struct builder *b, const struct statement *statement)
         }
     }
     if (count >= 0) {
-        const char *near = near_name(code->text, b->known, count);
         diagnostics_add(b->diagnostics, code->span,
-                        near == NULL ? "the codes stand beside the cautions of a review"
-                                     : arena_format(b->arena, "did you mean '%s'?", near),
+                        hint_near(b->arena, code->text, b->known, count,
+                                  "the codes stand beside the cautions of a review"),
                         "there is no caution '%s'", code->text);
     }
     static const enum name_sort sorts[] = {NAME_INSTANCE, NAME_NODE, NAME_OUTPUT, NAME_MODEL,
@@ -361,9 +357,8 @@ static void check_quiet(struct builder *b, const struct statement *statement)
         count += names_list(names, sorts[k], b->known + count, LIST_LIMIT - count);
     }
     if (name->text != NULL) {
-        const char *near = near_name(name->text, b->known, count);
         diagnostics_add(b->diagnostics, name->span,
-                        near == NULL ? NULL : arena_format(b->arena, "did you mean '%s'?", near),
+                        hint_near(b->arena, name->text, b->known, count, NULL),
                         "nothing is called '%s'", name->text);
     }
 }
