@@ -14,7 +14,9 @@ struct analysis_options {
     void *stopped_self;
     void (*progress)(void *self, const char *what, double share); /* NULL: none */
     void *progress_self;
-    struct sweep *extra_sweep; /* a sweep given by options, for analysis_sweep; NULL: the cell's */
+    struct sweep *extra_sweep;  /* a sweep given by options, for analysis_sweep; NULL: the cell's */
+    const struct probe *wanted; /* for analysis_sensitivity; NULL: the currents of all outputs */
+    double grid;                /* m, for analysis_size: lengths are whole multiples of it */
 };
 
 /*
@@ -29,6 +31,16 @@ enum status analysis_review(struct circuit *circuit, const struct analysis_optio
                             struct result **result);
 enum status analysis_sweep(struct circuit *circuit, const struct analysis_options *options,
                            struct result **result);
+/* Shares of the effects in what differs from the paper; docs/explain.md. */
+enum status analysis_explain(struct circuit *circuit, const struct analysis_options *options,
+                             struct result **result);
+/* The `choose` lines solved; verdict "not met" when there is no solution in the ranges.
+ * STATUS_INPUT and *result NULL after messages in the cell's diagnostics. */
+enum status analysis_size(struct circuit *circuit, const struct analysis_options *options,
+                          struct result **result);
+/* Derivatives in every parameter; STATUS_INPUT as above. */
+enum status analysis_sensitivity(struct circuit *circuit, const struct analysis_options *options,
+                                 struct result **result);
 void result_free(struct result *result);
 
 #endif

@@ -368,6 +368,29 @@ enum status derivative_probe(struct operating_point *point, const struct probe *
     return status;
 }
 
+enum status derivative_exchange(struct operating_point *point, const struct probe *probe,
+                                const struct system *other, double *parts)
+{
+    const struct system *s = point->system;
+    struct functional it;
+    enum status status = functional_begin(&it, point) ? STATUS_OK : STATUS_MEMORY;
+    if (status == STATUS_OK) {
+        it.probe = probe;
+        status = probe_gradient(&it) ? STATUS_OK : STATUS_UNSOLVED;
+    }
+    if (status == STATUS_OK) {
+        solve(&it, it.gradient, it.adjoint, true);
+        for (int k = 0; k < s->circuit->instance_count; k++) {
+            parts[k] = (double)(lagrangian(&it, other, k, k) - lagrangian(&it, s, k, k));
+            if (probe->kind == PROBE_DEVICE && probe->index == k) {
+                parts[k] += probe_value(&it, other) - probe_value(&it, s);
+            }
+        }
+    }
+    arena_destroy(it.arena);
+    return status;
+}
+
 enum status derivative_transfer(struct operating_point *point, int row, int column,
                                 const struct parameter_ref *parameters, int count, double *result)
 {

@@ -116,6 +116,11 @@ struct sweep_table {
     int series_count;
 };
 
+struct explanation;       /* explain.h */
+struct repair_list;       /* repair.h */
+struct size_result;       /* size.h */
+struct sensitivity_table; /* sensitivity.h */
+
 /* Everything one run found. Parts that a command does not make are empty. */
 struct result {
     struct arena *arena;
@@ -134,6 +139,12 @@ struct result {
     struct sweep_table *sweeps;
     int sweep_count;
     struct caution_list cautions;
+    struct explanation *explanations; /* one a hand line */
+    int explanation_count;
+    struct repair_list *repairs; /* [requirement_count]; NULL: not looked for */
+    struct size_result *size;
+    struct sensitivity_table *sensitivities;
+    int sensitivity_count;
 };
 
 #endif

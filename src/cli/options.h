@@ -8,7 +8,17 @@
 #include <stdbool.h>
 #include <stdio.h>
 
-enum verb { VERB_REVIEW, VERB_POINT, VERB_SWEEP, VERB_MODELS, VERB_HELP, VERB_COUNT };
+enum verb {
+    VERB_REVIEW,
+    VERB_POINT,
+    VERB_SWEEP,
+    VERB_EXPLAIN,
+    VERB_SIZE,
+    VERB_SENSITIVITY,
+    VERB_MODELS,
+    VERB_HELP,
+    VERB_COUNT
+};
 
 struct verb_row {
     const char *word;
@@ -24,6 +34,10 @@ enum option {
     OPTION_CORNER,
     OPTION_VIEW,
     OPTION_SWEEP,
+    OPTION_OF,
+    OPTION_GRID,
+    OPTION_WRITE,
+    OPTION_ROUND,
     OPTION_JSON,
     OPTION_CSV,
     OPTION_COLOR,
