@@ -298,9 +298,10 @@ static int edge_device(struct operating_point *home, const struct probe *probe)
     return operating_point_polish(home) == STATUS_OK ? found : -1;
 }
 
-/* The device through which most of an effect goes. A hidden resistance stands for its device. */
+/* The device through which most of an effect goes; of those in weak inversion the deepest that has
+ * a tenth of it. A hidden resistance stands for its device. */
 static enum status find_device(const struct lattice *l, struct operating_point *home,
-                               const struct probe *probe, int *instance)
+                               const struct probe *probe, bool inversion, int *instance)
 {
     const struct circuit *c = l->circuit;
     const struct probe pointer = pointer_probe(probe);
@@ -309,11 +310,21 @@ static enum status find_device(const struct lattice *l, struct operating_point *
         return STATUS_MEMORY;
     }
     const enum status status = derivative_exchange(home, &pointer, l->system, parts);
-    double most = 0;
+    double most = 0, deepest = INFINITY;
     for (int k = 0; status == STATUS_OK && k < c->instance_count; k++) {
         if (fabs(parts[k]) > most) {
             most = fabs(parts[k]);
             *instance = c->instances[k].parent >= 0 ? c->instances[k].parent : k;
+        }
+    }
+    for (int k = 0; status == STATUS_OK && inversion && k < c->instance_count; k++) {
+        const int row = quantity_find(c->instances[k].type, "inversion");
+        if (row >= 0 && fabs(parts[k]) > 0.1 * most) {
+            const double level = measure_device_quantity(home->system, k, row, home->refined);
+            if (level < deepest) {
+                deepest = level;
+                *instance = k;
+            }
         }
     }
     return status == STATUS_MEMORY ? STATUS_MEMORY : STATUS_OK;
@@ -331,8 +342,9 @@ static enum status add_sentence(struct lattice *l, struct operating_point *home,
         return STATUS_OK;
     }
     system_conditions(l->system, c->kelvin, corner_effects(l, code));
-    if (instance < 0 || 1u << l->bits[b] != EFFECT_INVERSION) {
-        const enum status status = find_device(l, home, &hand->probe, &instance);
+    const bool inversion = 1u << l->bits[b] == EFFECT_INVERSION;
+    if (instance < 0 || !inversion) {
+        const enum status status = find_device(l, home, &hand->probe, inversion, &instance);
         if (status != STATUS_OK) {
             return status;
         }

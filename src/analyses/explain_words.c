@@ -96,9 +96,9 @@ static const char *inversion(const struct words *w)
     }
     return arena_format(w->arena,
                         "%s runs at inversion %s; the square law asks for %s of overdrive where "
-                        "the device %s %s %s threshold",
+                        "the device %s %s%s",
                         w->instance->name, level, asked, overdrive < 0 ? "stands" : "has", found,
-                        overdrive < 0 ? "below" : "above");
+                        overdrive < 0 ? " below threshold" : "");
 }
 
 static const char *modulation(const struct words *w)

@@ -10,7 +10,7 @@
 /* Effects named beside a hand line in a review, and the least part of the difference that is worth
  * naming. */
 enum { NAMED = 3 };
-static const double least_named = 0.05, least_row = 1e-9;
+static const double least_named = 0.05, least_row = 1e-5;
 
 static struct dimension unit_of(const struct explanation *e)
 {
