@@ -194,7 +194,7 @@ static bool probe_gradient(const struct functional *it)
     }
     case PROBE_CELL:
         for (int k = 0; k < c->instance_count; k++) {
-            if (measure_is_supply(c, k)) {
+            if (isfinite(measure_delivered(s, k, it->x))) {
                 add_device_gradient(it, k, c->instances[k].type->quantity_power, -1);
             }
         }

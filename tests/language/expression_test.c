@@ -95,7 +95,7 @@ static void check_values(const struct value_case *cases, size_t count)
     }
 }
 
-/* IEC 60062 codes as in references.md D09 ("R47" is a name here, written 0R47; "47K" is 47 kelvin).
+/* IEC 60062 codes ("R47" is a name here, written 0R47; "47K" is 47 kelvin).
  */
 static void test_letter_codes(void **state)
 {
