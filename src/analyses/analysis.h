@@ -18,10 +18,13 @@ struct analysis_options {
     void *progress_self;
     struct sweep *extra_sweep; /* a sweep given by options, for analysis_sweep; NULL: the cell's */
     bool all_conditions; /* analysis_review: reads every quantity that the cell asks for over all
-                            `vary` conditions, not only those of `everywhere` lines */
+                            `vary` conditions, not only those of `everywhere` lines, and leaves
+                            explanations and repairs out */
     int jobs;            /* threads; 0: one a processor */
     int samples;         /* analysis_spread: 0 leaves the sampled part out */
     uint64_t seed;
+    const struct probe *wanted; /* for analysis_sensitivity; NULL: the currents of all outputs */
+    double grid;                /* m, for analysis_size: lengths are whole multiples of it */
 };
 
 /*
@@ -39,6 +42,16 @@ enum status analysis_sweep(struct circuit *circuit, const struct analysis_option
 /* Review, then conditions, mismatch and yield. */
 enum status analysis_spread(struct circuit *circuit, const struct analysis_options *options,
                             struct result **result);
+/* Shares of the effects in what differs from the paper; docs/explain.md. */
+enum status analysis_explain(struct circuit *circuit, const struct analysis_options *options,
+                             struct result **result);
+/* The `choose` lines solved; verdict "not met" when there is no solution in the ranges.
+ * STATUS_INPUT and *result NULL after messages in the cell's diagnostics. */
+enum status analysis_size(struct circuit *circuit, const struct analysis_options *options,
+                          struct result **result);
+/* Derivatives in every parameter; STATUS_INPUT as above. */
+enum status analysis_sensitivity(struct circuit *circuit, const struct analysis_options *options,
+                                 struct result **result);
 void result_free(struct result *result);
 
 #endif

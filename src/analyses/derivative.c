@@ -194,12 +194,8 @@ static bool probe_gradient(const struct functional *it)
     }
     case PROBE_CELL:
         for (int k = 0; k < c->instance_count; k++) {
-            const int power = c->instances[k].type->quantity_power;
-            /* a source that takes power is not counted: see measure.c */
-            if (measure_is_supply(c, k) &&
-                (c->instances[k].is_hidden ||
-                 measure_device_quantity(s, k, power, it->point->refined) < 0)) {
-                add_device_gradient(it, k, power, -1);
+            if (isfinite(measure_delivered(s, k, it->x))) {
+                add_device_gradient(it, k, c->instances[k].type->quantity_power, -1);
             }
         }
         return true;
@@ -367,6 +363,29 @@ enum status derivative_probe(struct operating_point *point, const struct probe *
     if (status == STATUS_OK) {
         solve(&it, it.gradient, it.adjoint, true);
         status = all_slopes(&it, parameters, count, result);
+    }
+    arena_destroy(it.arena);
+    return status;
+}
+
+enum status derivative_exchange(struct operating_point *point, const struct probe *probe,
+                                const struct system *other, double *parts)
+{
+    const struct system *s = point->system;
+    struct functional it;
+    enum status status = functional_begin(&it, point) ? STATUS_OK : STATUS_MEMORY;
+    if (status == STATUS_OK) {
+        it.probe = probe;
+        status = probe_gradient(&it) ? STATUS_OK : STATUS_UNSOLVED;
+    }
+    if (status == STATUS_OK) {
+        solve(&it, it.gradient, it.adjoint, true);
+        for (int k = 0; k < s->circuit->instance_count; k++) {
+            parts[k] = (double)(lagrangian(&it, other, k, k) - lagrangian(&it, s, k, k));
+            if (probe->kind == PROBE_DEVICE && probe->index == k) {
+                parts[k] += probe_value(&it, other) - probe_value(&it, s);
+            }
+        }
     }
     arena_destroy(it.arena);
     return status;

@@ -60,6 +60,14 @@ enum status derivative_probe(struct operating_point *point, const struct probe *
                              const struct parameter_ref *parameters, int count, double *result);
 
 /*
+ * derivative_exchange: how much of a change comes through which device, to first order: the change
+ * of Q when the equations of one instance are taken from `other`, a system of the same circuit
+ * under other effects. [instance_count] out.
+ */
+enum status derivative_exchange(struct operating_point *point, const struct probe *probe,
+                                const struct system *other, double *parts);
+
+/*
  * derivative_transfer: the same for T = e_row^T J^-1 e_column, the small-signal transfer from
  * equation `column` to unknown `row`: by a second adjoint solve, since dT = -z^T dJ y with
  * J^T z = e_row, J y = e_column, and J follows x.

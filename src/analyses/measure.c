@@ -78,30 +78,29 @@ static bool is_output(const struct circuit *c, int instance)
     return false;
 }
 
-/* Rails and sources deliver power; the load at an output is not part of the cell. */
-bool measure_is_supply(const struct circuit *c, int k)
+/*
+ * Rails and sources deliver. The load at an output is not part of the cell, and a source that takes
+ * power stands for a part that does: it is not given back.
+ */
+double measure_delivered(const struct system *system, int k, const double *x)
 {
-    const struct device_type *type = c->instances[k].type;
-    return type->drive != NULL && type->quantity_power >= 0 && !is_output(c, k);
+    const struct instance *instance = &system->circuit->instances[k];
+    const struct device_type *type = instance->type;
+    if (type->drive == NULL || type->quantity_power < 0 || is_output(system->circuit, k)) {
+        return NAN;
+    }
+    double q[QUANTITY_LIMIT];
+    describe_plain(system, k, x, q);
+    const double delivered = -q[type->quantity_power];
+    return delivered > 0 || instance->is_hidden ? delivered : (double)NAN;
 }
 
-/*
- * What rails and sources deliver. The load at an output is not part of the cell, and a source that
- * takes power stands for a part that does: it is not given back.
- */
 static double source_power(const struct system *system, const double *x)
 {
-    const struct circuit *c = system->circuit;
     double sum = 0;
-    for (int k = 0; k < c->instance_count; k++) {
-        const struct device_type *type = c->instances[k].type;
-        if (!measure_is_supply(c, k)) {
-            continue;
-        }
-        double q[QUANTITY_LIMIT];
-        describe_plain(system, k, x, q);
-        const double delivered = -q[type->quantity_power];
-        if (isfinite(delivered) && (delivered > 0 || c->instances[k].is_hidden)) {
+    for (int k = 0; k < system->circuit->instance_count; k++) {
+        const double delivered = measure_delivered(system, k, x);
+        if (isfinite(delivered)) {
             sum += delivered;
         }
     }

@@ -24,10 +24,10 @@ double measure_device_quantity(const struct system *system, int instance, int qu
 double measure_headroom(const struct system *system, int instance, const double *x,
                         unsigned *region);
 
-/* The transistor with the least headroom, -1 when there is none; and whether an instance counts for
- * the power of the cell. */
+/* The transistor with the least headroom, -1 when there is none; and what an instance delivers to
+ * the power of the cell, W, NAN when it does not count. */
 int measure_tightest(const struct system *system, const double *x);
-bool measure_is_supply(const struct circuit *circuit, int instance);
+double measure_delivered(const struct system *system, int instance, const double *x);
 
 /* All of a point, into the arena. False when memory is short. */
 bool measure_point(const struct operating_point *point, struct arena *arena,

@@ -8,7 +8,7 @@
 
 #include <math.h>
 
-#include "analyses/derivative.h"
+#include "analyses/quantity.h"
 
 static struct device_values values_of(const struct system *s, int k)
 {
@@ -84,7 +84,7 @@ enum status mismatch_slopes(struct operating_point *p, const struct mismatch *m,
         const struct mismatch_row *row = &m->rows[k];
         list[k] = derivative_own(p->system, row->instance, row->deviate->own_parameter);
     }
-    const enum status status = derivative_probe(p, probe, list, m->count, slopes);
+    const enum status status = quantity_derivative(p, probe, list, m->count, NULL, slopes, NULL);
     for (int k = 0; status == STATUS_OK && k < m->count; k++) {
         slopes[k] *= m->rows[k].sigma;
     }

@@ -27,12 +27,12 @@ bool mismatch_list(const struct system *system, struct arena *arena, struct mism
 void mismatch_apply(struct system *system, const struct mismatch *mismatch, const double *deviates);
 
 /*
- * mismatch_slopes: change of a quantity per standard deviation of each row, by one adjoint solve at
- * the polished point.
+ * mismatch_slopes: change of a quantity per standard deviation of each row, at the polished point;
+ * for most quantities by one adjoint solve (quantity.h).
  *
  * slopes  [count] out
  *
- * Returns STATUS_OK, STATUS_UNSOLVED for a quantity that is no function of the point alone, or
+ * Returns STATUS_OK, STATUS_UNSOLVED for a quantity without a derivative, STATUS_STOPPED or
  * STATUS_MEMORY.
  */
 enum status mismatch_slopes(struct operating_point *point, const struct mismatch *mismatch,

@@ -122,6 +122,10 @@ struct sweep_table {
 struct yield_result;
 struct conditions_result; /* spread_result.h */
 struct mismatch_result;
+struct explanation;       /* explain.h */
+struct repair_list;       /* repair.h */
+struct size_result;       /* size.h */
+struct sensitivity_table; /* sensitivity.h */
 
 /* Everything one run found. Parts that a command does not make are empty. */
 struct result {
@@ -144,6 +148,12 @@ struct result {
     struct caution_list cautions;
     struct conditions_result *conditions;
     struct mismatch_result *mismatch;
+    struct explanation *explanations; /* one a hand line */
+    int explanation_count;
+    struct repair_list *repairs; /* [requirement_count]; NULL: not looked for */
+    struct size_result *size;
+    struct sensitivity_table *sensitivities;
+    int sensitivity_count;
 };
 
 #endif

@@ -104,9 +104,26 @@ static bool deliver(const char *path, const char *text)
     return output_file(path, text);
 }
 
-/* Writes what was asked for; false when something could not be written. */
-static bool deliver_all(const struct options *options, struct ampstead_result *result)
+/* No copy of the cell: there is no solution, this rounding rounds nothing here, or a message says
+ * why. The status is that of the run, or that the wish was wrong. */
+static int refuse_cell(const struct options *options, struct ampstead_result *result)
 {
+    const char *messages = ampstead_result_messages(result, 0);
+    if (*messages != '\0') {
+        fputs(messages, stderr);
+    } else {
+        const char *rounding = options->values[OPTION_ROUND];
+        fprintf(stderr, "ampstead: '--write' has no %s values to write\n",
+                rounding == NULL ? "chosen" : rounding);
+    }
+    const int status = (int)ampstead_result_status(result);
+    return status == AMPSTEAD_WELL ? AMPSTEAD_INPUT : status;
+}
+
+/* Writes what was asked for; the exit status. */
+static int deliver_all(const struct options *options, struct ampstead_result *result)
+{
+    int status = (int)ampstead_result_status(result);
     bool wants_text = true, is_written = true;
     if (options->given[OPTION_JSON]) {
         const char *path = options->values[OPTION_JSON];
@@ -118,20 +135,38 @@ static bool deliver_all(const struct options *options, struct ampstead_result *r
         wants_text = wants_text && !is_stdout(path);
         is_written = deliver(path, ampstead_result_csv(result)) && is_written;
     }
+    if (options->given[OPTION_WRITE]) {
+        const char *path = options->values[OPTION_WRITE];
+        const char *text = ampstead_result_cell(result, options->values[OPTION_ROUND]);
+        wants_text = wants_text && !(text != NULL && is_stdout(path));
+        if (text == NULL) {
+            status = refuse_cell(options, result);
+        } else {
+            is_written = deliver(path, text) && is_written;
+        }
+    }
     if (wants_text) {
         const char *text = ampstead_result_text(result, text_flags(options), text_columns());
         is_written = deliver(NULL, text) && is_written;
     }
-    return is_written;
+    return is_written ? status : AMPSTEAD_MACHINE;
 }
 
 /* Two streams into one would be neither. */
 static bool check_outputs(const struct options *options)
 {
-    if (options->given[OPTION_JSON] && options->given[OPTION_CSV] &&
-        is_stdout(options->values[OPTION_JSON]) && is_stdout(options->values[OPTION_CSV])) {
-        fputs("ampstead: '--json' and '--csv' cannot both go to standard output\n", stderr);
-        return false;
+    static const enum option streams[] = {OPTION_JSON, OPTION_CSV, OPTION_WRITE};
+    int taken = -1;
+    for (size_t k = 0; k < sizeof streams / sizeof streams[0]; k++) {
+        if (!options->given[streams[k]] || !is_stdout(options->values[streams[k]])) {
+            continue;
+        }
+        if (taken >= 0) {
+            fprintf(stderr, "ampstead: '--%s' and '--%s' cannot both go to standard output\n",
+                    option_rows[taken].name, option_rows[streams[k]].name);
+            return false;
+        }
+        taken = (int)streams[k];
     }
     return true;
 }
@@ -199,6 +234,8 @@ static int run_cell(const struct options *options, const volatile sig_atomic_t *
     request.sets = options->sets;
     request.set_count = options->set_count;
     request.sweep = options->values[OPTION_SWEEP];
+    request.of = options->values[OPTION_OF];
+    request.grid = options->values[OPTION_GRID];
     request.stopped = ask_stopped;
     request.stopped_self = &watch;
     request.progress = show_progress;
@@ -213,8 +250,8 @@ static int run_cell(const struct options *options, const volatile sig_atomic_t *
     } else if (status == AMPSTEAD_STOPPED) {
         fputs("ampstead: stopped\n", stderr);
     }
-    if (status != AMPSTEAD_INPUT && status != AMPSTEAD_MACHINE && !deliver_all(options, result)) {
-        status = AMPSTEAD_MACHINE;
+    if (status != AMPSTEAD_INPUT && status != AMPSTEAD_MACHINE) {
+        status = deliver_all(options, result);
     }
     ampstead_result_free(result);
     return status;

@@ -4,8 +4,9 @@
 #include "cli/options.h"
 
 enum {
-    RESULT_VERBS = 1 << VERB_REVIEW | 1 << VERB_POINT | 1 << VERB_SWEEP | 1 << VERB_SPREAD,
-    CELL_VERBS = RESULT_VERBS | 1 << VERB_MODELS,
+    RESULT_VERBS = 1 << VERB_REVIEW | 1 << VERB_POINT | 1 << VERB_SWEEP | 1 << VERB_SIZE |
+                   1 << VERB_SENSITIVITY | 1 << VERB_SPREAD,
+    CELL_VERBS = RESULT_VERBS | 1 << VERB_EXPLAIN | 1 << VERB_MODELS,
     ALL_VERBS = CELL_VERBS | 1 << VERB_HELP
 };
 
@@ -24,6 +25,20 @@ const struct verb_row verb_rows[VERB_COUNT] = {
          "Moves a rail, let, source, resistor, output or the temperature, and shows what\n"
          "follows. --csv writes one row a point: number of the sweep, the swept thing, the\n"
          "family, and each quantity, with SI units in the header."},
+    [VERB_EXPLAIN] =
+        {"explain", "FILE.cell", "why each `hand` line differs: shares of the effects",
+         "Solves the cell under every subset of the effects that lie between the square law and\n"
+         "the full model, and attributes the difference of each `hand` line to them (Shapley\n"
+         "value). The shares add up to the difference."},
+    [VERB_SIZE] =
+        {"size", "FILE.cell", "the values that the `choose` lines ask for, exact and preferred",
+         "Solves all `choose` lines together inside their ranges, then shows the nearest E24 and\n"
+         "E96 values (IEC 60063), lengths on the grid, and what those give. Exit status 1 when\n"
+         "there is no solution in the ranges; the nearest is shown then."},
+    [VERB_SENSITIVITY] =
+        {"sensitivity", "FILE.cell", "how a quantity follows every parameter, ranked",
+         "Exact derivatives in every value of the cell, its rails, models, lets and the\n"
+         "temperature, by an adjoint solve; relative and absolute."},
     [VERB_SPREAD] =
         {"spread", "FILE.cell", "the `vary` conditions, corners, mismatch and yield",
          "Solves all combinations of the `vary` ends, every corner and a fine sweep of each\n"
@@ -38,6 +53,7 @@ const struct verb_row verb_rows[VERB_COUNT] = {
 };
 
 static const char *const view_words[] = {"full", "hand", NULL};
+static const char *const round_words[] = {"exact", "E24", "E96", "grid", NULL};
 static const char *const color_words[] = {"auto", "always", "never", NULL};
 
 const struct option_row option_rows[OPTION_COUNT] = {
@@ -58,6 +74,16 @@ const struct option_row option_rows[OPTION_COUNT] = {
                      "the same seed gives the same samples, however many jobs", 1 << VERB_SPREAD},
     [OPTION_JOBS] = {"jobs", 'j', ARGUMENT_NEEDED, "N", NULL, "one a processor",
                      "threads for conditions and samples", 1 << VERB_SPREAD | 1 << VERB_REVIEW},
+    [OPTION_OF] = {"of", 0, ARGUMENT_NEEDED, "QUANTITY", NULL, "the current of every output",
+                   "such as tail.resistance or M1.vgs", 1 << VERB_SENSITIVITY},
+    [OPTION_GRID] = {"grid", 0, ARGUMENT_NEEDED, "LENGTH", NULL, "10 nm",
+                     "lengths and widths are rounded to whole multiples of it", 1 << VERB_SIZE},
+    [OPTION_WRITE] = {"write", 0, ARGUMENT_NEEDED, "FILE", NULL, "off",
+                      "writes a copy of the cell with the chosen values in place; - is standard "
+                      "output instead of the text",
+                      1 << VERB_SIZE},
+    [OPTION_ROUND] = {"round", 0, ARGUMENT_NEEDED, "exact|E24|E96|grid", round_words, "exact",
+                      "which values --write puts in place", 1 << VERB_SIZE},
     [OPTION_JSON] = {"json", 0, ARGUMENT_OPTIONAL, "FILE", NULL, "off",
                      "writes JSON (SI units) to FILE, or without FILE to standard output instead "
                      "of the text; the next word is FILE only if it ends with .json, else "

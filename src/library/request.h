@@ -19,4 +19,11 @@ enum status request_temperature(struct cell *cell, const char *text, double *kel
 enum status request_sweep(struct cell *cell, const struct circuit *circuit, const char *text,
                           struct sweep *sweep);
 
+/* "tail.resistance" */
+enum status request_probe(struct cell *cell, const struct circuit *circuit, const char *text,
+                          struct probe *probe);
+
+/* "10 nm", m, above zero */
+enum status request_length(struct cell *cell, const char *text, double *length);
+
 #endif

@@ -121,6 +121,7 @@ void page_requirements(struct layout *layout, const struct result *result)
         table_cell(&table, 3, margin);
     }
     table_write(&table);
+    page_repairs(layout, result);
 }
 
 void page_paper(struct layout *layout, const struct result *result)
@@ -147,4 +148,5 @@ void page_paper(struct layout *layout, const struct result *result)
                    isnan(row->in_hand_view) ? "" : show_probe(layout, probe, row->in_hand_view));
     }
     table_write(&table);
+    page_why(layout, result);
 }

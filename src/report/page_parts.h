@@ -13,6 +13,10 @@ void page_devices(struct layout *layout, const struct result *result);
 void page_requirements(struct layout *layout, const struct result *result);
 /* What the paper says against what was computed. */
 void page_paper(struct layout *layout, const struct result *result);
+/* The effects behind each line of the paper, and what would meet a requirement that is not met;
+ * both continue the part at hand. */
+void page_why(struct layout *layout, const struct result *result);
+void page_repairs(struct layout *layout, const struct result *result);
 void page_cautions(struct layout *layout, const struct result *result);
 /* How the point was found and how good it is. */
 void page_evidence(struct layout *layout, const struct result *result);

@@ -35,6 +35,16 @@ void report_sweep(const struct result *result, const struct report_style *style,
 /* Conditions, mismatch and yield. */
 void report_spread(const struct result *result, const struct report_style *style,
                    struct buffer *out);
+/* Shares of the effects in what differs from the paper. */
+void report_explain(const struct result *result, const struct report_style *style,
+                    struct buffer *out);
+
+/* The chosen values and the preferred ones beside them. */
+void report_size(const struct result *result, const struct report_style *style, struct buffer *out);
+
+/* Ranked derivatives. */
+void report_sensitivity(const struct result *result, const struct report_style *style,
+                        struct buffer *out);
 
 /* Every model value in force. */
 void report_models(const struct circuit *circuit, const struct report_style *style,

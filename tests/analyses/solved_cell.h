@@ -36,13 +36,18 @@ static inline void cell_open(struct solved_cell *it, const char *text)
     }
 }
 
-static inline void cell_solve(struct solved_cell *it, const char *text)
+static inline void cell_solve_as(struct solved_cell *it, const char *text, unsigned effects)
 {
     cell_open(it, text);
-    it->system = system_create(it->circuit, it->circuit->kelvin, EFFECTS_FULL);
+    it->system = system_create(it->circuit, it->circuit->kelvin, effects);
     assert_non_null(it->system);
     assert_true(operating_point_create(&it->point, it->system, &plain_options));
     assert_int_equal(operating_point_find(&it->point), STATUS_OK);
+}
+
+static inline void cell_solve(struct solved_cell *it, const char *text)
+{
+    cell_solve_as(it, text, EFFECTS_FULL);
 }
 
 static inline void cell_close(struct solved_cell *it)

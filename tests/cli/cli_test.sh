@@ -36,7 +36,7 @@ err_empty() { [ ! -s "$work/err" ] || fail "standard error must be empty"; }
 run 0 help && out_has "--temperature T, -t" && err_empty
 run 0 --help && out_has "Verbs:"
 run 0 -h && out_has "Verbs:"
-for verb in review point sweep spread models help; do
+for verb in review point sweep explain size sensitivity spread models help; do
     run 0 help $verb && out_has "ampstead $verb" && out_has "Exit status: 0 all well"
     run 0 $verb --help && out_has "Exit status: 0 all well"
 done
