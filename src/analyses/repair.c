@@ -242,8 +242,8 @@ static bool is_met_at(struct repairer *r, const struct candidate *it, double to,
         const struct requirement_result *now = &scratch.requirements[k];
         if (now->requirement == r->requirement) {
             met = now->judgement == JUDGED_MET;
-        } else if (r->result->requirements[k].judgement == JUDGED_MET &&
-                   now->judgement != JUDGED_MET && *breaks == NULL) {
+        } else if (r->result->requirements[k].judgement == JUDGED_MET && *breaks == NULL &&
+                   (now->judgement == JUDGED_NOT_MET || now->judgement == JUDGED_UNKNOWN)) {
             *breaks = now->requirement->text;
         }
     }
