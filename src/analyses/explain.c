@@ -61,7 +61,8 @@ unsigned explain_effects(struct system *s)
     const int count = s->circuit->instance_count;
     const size_t size =
         count == 0 ? 0 : s->block[count - 1] + s->circuit->instances[count - 1].type->prepared_size;
-    char *copy = malloc(size + 1);
+    char *copy =
+        malloc(size + 1); /* when memory is short every effect counts as there: right, but slow */
     unsigned found = copy == NULL ? EFFECTS_FULL : 0;
     for (int bit = 0; copy != NULL && bit < EFFECT_COUNT; bit++) {
         const unsigned effect = 1u << bit;

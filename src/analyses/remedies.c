@@ -54,9 +54,10 @@ static enum status begin(struct circuit *circuit, const struct analysis_options 
 
 static enum status end(enum status status, struct bench *bench, struct result **result)
 {
+    const bool texts_failed = bench->system != NULL && arena_failed(bench->system->arena);
     bench_close(bench);
-    if (*result != NULL &&
-        (status == STATUS_MEMORY || status == STATUS_INPUT || arena_failed((*result)->arena))) {
+    if (*result != NULL && (status == STATUS_MEMORY || status == STATUS_INPUT || texts_failed ||
+                            arena_failed((*result)->arena))) {
         status = status == STATUS_INPUT ? STATUS_INPUT : STATUS_MEMORY;
         result_free(*result);
         *result = NULL;

@@ -27,8 +27,19 @@ static bool is_idle(const struct sensitivity_row *row)
     return isnan(row->relative) ? !(fabs(row->absolute) > 0) : fabs(row->relative) < idle_share;
 }
 
-static void fill(struct sensitivity_table *table, const struct parameter_list *parameters,
-                 const double *slopes)
+/* What a cell stands in: a rail, or the temperature. */
+static bool is_condition(const struct circuit *c, const struct parameter_ref *p)
+{
+    for (int k = 0; k < c->rail_count; k++) {
+        if (p->sort == PARAMETER_OWN && p->instance == c->rails[k].instance) {
+            return true;
+        }
+    }
+    return p->sort == PARAMETER_KNOB && p->knob.kind == KNOB_TEMPERATURE;
+}
+
+static void fill(struct sensitivity_table *table, const struct circuit *c,
+                 const struct parameter_list *parameters, const double *slopes)
 {
     for (int k = 0; k < parameters->count; k++) {
         const struct parameter_ref *p = &parameters->list[k];
@@ -38,7 +49,8 @@ static void fill(struct sensitivity_table *table, const struct parameter_list *p
                                                   .value = p->value,
                                                   .dimension = p->dimension,
                                                   .absolute = slopes[k],
-                                                  .relative = has_relative ? relative : NAN};
+                                                  .relative = has_relative ? relative : NAN,
+                                                  .is_condition = is_condition(c, p)};
     }
     table->row_count = parameters->count;
     qsort(table->rows, (size_t)table->row_count, sizeof *table->rows, by_rank);
@@ -63,7 +75,7 @@ enum status sensitivity_find(struct operating_point *point, const struct probe *
     const enum status status = quantity_derivative(point, probe, parameters.list, parameters.count,
                                                    &table->value, slopes, &table->way);
     if (status == STATUS_OK && isfinite(table->value)) {
-        fill(table, &parameters, slopes);
+        fill(table, point->system->circuit, &parameters, slopes);
         return STATUS_OK;
     }
     table->trouble = isinf(table->value) ? "it is unlimited" : "it has no value here";

@@ -10,8 +10,9 @@ struct sensitivity_row {
     const char *parameter; /* "RE", "M1.W", "n180.threshold", "temperature" */
     double value;          /* of the parameter, SI */
     struct dimension dimension;
-    double absolute; /* dQ/dp, SI */
-    double relative; /* (p/Q) dQ/dp, 1; NAN where p or Q is 0 */
+    double absolute;   /* dQ/dp, SI */
+    double relative;   /* (p/Q) dQ/dp, 1; NAN where p or Q is 0 */
+    bool is_condition; /* a rail or the temperature */
 };
 
 struct sensitivity_table {

@@ -55,8 +55,13 @@ static void rows_table(struct layout *layout, const struct sensitivity_table *it
     table_column(&table, (struct table_column){.head = "+1 % moves it by", .right = true});
     table_column(&table, (struct table_column){.head = "a unit moves it by", .right = true});
     const int acting = it->row_count - it->idle_count;
-    for (int k = 0; k < acting && k < SHOWN_ROWS; k++) {
+    int left_out = 0;
+    for (int k = 0; k < acting; k++) {
         const struct sensitivity_row *row = &it->rows[k];
+        if (k >= SHOWN_ROWS && !row->is_condition) {
+            left_out++;
+            continue;
+        }
         const bool hot = is_temperature(row);
         table_row(&table, TONE_STRONG);
         table_cell(&table, 0, layout_short(layout, row->parameter, 34));
@@ -69,10 +74,10 @@ static void rows_table(struct layout *layout, const struct sensitivity_table *it
         table_cell(&table, 3, absolute_text(layout, it, row));
     }
     table_write(&table);
-    if (acting > SHOWN_ROWS) {
-        layout_line(layout, TONE_QUIET,
-                    layout_format(layout, "%d more with a smaller effect are in the JSON",
-                                  acting - SHOWN_ROWS));
+    if (left_out > 0) {
+        layout_line(
+            layout, TONE_QUIET,
+            layout_format(layout, "%d more with a smaller effect are in the JSON", left_out));
     }
     layout_line(layout, TONE_QUIET,
                 layout_format(layout, "%d parameters have no effect on it", it->idle_count));
