@@ -55,25 +55,27 @@ static bool switching_changes(struct system *s, unsigned from, unsigned to, char
     return blocks_differ(s, copy);
 }
 
-unsigned explain_effects(struct system *s)
+bool explain_effects(struct system *s, unsigned *effects)
 {
     const unsigned before = s->conditions.effects;
     const int count = s->circuit->instance_count;
     const size_t size =
         count == 0 ? 0 : s->block[count - 1] + s->circuit->instances[count - 1].type->prepared_size;
-    char *copy =
-        malloc(size + 1); /* when memory is short every effect counts as there: right, but slow */
-    unsigned found = copy == NULL ? EFFECTS_FULL : 0;
-    for (int bit = 0; copy != NULL && bit < EFFECT_COUNT; bit++) {
+    char *copy = malloc(size + 1);
+    if (copy == NULL) {
+        return false;
+    }
+    *effects = 0;
+    for (int bit = 0; bit < EFFECT_COUNT; bit++) {
         const unsigned effect = 1u << bit;
         if (switching_changes(s, EFFECTS_HAND, effect, copy, size) ||
             switching_changes(s, EFFECTS_FULL, EFFECTS_FULL & ~effect, copy, size)) {
-            found |= effect;
+            *effects |= effect;
         }
     }
     free(copy);
     system_conditions(s, s->conditions.kelvin, before);
-    return found;
+    return true;
 }
 
 /* --- the corners -------------------------------------------------------------------------------
@@ -160,7 +162,10 @@ static enum status lattice_open(struct lattice *l, const struct operating_point 
         !operating_point_create(&l->point, l->system, options)) {
         return STATUS_MEMORY;
     }
-    const unsigned effects = explain_effects(l->system);
+    unsigned effects;
+    if (!explain_effects(l->system, &effects)) {
+        return STATUS_MEMORY;
+    }
     for (int bit = 0; bit < EFFECT_COUNT; bit++) {
         if ((effects & 1u << bit) != 0) {
             l->bits[l->bit_count++] = bit;
@@ -280,23 +285,23 @@ static struct probe pointer_probe(const struct probe *probe)
 }
 
 /* The transistor that ends the range of an output, for quantities that are about that; -1: none. */
-static int edge_device(struct operating_point *home, const struct probe *probe)
+static enum status edge_device(struct operating_point *home, const struct probe *probe, int *found)
 {
-    struct output_result r;
-    const struct circuit *c = home->system->circuit;
+    struct output_result r = {0};
+    *found = -1;
     if (probe->kind != PROBE_OUTPUT ||
         (probe->quantity != OUTPUT_COMPLIANCE && probe->quantity != OUTPUT_LOW &&
          probe->quantity != OUTPUT_HIGH)) {
-        return -1;
+        return STATUS_OK;
     }
     struct arena *arena = arena_create();
-    int found = -1;
-    if (arena != NULL && output_edges(home, probe->index, arena, &r) == STATUS_OK &&
-        r.compliance_device != NULL) {
-        found = circuit_find_instance(c, r.compliance_device);
+    enum status status =
+        arena == NULL ? STATUS_MEMORY : output_edges(home, probe->index, arena, &r);
+    if (status == STATUS_OK && r.compliance_device != NULL) {
+        *found = circuit_find_instance(home->system->circuit, r.compliance_device);
     }
     arena_destroy(arena);
-    return operating_point_polish(home) == STATUS_OK ? found : -1;
+    return status == STATUS_OK ? operating_point_polish(home) : status;
 }
 
 /* The device through which most of an effect goes; of those in weak inversion the deepest that has
@@ -413,7 +418,11 @@ static enum status explain_line(struct lattice *l, struct operating_point *home,
     if (e->shares == NULL) {
         return STATUS_MEMORY;
     }
-    const int edge = edge_device(home, &hand->probe);
+    int edge;
+    const enum status found = edge_device(home, &hand->probe, &edge);
+    if (found != STATUS_OK) {
+        return found;
+    }
     double most = 0, share[EFFECT_COUNT];
     for (int b = 0; b < l->bit_count; b++) {
         share[b] = shapley(l, b, h, e->as_conductance);

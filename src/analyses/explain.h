@@ -40,8 +40,8 @@ enum status explain_hands(struct operating_point *home, const struct analysis_op
                           struct result *result);
 
 /* Which effects the cell has: a bit is in the sum when switching it changes any device, alone or
- * with all others on. */
-unsigned explain_effects(struct system *system);
+ * with all others on. False when memory is short. */
+bool explain_effects(struct system *system, unsigned *effects);
 
 /* What stands behind a share. */
 struct effect_case {

@@ -28,8 +28,12 @@ static enum status bench_open(struct bench *bench, struct circuit *circuit,
     }
     if (result->point.x != NULL) {
         memcpy(bench->point.x, result->point.x, (size_t)bench->system->n * sizeof *bench->point.x);
-        if (operating_point_newton(&bench->point) == NEWTON_CONVERGED) {
+        const enum newton_status status = operating_point_newton(&bench->point);
+        if (status == NEWTON_CONVERGED) {
             return operating_point_polish(&bench->point);
+        }
+        if (status == NEWTON_MEMORY || status == NEWTON_STOPPED) {
+            return status == NEWTON_MEMORY ? STATUS_MEMORY : STATUS_STOPPED;
         }
     }
     return operating_point_find(&bench->point);
