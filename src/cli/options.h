@@ -8,7 +8,19 @@
 #include <stdbool.h>
 #include <stdio.h>
 
-enum verb { VERB_REVIEW, VERB_POINT, VERB_SWEEP, VERB_STATES, VERB_MODELS, VERB_HELP, VERB_COUNT };
+enum verb {
+    VERB_REVIEW,
+    VERB_POINT,
+    VERB_SWEEP,
+    VERB_EXPLAIN,
+    VERB_SIZE,
+    VERB_SENSITIVITY,
+    VERB_SPREAD,
+    VERB_STATES,
+    VERB_MODELS,
+    VERB_HELP,
+    VERB_COUNT
+};
 
 struct verb_row {
     const char *word;
@@ -27,6 +39,13 @@ enum option {
     OPTION_CERTIFY,
     OPTION_BOXES,
     OPTION_LEAKAGE,
+    OPTION_SAMPLES,
+    OPTION_SEED,
+    OPTION_JOBS,
+    OPTION_OF,
+    OPTION_GRID,
+    OPTION_WRITE,
+    OPTION_ROUND,
     OPTION_JSON,
     OPTION_CSV,
     OPTION_COLOR,

@@ -4,8 +4,9 @@
 #include "cli/options.h"
 
 enum {
-    RESULT_VERBS = 1 << VERB_REVIEW | 1 << VERB_POINT | 1 << VERB_SWEEP | 1 << VERB_STATES,
-    CELL_VERBS = RESULT_VERBS | 1 << VERB_MODELS,
+    RESULT_VERBS = 1 << VERB_REVIEW | 1 << VERB_POINT | 1 << VERB_SWEEP | 1 << VERB_SIZE |
+                   1 << VERB_SENSITIVITY | 1 << VERB_SPREAD | 1 << VERB_STATES,
+    CELL_VERBS = RESULT_VERBS | 1 << VERB_EXPLAIN | 1 << VERB_MODELS,
     ALL_VERBS = CELL_VERBS | 1 << VERB_HELP
 };
 
@@ -24,6 +25,27 @@ const struct verb_row verb_rows[VERB_COUNT] = {
          "Moves a rail, let, source, resistor, output or the temperature, and shows what\n"
          "follows. --csv writes one row a point: number of the sweep, the swept thing, the\n"
          "family, and each quantity, with SI units in the header."},
+    [VERB_EXPLAIN] =
+        {"explain", "FILE.cell", "why each `hand` line differs: shares of the effects",
+         "Solves the cell under every subset of the effects that lie between the square law and\n"
+         "the full model, and attributes the difference of each `hand` line to them (Shapley\n"
+         "value). The shares add up to the difference."},
+    [VERB_SIZE] =
+        {"size", "FILE.cell", "the values that the `choose` lines ask for, exact and preferred",
+         "Solves all `choose` lines together inside their ranges, then shows the nearest E24 and\n"
+         "E96 values (IEC 60063), lengths on the grid, and what those give. Exit status 1 when\n"
+         "there is no solution in the ranges; the nearest is shown then."},
+    [VERB_SENSITIVITY] =
+        {"sensitivity", "FILE.cell", "how a quantity follows every parameter, ranked",
+         "Exact derivatives in every value of the cell, its rails, models, lets and the\n"
+         "temperature, by an adjoint solve; relative and absolute."},
+    [VERB_SPREAD] =
+        {"spread", "FILE.cell", "the `vary` conditions, corners, mismatch and yield",
+         "Solves all combinations of the `vary` ends, every corner and a fine sweep of each\n"
+         "thing, and names the worst place of every quantity; then mismatch, to first order\n"
+         "with its causes, and sampled with the yield of each `require` line. Judges\n"
+         "`everywhere` and `for P%`. --csv writes one row a sample: number, state, and each\n"
+         "quantity, with SI units in the header."},
     [VERB_STATES] =
         {"states", "FILE.cell", "every resting state with proof, and whether the cell starts",
          "Finds all DC states and proves that none was missed; says which cannot be held, where\n"
@@ -36,6 +58,7 @@ const struct verb_row verb_rows[VERB_COUNT] = {
 };
 
 static const char *const view_words[] = {"full", "hand", NULL};
+static const char *const round_words[] = {"exact", "E24", "E96", "grid", NULL};
 static const char *const color_words[] = {"auto", "always", "never", NULL};
 
 const struct option_row option_rows[OPTION_COUNT] = {
@@ -57,6 +80,22 @@ const struct option_row option_rows[OPTION_COUNT] = {
                       "boxes that the proof may look at before it gives up", 1 << VERB_STATES},
     [OPTION_LEAKAGE] = {"leakage", 0, ARGUMENT_NEEDED, "I", NULL, "1 nA",
                         "a start-up push below this current is at risk", 1 << VERB_STATES},
+    [OPTION_SAMPLES] = {"samples", 'n', ARGUMENT_NEEDED, "N", NULL, "2000",
+                        "mismatch samples, each a full solve; 0 leaves them out", 1 << VERB_SPREAD},
+    [OPTION_SEED] = {"seed", 0, ARGUMENT_NEEDED, "N", NULL, "1",
+                     "the same seed gives the same samples, however many jobs", 1 << VERB_SPREAD},
+    [OPTION_JOBS] = {"jobs", 'j', ARGUMENT_NEEDED, "N", NULL, "one a processor",
+                     "threads for conditions and samples", 1 << VERB_SPREAD | 1 << VERB_REVIEW},
+    [OPTION_OF] = {"of", 0, ARGUMENT_NEEDED, "QUANTITY", NULL, "the current of every output",
+                   "such as tail.resistance or M1.vgs", 1 << VERB_SENSITIVITY},
+    [OPTION_GRID] = {"grid", 0, ARGUMENT_NEEDED, "LENGTH", NULL, "10 nm",
+                     "lengths and widths are rounded to whole multiples of it", 1 << VERB_SIZE},
+    [OPTION_WRITE] = {"write", 0, ARGUMENT_NEEDED, "FILE", NULL, "off",
+                      "writes a copy of the cell with the chosen values in place; - is standard "
+                      "output instead of the text",
+                      1 << VERB_SIZE},
+    [OPTION_ROUND] = {"round", 0, ARGUMENT_NEEDED, "exact|E24|E96|grid", round_words, "exact",
+                      "which values --write puts in place", 1 << VERB_SIZE},
     [OPTION_JSON] = {"json", 0, ARGUMENT_OPTIONAL, "FILE", NULL, "off",
                      "writes JSON (SI units) to FILE, or without FILE to standard output instead "
                      "of the text; the next word is FILE only if it ends with .json, else "
@@ -64,7 +103,7 @@ const struct option_row option_rows[OPTION_COUNT] = {
                      CELL_VERBS},
     [OPTION_CSV] = {"csv", 0, ARGUMENT_NEEDED, "FILE", NULL, "off",
                     "writes CSV (SI units) to FILE; - is standard output instead of the text",
-                    1 << VERB_REVIEW | 1 << VERB_SWEEP},
+                    1 << VERB_REVIEW | 1 << VERB_SWEEP | 1 << VERB_SPREAD},
     [OPTION_COLOR] = {"color", 0, ARGUMENT_NEEDED, "auto|always|never", color_words, "auto",
                       "auto: on a terminal, unless NO_COLOR is set", ALL_VERBS},
     [OPTION_HELP] = {"help", 'h', ARGUMENT_NONE, NULL, NULL, "off", "what a verb does and takes",

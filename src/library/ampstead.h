@@ -50,7 +50,8 @@ enum ampstead_view { AMPSTEAD_VIEW_FULL = 0, AMPSTEAD_VIEW_HAND = 1 };
  * and stays the caller's. */
 struct ampstead_request {
     size_t size;             /* sizeof(struct ampstead_request): set by AMPSTEAD_REQUEST */
-    const char *command;     /* "review", "point", "sweep", "states" or "models"; NULL: review */
+    const char *command;     /* "review", "point", "sweep", "explain", "size", "sensitivity",
+                                "spread", "states" or "models"; NULL: review */
     const char *path;        /* the cell file; "-": standard input. With text: its name. Required */
     const char *text;        /* the cell itself, instead of the file; NULL: read the file */
     size_t text_length;      /* bytes of text */
@@ -64,6 +65,8 @@ struct ampstead_request {
     int model_folder_count;
     const char *sweep; /* for command "sweep": "THING from A to B [points N] show Q, Q"; NULL: the
                           sweeps of the cell */
+    const char *of; /* for command "sensitivity": "tail.resistance"; NULL: every output's current */
+    const char *grid; /* for command "size": lengths are whole multiples of it; NULL: "10 nm" */
     int (*stopped)(void *self); /* asked often during long work; not 0 ends it. NULL: never */
     void *stopped_self;
     void (*progress)(void *self, const char *what, double share); /* share: 0 to 1. NULL: none */
@@ -71,12 +74,17 @@ struct ampstead_request {
     int certify;         /* for command "point": not 0 proves it unique in a small box */
     long boxes;          /* for command "states": boxes of the proof, then it gives up */
     const char *leakage; /* for command "states": "1 nA", a push below it is at risk; NULL: that */
+    int samples; /* for command "spread": mismatch samples, 0 to AMPSTEAD_SAMPLE_LIMIT */
+    unsigned long long seed; /* the same seed gives the same samples, whatever `jobs` is */
+    int jobs;                /* threads, for "spread" and `everywhere`; 0: one a processor */
 };
+
+enum { AMPSTEAD_SAMPLES = 2000, AMPSTEAD_SAMPLE_LIMIT = 10000000 };
 
 #define AMPSTEAD_REQUEST                                                                           \
     {                                                                                              \
         sizeof(struct ampstead_request), 0, 0, 0, 0, AMPSTEAD_VIEW_FULL, 0, 0, 0, 0, 0, 0, 0, 0,   \
-            0, 0, 0, 0, 100000, 0                                                                  \
+            0, 0, 0, 0, 0, 0, 100000, 0, AMPSTEAD_SAMPLES, 1, 0                                    \
     }
 
 struct ampstead_result;
@@ -124,8 +132,20 @@ AMPSTEAD_API const char *ampstead_result_text(struct ampstead_result *result, un
 /* The same as one JSON object. NULL as above. */
 AMPSTEAD_API const char *ampstead_result_json(struct ampstead_result *result);
 
-/* Curves (review) or sweeps (sweep) as CSV. NULL as above, and for the other commands. */
+/* Curves (review), sweeps (sweep) or samples (spread) as CSV. NULL as above, and for the other
+ * commands. */
 AMPSTEAD_API const char *ampstead_result_csv(struct ampstead_result *result);
+
+/*
+ * ampstead_result_cell: after "size", the text of the cell with the chosen values in place, its
+ * comments and layout untouched.
+ *
+ * rounding  "exact" (also NULL), "E24", "E96" or "grid": which values
+ *
+ * NULL when there is no solution or no such rounding here, memory is short, or a value has no place
+ * of its own in the text (the messages say so).
+ */
+AMPSTEAD_API const char *ampstead_result_cell(struct ampstead_result *result, const char *rounding);
 
 /*
  * ampstead_result_value: one quantity by its name in the cell language: "tail.current", "M1.vgs",
