@@ -396,7 +396,7 @@ static void add_paper(struct explanation *e)
     const double share = e->hand_view - e->paper;
     if (fabs(share) > 0) {
         e->shares[e->share_count++] =
-            (struct effect_share){.effect = "the paper beside its own square law", .share = share};
+            (struct effect_share){.effect = "the paper beside the hand view", .share = share};
     }
 }
 

@@ -4,8 +4,8 @@
 #include "cli/options.h"
 
 enum {
-    RESULT_VERBS = 1 << VERB_REVIEW | 1 << VERB_POINT | 1 << VERB_SWEEP | 1 << VERB_SIZE |
-                   1 << VERB_SENSITIVITY,
+    RESULT_VERBS = 1 << VERB_REVIEW | 1 << VERB_POINT | 1 << VERB_SWEEP | 1 << VERB_STATES |
+                   1 << VERB_SIZE | 1 << VERB_SENSITIVITY,
     CELL_VERBS = RESULT_VERBS | 1 << VERB_EXPLAIN | 1 << VERB_MODELS,
     ALL_VERBS = CELL_VERBS | 1 << VERB_HELP
 };
@@ -39,6 +39,11 @@ const struct verb_row verb_rows[VERB_COUNT] = {
         {"sensitivity", "FILE.cell", "how a quantity follows every parameter, ranked",
          "Exact derivatives in every value of the cell, its rails, models, lets and the\n"
          "temperature, by an adjoint solve; relative and absolute."},
+    [VERB_STATES] =
+        {"states", "FILE.cell", "every resting state with proof, and whether the cell starts",
+         "Finds all DC states and proves that none was missed; says which cannot be held, where\n"
+         "slowly rising rails lead, how strongly the loop is pushed out of its off state, and the\n"
+         "lowest supply. The proof may take seconds; Ctrl-C shows what was found until then."},
     [VERB_MODELS] = {"models", "FILE", "every model value in force, given or default",
                      "FILE is a cell, or a process file by itself."},
     [VERB_HELP] = {"help", "[VERB]", "this overview, or what one verb does and takes",
@@ -71,6 +76,13 @@ const struct option_row option_rows[OPTION_COUNT] = {
                       1 << VERB_SIZE},
     [OPTION_ROUND] = {"round", 0, ARGUMENT_NEEDED, "exact|E24|E96|grid", round_words, "exact",
                       "which values --write puts in place", 1 << VERB_SIZE},
+    [OPTION_CERTIFY] = {"certify", 0, ARGUMENT_NONE, NULL, NULL, "off",
+                        "proves that the point is the only one in a box a few pV wide",
+                        1 << VERB_POINT},
+    [OPTION_BOXES] = {"boxes", 0, ARGUMENT_NEEDED, "N", NULL, "100000",
+                      "boxes that the proof may look at before it gives up", 1 << VERB_STATES},
+    [OPTION_LEAKAGE] = {"leakage", 0, ARGUMENT_NEEDED, "I", NULL, "1 nA",
+                        "a start-up push below this current is at risk", 1 << VERB_STATES},
     [OPTION_JSON] = {"json", 0, ARGUMENT_OPTIONAL, "FILE", NULL, "off",
                      "writes JSON (SI units) to FILE, or without FILE to standard output instead "
                      "of the text; the next word is FILE only if it ends with .json, else "

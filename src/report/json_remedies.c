@@ -56,7 +56,7 @@ json_t *json_hand(const struct explanation *e)
     text(&good, object, "quantity", e->hand->probe.text);
     text(&good, object, "as", e->as_conductance ? "conductance" : NULL);
     number(&good, object, "hand", e->paper);
-    number(&good, object, "square_law", e->hand_view);
+    number(&good, object, "hand_view", e->hand_view);
     number(&good, object, "computed", e->computed);
     number(&good, object, "difference", e->computed - e->paper);
     text(&good, object, "trouble", e->trouble);

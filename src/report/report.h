@@ -42,6 +42,9 @@ void report_size(const struct result *result, const struct report_style *style, 
 /* Ranked derivatives. */
 void report_sensitivity(const struct result *result, const struct report_style *style,
                         struct buffer *out);
+/* Every resting state, the proof, and the start-up verdict. */
+void report_states(const struct result *result, const struct report_style *style,
+                   struct buffer *out);
 
 /* Every model value in force. */
 void report_models(const struct circuit *circuit, const struct report_style *style,

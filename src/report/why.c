@@ -46,7 +46,7 @@ static void heading(struct layout *layout, const struct explanation *e)
     const double difference = e->computed - e->paper;
     layout_paragraph(
         layout, TONE_STRONG, 2,
-        layout_format(layout, "%s%s: paper %s, square law %s, computed %s: %s%s%s%s",
+        layout_format(layout, "%s%s: paper %s, hand view %s, computed %s: %s%s%s%s",
                       layout_clean(layout, e->hand->probe.text),
                       e->as_conductance ? " (as the conductance 1/R)" : "",
                       show_part(layout, e, e->paper), show_part(layout, e, e->hand_view),
