@@ -50,10 +50,70 @@ long double linearised_conductance(struct operating_point *p, int branch)
     return -linearised_transfer(p, branch, branch);
 }
 
+/* Whether values of the cell may depend on the temperature by themselves. */
+static bool names_thermal_voltage(const struct circuit *c)
+{
+    const struct source_set *sources = &c->cell->sources;
+    for (int k = 0; k < sources->count; k++) {
+        if (strstr(sources->files[k].text, "thermal_voltage") != NULL) {
+            return true;
+        }
+    }
+    return false;
+}
+
+/* Adds factor * F(x) of the cell built for another temperature. False when it cannot be built. */
+static bool add_residual_at(const struct system *s, double kelvin, long double factor,
+                            const long double *x, long double *slope)
+{
+    struct circuit_settings settings = s->circuit->settings;
+    struct diagnostics unseen = {.arena = s->arena};
+    struct circuit *circuit = NULL;
+    settings.kelvin = kelvin;
+    if (circuit_build(s->circuit->cell, &settings, &unseen, &circuit) != STATUS_OK) {
+        return false;
+    }
+    struct system *other = system_create(circuit, kelvin, s->conditions.effects);
+    bool good =
+        other != NULL && other->n == s->n && circuit->instance_count == s->circuit->instance_count;
+    for (int k = 0; good && k < circuit->instance_count; k++) {
+        /* Values that a sweep has turned stay turned. */
+        for (int v = 0; v < circuit->instances[k].type->parameter_count; v++) {
+            const double turned = s->own[k][v], base = s->circuit->instances[k].own[v];
+            if (!(turned == base) && !(isnan(turned) && isnan(base))) {
+                system_set(other, k, v, turned);
+            }
+        }
+    }
+    long double *f = good ? arena_new_array(other->arena, long double, 2 * (size_t)s->n) : NULL;
+    good = f != NULL && other->face.evaluate_extended(other, x, f, f + s->n, NULL);
+    for (int k = 0; good && k < s->n; k++) {
+        slope[k] += factor * f[k];
+    }
+    system_free(other);
+    circuit_free(circuit);
+    return good;
+}
+
+/* dF/dT where lets and laws contain thermal_voltage: the whole cell is built anew on both sides. */
+static bool rebuilt_temperature_slope(const struct system *s, const long double *x,
+                                      long double *slope)
+{
+    const double above = s->conditions.kelvin + 1e-3, below = s->conditions.kelvin - 1e-3;
+    const long double width = (long double)above - below;
+    memset(slope, 0, (size_t)s->n * sizeof *slope);
+    return add_residual_at(s, above, 1 / width, x, slope) &&
+           add_residual_at(s, below, -1 / width, x, slope);
+}
+
 long double linearised_temperature(struct operating_point *p, int branch)
 {
+    struct system *s = p->system;
     const struct workspace w = workspace_of(p);
-    system_temperature_slope(p->system, p->refined, w.b);
+    if ((s->conditions.effects & EFFECT_TEMPERATURE) == 0 || !names_thermal_voltage(s->circuit) ||
+        !rebuilt_temperature_slope(s, p->refined, w.b)) {
+        system_temperature_slope(s, p->refined, w.b);
+    }
     solve(p, &w, false);
     return -w.y[branch];
 }

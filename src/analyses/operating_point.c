@@ -82,15 +82,37 @@ enum newton_status operating_point_newton(struct operating_point *p)
     return status;
 }
 
+/* The largest relative residual of the plain system at p->x, INFINITY when it has none. The
+ * searches report that of their own, embedded one, which may well be solved. */
+static double plain_residual(struct operating_point *p, int *equation)
+{
+    struct system *s = p->system;
+    double *f = arena_new_array(s->arena, double, 2 * (size_t)s->n + (size_t)s->nonzeros);
+    double worst = -1;
+    if (f == NULL || !s->face.evaluate(s, p->x, f, f + s->n, f + 2 * s->n)) {
+        return INFINITY;
+    }
+    for (int k = 0; k < s->n; k++) {
+        const double share = fabs(f[k]) / fmax(f[s->n + k], 1e-300);
+        if (!(share <= worst)) {
+            worst = share;
+            *equation = k;
+        }
+    }
+    return worst < 0 ? INFINITY : worst;
+}
+
 /* Remembers where a search came to an end, for the message. */
 static void note_failure(struct operating_point *p, enum newton_status status)
 {
+    int equation = -1;
+    const double residual = plain_residual(p, &equation);
     if (status == NEWTON_SINGULAR) {
         p->stalled_column = p->report.column;
     }
-    if (p->report.residual < p->best_residual) {
-        p->best_residual = p->report.residual;
-        p->stalled_equation = p->report.equation;
+    if (residual < p->best_residual) {
+        p->best_residual = residual;
+        p->stalled_equation = equation;
     }
 }
 
@@ -276,7 +298,9 @@ static void tell_trouble(struct operating_point *p)
     solver->worst_residual = p->best_residual;
     solver->worst_name = where < 0 ? "" : name_of(p, where);
     const char *devices = where < 0 ? "" : devices_at(p, where);
-    if (p->stalled_column >= 0 && !(p->best_residual < 1e-3)) {
+    /* Balanced and singular: any voltage would do. */
+    const bool open = p->best_residual < 1e-9 || !(p->best_residual < 1e-3);
+    if (p->stalled_column >= 0 && open) {
         const char *column = name_of(p, p->stalled_column);
         solver->trouble =
             arena_format(arena,
@@ -371,7 +395,6 @@ enum status operating_point_move(struct operating_point *p, int instance, int pa
                                  double from, double to, bool *jumped)
 {
     struct system *s = p->system;
-    *jumped = false;
     double *start = p->saved;
     memcpy(start, p->x, (size_t)s->n * sizeof *start);
     system_set(s, instance, parameter, to);
@@ -388,6 +411,10 @@ enum status operating_point_move(struct operating_point *p, int instance, int pa
     system_set(s, instance, parameter, to);
     if (status == NEWTON_CONVERGED || status == NEWTON_STOPPED || status == NEWTON_MEMORY) {
         return from_newton(status);
+    }
+    if (jumped == NULL) {
+        memcpy(p->x, start, (size_t)s->n * sizeof *start);
+        return STATUS_UNSOLVED;
     }
     *jumped = true;
     const enum status found = operating_point_find(p);

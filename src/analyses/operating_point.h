@@ -44,7 +44,8 @@ enum status operating_point_polish(struct operating_point *point);
  * operating_point_move: changes one value of one instance from `from` (where x is a root) to `to`,
  * and follows the root: tangent step and Newton, then smaller steps, then continuation.
  *
- * jumped  out: the root could not be followed; the state at `to` was found in another way
+ * jumped  in: false. Out: true when the root could not be followed and the state at `to` was looked
+ *         for in another way. NULL: it is only followed, else STATUS_UNSOLVED and x as it was
  */
 enum status operating_point_move(struct operating_point *point, int instance, int parameter,
                                  double from, double to, bool *jumped);

@@ -22,6 +22,8 @@ enum { FIRST_SEGMENTS = 16, DEPTH_LIMIT = 24, EVENT_LIMIT = 20 };
 static const double share_nominal = 0.5e-3, share_local = 0.5e-2;
 /* Root finding in the load voltage, V. */
 static const double volts_tolerance = 1e-9;
+/* How near to its end a state is followed, V: the promise for a compliance voltage. */
+static const double volts_edge = 1e-5;
 
 struct place {
     double v, i, slope; /* current into the direction of `at`, positive there */
@@ -34,9 +36,10 @@ struct sweeper {
     struct arena *arena;
     struct output_result *result;
     int parameter, branch;
-    double sign;          /* current in the direction at `at` = sign * branch current */
-    double nominal;       /* A, positive */
-    double *rhs;          /* [n] */
+    double sign;     /* current in the direction at `at` = sign * branch current */
+    double nominal;  /* A, positive */
+    double from, to; /* of the curve; a sweep of the output itself may stand outside its range */
+    double *rhs;     /* [n] */
     struct place *places; /* one direction, from `at` outwards */
     int count, capacity;
     struct place *spare; /* states for bisection */
@@ -66,7 +69,7 @@ static void read_place(struct sweeper *w, struct place *place)
     memset(w->rhs, 0, (size_t)s->n * sizeof *w->rhs);
     w->rhs[w->branch] = 1;
     linear_solve(s->solver, w->rhs);
-    place->i = w->sign * w->point->x[w->branch];
+    place->i = w->sign * w->point->x[w->branch] + 0.0; /* never a negative zero */
     place->slope = w->sign * w->rhs[w->branch];
 }
 
@@ -87,26 +90,35 @@ static void add_event(struct sweeper *w, double at, const char *text)
     r->events[r->event_count++] = (struct sweep_event){at, text};
 }
 
+/* The root at v that belongs to a near state; false when it cannot be followed there. */
+static bool follow_to(struct sweeper *w, const struct place *near, double v, struct place *place)
+{
+    struct operating_point *p = w->point;
+    memcpy(p->x, near->x, (size_t)p->system->n * sizeof *p->x);
+    const enum status status =
+        operating_point_move(p, w->output->instance, w->parameter, near->v, v, NULL);
+    if (status != STATUS_OK) {
+        w->status = status == STATUS_UNSOLVED ? w->status : status;
+        return false;
+    }
+    place->v = v;
+    read_place(w, place);
+    return keep_state(w, place);
+}
+
 /*
  * Solves at v from a near state. A root that cannot be followed is looked for in another way and
- * told as an event; false when there is none (also an event), or when the work is to end.
+ * told as an event; false when there is none, or when the work is to end.
  */
 static bool solve_at(struct sweeper *w, const struct place *near, double v, struct place *place)
 {
     struct operating_point *p = w->point;
-    const size_t n = (size_t)p->system->n;
-    const double h = v - near->v;
     bool jumped = false;
-    memcpy(p->x, near->x, n * sizeof *p->x);
-    (void)h;
+    memcpy(p->x, near->x, (size_t)p->system->n * sizeof *p->x);
     const enum status status =
         operating_point_move(p, w->output->instance, w->parameter, near->v, v, &jumped);
-    if (status == STATUS_UNSOLVED) {
-        add_event(w, v, "no state was found at this load voltage");
-        return false;
-    }
     if (status != STATUS_OK) {
-        w->status = status;
+        w->status = status == STATUS_UNSOLVED ? w->status : status;
         return false;
     }
     if (jumped) {
@@ -157,6 +169,7 @@ static bool fill(struct sweeper *w, const struct place *a, const struct place *b
 {
     struct place middle;
     if (!solve_at(w, a, (a->v + b->v) / 2, &middle)) {
+        add_event(w, (a->v + b->v) / 2, "no state was found at this load voltage");
         return w->status == STATUS_OK && add_place(w, b);
     }
     const double tolerance = tolerance_at(w, fmin(fabs(a->i), fabs(b->i)));
@@ -173,24 +186,54 @@ static bool fill(struct sweeper *w, const struct place *a, const struct place *b
     return fill(w, a, &middle, depth + 1) && fill(w, &middle, b, depth + 1);
 }
 
+/*
+ * There is a state at the last place and none at `bad`: goes on in halved steps to where it ends,
+ * so that a loss of headroom or of the band in between is not missed. Roots are only followed here.
+ */
+static bool approach(struct sweeper *w, double bad)
+{
+    while (fabs(bad - w->places[w->count - 1].v) > volts_edge) {
+        const struct place last = w->places[w->count - 1];
+        const double v = (last.v + bad) / 2;
+        struct place next;
+        if (v == last.v || v == bad) {
+            break;
+        }
+        if (follow_to(w, &last, v, &next)) {
+            if (!fill(w, &last, &next, 0)) {
+                return false;
+            }
+        } else if (w->status != STATUS_OK) {
+            return false;
+        } else {
+            bad = v;
+        }
+    }
+    add_event(w, w->places[w->count - 1].v, "no state was found beyond this load voltage");
+    return w->status == STATUS_OK;
+}
+
 static bool walk(struct sweeper *w, const struct place *home, double end)
 {
+    bool is_lost = false;
     w->count = 0;
     if (!add_place(w, home)) {
         return false;
     }
-    const double span = w->output->to - w->output->from;
+    const double span = w->to - w->from;
     const int segments = (int)ceil(FIRST_SEGMENTS * fabs(end - home->v) / span);
     for (int k = 1; k <= segments; k++) {
         const struct place last = w->places[w->count - 1];
         const double v = k == segments ? end : home->v + (end - home->v) * k / segments;
         struct place next;
         if (!solve_at(w, &last, v, &next)) {
-            if (w->status != STATUS_OK) {
+            if (w->status != STATUS_OK || (!is_lost && !approach(w, v))) {
                 return false;
             }
+            is_lost = true;
             continue;
         }
+        is_lost = false;
         if (!fill(w, &last, &next, 0)) {
             return false;
         }
@@ -277,6 +320,14 @@ static bool list_held(struct sweeper *w)
     return w->held != NULL;
 }
 
+/* Where the band is left on the way to `end`, or where the state itself ends; NAN: nowhere. */
+static double band_edge(struct sweeper *w, double end)
+{
+    const double edge = first_loss(w, band_left);
+    const double reached = w->places[w->count - 1].v;
+    return isnan(edge) && reached != end ? reached : edge;
+}
+
 /* Compliance lies towards ground for a sink, towards the supply for a source. */
 static void find_compliance(struct sweeper *w)
 {
@@ -286,7 +337,7 @@ static void find_compliance(struct sweeper *w)
     }
     r->compliance = first_loss(w, headroom_left);
     if (isnan(r->compliance)) {
-        r->compliance_beyond = true;
+        r->compliance_beyond = w->places[w->count - 1].v == (r->is_sink ? w->from : w->to);
         r->compliance_device = NULL;
         return;
     }
@@ -357,7 +408,7 @@ static bool find_derivatives(struct operating_point *home, int branch, double si
     }
     for (int k = 0; k < c->rail_count; k++) {
         const int driver = system_branch(&c->instances[c->rails[k].instance]);
-        line[k] = sign * (double)linearised_transfer(home, branch, driver) / r->current;
+        line[k] = sign * (double)linearised_transfer(home, branch, driver) / r->current + 0.0;
     }
     r->line = line;
     r->tempco = sign * (double)linearised_temperature(home, branch) / r->current;
@@ -393,10 +444,10 @@ static void sweep_both(struct sweeper *w, const struct place *home)
 {
     struct output_result *r = w->result;
     struct extremes e = {home->i, home->i};
-    if (!walk(w, home, w->output->from)) {
+    if (!walk(w, home, w->from)) {
         return;
     }
-    r->low = first_loss(w, band_left);
+    r->low = band_edge(w, w->from);
     if (r->is_sink) {
         find_compliance(w);
     }
@@ -404,10 +455,10 @@ static void sweep_both(struct sweeper *w, const struct place *home)
     const int down_count = w->count;
     w->places = NULL;
     w->count = w->capacity = 0;
-    if (!walk(w, home, w->output->to)) {
+    if (!walk(w, home, w->to)) {
         return;
     }
-    r->high = first_loss(w, band_left);
+    r->high = band_edge(w, w->to);
     if (!r->is_sink) {
         find_compliance(w);
     }
@@ -444,24 +495,28 @@ enum status analyse_output(struct operating_point *home, int index, struct arena
                                 .flatness = NAN,
                                 .tempco = NAN,
                                 .sigma = NAN};
+    const int parameter = s->circuit->instances[output->instance].type->value_parameter;
+    const double at = s->own[output->instance][parameter]; /* output->at, unless it is swept */
     struct sweeper w = {.point = home,
                         .output = output,
                         .arena = arena,
                         .result = r,
-                        .parameter = s->circuit->instances[output->instance].type->value_parameter,
+                        .parameter = parameter,
                         .branch = branch,
                         .sign = i <= 0 ? -1 : 1,
-                        .nominal = fabs(i)};
+                        .nominal = fabs(i),
+                        .from = fmin(output->from, at),
+                        .to = fmax(output->to, at)};
     w.rhs = arena_new_array(scratch, double, s->n);
     const bool good =
         w.rhs != NULL && find_derivatives(home, branch, w.sign, arena, r) && list_held(&w);
-    struct place start = {.v = output->at};
+    struct place start = {.v = at};
     if (good) {
         read_place(&w, &start);
         if (keep_state(&w, &start)) {
             sweep_both(&w, &start);
         }
-        system_set(s, output->instance, w.parameter, output->at);
+        system_set(s, output->instance, w.parameter, at);
         memcpy(home->x, start.x, (size_t)s->n * sizeof *home->x);
         operating_point_newton(home);
     }

@@ -29,6 +29,8 @@ struct stage {
     unsigned effects;
     const struct analysis_options *options;
     bool is_solved;
+    struct knob knob, family;  /* what is turned, in the circuit in force */
+    const struct probe *shown; /* the same for what is shown */
 };
 
 static void stage_close(struct stage *stage)
@@ -38,8 +40,31 @@ static void stage_close(struct stage *stage)
     *stage = (struct stage){.options = stage->options, .effects = stage->effects};
 }
 
+/* A circuit that was built anew may count its parts otherwise: names are looked up in it. */
+static bool find_again(struct stage *stage, const struct sweep *sweep)
+{
+    const struct circuit *c = stage->circuit;
+    struct diagnostics unseen = {.arena = c->arena};
+    stage->knob = sweep->knob;
+    stage->family = sweep->family;
+    stage->shown = sweep->shown;
+    if (stage->own_circuit == NULL) {
+        return true;
+    }
+    struct probe *shown = arena_new_array(c->arena, struct probe, sweep->shown_count);
+    stage->shown = shown;
+    bool good = shown != NULL &&
+                circuit_knob(c, sweep->knob.name, SPAN_NONE, &unseen, &stage->knob) &&
+                (!sweep->has_family ||
+                 circuit_knob(c, sweep->family.name, SPAN_NONE, &unseen, &stage->family));
+    for (int k = 0; good && k < sweep->shown_count; k++) {
+        good = circuit_probe(c, sweep->shown[k].text, SPAN_NONE, &unseen, &shown[k]);
+    }
+    return good;
+}
+
 /* Builds circuit and system with all settings in force. */
-static enum status stage_open(struct stage *stage, struct circuit *base,
+static enum status stage_open(struct stage *stage, struct circuit *base, const struct sweep *sweep,
                               const struct setting *settings, int count)
 {
     struct circuit_settings wanted = base->settings;
@@ -80,8 +105,11 @@ static enum status stage_open(struct stage *stage, struct circuit *base,
         !operating_point_create(&stage->point, stage->system, stage->options)) {
         return STATUS_MEMORY;
     }
+    if (!find_again(stage, sweep)) {
+        return STATUS_UNSOLVED;
+    }
     for (int k = 0; k < count; k++) {
-        const struct knob *knob = settings[k].knob;
+        const struct knob *knob = k == 0 ? &stage->knob : &stage->family;
         if (knob->kind == KNOB_VALUE) {
             system_set(stage->system, knob->instance, knob->parameter, settings[k].value);
         }
@@ -107,7 +135,7 @@ static enum status read_outputs(struct stage *stage, const struct sweep *sweep, 
     for (int k = 0; k < c->output_count; k++) {
         bool wanted = false;
         for (int q = 0; q < sweep->shown_count; q++) {
-            wanted |= wants_output(&sweep->shown[q]) && sweep->shown[q].index == k;
+            wanted |= wants_output(&stage->shown[q]) && stage->shown[q].index == k;
         }
         const enum status status =
             !wanted ? STATUS_OK : analyse_output(&stage->point, k, into->arena, &into->outputs[k]);
@@ -122,14 +150,14 @@ static enum status read_point(struct stage *stage, const struct sweep *sweep, do
 {
     bool outputs = false;
     for (int q = 0; q < sweep->shown_count; q++) {
-        outputs |= wants_output(&sweep->shown[q]);
+        outputs |= wants_output(&stage->shown[q]);
     }
     enum status status = operating_point_polish(&stage->point);
     if (status != STATUS_OK) {
         return status;
     }
     for (int q = 0; q < sweep->shown_count; q++) {
-        row[q] = measure_probe(stage->system, &sweep->shown[q], stage->point.x);
+        row[q] = measure_probe(stage->system, &stage->shown[q], stage->point.x);
     }
     if (!outputs) {
         return STATUS_OK;
@@ -140,8 +168,8 @@ static enum status read_point(struct stage *stage, const struct sweep *sweep, do
     }
     status = read_outputs(stage, sweep, &scratch);
     for (int q = 0; status == STATUS_OK && q < sweep->shown_count; q++) {
-        if (wants_output(&sweep->shown[q])) {
-            row[q] = result_value(&scratch, &sweep->shown[q]);
+        if (wants_output(&stage->shown[q])) {
+            row[q] = result_value(&scratch, &stage->shown[q]);
         }
     }
     arena_destroy(scratch.arena);
@@ -185,7 +213,7 @@ static enum status advance(struct series_task *t, struct stage *stage, int k)
     bool jumped = false;
     if (sweep->knob.kind == KNOB_VALUE && stage->system != NULL) {
         if (!stage->is_solved) {
-            system_set(stage->system, sweep->knob.instance, sweep->knob.parameter, v);
+            system_set(stage->system, stage->knob.instance, stage->knob.parameter, v);
             return operating_point_find(&stage->point);
         }
         const enum status status = operating_point_move(
@@ -209,7 +237,7 @@ static enum status advance(struct series_task *t, struct stage *stage, int k)
         memcpy(last, stage->point.x, (size_t)n * sizeof *last);
     }
     stage_close(stage);
-    enum status status = stage_open(stage, t->circuit, settings, sweep->has_family ? 2 : 1);
+    enum status status = stage_open(stage, t->circuit, sweep, settings, sweep->has_family ? 2 : 1);
     if (status == STATUS_OK) {
         bool followed = false;
         if (n == stage->system->n) {

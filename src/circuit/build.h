@@ -19,6 +19,8 @@ enum let_state { LET_WAITING, LET_VISITING, LET_DONE, LET_WRONG };
 /* A `let` of the cell or a process; its value is computed when first asked for. */
 struct let_entry {
     const struct expression *expression; /* NULL: the value was set from outside */
+    const struct expression *written;    /* in the file; a plain number set from outside takes its
+                                            dimension */
     enum let_state state;
 };
 

@@ -33,6 +33,17 @@ static uint32_t skip_blanks(const char *text, uint32_t k, uint32_t end)
     return k;
 }
 
+/* A number with its sign; the bytes used, 0 when none stands there. */
+static size_t signed_number(const char *text, size_t length, double *value)
+{
+    const size_t sign = length > 0 && (text[0] == '-' || text[0] == '+');
+    const size_t used = number_parse(text + sign, length - sign, value);
+    if (sign == 1 && text[0] == '-') {
+        *value = -*value;
+    }
+    return used == 0 ? 0 : sign + used;
+}
+
 /* One row; false after an error or when memory is short. */
 static bool read_row(struct reader *r, const char *text, uint32_t begin, uint32_t end)
 {
@@ -42,7 +53,7 @@ static bool read_row(struct reader *r, const char *text, uint32_t begin, uint32_
     if (k == end || text[k] == '#') {
         return true;
     }
-    size_t used = number_parse(text + k, end - k, &row.v);
+    size_t used = signed_number(text + k, end - k, &row.v);
     const bool may_be_header = !r->seen_line;
     r->seen_line = true;
     if (used == 0 && may_be_header) {
@@ -53,7 +64,7 @@ static bool read_row(struct reader *r, const char *text, uint32_t begin, uint32_
     uint32_t after = comma;
     if (used > 0 && comma < end && text[comma] == ',') {
         const uint32_t start = skip_blanks(text, comma + 1, end);
-        second = number_parse(text + start, end - start, &row.i);
+        second = signed_number(text + start, end - start, &row.i);
         after = skip_blanks(text, start + (uint32_t)second, end);
     }
     if (second == 0 || after != end || !isfinite(row.v) || !isfinite(row.i)) {
@@ -122,8 +133,8 @@ static bool find_source(struct builder *b, const char *path, const struct statem
                         uint32_t *file)
 {
     struct cell *cell = b->cell;
-    for (int k = 0; k < cell->sources.count; k++) {
-        if (cell->sources.files[k].name == statement->text) {
+    for (int k = cell->process_count + 1; k < cell->sources.count; k++) {
+        if (strcmp(cell->sources.files[k].name, statement->text) == 0) {
             *file = (uint32_t)k;
             return true;
         }

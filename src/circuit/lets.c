@@ -33,7 +33,8 @@ static bool add_let(struct builder *b, const struct statement *statement)
     c->lets = list;
     b->lets = entries;
     list[c->let_count] = (struct let_value){.name = name, .where = statement->name.span};
-    entries[c->let_count] = (struct let_entry){.expression = statement->value};
+    entries[c->let_count] =
+        (struct let_entry){.expression = statement->value, .written = statement->value};
     if (statement->value == NULL) {
         entries[c->let_count].state = LET_WRONG;
     }
@@ -70,10 +71,12 @@ static void apply_sets(struct builder *b, const struct expression_scope *scope)
         }
         c->lets[index].is_set = true;
         if (set->expression != NULL) {
-            b->lets[index] = (struct let_entry){.expression = set->expression};
+            b->lets[index].expression = set->expression;
+            b->lets[index].state = LET_WAITING;
         } else {
             c->lets[index].value = set->value;
-            b->lets[index] = (struct let_entry){.state = LET_DONE};
+            b->lets[index].expression = NULL;
+            b->lets[index].state = LET_WAITING;
         }
     }
     (void)scope;
@@ -121,6 +124,18 @@ void frame_names(const struct frame *frame, struct expression_scope *scope)
     scope->name_count = count;
 }
 
+/* A plain number from outside has the unit of the let that it replaces. */
+static void take_dimension(struct builder *b, const struct let_entry *entry,
+                           const struct expression_scope *scope, struct quantity *value)
+{
+    struct diagnostics unseen = {.arena = b->arena};
+    struct quantity written;
+    if (entry->written != NULL && expression_value(entry->written, scope, &unseen, &written)) {
+        value->dimension = written.dimension;
+        value->bare = written.bare;
+    }
+}
+
 static bool find_let(struct builder *b, int index, struct span where, struct quantity *value)
 {
     struct let_value *let = &b->circuit->lets[index];
@@ -142,7 +157,11 @@ static bool find_let(struct builder *b, int index, struct span where, struct qua
         frame_names(&top, &scope);
         entry->state = LET_VISITING;
         b->let_depth++;
-        const bool good = expression_value(entry->expression, &scope, b->diagnostics, &let->value);
+        const bool good = entry->expression == NULL ||
+                          expression_value(entry->expression, &scope, b->diagnostics, &let->value);
+        if (good && let->is_set && let->value.bare) {
+            take_dimension(b, entry, &scope, &let->value);
+        }
         b->let_depth--;
         entry = &b->lets[index];
         entry->state = good ? LET_DONE : LET_WRONG;

@@ -169,7 +169,7 @@ static void unknown_word(struct builder *b, const struct statement *statement)
     }
     const char *near = near_name(statement->type.text, b->known, count);
     diagnostics_add(b->diagnostics, statement->type.span,
-                    near == NULL ? "`ampstead help language` lists the statements"
+                    near == NULL ? "docs/language.md lists the statements"
                                  : arena_format(b->arena, "did you mean '%s'?", near),
                     "'%s' is neither a statement nor a device", statement->type.text);
 }
@@ -917,10 +917,14 @@ static bool add_output(const struct frame *top, const struct statement *statemen
     if (statement->at == NULL || statement->from == NULL || statement->to == NULL) {
         return true;
     }
-    const bool good =
-        expression_wanted(statement->at, &scope, DIMENSION_VOLTAGE, b->diagnostics, &out.at) &
-        expression_wanted(statement->from, &scope, DIMENSION_VOLTAGE, b->diagnostics, &out.from) &
-        expression_wanted(statement->to, &scope, DIMENSION_VOLTAGE, b->diagnostics, &out.to);
+    /* all three, so that each error is told */
+    bool good =
+        expression_wanted(statement->at, &scope, DIMENSION_VOLTAGE, b->diagnostics, &out.at);
+    good =
+        expression_wanted(statement->from, &scope, DIMENSION_VOLTAGE, b->diagnostics, &out.from) &&
+        good;
+    good = expression_wanted(statement->to, &scope, DIMENSION_VOLTAGE, b->diagnostics, &out.to) &&
+           good;
     if (statement->within != NULL &&
         expression_share(statement->within, &scope, b->diagnostics, &out.within) &&
         !(out.within > 0 && out.within < 1)) {

@@ -300,11 +300,12 @@ static bool add_choice(struct builder *b, const struct statement *statement)
 {
     struct circuit *c = b->circuit;
     struct choice choice = {.where = statement->span};
-    const bool good =
-        circuit_knob(c, statement->name.text, statement->name.span, b->diagnostics, &choice.knob) &
-        circuit_probe(c, statement->quantity.text, statement->quantity.span, b->diagnostics,
-                      &choice.probe);
-    if (!good || !read_range(b, &choice.knob, statement, &choice.from, &choice.to) ||
+    const bool found_knob =
+        circuit_knob(c, statement->name.text, statement->name.span, b->diagnostics, &choice.knob);
+    const bool found_probe = circuit_probe(c, statement->quantity.text, statement->quantity.span,
+                                           b->diagnostics, &choice.probe);
+    if (!found_knob || !found_probe ||
+        !read_range(b, &choice.knob, statement, &choice.from, &choice.to) ||
         !read_as(b, statement->value, choice.probe.dimension, false, &choice.value)) {
         return true;
     }

@@ -410,7 +410,7 @@ static bool typical(const void *prepared, int *high, int *low, double *volts)
     const struct mos_prepared *p = prepared;
     *high = p->polarity > 0 ? MOS_G : MOS_S;
     *low = p->polarity > 0 ? MOS_S : MOS_G;
-    *volts = p->vt + 0.15;
+    *volts = p->vt + 0.2;
     return true;
 }
 

@@ -71,6 +71,16 @@ static unsigned describe(const void *prepared, const double *outer, const double
     return REGION_NONE;
 }
 
+/* In a loop of negative feedback the inputs differ by hardly more than the offset. */
+static bool typical(const void *prepared, int *high, int *low, double *volts)
+{
+    const struct opamp_prepared *p = prepared;
+    *high = OPAMP_PLUS;
+    *low = OPAMP_MINUS;
+    *volts = -p->offset;
+    return true;
+}
+
 const struct device_type device_opamp = {
     .word = "opamp",
     .summary = "operational amplifier of finite gain with smooth limits",
@@ -93,6 +103,7 @@ const struct device_type device_opamp = {
     .evaluate = opamp_evaluate,
     .evaluate_extended = opamp_evaluate_extended,
     .describe = describe,
+    .typical = typical,
     .pattern = pattern,
     .paths = paths,
     .fixes_voltage = true,
