@@ -11,12 +11,13 @@
 #include "calibrate/mos_fit.h"
 #include "calibrate/screen.h"
 
-/* A set follows its devices when none is further off in saturation. */
-static const double set_limit = 0.1;
+/* A set follows its devices when none is further off in saturation, and none needs another
+ * threshold. */
+static const double set_limit = 0.1, offset_limit = 50e-3; /* relative, V */
 
-/* Devices whose kprime is off the middle one by more than these factors do not have the drawn
- * geometry. */
-static const double units_most = 2.2, units_least = 0.4;
+/* Devices whose kprime is off the middle one of their length by more than these factors do not have
+ * the drawn geometry. */
+static const double units_most = 2, units_least = 0.5, same_length = 1.5;
 
 enum { MIDDLE_LEAST = 3 /* fewest devices that have a middle one */ };
 
@@ -206,37 +207,53 @@ static int by_size(const void *a, const void *b)
     return (*x > *y) - (*x < *y);
 }
 
+/*
+ * The middle kprime of the cards of list[count] whose length is near `length`, or of all where
+ * there are too few; NAN where even those are too few.
+ */
+static double middle_kprime(const struct calibration *c, const int *list, int count, double length,
+                            double *sorted)
+{
+    for (int pass = 0; pass < 2; pass++) {
+        int found = 0;
+        for (int k = 0; k < count; k++) {
+            double ratio = c->devices[list[k]].data.length / length;
+            if (pass == 1 || (ratio < same_length && ratio > 1 / same_length)) {
+                sorted[found++] = value_of(card_of(c, list[k]), "kprime");
+            }
+        }
+        if (found >= MIDDLE_LEAST) {
+            qsort(sorted, (size_t)found, sizeof *sorted, by_size);
+            return sorted[(found - 1) / 2];
+        }
+    }
+    return NAN;
+}
+
 /* Devices that carry another current than their drawn geometry says, by their cards. */
 static bool check_units(struct run *run, const char *kind)
 {
     struct calibration *c = run->c;
     int count = choose(run, kind, false);
     double *sorted = arena_new_array(c->arena, double, count);
-    if (sorted == NULL) {
-        return false;
-    }
-    for (int k = 0; k < count; k++) {
-        sorted[k] = value_of(card_of(c, run->list[k]), "kprime");
-    }
-    qsort(sorted, (size_t)count, sizeof *sorted, by_size);
-    double middle = sorted[(count - 1) / 2];
-    for (int k = 0; k < count && count >= MIDDLE_LEAST; k++) {
+    bool is_good = sorted != NULL;
+    for (int k = 0; is_good && k < count; k++) {
         struct calibrated_device *device = &c->devices[run->list[k]];
-        device->unit_ratio = value_of(card_of(c, run->list[k]), "kprime") / middle;
-        if (device->unit_ratio < units_most && device->unit_ratio > units_least) {
+        device->unit_ratio = value_of(card_of(c, run->list[k]), "kprime") /
+                             middle_kprime(c, run->list, count, device->data.length, sorted);
+        if (isnan(device->unit_ratio) ||
+            (device->unit_ratio < units_most && device->unit_ratio > units_least)) {
             continue;
         }
         device->is_out = c->is_robust;
-        if (!calibration_remark(
-                c, "geometry", run->list[k],
-                "its current is %.2g times what W/L and the other devices say: are there several "
-                "units in parallel (column m of a list)? It is %s",
-                device->unit_ratio,
-                c->is_robust ? "left out of the set" : "kept in the set; --robust leaves it out")) {
-            return false;
-        }
+        is_good = calibration_remark(
+            c, "geometry", run->list[k],
+            "its current is %.2g times what W/L and the other devices say: are there several units "
+            "in parallel (column m of a list)? It is %s",
+            device->unit_ratio,
+            c->is_robust ? "left out of the set" : "kept in the set; --robust leaves it out");
     }
-    return true;
+    return is_good;
 }
 
 static bool same_geometry(const struct calibration *c, const int *list, int count)
@@ -284,16 +301,19 @@ static enum status fit_set(struct run *run, const char *kind)
         return status;
     }
     c->fit_count++;
-    double worst = worst_of(c, fit);
-    fit->is_written = worst <= set_limit;
+    double worst = worst_of(c, fit), offset = 0;
+    for (int k = 0; k < fit->device_count; k++) {
+        offset = fmax(offset, fabs(fit->offsets[k]));
+    }
+    fit->is_written = worst <= set_limit && offset <= offset_limit;
     if (!fit->is_written) {
         fit->remark = arena_format(c->arena,
-                                   "not written: it is %.0f %% off on one of its devices; this "
-                                   "process does not follow one set, take the cards",
-                                   100 * worst);
-        return fit->remark == NULL ? STATUS_MEMORY : STATUS_OK;
+                                   "not written: up to %.0f %% off in saturation, thresholds up to "
+                                   "%.0f mV off; these devices do not follow one set, take the "
+                                   "cards",
+                                   100 * worst, 1e3 * offset);
     }
-    return STATUS_OK;
+    return fit->is_written || fit->remark != NULL ? STATUS_OK : STATUS_MEMORY;
 }
 
 /* Without a set a cell that names no model gets the card of the longest, then widest device. */
@@ -385,9 +405,9 @@ static bool add_comparison(struct calibration *c, int device, int fit, double of
     fitting_values(&c->fits[fit], model);
     if (is_transistor(&c->devices[device])) {
         mos_compare(c, &c->devices[device], model, offset, &it->figures);
-    } else {
-        junction_compare(c, &c->devices[device], model, &it->figures);
+        return mos_error_curve(c, &c->devices[device], model, offset, &it->curve);
     }
+    junction_compare(c, &c->devices[device], model, &it->figures);
     return true;
 }
 
@@ -400,8 +420,9 @@ static double distance(const struct measured *a, const struct measured *b)
 }
 
 /* What predicts a device that was not fitted: the sets, else the nearest card. */
-static void compare_held(struct calibration *c, int device)
+static bool compare_held(struct calibration *c, int device)
 {
+    bool is_good = true;
     int nearest = -1;
     bool has_set = false;
     for (int k = 0; k < c->fit_count; k++) {
@@ -410,7 +431,7 @@ static void compare_held(struct calibration *c, int device)
             continue;
         }
         if (fit->is_set) {
-            add_comparison(c, device, k, 0);
+            is_good &= add_comparison(c, device, k, 0);
             has_set = true;
         } else if (nearest < 0 ||
                    distance(&c->devices[fit->devices[0]].data, &c->devices[device].data) <
@@ -419,31 +440,25 @@ static void compare_held(struct calibration *c, int device)
             nearest = k;
         }
     }
-    if (!has_set && nearest >= 0) {
-        add_comparison(c, device, nearest, 0);
-    }
+    return has_set || nearest < 0 ? is_good : add_comparison(c, device, nearest, 0);
 }
 
 static bool compare_all(struct calibration *c)
 {
     c->comparisons =
         arena_new_array(c->arena, struct comparison, (c->device_count + 1) * (c->fit_count + 1));
-    if (c->comparisons == NULL) {
-        return false;
-    }
-    for (int k = 0; k < c->fit_count; k++) {
+    bool is_good = c->comparisons != NULL;
+    for (int k = 0; is_good && k < c->fit_count; k++) {
         const struct fit *fit = &c->fits[k];
         bool is_shown = fit->alias_of == NULL && (fit->is_set || fit->is_written);
         for (int d = 0; d < fit->device_count && is_shown; d++) {
-            add_comparison(c, fit->devices[d], k, fit->is_set ? fit->offsets[d] : 0);
+            is_good &= add_comparison(c, fit->devices[d], k, fit->is_set ? fit->offsets[d] : 0);
         }
     }
-    for (int d = 0; d < c->device_count; d++) {
-        if (c->devices[d].is_held) {
-            compare_held(c, d);
-        }
+    for (int d = 0; is_good && d < c->device_count; d++) {
+        is_good = !c->devices[d].is_held || compare_held(c, d);
     }
-    return true;
+    return is_good;
 }
 
 static enum status run_stages(struct run *run)

@@ -108,12 +108,21 @@ struct fit {
     double length_range[2], width_range[2], kelvin_range[2];
 };
 
+/* Relative error of the current along one sweep, for a chart: the gate sweep of a transistor with
+ * the most drain voltage. */
+struct error_curve {
+    double *x, *y; /* [count] V rising, relative */
+    int count;
+    const char *voltage; /* "vgs" */
+};
+
 /* One line of the table: a device under a fit. */
 struct comparison {
     int device, fit;
     bool is_held;
     double offset; /* V, threshold offset in force */
     struct device_figures figures;
+    struct error_curve curve;
 };
 
 enum { MOS_BODY_LIMIT = 16 };

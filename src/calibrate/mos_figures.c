@@ -168,3 +168,53 @@ void mos_compare(const struct calibration *calibration, const struct calibrated_
     figure_finish(&figures->gds);
     figure_finish(&figures->ib);
 }
+
+/* The gate sweep with the most drain voltage, then the least body voltage; NULL: none. */
+static const struct measured_sweep *chart_sweep(const struct measured *data)
+{
+    const struct measured_sweep *found = NULL;
+    for (int s = 0; s < data->sweep_count; s++) {
+        const struct measured_sweep *sweep = &data->sweeps[s];
+        const struct measured_row *row = &data->rows[sweep->first];
+        const struct measured_row *known = found == NULL ? NULL : &data->rows[found->first];
+        if (sweep->moved != COLUMN_VGS || sweep->count < 3) {
+            continue;
+        }
+        if (known == NULL || row->value[COLUMN_VDS] > known->value[COLUMN_VDS] ||
+            (row->value[COLUMN_VDS] >= known->value[COLUMN_VDS] && body_of(row) < body_of(known))) {
+            found = sweep;
+        }
+    }
+    return found;
+}
+
+bool mos_error_curve(const struct calibration *calibration, const struct calibrated_device *device,
+                     const double *model, double offset, struct error_curve *curve)
+{
+    struct judge judge = {.calibration = calibration,
+                          .device = device,
+                          .kelvin = -1,
+                          .model = model,
+                          .offset = offset};
+    const struct measured_sweep *sweep = chart_sweep(&device->data);
+    *curve = (struct error_curve){.voltage = column_rows[COLUMN_VGS].name};
+    if (sweep == NULL) {
+        return true;
+    }
+    curve->x = arena_new_array(calibration->arena, double, sweep->count);
+    curve->y = arena_new_array(calibration->arena, double, sweep->count);
+    if (curve->x == NULL || curve->y == NULL) {
+        return false;
+    }
+    const struct measured_row *rows = device->data.rows + sweep->first;
+    bool is_falling = rows[sweep->count - 1].value[COLUMN_VGS] < rows[0].value[COLUMN_VGS];
+    for (int k = 0; k < sweep->count; k++) {
+        const struct measured_row *row = &rows[is_falling ? sweep->count - 1 - k : k];
+        if (!counts(row)) {
+            continue;
+        }
+        curve->x[curve->count] = row->value[COLUMN_VGS];
+        curve->y[curve->count++] = current(&judge, row) / row->value[COLUMN_ID] - 1;
+    }
+    return true;
+}

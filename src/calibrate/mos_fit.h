@@ -31,6 +31,10 @@ enum status mos_fit(struct calibration *calibration, const struct calibration_re
 void mos_compare(const struct calibration *calibration, const struct calibrated_device *device,
                  const double *model, double offset, struct device_figures *figures);
 
+/* Error along the gate sweep with the most drain voltage; false when memory is short. */
+bool mos_error_curve(const struct calibration *calibration, const struct calibrated_device *device,
+                     const double *model, double offset, struct error_curve *curve);
+
 /* Instance parameters of a device; W, L, m, the threshold offset. */
 void mos_own(const struct calibrated_device *device, double offset, double *own);
 

@@ -10,6 +10,8 @@ static const double sweep_share = 0.3, sweep_noise = 5;
  * five are this many times above the noise. */
 static const double reading_difference = 0.2, reading_noise = 10;
 
+static const double least_voltage = 1e-3; /* V */
+
 static const double same_setting = 1e-6; /* V */
 
 bool calibration_remark(struct calibration *calibration, const char *code, int device,
@@ -119,6 +121,9 @@ static double deviation(const struct measured *data, const struct measured_sweep
         }
         y[j] = log(current);
         x[j] = value(data, k - 2 + j, sweep->moved);
+        if (!(fabs(x[j]) > least_voltage)) {
+            return 0; /* at 0 V the offset of a supply is read */
+        }
     }
     for (int j = 1; j < 5; j++) {
         if (!(fabs(x[j] - x[j - 1] - (x[4] - x[0]) / 4) < 0.01 * fabs(x[4] - x[0]))) {

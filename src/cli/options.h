@@ -8,13 +8,22 @@
 #include <stdbool.h>
 #include <stdio.h>
 
-enum verb { VERB_REVIEW, VERB_POINT, VERB_SWEEP, VERB_MODELS, VERB_HELP, VERB_COUNT };
+enum verb {
+    VERB_REVIEW,
+    VERB_POINT,
+    VERB_SWEEP,
+    VERB_CALIBRATE,
+    VERB_MODELS,
+    VERB_HELP,
+    VERB_COUNT
+};
 
 struct verb_row {
     const char *word;
     const char *argument; /* "FILE.cell" */
     const char *summary;  /* one line */
     const char *text;     /* a few lines for `help VERB` */
+    bool takes_curves;    /* any number of files of curves, or --list, instead of one cell */
 };
 extern const struct verb_row verb_rows[VERB_COUNT];
 
@@ -24,6 +33,18 @@ enum option {
     OPTION_CORNER,
     OPTION_VIEW,
     OPTION_SWEEP,
+    OPTION_KIND,
+    OPTION_LENGTHS,
+    OPTION_MODEL,
+    OPTION_LIST,
+    OPTION_HOLD,
+    OPTION_COLUMNS,
+    OPTION_NOISE,
+    OPTION_ACCURACY,
+    OPTION_FORM,
+    OPTION_ROBUST,
+    OPTION_WRITE,
+    OPTION_FORCE,
     OPTION_JSON,
     OPTION_CSV,
     OPTION_COLOR,
@@ -32,7 +53,8 @@ enum option {
     OPTION_COUNT
 };
 
-enum argument { ARGUMENT_NONE, ARGUMENT_NEEDED, ARGUMENT_OPTIONAL };
+/* ARGUMENT_MANY: all words up to the next option; they go to `held`. */
+enum argument { ARGUMENT_NONE, ARGUMENT_NEEDED, ARGUMENT_OPTIONAL, ARGUMENT_MANY };
 
 struct option_row {
     const char *name; /* without the dashes */
@@ -54,6 +76,11 @@ struct options {
     const char *values[OPTION_COUNT]; /* last given; NULL: none */
     const char **sets;                /* [set_count], all --set; freed by options_free */
     int set_count;
+    char *command;      /* the words of argv, quoted where needed; freed by options_free */
+    const char **words; /* [word_count] what is no option, the verb included; as sets */
+    int word_count;
+    const char **held; /* [held_count] words of --hold; as sets */
+    int held_count;
 };
 
 /*
