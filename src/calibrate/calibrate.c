@@ -245,13 +245,12 @@ static bool check_units(struct run *run, const char *kind)
             (device->unit_ratio < units_most && device->unit_ratio > units_least)) {
             continue;
         }
-        device->is_out = c->is_robust;
+        device->is_out = true;
         is_good = calibration_remark(
             c, "geometry", run->list[k],
-            "its current is %.2g times what W/L and the other devices say: are there several units "
-            "in parallel (column m of a list)? It is %s",
-            device->unit_ratio,
-            c->is_robust ? "left out of the set" : "kept in the set; --robust leaves it out");
+            "its current is %.2g times what W/L and the other devices say; it is left out of the "
+            "set (several units in parallel? Column m of a list gives their number)",
+            device->unit_ratio);
     }
     return is_good;
 }

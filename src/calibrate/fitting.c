@@ -153,6 +153,19 @@ static void set_free(struct fitting *it, const struct fit *fit, double *paramete
     }
 }
 
+/* A resistance that went to the least of its range, or an Early voltage that went to the most: the
+ * effect is not there. */
+static bool is_idle_limit(const struct fitting *it, const struct sought *row, bool is_low)
+{
+    const struct parameter *parameter =
+        &it->type->model_parameters[fitting_place(it->type, row->name)];
+    if (!row->bound.logarithmic || !isnan(row->held)) {
+        return false;
+    }
+    return is_low ? parameter->when_absent == DEFAULT_VALUE && !(parameter->standard > 0)
+                  : parameter->when_absent == DEFAULT_NONE;
+}
+
 /*
  * Fixes what came to rest at a bound, else the one value that the data tell least; true when
  * something was fixed, so that the rest must be fitted again.
@@ -170,6 +183,11 @@ static bool settle(struct fitting *it, const struct least_squares_answer *answer
             bool is_low = fabs(*value - bound->least) < fabs(*value - bound->most);
             *value = is_low ? bound->least : bound->most;
             it->standings[it->free_rows[j]] = (struct standing){ORIGIN_LIMIT, "end of its range"};
+            if (is_idle_limit(it, row, is_low)) {
+                *value = held_value(it, row);
+                it->standings[it->free_rows[j]] =
+                    (struct standing){ORIGIN_HELD, "too weak to be seen"};
+            }
             is_changed = true;
             continue;
         }

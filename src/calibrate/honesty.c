@@ -59,7 +59,7 @@ static bool transistor_remarks(struct calibration *c, int index)
 static bool comparison_remarks(struct calibration *c, const struct comparison *it)
 {
     double rms = it->figures.id[FIGURES_SATURATION].rms;
-    if (it->is_held || !(rms > poor_fit)) {
+    if (it->is_held || !c->fits[it->fit].is_written || !(rms > poor_fit)) {
         return true;
     }
     return calibration_remark(c, "fit", it->device, "%s is %.1f %% off (rms) %s",

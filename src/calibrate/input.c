@@ -260,6 +260,9 @@ static struct entry *find_entry(struct reader *reader, const char *path)
 {
     for (int k = 0; k < reader->entry_count; k++) {
         const char *known = reader->entries[k].path;
+        if (reader->entries[k].where.file == SPAN_NO_FILE) {
+            continue; /* not of the list */
+        }
         if (strcmp(known, path) == 0 ||
             (strchr(path, '/') == NULL && strcmp(base_name(known), path) == 0)) {
             return &reader->entries[k];

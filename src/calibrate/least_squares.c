@@ -14,6 +14,10 @@ static const double start_share = 1e-3;
 /* A scaled column that adds less than this to the ones before it adds nothing. */
 static const double rank_tolerance = 1e-7;
 
+/* Angles are counted from here, so that none is near 0: the first step may be a multiple of the
+ * size of the start. */
+static const double angle_zero = 2;
+
 struct search {
     const struct least_squares_problem *problem;
     double *parameters; /* [n] of the last angle */
@@ -30,8 +34,8 @@ static double at_angle(const struct bounded *bound, double angle, double *slope)
 {
     double least = scaled(bound, bound->least), most = scaled(bound, bound->most);
     double half = (most - least) / 2;
-    double value = least + half * (1 + sin(angle));
-    *slope = half * cos(angle);
+    double value = least + half * (1 + sin(angle - angle_zero));
+    *slope = half * cos(angle - angle_zero);
     if (bound->logarithmic) {
         value = exp(value);
         *slope *= value;
@@ -51,7 +55,7 @@ static double angle_of(const struct bounded *bound, double value)
     double inside = fmin(fmax(value, bound->least), bound->most);
     double share = share_of(bound, inside);
     share = fmin(fmax(share, start_share), 1 - start_share);
-    return asin(2 * share - 1);
+    return angle_zero + asin(2 * share - 1);
 }
 
 static int respond(void *self, int m, int n, const double *angles, double *residuals,

@@ -248,6 +248,9 @@ void report_process(const struct calibration *c, const char *name, const char *h
     for (int k = 0; k < c->remark_count; k++) {
         const struct calibration_remark *it = &c->remarks[k];
         struct buffer line = BUFFER_EMPTY;
+        if (strcmp(it->code, "fit") == 0) {
+            continue; /* said at the model */
+        }
         buffer_format(&line, "- %s%s%s", it->device < 0 ? "" : report_file_name(c, it->device),
                       it->device < 0 ? "" : ": ", it->text);
         if (line.failed) {
