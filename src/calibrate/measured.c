@@ -50,11 +50,14 @@ static bool read_unit(const struct source_file *source, uint32_t begin, uint32_t
     return true;
 }
 
-/* name, name unit, name [unit], name (unit), name/unit, name_unit */
+/* name, name unit, name [unit], name (unit), name/unit, name_unit; "M1.id" is id */
 static struct heading read_heading(const struct source_file *source, struct csv_field field)
 {
     struct heading it = {.name = field, .factor = 1};
     const char *text = source->text;
+    for (uint32_t k = field.begin; k < field.end; k++) {
+        it.name.begin = text[k] == '.' ? k + 1 : it.name.begin;
+    }
     for (uint32_t k = field.begin; k < field.end; k++) {
         if (strchr(" [(/_", text[k]) == NULL) {
             continue;

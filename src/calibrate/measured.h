@@ -43,8 +43,7 @@ struct measured_row {
 struct measured_sweep {
     int first, count;  /* rows */
     enum column moved; /* the voltage that moves */
-    bool is_doubtful;  /* contradicts another sweep */
-    const char *doubt; /* how, in words; NULL: not at all */
+    double doubt;      /* A, how far it contradicts another sweep; 0: not at all */
 };
 
 enum {

@@ -215,7 +215,7 @@ static bool make_rows(struct calibration *calibration, bool is_set, struct part 
         if (row->is_left_out || !(row->value[COLUMN_VDS] > drain_least)) {
             continue;
         }
-        double error = hypot(calibration->noise, share * id);
+        double error = hypot(hypot(calibration->noise, share * id), data->sweeps[row->sweep].doubt);
         part->rows[part->row_count++] = (struct row_weight){k, 1 / error};
     }
     return part->rows != NULL;

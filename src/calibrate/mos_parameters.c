@@ -21,7 +21,7 @@ const struct sought mos_sought[] = {
     {"saturation_knee", {0.5, 1, false}, 0.85, 0.9, 0.15, NEED_DRAIN},
     {"early", {0.05, 2000, true}, 10, NAN, 0.5, NEED_DRAIN},
     {"early_exponent", {0, 1.5, false}, 0.5, 0.5, 0.3, NEED_SET | NEED_DRAIN | NEED_LENGTHS},
-    {"early_onset", {0.01, 5, true}, 0.1, 0.1, 1, NEED_DRAIN},
+    {"early_onset", {0.01, 5, true}, 0.1, NAN, 1, NEED_DRAIN},
     {"dibl", {0, 0.3, false}, 0.005, NAN, 0.02, NEED_DRAIN},
     {"dibl_short", {0, 0.3, false}, 0.02, NAN, 0.02, NEED_SET | NEED_DRAIN | NEED_SHORT},
     {"dibl_body", {-0.6, 3, false}, 0.2, NAN, 0.4, NEED_DRAIN | NEED_BODY},

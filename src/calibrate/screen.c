@@ -92,7 +92,7 @@ static bool screen_drain_sweep(struct calibration *calibration, int index,
     if (row < 0) {
         return true;
     }
-    sweep->is_doubtful = true;
+    sweep->doubt = fabs(value(data, row, COLUMN_ID) - other);
     for (int k = 0; k < sweep->count && calibration->is_robust; k++) {
         data->rows[sweep->first + k].is_left_out = true;
     }
@@ -102,7 +102,8 @@ static bool screen_drain_sweep(struct calibration *calibration, int index,
         "%.3g A at vds = %.4g V; it is %s",
         value(data, row, COLUMN_VGS), value(data, row, COLUMN_VSB), value(data, row, COLUMN_ID),
         other, value(data, row, COLUMN_VDS),
-        calibration->is_robust ? "left out" : "kept; --robust leaves it out");
+        calibration->is_robust ? "left out"
+                               : "kept with that difference as its error; --robust leaves it out");
 }
 
 /* ln id of the reading over a cubic through two neighbours on each side; 0 where that cannot be

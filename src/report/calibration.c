@@ -278,13 +278,14 @@ static void model_part(struct layout *layout, const struct calibration *c, const
         layout, TONE_QUIET, 2,
         layout_format(layout,
                       "%s; rank %d of %d free values, %d readings and rises, rms of the weighted "
-                      "residuals %.2f; %d evaluations, %s",
+                      "residuals %.2f",
                       fit->is_set ? "one set for all devices, a threshold offset each"
-                      : isnan(fit->length_range[0]) || !isfinite(fit->length_range[0])
-                          ? "one device"
-                          : "one card for one size",
-                      fit->rank, fit->free_count, fit->residual_count, sqrt(fit->reduced),
-                      fit->evaluations, fit->ended));
+                      : !isfinite(fit->length_range[0]) ? "one device"
+                                                        : "one card for one size",
+                      fit->rank, fit->free_count, fit->residual_count, sqrt(fit->reduced)));
+    layout_line(
+        layout, TONE_QUIET,
+        layout_format(layout, "search: %d evaluations, then %s", fit->evaluations, fit->ended));
     if (fit->remark != NULL) {
         layout_paragraph(layout, TONE_WARN, 2, fit->remark);
     }

@@ -240,7 +240,8 @@ void report_json_calibration(const struct calibration *c, const char *version, s
     }
     if (writer.failed || root == NULL ||
         json_dump_callback(root, dump_to_buffer, out,
-                           JSON_INDENT(2) | JSON_REAL_PRECISION(JSON_DIGITS)) != 0) {
+                           JSON_INDENT(1) | JSON_PRESERVE_ORDER |
+                               JSON_REAL_PRECISION(JSON_DIGITS)) != 0) {
         out->failed = true;
     }
     buffer_text(out, "\n");

@@ -70,7 +70,7 @@ static void reads_units_and_names(void **state)
     struct fixture it;
     assert_int_equal(read_transistor(&it,
                                      "# exported\r\n"
-                                     "VGS [mV],vds (V),Vbs/mV,id_uA,temperature C,comment\r\n"
+                                     "VGS [mV],M1.vds (V),Vbs/mV,id_uA,temperature C,comment\r\n"
                                      "500,1.8,-900,+1.5,27,\"a, b\"\r\n\r\n"
                                      "550, .5 ,0,-2e-3,-40,x\r\n",
                                      NULL),

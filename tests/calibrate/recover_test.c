@@ -46,7 +46,7 @@ static void diode_comes_back(void **state)
     remove_file(&file);
 }
 
-/* Breakdown: I = -I_Z exp(-(V_Z + V)/(n_Z UT)) with I_Z = 1 mA (models.md section 2). */
+/* Breakdown: I = -I_Z exp(-(V_Z + V)/(n_Z UT)) with I_Z = 1 mA (docs/devices.md). */
 static void breakdown_comes_back(void **state)
 {
     (void)state;

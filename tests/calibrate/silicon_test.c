@@ -2,7 +2,7 @@
  * silicon_test.c: measured 130 nm transistors (see models/open130.process for their source), beside
  * the sources or where AMPSTEAD_MEASURED says; left out with a message where absent.
  *
- * Limits are those that issue 8 asks for: saturated current 3 % (p-channel below 0.5 um 5.5 %), gm
+ * Limits are those that docs/calibrate.md promises: saturated current 3 % (p-channel below 0.5 um 5.5 %), gm
  * 5 %, gds 30 % where more than one drain sweep shows it; a set 10 %.
  */
 #include "files.h"
@@ -106,8 +106,7 @@ static void one_set_follows_the_n_channel(void **state)
 /*
  * A long device that was not fitted. The only wide one, 25/25, cannot be left out (nothing else
  * would tell long from narrow), so the one held is 0.42/25, whose own threshold is some 5 mV away:
- * 6.7 %, nearly all of it below 0.1 V above threshold. The reference set of models.md, which knew
- * it, reaches 3.8 %.
+ * 6.7 %, nearly all of it within 0.1 V of threshold.
  */
 static void a_held_device_is_predicted(void **state)
 {

@@ -9,7 +9,7 @@
 #include "devices/mos.h"
 #include "devices/mos_gradient.h"
 
-/* The scalable n set of measured 130 nm silicon (shared/models.md 1.1). */
+/* A scalable set like that of models/open130.process; every term is in use. */
 static struct subject measured_set(const char *word, double width, double length)
 {
     static const struct {

@@ -1,5 +1,5 @@
 /*
- * memory_test.c: every allocation of a calibration fails once; each time the status says so and
+ * calibrate_memory_test.c: every allocation of a calibration fails once; each time the status says so and
  * nothing is lost (the sanitizer build sees leaks).
  */
 #include "files.h"
