@@ -308,7 +308,7 @@ int command_run(const struct options *options, const volatile sig_atomic_t *stop
         printf("ampstead %s\n", ampstead_version());
     } else if (options->given[OPTION_HELP] || options->verb == VERB_HELP) {
         show_help(options);
-    } else if (verb_rows[options->verb].takes_curves) {
+    } else if (verb_takes_curves(options->verb)) {
         status = run_curves(options, stop);
     } else {
         status = run_cell(options, stop);

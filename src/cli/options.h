@@ -23,9 +23,14 @@ struct verb_row {
     const char *argument; /* "FILE.cell" */
     const char *summary;  /* one line */
     const char *text;     /* a few lines for `help VERB` */
-    bool takes_curves;    /* any number of files of curves, or --list, instead of one cell */
 };
 extern const struct verb_row verb_rows[VERB_COUNT];
+
+/* Takes any number of files of curves, or --list, instead of one cell. */
+static inline bool verb_takes_curves(enum verb verb)
+{
+    return verb == VERB_CALIBRATE;
+}
 
 enum option {
     OPTION_SET,

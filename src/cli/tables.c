@@ -31,8 +31,7 @@ const struct verb_row verb_rows[VERB_COUNT] = {
          "transistors (vbe,vce,ic,ib), in V and A, positive for both polarities. The size of a\n"
          "transistor is given by --size, by W=7u L=8u behind its file, or in a list. One file\n"
          "gives one card; several give a card each and a scalable set. No start values are\n"
-         "asked for. See docs/calibrate.md.",
-         true},
+         "asked for. See docs/calibrate.md."},
     [VERB_MODELS] = {"models", "FILE", "every model value in force, given or default",
                      "FILE is a cell, or a process file by itself."},
     [VERB_HELP] = {"help", "[VERB]", "this overview, or what one verb does and takes",
