@@ -7,7 +7,7 @@
 /* Constant-current thresholds: this current times W/L. */
 static const double current_n = 100e-9, current_p = 50e-9; /* A */
 
-static const double same_setting = 1e-6; /* V */
+static const double same_setting = 1e-6, fine_step = 0.11; /* V */
 
 static double value(const struct measured *data, int row, enum column column)
 {
@@ -41,12 +41,13 @@ static int gather(const struct measured *data, double vds, double vsb, struct re
     return count;
 }
 
-/* Gate voltage at which the current is crossed, ln id between readings; NAN: never. */
-static double crossing(const struct reading *list, int count, double current)
+/* Gate voltage at which the current is crossed, ln id between readings no further apart than `gap`;
+ * NAN: never. */
+static double crossing(const struct reading *list, int count, double current, double gap)
 {
     for (int k = 1; k < count; k++) {
         double low = list[k - 1].id, high = list[k].id;
-        if (high >= current && low < current) {
+        if (high >= current && low < current && list[k].vgs - list[k - 1].vgs <= gap) {
             double share =
                 low > 0 ? log(current / low) / log(high / low) : (current - low) / (high - low);
             return list[k - 1].vgs + share * (list[k].vgs - list[k - 1].vgs);
@@ -88,7 +89,8 @@ static double steepest_gain(const struct measured *data, const struct reading *l
 static double weak_slope(const struct measured *data, const struct reading *list, int count,
                          double current)
 {
-    double upper = crossing(list, count, current), lower = crossing(list, count, current / 5);
+    double upper = crossing(list, count, current, INFINITY);
+    double lower = crossing(list, count, current / 5, INFINITY);
     double thermal = BOLTZMANN_OVER_CHARGE * data->kelvins[0];
     double factor = (upper - lower) / log(5) / (1.3 * thermal);
     return isfinite(factor) ? fmin(fmax(factor, 0.9), 2) : 1.2;
@@ -109,13 +111,13 @@ static double next_value(const struct measured *data, enum column column, double
 }
 
 /* The threshold at a body voltage from the least drain voltage that shows one. */
-static void find_threshold(const struct measured *data, double vsb, double current,
+static bool find_threshold(const struct measured *data, double vsb, double current, double gap,
                            struct reading *list, struct mos_facts *facts)
 {
     for (double vds = next_value(data, COLUMN_VDS, 1e-3, vsb); isfinite(vds);
          vds = next_value(data, COLUMN_VDS, vds, vsb)) {
         int count = gather(data, vds, vsb, list);
-        double crossed = count > 3 ? crossing(list, count, current) : NAN;
+        double crossed = count > 3 ? crossing(list, count, current, gap) : NAN;
         if (isnan(crossed)) {
             continue;
         }
@@ -124,8 +126,9 @@ static void find_threshold(const struct measured *data, double vsb, double curre
             facts->kprime = steepest_gain(data, list, count, vds);
             facts->slope_factor = weak_slope(data, list, count, current);
         }
-        return;
+        return true;
     }
+    return false;
 }
 
 /* Early voltage at onset 0.1 V from the drain sweep with the most current. */
@@ -163,7 +166,10 @@ bool mos_find_facts(struct arena *arena, const struct measured *data,
     }
     for (double vsb = next_value(data, COLUMN_VSB, -INFINITY, NAN); isfinite(vsb);
          vsb = next_value(data, COLUMN_VSB, vsb, NAN)) {
-        find_threshold(data, vsb, current, list, facts);
+        /* gate sweeps first; the gate steps of drain sweeps are coarse */
+        if (!find_threshold(data, vsb, current, fine_step, list, facts)) {
+            (void)find_threshold(data, vsb, current, INFINITY, list, facts);
+        }
     }
     find_early(data, facts);
     for (int k = 0; k < data->row_count; k++) {

@@ -60,6 +60,9 @@ static void cards_follow_the_silicon(void **state)
                                               .is_robust = robust == 1};
         struct calibration *c = calibrate(&request);
         check_cards(c);
+        /* constant-current thresholds as index.csv has them, vt_cc_v of its first two rows */
+        check_near(c->devices[0].facts.threshold, 0.441, 2e-3);
+        check_near(c->devices[1].facts.threshold, 0.444, 2e-3);
         /* 25/25: the drain sweep at vgs = 0.36 V reads five times too much (index.csv says so) */
         assert_string_equal(c->remarks[0].code, "outlier");
         assert_string_equal(c->devices[c->remarks[0].device].data.name, "nch_w25u_l25u.csv");
