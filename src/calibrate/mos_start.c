@@ -45,7 +45,7 @@ static int gather(const struct measured *data, double vds, double vsb, struct re
  * NAN: never. */
 static double crossing(const struct reading *list, int count, double current, double gap)
 {
-    for (int k = 1; k < count; k++) {
+    for (int k = count - 1; k > 0; k--) { /* from above: below, noise may cross it too */
         double low = list[k - 1].id, high = list[k].id;
         if (high >= current && low < current && list[k].vgs - list[k - 1].vgs <= gap) {
             double share =

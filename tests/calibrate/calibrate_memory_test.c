@@ -1,6 +1,6 @@
 /*
- * calibrate_memory_test.c: every allocation of a calibration fails once; each time the status says so and
- * nothing is lost (the sanitizer build sees leaks).
+ * calibrate_memory_test.c: every allocation of a calibration fails once; each time the status says
+ * so and nothing is lost (the sanitizer build sees leaks).
  */
 #include "files.h"
 
