@@ -4,7 +4,7 @@
 #include "cli/options.h"
 
 enum {
-    RESULT_VERBS = 1 << VERB_REVIEW | 1 << VERB_POINT | 1 << VERB_SWEEP,
+    RESULT_VERBS = 1 << VERB_REVIEW | 1 << VERB_POINT | 1 << VERB_SWEEP | 1 << VERB_STATES,
     CELL_VERBS = RESULT_VERBS | 1 << VERB_MODELS,
     CALIBRATE = 1 << VERB_CALIBRATE,
     ALL_VERBS = CELL_VERBS | CALIBRATE | 1 << VERB_HELP
@@ -25,6 +25,11 @@ const struct verb_row verb_rows[VERB_COUNT] = {
          "Moves a rail, let, source, resistor, output or the temperature, and shows what\n"
          "follows. --csv writes one row a point: number of the sweep, the swept thing, the\n"
          "family, and each quantity, with SI units in the header."},
+    [VERB_STATES] =
+        {"states", "FILE.cell", "every resting state with proof, and whether the cell starts",
+         "Finds all DC states and proves that none was missed; says which cannot be held, where\n"
+         "slowly rising rails lead, how strongly the loop is pushed out of its off state, and the\n"
+         "lowest supply. The proof may take seconds; Ctrl-C shows what was found until then."},
     [VERB_CALIBRATE] =
         {"calibrate", "FILE.csv...", "fits a model to measured curves, writes a process file",
          "Fits MOS transistors (columns vgs,vds,vsb,id), diodes and resistors (v,i) or bipolar\n"
@@ -56,6 +61,13 @@ const struct option_row option_rows[OPTION_COUNT] = {
                      RESULT_VERBS},
     [OPTION_SWEEP] = {"sweep", 0, ARGUMENT_NEEDED, "TEXT", NULL, "the cell's sweeps",
                       "\"THING from A to B points N show Q, Q\", as in a cell", 1 << VERB_SWEEP},
+    [OPTION_CERTIFY] = {"certify", 0, ARGUMENT_NONE, NULL, NULL, "off",
+                        "proves that the point is the only one in a box a few pV wide",
+                        1 << VERB_POINT},
+    [OPTION_BOXES] = {"boxes", 0, ARGUMENT_NEEDED, "N", NULL, "100000",
+                      "boxes that the proof may look at before it gives up", 1 << VERB_STATES},
+    [OPTION_LEAKAGE] = {"leakage", 0, ARGUMENT_NEEDED, "I", NULL, "1 nA",
+                        "a start-up push below this current is at risk", 1 << VERB_STATES},
     [OPTION_KIND] = {"kind", 'k', ARGUMENT_NEEDED, "nmos|pmos|diode|resistor|npn|pnp", kind_words,
                      "as the list says", "what was measured", CALIBRATE},
     [OPTION_LENGTHS] = {"size", 0, ARGUMENT_NEEDED, "W/L", NULL, "of each file",
