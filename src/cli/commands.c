@@ -279,6 +279,122 @@ static int run_cell(const struct options *options, const volatile sig_atomic_t *
     return status;
 }
 
+/* The words behind the verb, W= and L= with the file in front of them. Returns the number of files,
+ * -1 after a message. */
+static int read_curves(const char *const *words, int count, bool is_held,
+                       struct ampstead_curves *files)
+{
+    int found = 0;
+    for (int k = 0; k < count; k++) {
+        bool is_size = strncmp(words[k], "W=", 2) == 0 || strncmp(words[k], "L=", 2) == 0;
+        if (is_size && found == 0) {
+            fprintf(stderr, "ampstead: '%s' stands in front of the file it belongs to\n", words[k]);
+            return -1;
+        }
+        if (!is_size) {
+            files[found++] = (struct ampstead_curves){words[k], NULL, NULL, is_held};
+        } else if (words[k][0] == 'W') {
+            files[found - 1].width = words[k] + 2;
+        } else {
+            files[found - 1].length = words[k] + 2;
+        }
+    }
+    return found;
+}
+
+/* Never overwrites without --force. */
+static bool check_target(const struct options *options)
+{
+    const char *path = options->values[OPTION_WRITE];
+    if (path == NULL || is_stdout(path) || options->given[OPTION_FORCE] ||
+        access(path, F_OK) != 0) {
+        return true;
+    }
+    fprintf(stderr, "ampstead: '%s' exists; --force replaces it\n", path);
+    return false;
+}
+
+static bool deliver_calibration(const struct options *options,
+                                struct ampstead_calibration *calibration)
+{
+    bool wants_text = true, is_written = true;
+    if (options->given[OPTION_WRITE]) {
+        const char *path = options->values[OPTION_WRITE];
+        wants_text = !is_stdout(path);
+        is_written = deliver(path, ampstead_calibration_process(calibration));
+    }
+    if (options->given[OPTION_JSON]) {
+        const char *path = options->values[OPTION_JSON];
+        wants_text = wants_text && !is_stdout(path);
+        is_written = deliver(path, ampstead_calibration_json(calibration)) && is_written;
+    }
+    if (wants_text) {
+        const char *text =
+            ampstead_calibration_text(calibration, text_flags(options), text_columns());
+        is_written = deliver(NULL, text) && is_written;
+    }
+    return is_written;
+}
+
+static int run_calibration(const struct options *options, struct ampstead_curves *files,
+                           const volatile sig_atomic_t *stop)
+{
+    struct watch watch = {.stop = stop, .shows_progress = isatty(STDERR_FILENO)};
+    struct ampstead_calibration_request request = AMPSTEAD_CALIBRATION_REQUEST;
+    struct ampstead_calibration *calibration = NULL;
+    int fitted = read_curves(options->words + 1, options->word_count - 1, false, files);
+    int held =
+        fitted < 0 ? -1 : read_curves(options->held, options->held_count, true, files + fitted);
+    if (held < 0 || !check_target(options)) {
+        return AMPSTEAD_INPUT;
+    }
+    (void)clock_gettime(CLOCK_MONOTONIC, &watch.start);
+    request.files = files;
+    request.file_count = fitted + held;
+    request.kind = options->values[OPTION_KIND];
+    request.size_text = options->values[OPTION_LENGTHS];
+    request.model = options->values[OPTION_MODEL];
+    request.list = options->values[OPTION_LIST];
+    request.columns = options->values[OPTION_COLUMNS];
+    request.temperature = options->values[OPTION_TEMPERATURE];
+    request.noise = options->values[OPTION_NOISE];
+    request.accuracy = options->values[OPTION_ACCURACY];
+    request.form = options->values[OPTION_FORM];
+    request.robust = options->given[OPTION_ROBUST];
+    request.target = options->values[OPTION_WRITE];
+    request.stopped = ask_stopped;
+    request.stopped_self = &watch;
+    request.progress = show_progress;
+    request.progress_self = &watch;
+    request.command = options->command;
+    int status = (int)ampstead_calibrate(&request, &calibration);
+    end_progress(&watch);
+    fputs(ampstead_calibration_messages(calibration,
+                                        wants_color(options, STDERR_FILENO) ? AMPSTEAD_COLOR : 0),
+          stderr);
+    if (status == AMPSTEAD_STOPPED) {
+        fputs("ampstead: stopped\n", stderr);
+    }
+    if (status == AMPSTEAD_WELL && !deliver_calibration(options, calibration)) {
+        status = AMPSTEAD_MACHINE;
+    }
+    ampstead_calibration_free(calibration);
+    return status;
+}
+
+static int run_curves(const struct options *options, const volatile sig_atomic_t *stop)
+{
+    size_t room = (size_t)(options->word_count + options->held_count) + 1;
+    struct ampstead_curves *files = calloc(room, sizeof *files);
+    if (files == NULL) {
+        fputs("ampstead: memory is short\n", stderr);
+        return AMPSTEAD_MACHINE;
+    }
+    int status = run_calibration(options, files, stop);
+    free(files);
+    return status;
+}
+
 static void show_help(const struct options *options)
 {
     if (options->verb != VERB_HELP) {
@@ -301,6 +417,8 @@ int command_run(const struct options *options, const volatile sig_atomic_t *stop
         printf("ampstead %s\n", ampstead_version());
     } else if (options->given[OPTION_HELP] || options->verb == VERB_HELP) {
         show_help(options);
+    } else if (verb_takes_curves(options->verb)) {
+        status = run_curves(options, stop);
     } else {
         status = run_cell(options, stop);
     }

@@ -158,6 +158,62 @@ AMPSTEAD_API const char *ampstead_result_cell(struct ampstead_result *result, co
 AMPSTEAD_API int ampstead_result_value(const struct ampstead_result *result, const char *name,
                                        double *value);
 
+/* A file of measured curves. */
+struct ampstead_curves {
+    const char *path;
+    const char *width, *length; /* "7u"; NULL: as request.size_text or the list says */
+    int held;                   /* not 0: predicted and not fitted */
+};
+
+/* What to calibrate; docs/calibrate.md tells what each text may be. Start from
+ * AMPSTEAD_CALIBRATION_REQUEST. Everything is read during ampstead_calibrate only. */
+struct ampstead_calibration_request {
+    size_t size;                         /* set by AMPSTEAD_CALIBRATION_REQUEST */
+    const struct ampstead_curves *files; /* [file_count] */
+    int file_count;
+    const char *list; /* CSV file of files with kinds and sizes; NULL: none */
+    const char *kind; /* "nmos", "pmos", "diode", "resistor", "npn", "pnp"; NULL: of the list */
+    const char *size_text;   /* "7u/8u"; NULL: each file has its own */
+    const char *model;       /* name of the model; NULL: the kind */
+    const char *columns;     /* "vgs=VG, id=-ID uA"; NULL: the usual names */
+    const char *temperature; /* "27 C"; NULL: 25 C, and a remark says so */
+    const char *noise;       /* "2 nA"; NULL: the usual one */
+    const char *accuracy;    /* "1%"; NULL: that */
+    const char *form;        /* "cards", "set" or "both"; NULL: as the number of files asks */
+    int robust;              /* not 0: doubtful readings are left out */
+    const char *target;  /* the process file to be; names the process. A comment at the top of an
+                            existing one is kept. NULL: none */
+    const char *command; /* told in the process file; NULL: not told */
+    int (*stopped)(void *self); /* as in ampstead_request */
+    void *stopped_self;
+    void (*progress)(void *self, const char *what, double share);
+    void *progress_self;
+};
+
+#define AMPSTEAD_CALIBRATION_REQUEST                                                               \
+    {                                                                                              \
+        sizeof(struct ampstead_calibration_request), 0, 0, 0, 0, 0, 0, 0, 0, 0, 0, 0, 0, 0, 0, 0,  \
+            0, 0, 0                                                                                \
+    }
+
+struct ampstead_calibration;
+
+/* Reads curves and fits models. `calibration` is owned by the caller as a result of ampstead_run
+ * is; the status is AMPSTEAD_WELL, _INPUT, _MACHINE or _STOPPED. */
+AMPSTEAD_API enum ampstead_status
+ampstead_calibrate(const struct ampstead_calibration_request *request,
+                   struct ampstead_calibration **calibration);
+AMPSTEAD_API void ampstead_calibration_free(struct ampstead_calibration *calibration);
+
+/* Texts as for a result; those but the messages are NULL unless the status is AMPSTEAD_WELL. */
+AMPSTEAD_API const char *ampstead_calibration_messages(struct ampstead_calibration *calibration,
+                                                       unsigned flags);
+AMPSTEAD_API const char *ampstead_calibration_text(struct ampstead_calibration *calibration,
+                                                   unsigned flags, int columns);
+AMPSTEAD_API const char *ampstead_calibration_json(struct ampstead_calibration *calibration);
+/* The process file. */
+AMPSTEAD_API const char *ampstead_calibration_process(struct ampstead_calibration *calibration);
+
 /* "1.0.0"; lives as long as the program. */
 AMPSTEAD_API const char *ampstead_version(void);
 

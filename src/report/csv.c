@@ -24,7 +24,7 @@ static void put_field(struct buffer *out, const char *text)
     buffer_text(out, "\"");
 }
 
-void csv_number(struct buffer *out, double value)
+void csv_put_number(struct buffer *out, double value)
 {
     char text[NUMBER_SIZE];
     if (isfinite(value)) {
@@ -41,9 +41,9 @@ static void put_curves(const struct result *result, struct buffer *out)
         for (int p = 0; p < row->curve.count; p++) {
             put_field(out, row->output->name);
             buffer_text(out, ",");
-            csv_number(out, row->curve.v[p]);
+            csv_put_number(out, row->curve.v[p]);
             buffer_text(out, ",");
-            csv_number(out, row->curve.current[p]);
+            csv_put_number(out, row->curve.current[p]);
             buffer_text(out, "\r\n");
         }
     }
@@ -147,7 +147,7 @@ static void put_sweep(const struct sweep_table *table, int number, const struct 
             buffer_format(out, "%d", number);
             for (int k = 0; k < count; k++) {
                 buffer_text(out, ",");
-                csv_number(out, cell_value(table->sweep, series, row, columns[k].name));
+                csv_put_number(out, cell_value(table->sweep, series, row, columns[k].name));
             }
             buffer_text(out, "\r\n");
         }

@@ -5,7 +5,7 @@
 #include "report/report.h"
 
 /* A number that reads back as the same bits; nothing when it is not finite. */
-void csv_number(struct buffer *out, double value);
+void csv_put_number(struct buffer *out, double value);
 
 /* "tail.current [A]", quoted where needed. */
 void csv_heading(struct buffer *out, const char *name, struct dimension dimension);

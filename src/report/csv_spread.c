@@ -25,7 +25,7 @@ void csv_samples(const struct result *result, struct buffer *out)
         buffer_format(out, "%d,%s", k, states[r->states[k]]);
         for (int q = 0; q < r->quantity_count; q++) {
             buffer_text(out, ",");
-            csv_number(out, r->values[(size_t)k * (size_t)r->quantity_count + (size_t)q]);
+            csv_put_number(out, r->values[(size_t)k * (size_t)r->quantity_count + (size_t)q]);
         }
         buffer_text(out, "\r\n");
     }
