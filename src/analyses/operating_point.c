@@ -27,6 +27,11 @@ bool operating_point_create(struct operating_point *p, struct system *system,
            p->values != NULL;
 }
 
+static bool ends_search(enum newton_status status)
+{
+    return status == NEWTON_STOPPED || status == NEWTON_MEMORY;
+}
+
 static struct newton_options newton_settings(const struct operating_point *p)
 {
     struct newton_options options = newton_default_options();
@@ -117,9 +122,12 @@ static void note_failure(struct operating_point *p, enum newton_status status)
     }
 }
 
-static bool ends_search(enum newton_status status)
+/* Newton again, from the guess in which the current of one mirror sets the voltage of the next. */
+static enum newton_status try_balanced(struct operating_point *p)
 {
-    return status == NEWTON_STOPPED || status == NEWTON_MEMORY;
+    operating_point_guess(p->system, p->x);
+    operating_point_balance(p->system, p->x);
+    return operating_point_newton(p);
 }
 
 /* --- the ladder: each starts from p->x and leaves a root of the plain system there ------------ */
@@ -177,20 +185,28 @@ static bool find_inertia(const struct operating_point *p, double *inertia)
 
 /* Where Newton runs off, the cell is let go from the guess like one whose nodes have capacitance: it
  * comes to rest in a state that can be held. */
-static enum newton_status try_settling(struct operating_point *p)
+static enum newton_status settle_here(struct operating_point *p)
 {
     struct system *s = p->system;
     struct newton_options options = newton_settings(p);
     double *inertia = arena_new_array(s->arena, double, s->n);
-    if (inertia == NULL) {
-        return NEWTON_MEMORY;
-    }
-    operating_point_guess(s, p->x);
-    if (!find_inertia(p, inertia)) {
+    if (inertia == NULL || !find_inertia(p, inertia)) {
         return NEWTON_MEMORY;
     }
     options.step_limit = 0.5;
     return settle(&s->face, s->solver, &options, inertia, p->x, s->work, &p->report);
+}
+
+static enum newton_status try_settling(struct operating_point *p)
+{
+    operating_point_guess(p->system, p->x);
+    enum newton_status status = settle_here(p);
+    if (status != NEWTON_CONVERGED && !ends_search(status)) {
+        operating_point_guess(p->system, p->x);
+        operating_point_balance(p->system, p->x);
+        status = settle_here(p);
+    }
+    return status;
 }
 
 static enum newton_status walk(struct operating_point *p, enum embedding embedding, double from)
@@ -322,6 +338,7 @@ static const struct {
     enum newton_status (*search)(struct operating_point *p);
 } ladder[] = {
     {"direct", try_direct},
+    {"balanced start", try_balanced},
     {"settling", try_settling},
     {"from the all-region solution", try_blended},
     {"gain stepping", try_gain},

@@ -56,4 +56,7 @@ enum newton_status operating_point_newton(struct operating_point *point);
 /* A start for the search in which diode-like devices conduct, [n] out. */
 void operating_point_guess(const struct system *system, double *x);
 
+/* Moves the nodes of diode-like devices in the guess x to where their currents balance. */
+void operating_point_balance(const struct system *system, double *x);
+
 #endif

@@ -201,14 +201,12 @@ static bool put_widlar(struct stage *s, double *input)
 static bool put_peaking(struct stage *s, double *input)
 {
     struct draft *d = s->d;
-    if (s->size.card->kind == CARD_MOS && d->is_hand) {
+    if (s->size.card->kind == CARD_BOARD_MOS || (s->size.card->kind == CARD_MOS && d->is_hand)) {
         return false; /* the square law may cut the copy off */
     }
-    /* volts for a factor e of the current, I/gm: bipolar, square law, in between */
+    /* volts for a factor e of the current, I/gm: bipolar, MOS */
     const double u = thermal(d);
-    const double fold = s->size.card->kind == CARD_BIPOLAR     ? u
-                        : s->size.card->kind == CARD_BOARD_MOS ? s->size.least / 2
-                                                               : 1.3 * (s->size.least - 2 * u) / 2;
+    const double fold = s->size.card->kind == CARD_BIPOLAR ? u : 1.3 * (s->size.least - 2 * u) / 2;
     const double drop =
         fold * draw_between(&d->draw, 0.2, s->size.card->kind == CARD_BIPOLAR ? 1.3 : 0.5);
     const int low = draft_node(d), node = draft_node(d);
