@@ -27,7 +27,7 @@ struct groups {
     int *of;    /* [node_count] the group's first node */
     int *start; /* [node_count + 1] into touching, by first node */
     int *touching;
-    bool *moves; /* [node_count] by first node: to be relaxed */
+    int *flags; /* [node_count] by first node: what touches it */
 };
 
 static int first_of(const int *of, int node)
@@ -72,26 +72,39 @@ static void list_touching(const struct guess *g, struct groups *it, int *fill)
     }
 }
 
-/* A group moves when a device there is its own load (a diode), or when it is suspect. */
-static void choose_moving(const struct guess *g, struct groups *it)
+/* What touches a group. */
+enum { HAS_DIODE = 1, HAS_SOURCE = 2, HAS_DRAIN_OR_GATE = 4, HAS_PART = 8, IS_HELD = 16 };
+
+static void mark(const struct guess *g, const struct groups *it, const struct instance *instance)
 {
-    const struct circuit *c = g->system->circuit;
-    for (int k = 0; k < c->instance_count; k++) {
-        const struct instance *instance = &c->instances[k];
-        const int *local = instance->local;
-        if (instance->type->is_transistor && local[0] >= 0 && local[CONTROL] >= 0 &&
-            it->of[local[0]] == it->of[local[CONTROL]]) {
-            it->moves[it->of[local[0]]] = true;
+    const int *local = instance->local;
+    for (int l = 0; l < instance->local_count; l++) {
+        if (local[l] < 0 || local[l] >= g->system->node_count) {
+            continue;
+        }
+        int *flags = &it->flags[it->of[local[l]]];
+        if (instance->type->is_transistor && l <= SOURCE) {
+            *flags |= l == SOURCE ? HAS_SOURCE : HAS_DRAIN_OR_GATE;
+            *flags |= l == CONTROL && local[0] >= 0 && it->of[local[0]] == it->of[local[l]]
+                          ? HAS_DIODE
+                          : 0;
+        } else if (instance->type->fixes_voltage) {
+            *flags |= IS_HELD;
+        } else if (instance->type->terminal_count == 2) {
+            *flags |= HAS_PART;
         }
     }
-    for (int k = 0; k < c->instance_count; k++) {
-        const struct instance *instance = &c->instances[k];
-        for (int l = 0; l < 2 && instance->type->fixes_voltage; l++) {
-            if (instance->local[l] >= 0 && instance->local[l] < g->system->node_count) {
-                it->moves[it->of[instance->local[l]]] = false;
-            }
-        }
-    }
+}
+
+/* A group moves when a device there is its own load (a diode), or when it is the source of a
+ * degenerated transistor. */
+static bool moves(const struct groups *it, int group)
+{
+    const int flags = it->flags[group];
+    const bool degenerated =
+        (flags & (HAS_SOURCE | HAS_PART | HAS_DRAIN_OR_GATE)) == (HAS_SOURCE | HAS_PART);
+    return it->of[group] == group && (flags & IS_HELD) == 0 &&
+           ((flags & HAS_DIODE) != 0 || degenerated);
 }
 
 /* What leaves the group through the devices there. */
@@ -142,9 +155,9 @@ static bool create_groups(const struct guess *g, struct arena *arena, struct gro
     const struct circuit *c = g->system->circuit;
     it->of = arena_new_array(arena, int, n);
     it->start = arena_new_array(arena, int, n + 1);
-    it->moves = arena_new_array(arena, bool, n);
+    it->flags = arena_new_array(arena, int, n);
     int *fill = arena_new_array(arena, int, n + 1);
-    if (it->of == NULL || it->start == NULL || it->moves == NULL || fill == NULL) {
+    if (it->of == NULL || it->start == NULL || it->flags == NULL || fill == NULL) {
         return false;
     }
     for (int k = 0; k < n; k++) {
@@ -170,7 +183,11 @@ static bool create_groups(const struct guess *g, struct arena *arena, struct gro
         return false;
     }
     list_touching(g, it, fill);
-    choose_moving(g, it);
+    for (int k = 0; k < c->instance_count; k++) {
+        if (!is_lead(&c->instances[k])) {
+            mark(g, it, &c->instances[k]);
+        }
+    }
     return true;
 }
 
@@ -184,7 +201,7 @@ static void relax_all(const struct guess *g)
         for (int pass = 0; pass < PASS_LIMIT && moved > at_rest; pass++) {
             moved = 0;
             for (int k = 0; k < g->system->node_count; k++) {
-                moved = it.of[k] == k && it.moves[k] ? fmax(moved, relax(g, &it, k)) : moved;
+                moved = moves(&it, k) ? fmax(moved, relax(g, &it, k)) : moved;
             }
         }
     }

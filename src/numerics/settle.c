@@ -21,6 +21,9 @@ static const double most_growth = 3, least_growth = 0.5;
 /* From here on the step is Newton's to six digits. */
 static const double newton_from = 1e6;
 
+/* Below this speed, in units of x a step, Newton ends it. */
+static const double at_rest = 1e-9;
+
 struct motion {
     const struct nonlinear_system *system;
     struct linear_solver *solver;
@@ -106,6 +109,9 @@ enum newton_status settle(const struct nonlinear_system *system, struct linear_s
         const double now = speed_of(&m);
         if (steps > 0) {
             h *= fmin(fmax(now > 0 ? speed / now : most_growth, least_growth), most_growth);
+        }
+        if (!(now > at_rest)) {
+            break;
         }
         speed = now;
         const enum newton_status status = step(&m, h, options);
