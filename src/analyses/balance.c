@@ -201,7 +201,8 @@ static void relax_all(const struct guess *g)
         for (int pass = 0; pass < PASS_LIMIT && moved > at_rest; pass++) {
             moved = 0;
             for (int k = 0; k < g->system->node_count; k++) {
-                moved = moves(&it, k) ? fmax(moved, relax(g, &it, k)) : moved;
+                const int node = pass % 2 == 0 ? k : g->system->node_count - 1 - k;
+                moved = moves(&it, node) ? fmax(moved, relax(g, &it, node)) : moved;
             }
         }
     }

@@ -222,6 +222,12 @@ static enum newton_status walk(struct operating_point *p, enum embedding embeddi
     return status;
 }
 
+static enum newton_status try_sources(struct operating_point *p)
+{
+    memset(p->x, 0, (size_t)p->system->n * sizeof *p->x);
+    return walk(p, EMBED_SOURCES, 0);
+}
+
 /*
  * The square law has no current below threshold, so a search that gets there sees no slope. It is
  * therefore started from the all-region solution of the same cell, whose weak inversion is then
@@ -235,9 +241,11 @@ static enum newton_status try_blended(struct operating_point *p)
         return NEWTON_STALLED;
     }
     system_conditions(s, s->conditions.kelvin, effects | EFFECT_INVERSION);
-    enum newton_status status = try_direct(p);
-    if (status != NEWTON_CONVERGED && !ends_search(status)) {
-        status = try_settling(p);
+    static enum newton_status (*const searches[])(struct operating_point *) = {
+        try_direct, try_balanced, try_settling, try_sources};
+    enum newton_status status = NEWTON_STALLED;
+    for (size_t k = 0; k < sizeof searches / sizeof searches[0]; k++) {
+        status = status == NEWTON_CONVERGED || ends_search(status) ? status : searches[k](p);
     }
     if (status == NEWTON_CONVERGED) {
         status = walk(p, EMBED_INVERSION, 0);
@@ -245,12 +253,6 @@ static enum newton_status try_blended(struct operating_point *p)
     s->conditions.inversion_cut = 0;
     system_conditions(s, s->conditions.kelvin, effects);
     return status;
-}
-
-static enum newton_status try_sources(struct operating_point *p)
-{
-    memset(p->x, 0, (size_t)p->system->n * sizeof *p->x);
-    return walk(p, EMBED_SOURCES, 0);
 }
 
 static enum newton_status try_conductance(struct operating_point *p)

@@ -66,19 +66,17 @@ static enum newton_status step(struct motion *m, double h, const struct newton_o
                                              : NEWTON_NOT_FINITE;
     }
     linear_solve(m->solver, m->dx);
-    double size = 0;
     for (int k = 0; k < s->n; k++) {
         const double w = s->weight != NULL ? s->weight[k] : 1;
         if (!isfinite(m->dx[k])) {
             return NEWTON_NOT_FINITE;
         }
-        size = fmax(size, w * fabs(m->dx[k]));
+        if (w * fabs(m->dx[k]) > options->step_limit) {
+            m->dx[k] = copysign(options->step_limit / w, m->dx[k]);
+        }
     }
     double share = s->longest_step != NULL ? s->longest_step(s->self, m->x, m->dx) : 1;
     share = share > 0 && share < 1 ? share : 1;
-    if (share * size > options->step_limit) {
-        share = options->step_limit / size;
-    }
     for (int k = 0; k < s->n; k++) {
         m->x[k] += share * m->dx[k];
     }
