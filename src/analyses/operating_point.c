@@ -183,9 +183,9 @@ static bool find_inertia(const struct operating_point *p, double *inertia)
     return true;
 }
 
-/* Where Newton runs off, the cell is let go from the guess like one whose nodes have capacitance: it
- * comes to rest in a state that can be held. */
-static enum newton_status settle_here(struct operating_point *p)
+/* Where Newton runs off, the cell is let go from the guess like one whose nodes have capacitance:
+ * it comes to rest in a state that can be held. */
+static enum newton_status settle_here(struct operating_point *p, bool patient)
 {
     struct system *s = p->system;
     struct newton_options options = newton_settings(p);
@@ -194,19 +194,26 @@ static enum newton_status settle_here(struct operating_point *p)
         return NEWTON_MEMORY;
     }
     options.step_limit = 0.5;
-    return settle(&s->face, s->solver, &options, inertia, p->x, s->work, &p->report);
+    return settle(&s->face, s->solver, &options, inertia, patient, p->x, s->work, &p->report);
 }
 
 static enum newton_status try_settling(struct operating_point *p)
 {
     operating_point_guess(p->system, p->x);
-    enum newton_status status = settle_here(p);
+    enum newton_status status = settle_here(p, false);
     if (status != NEWTON_CONVERGED && !ends_search(status)) {
         operating_point_guess(p->system, p->x);
         operating_point_balance(p->system, p->x);
-        status = settle_here(p);
+        status = settle_here(p, false);
     }
     return status;
+}
+
+static enum newton_status try_patient_settling(struct operating_point *p)
+{
+    operating_point_guess(p->system, p->x);
+    operating_point_balance(p->system, p->x);
+    return settle_here(p, true);
 }
 
 static enum newton_status walk(struct operating_point *p, enum embedding embedding, double from)
@@ -242,7 +249,7 @@ static enum newton_status try_blended(struct operating_point *p)
     }
     system_conditions(s, s->conditions.kelvin, effects | EFFECT_INVERSION);
     static enum newton_status (*const searches[])(struct operating_point *) = {
-        try_direct, try_balanced, try_settling, try_sources};
+        try_direct, try_balanced, try_settling, try_patient_settling, try_sources};
     enum newton_status status = NEWTON_STALLED;
     for (size_t k = 0; k < sizeof searches / sizeof searches[0]; k++) {
         status = status == NEWTON_CONVERGED || ends_search(status) ? status : searches[k](p);
@@ -344,6 +351,7 @@ static const struct {
     {"settling", try_settling},
     {"from the all-region solution", try_blended},
     {"gain stepping", try_gain},
+    {"patient settling", try_patient_settling},
     {"source stepping", try_sources},
     {"conductance stepping", try_conductance},
     {"arclength continuation", try_arclength},

@@ -1,5 +1,6 @@
 /*
- * settle.c: pseudo-transient continuation (Kelley and Keyes 1998, SIAM J. Numer. Anal. 35, 508-523).
+ * settle.c: pseudo-transient continuation (Kelley and Keyes 1998, SIAM J. Numer. Anal. 35,
+ * 508-523).
  *
  * The root is where the made-up motion D dx/dt = -F(x) comes to rest. Each step is one linearly
  * implicit Euler step
@@ -14,10 +15,10 @@
 
 #include <math.h>
 
-enum { SETTLE_LIMIT = 150 };
-
 /* Growth and shrinking of h in one step. */
 static const double most_growth = 3, least_growth = 0.5;
+/* Growth of a patient motion. */
+static const double patient_growth = 1.4;
 /* From here on the step is Newton's to six digits. */
 static const double newton_from = 1e6;
 
@@ -84,10 +85,12 @@ static enum newton_status step(struct motion *m, double h, const struct newton_o
 }
 
 enum newton_status settle(const struct nonlinear_system *system, struct linear_solver *solver,
-                          const struct newton_options *options, const double *inertia, double *x,
-                          double *work, struct newton_report *report)
+                          const struct newton_options *options, const double *inertia, bool patient,
+                          double *x, double *work, struct newton_report *report)
 {
     const int n = system->n;
+    const int step_limit = patient ? SETTLE_PATIENT_LIMIT : SETTLE_LIMIT;
+    const double growth = patient ? patient_growth : most_growth;
     struct motion m = {.system = system,
                        .solver = solver,
                        .inertia = inertia,
@@ -97,7 +100,7 @@ enum newton_status settle(const struct nonlinear_system *system, struct linear_s
                        .dx = work + 2 * n,
                        .values = work + 3 * n};
     double h = 1, speed = 0;
-    for (int steps = 0; steps < SETTLE_LIMIT && h < newton_from; steps++) {
+    for (int steps = 0; steps < step_limit && h < newton_from; steps++) {
         if (options->stopped != NULL && options->stopped(options->stopped_self)) {
             return NEWTON_STOPPED;
         }
@@ -106,7 +109,7 @@ enum newton_status settle(const struct nonlinear_system *system, struct linear_s
         }
         const double now = speed_of(&m);
         if (steps > 0) {
-            h *= fmin(fmax(now > 0 ? speed / now : most_growth, least_growth), most_growth);
+            h *= fmin(fmax(now > 0 ? speed / now : growth, least_growth), growth);
         }
         if (!(now > at_rest)) {
             break;

@@ -93,9 +93,15 @@ static void close_trial(struct trial *trial)
 
 static void count_method(struct tally *tally, const char *name)
 {
-    static const char *const known[] = {
-        "direct",   "balanced start",  "from the all-region solution", "gain stepping",
-        "settling", "source stepping", "conductance stepping",         "arclength continuation"};
+    static const char *const known[] = {"direct",
+                                        "balanced start",
+                                        "from the all-region solution",
+                                        "gain stepping",
+                                        "settling",
+                                        "patient settling",
+                                        "source stepping",
+                                        "conductance stepping",
+                                        "arclength continuation"};
     for (size_t k = 0; k < sizeof known / sizeof known[0]; k++) {
         tally->methods[k].name = known[k];
         tally->methods[k].count += strcmp(name, known[k]) == 0;
