@@ -48,6 +48,8 @@ static struct continuation_options walk_settings(const struct operating_point *p
     return options;
 }
 
+/* Newton from a guess is given up early: what it has not solved by then, settling does sooner. */
+enum { COLD_ITERATIONS = 60 };
 /* A residual below this in a search that stalled may be rounding alone. */
 static const double near_root = 1e-2;
 /* What the polish must reach for a stalled search to count as a root. */
@@ -68,10 +70,11 @@ static enum newton_status polish(struct operating_point *p, double *worst, int *
  * Where a high gain magnifies the rounding of double (an opamp of 1e9), the plain iteration stalls
  * next to the root; in long double it gets there.
  */
-enum newton_status operating_point_newton(struct operating_point *p)
+static enum newton_status newton_within(struct operating_point *p, int iteration_limit)
 {
     struct system *s = p->system;
-    const struct newton_options options = newton_settings(p);
+    struct newton_options options = newton_settings(p);
+    options.iteration_limit = iteration_limit;
     enum newton_status status =
         newton_solve(&s->face, s->solver, &options, p->x, s->work, &p->report);
     if ((status == NEWTON_STALLED || status == NEWTON_LIMIT) && s->embedding == EMBED_NONE &&
@@ -86,6 +89,11 @@ enum newton_status operating_point_newton(struct operating_point *p)
         }
     }
     return status;
+}
+
+enum newton_status operating_point_newton(struct operating_point *p)
+{
+    return newton_within(p, newton_default_options().iteration_limit);
 }
 
 /* The largest relative residual of the plain system at p->x, INFINITY when it has none. The
@@ -127,7 +135,7 @@ static enum newton_status try_balanced(struct operating_point *p)
 {
     operating_point_guess(p->system, p->x);
     operating_point_balance(p->system, p->x);
-    return operating_point_newton(p);
+    return newton_within(p, COLD_ITERATIONS);
 }
 
 /* --- the ladder: each starts from p->x and leaves a root of the plain system there ------------ */
@@ -135,7 +143,7 @@ static enum newton_status try_balanced(struct operating_point *p)
 static enum newton_status try_direct(struct operating_point *p)
 {
     operating_point_guess(p->system, p->x);
-    return operating_point_newton(p);
+    return newton_within(p, COLD_ITERATIONS);
 }
 
 /*
