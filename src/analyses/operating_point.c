@@ -224,23 +224,28 @@ static enum newton_status try_patient_settling(struct operating_point *p)
     return settle_here(p, true);
 }
 
-static enum newton_status walk(struct operating_point *p, enum embedding embedding, double from)
+static enum newton_status walk_with(struct operating_point *p, enum embedding embedding,
+                                    const struct continuation_options *options)
 {
     struct system *s = p->system;
-    const struct continuation_options options = walk_settings(p);
-    double reached = from;
     s->embedding = embedding;
-    enum newton_status status = continuation_walk(&s->face, s->solver, &options, from, 1, p->x,
-                                                  &reached, s->work, &p->report);
+    enum newton_status status = continuation_walk(&s->face, s->solver, options, 0, 1, p->x,
+                                                  &p->reached, s->work, &p->report);
     s->embedding = EMBED_NONE;
     s->lambda = 1;
     return status;
 }
 
+static enum newton_status walk(struct operating_point *p, enum embedding embedding)
+{
+    const struct continuation_options options = walk_settings(p);
+    return walk_with(p, embedding, &options);
+}
+
 static enum newton_status try_sources(struct operating_point *p)
 {
     memset(p->x, 0, (size_t)p->system->n * sizeof *p->x);
-    return walk(p, EMBED_SOURCES, 0);
+    return walk(p, EMBED_SOURCES);
 }
 
 /*
@@ -263,7 +268,7 @@ static enum newton_status try_blended(struct operating_point *p)
         status = status == NEWTON_CONVERGED || ends_search(status) ? status : searches[k](p);
     }
     if (status == NEWTON_CONVERGED) {
-        status = walk(p, EMBED_INVERSION, 0);
+        status = walk(p, EMBED_INVERSION);
     }
     s->conditions.inversion_cut = 0;
     system_conditions(s, s->conditions.kelvin, effects);
@@ -279,7 +284,7 @@ static enum newton_status try_conductance(struct operating_point *p)
     operating_point_guess(p->system, anchor);
     memcpy(p->x, anchor, (size_t)p->system->n * sizeof *anchor);
     p->system->anchor = anchor;
-    return walk(p, EMBED_CONDUCTANCE, 0);
+    return walk(p, EMBED_CONDUCTANCE);
 }
 
 static enum newton_status trace(struct operating_point *p, enum embedding embedding)
@@ -501,35 +506,114 @@ static enum status from_newton(enum newton_status status)
                                       : STATUS_UNSOLVED;
 }
 
+/* --- following a state ---------------------------------------------------------------------- */
+
+/* A node further than this, V, from where the tangent led: the step is too long, or the state is
+ * another. */
+static const double surprise = 0.1;
+
+struct turn {
+    double furthest; /* largest parameter so far */
+    bool turned;
+};
+
+static bool watch_turn(void *self, const struct trace_point *point)
+{
+    struct turn *turn = self;
+    turn->turned = point->lambda < turn->furthest;
+    turn->furthest = fmax(turn->furthest, point->lambda);
+    return !turn->turned;
+}
+
+/* Whether the curve of states turns back before the knob is at its end: a fold, and where. */
+static bool find_turn(struct operating_point *p, double from, double *furthest)
+{
+    struct system *s = p->system;
+    struct continuation_options options = walk_settings(p);
+    struct turn turn = {.furthest = from};
+    bool ended = false;
+    options.step_limit = 200;
+    options.first_step = 0.02;
+    s->embedding = EMBED_KNOB;
+    arclength_trace(&s->face, &options, from, 1, p->x, watch_turn, &turn, &ended, &p->report);
+    s->embedding = EMBED_NONE;
+    s->lambda = 1;
+    *furthest = turn.furthest;
+    return turn.turned;
+}
+
+const char *operating_point_lost_text(const struct operating_point *point)
+{
+    return point->folds ? "the state folds back here: beyond, the cell rests in another one"
+                        : "the state cannot be followed from here: it jumps";
+}
+
+/* The state is lost on the way: tells where, and looks for one at the end of the way. */
+static enum status land(struct operating_point *p, int instance, int parameter, double from,
+                        double to)
+{
+    struct system *s = p->system;
+    const double reached = p->reached;
+    double furthest = reached;
+    double *edge = arena_new_array(s->arena, double, s->n);
+    if (edge == NULL) {
+        return STATUS_MEMORY;
+    }
+    memcpy(edge, p->x, (size_t)s->n * sizeof *edge);
+    p->folds = find_turn(p, reached, &furthest);
+    p->lost_at = from + fmax(reached, p->folds ? furthest : 0) * (to - from);
+    memcpy(p->x, edge, (size_t)s->n * sizeof *edge);
+    system_set(s, instance, parameter, to);
+    const enum newton_status status = settle_here(p, false);
+    return status == NEWTON_CONVERGED || ends_search(status) ? from_newton(status)
+                                                             : operating_point_find(p);
+}
+
+/* Where rounding keeps the steps from converging (a gain of 1e9) the polish may still get there. */
+static bool is_near_start(const struct operating_point *p, const double *start)
+{
+    for (int k = 0; k < p->system->node_count; k++) {
+        if (!(fabs(p->x[k] - start[k]) <= surprise)) {
+            return false;
+        }
+    }
+    return true;
+}
+
 enum status operating_point_move(struct operating_point *p, int instance, int parameter,
                                  double from, double to, bool *jumped)
 {
     struct system *s = p->system;
+    struct continuation_options options = walk_settings(p);
     double *start = p->saved;
     memcpy(start, p->x, (size_t)s->n * sizeof *start);
-    system_set(s, instance, parameter, to);
-    enum newton_status status = operating_point_newton(p);
-    if (status == NEWTON_CONVERGED || status == NEWTON_STOPPED || status == NEWTON_MEMORY) {
-        return from_newton(status);
-    }
-    memcpy(p->x, start, (size_t)s->n * sizeof *start);
     s->knob_instance = instance;
     s->knob_parameter = parameter;
     s->knob_from = from;
     s->knob_to = to;
-    status = walk(p, EMBED_KNOB, 0);
+    options.first_step = 1;
+    options.surprise = surprise;
+    enum newton_status status = walk_with(p, EMBED_KNOB, &options);
     system_set(s, instance, parameter, to);
-    if (status == NEWTON_CONVERGED || status == NEWTON_STOPPED || status == NEWTON_MEMORY) {
+    if (status == NEWTON_CONVERGED || ends_search(status)) {
         return from_newton(status);
     }
-    if (jumped == NULL) {
+    if (!(p->reached > 0)) {
         memcpy(p->x, start, (size_t)s->n * sizeof *start);
-        return STATUS_UNSOLVED;
+        status = operating_point_newton(p);
+        if (ends_search(status) || (status == NEWTON_CONVERGED && is_near_start(p, start))) {
+            return from_newton(status);
+        }
+        memcpy(p->x, start, (size_t)s->n * sizeof *start);
     }
-    *jumped = true;
-    const enum status found = operating_point_find(p);
+    enum status found = STATUS_UNSOLVED;
+    if (jumped != NULL) {
+        *jumped = true;
+        found = land(p, instance, parameter, from, to);
+    }
     if (found != STATUS_OK) {
         memcpy(p->x, start, (size_t)s->n * sizeof *start);
+        system_set(s, instance, parameter, to);
     }
     return found;
 }

@@ -22,6 +22,9 @@ struct operating_point {
     int stalled_column;
     double best_residual;
     struct newton_report report; /* iterations add up over the whole search */
+    double reached;              /* of the last walk along an embedding, 0..1 */
+    double lost_at;              /* of operating_point_move: where the state could not be followed */
+    bool folds;                  /* the curve of states turns back there */
 };
 
 /* Workspaces from the system's arena. False when memory is short. */
@@ -42,13 +45,17 @@ enum status operating_point_polish(struct operating_point *point);
 
 /*
  * operating_point_move: changes one value of one instance from `from` (where x is a root) to `to`,
- * and follows the root: tangent step and Newton, then smaller steps, then continuation.
+ * and follows the root in steps that are halved where it does not come to lie where the tangent led.
  *
- * jumped  in: false. Out: true when the root could not be followed and the state at `to` was looked
- *         for in another way. NULL: it is only followed, else STATUS_UNSOLVED and x as it was
+ * jumped  in: false. Out: true when the root could not be followed: it ends at point->lost_at, and
+ *         the cell was let go from there to come to rest at `to` (or solved anew). NULL: it is only
+ *         followed, else STATUS_UNSOLVED and x as it was
  */
 enum status operating_point_move(struct operating_point *point, int instance, int parameter,
                                  double from, double to, bool *jumped);
+
+/* What is said about a state that operating_point_move lost. */
+const char *operating_point_lost_text(const struct operating_point *point);
 
 /* Newton from the x at hand with the values in force, without any fallback. */
 enum newton_status operating_point_newton(struct operating_point *point);

@@ -219,7 +219,7 @@ static enum status advance(struct series_task *t, struct stage *stage, int k)
         const enum status status = operating_point_move(
             &stage->point, sweep->knob.instance, sweep->knob.parameter, t->knob[k - 1], v, &jumped);
         if (status == STATUS_OK && jumped &&
-            !add_event(t, v, "the state cannot be followed: it folds or jumps here")) {
+            !add_event(t, stage->point.lost_at, operating_point_lost_text(&stage->point))) {
             return STATUS_MEMORY;
         }
         return status;
