@@ -191,12 +191,13 @@ static bool create_groups(const struct guess *g, struct arena *arena, struct gro
     return true;
 }
 
-/* Memory that fails means a poorer start, not a failure. */
-static void relax_all(const struct guess *g)
+/* False when memory is short. */
+static bool relax_all(const struct guess *g)
 {
     struct groups it;
     struct arena *arena = arena_create();
-    if (arena != NULL && create_groups(g, arena, &it)) {
+    const bool good = arena != NULL && create_groups(g, arena, &it);
+    if (good) {
         double moved = INFINITY;
         for (int pass = 0; pass < PASS_LIMIT && moved > at_rest; pass++) {
             moved = 0;
@@ -207,9 +208,10 @@ static void relax_all(const struct guess *g)
         }
     }
     arena_destroy(arena);
+    return good;
 }
 
-void operating_point_balance(const struct system *system, double *x)
+bool operating_point_balance(const struct system *system, double *x)
 {
     const struct circuit *c = system->circuit;
     struct guess g = {.system = system, .x = x};
@@ -220,5 +222,5 @@ void operating_point_balance(const struct system *system, double *x)
             g.highest = fmax(g.highest, system->own[k][type->value_parameter]);
         }
     }
-    relax_all(&g);
+    return relax_all(&g);
 }

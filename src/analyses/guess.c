@@ -233,27 +233,32 @@ static void relax(const struct guess *g, double *work, int node)
     }
 }
 
-static void relax_suspects(const struct guess *g)
+/* False when memory is short. */
+static bool relax_suspects(const struct guess *g)
 {
     const struct system *s = g->system;
     double *work = calloc(2 * (size_t)s->n + (size_t)s->nonzeros + 1, sizeof *work);
     int count = 0;
-    for (int k = 0; work != NULL && k < s->node_count && count < SUSPECT_LIMIT; k++) {
+    if (work == NULL) {
+        return false;
+    }
+    for (int k = 0; k < s->node_count && count < SUSPECT_LIMIT; k++) {
         if (g->suspect[k]) {
             relax(g, work, k);
             count++;
         }
     }
     free(work);
+    return true;
 }
 
-void operating_point_guess(const struct system *system, double *x)
+bool operating_point_guess(const struct system *system, double *x)
 {
     struct guess g = {.system = system, .x = x};
     memset(x, 0, (size_t)system->n * sizeof *x);
     g.known = calloc(3 * (size_t)system->node_count + 1, sizeof *g.known);
     if (g.known == NULL) {
-        return; /* a poorer start, not a failure */
+        return false;
     }
     g.fixed = g.known + system->node_count;
     g.suspect = g.fixed + system->node_count;
@@ -269,8 +274,8 @@ void operating_point_guess(const struct system *system, double *x)
             x[k] = (g.lowest + g.highest) / 2;
         }
     }
-    if (system->circuit->instance_count < ONE_BY_ONE_LIMIT) {
-        relax_suspects(&g);
-    }
+    const bool is_small = system->circuit->instance_count < ONE_BY_ONE_LIMIT;
+    const bool good = !is_small || relax_suspects(&g);
     free(g.known);
+    return good;
 }

@@ -1,13 +1,12 @@
 /*
- * operating_point.c: the ladder of searches, and following a root.
+ * operating_point.c: the ladder of searches for a resting state, and the polish.
  */
 #include "analyses/operating_point.h"
 
 #include <math.h>
 #include <string.h>
 
-#include "numerics/continuation.h"
-#include "numerics/settle.h"
+#include "analyses/search.h"
 
 bool operating_point_create(struct operating_point *p, struct system *system,
                             const struct analysis_options *options)
@@ -27,12 +26,12 @@ bool operating_point_create(struct operating_point *p, struct system *system,
            p->values != NULL;
 }
 
-static bool ends_search(enum newton_status status)
+bool search_ends(enum newton_status status)
 {
     return status == NEWTON_STOPPED || status == NEWTON_MEMORY;
 }
 
-static struct newton_options newton_settings(const struct operating_point *p)
+struct newton_options search_newton_options(const struct operating_point *p)
 {
     struct newton_options options = newton_default_options();
     options.stopped = p->stopped;
@@ -40,7 +39,7 @@ static struct newton_options newton_settings(const struct operating_point *p)
     return options;
 }
 
-static struct continuation_options walk_settings(const struct operating_point *p)
+struct continuation_options search_walk_options(const struct operating_point *p)
 {
     struct continuation_options options = continuation_default_options();
     options.newton.stopped = p->stopped;
@@ -73,7 +72,7 @@ static enum newton_status polish(struct operating_point *p, double *worst, int *
 static enum newton_status newton_within(struct operating_point *p, int iteration_limit)
 {
     struct system *s = p->system;
-    struct newton_options options = newton_settings(p);
+    struct newton_options options = search_newton_options(p);
     options.iteration_limit = iteration_limit;
     enum newton_status status =
         newton_solve(&s->face, s->solver, &options, p->x, s->work, &p->report);
@@ -81,7 +80,11 @@ static enum newton_status newton_within(struct operating_point *p, int iteration
         p->report.residual < near_root) {
         double worst = INFINITY;
         int equation;
-        if (polish(p, &worst, &equation) == NEWTON_CONVERGED && worst < polished) {
+        const enum newton_status refined = polish(p, &worst, &equation);
+        if (refined == NEWTON_MEMORY) {
+            return NEWTON_MEMORY;
+        }
+        if (refined == NEWTON_CONVERGED && worst < polished) {
             for (int k = 0; k < s->n; k++) {
                 p->x[k] = (double)p->refined[k];
             }
@@ -133,99 +136,42 @@ static void note_failure(struct operating_point *p, enum newton_status status)
 /* Newton again, from the guess in which the current of one mirror sets the voltage of the next. */
 static enum newton_status try_balanced(struct operating_point *p)
 {
-    operating_point_guess(p->system, p->x);
-    operating_point_balance(p->system, p->x);
-    return newton_within(p, COLD_ITERATIONS);
+    const bool good =
+        operating_point_guess(p->system, p->x) && operating_point_balance(p->system, p->x);
+    return good ? newton_within(p, COLD_ITERATIONS) : NEWTON_MEMORY;
 }
 
 /* --- the ladder: each starts from p->x and leaves a root of the plain system there ------------ */
 
 static enum newton_status try_direct(struct operating_point *p)
 {
-    operating_point_guess(p->system, p->x);
-    return newton_within(p, COLD_ITERATIONS);
-}
-
-/*
- * Inertia of each node: what its currents would do in a step of 0.1 V. A node where little flows
- * at the start takes over what flows at the nodes beside it, two devices far; rails have none.
- */
-static bool find_inertia(const struct operating_point *p, double *inertia)
-{
-    enum { SPREADS = 2 };
-    struct system *s = p->system;
-    const struct circuit *c = s->circuit;
-    double *work = arena_new_array(s->arena, double, 2 * (size_t)s->n + (size_t)s->nonzeros);
-    if (work == NULL || !s->face.evaluate(s, p->x, work, inertia, work + 2 * s->n)) {
-        return work != NULL;
-    }
-    for (int k = 0; k < s->n; k++) {
-        inertia[k] = k < s->node_count ? 10 * inertia[k] : 0;
-    }
-    for (int k = 0; k < c->instance_count; k++) {
-        const struct instance *instance = &c->instances[k];
-        if (instance->type->fixes_voltage && instance->type->form == FORM_ARROW) {
-            for (int l = 0; l < 2; l++) {
-                if (instance->local[l] >= 0) {
-                    inertia[instance->local[l]] = 0;
-                }
-            }
-        }
-    }
-    for (int spread = 0; spread < SPREADS; spread++) {
-        memcpy(work, inertia, (size_t)s->n * sizeof *work);
-        for (int k = 0; k < c->instance_count; k++) {
-            const struct instance *instance = &c->instances[k];
-            double most = 0;
-            for (int l = 0; l < instance->local_count; l++) {
-                most = instance->local[l] >= 0 ? fmax(most, work[instance->local[l]]) : most;
-            }
-            for (int l = 0; l < instance->local_count; l++) {
-                const int node = instance->local[l];
-                if (node >= 0 && work[node] > 0) {
-                    inertia[node] = fmax(inertia[node], most);
-                }
-            }
-        }
-    }
-    return true;
-}
-
-/* Where Newton runs off, the cell is let go from the guess like one whose nodes have capacitance:
- * it comes to rest in a state that can be held. */
-static enum newton_status settle_here(struct operating_point *p, bool patient)
-{
-    struct system *s = p->system;
-    struct newton_options options = newton_settings(p);
-    double *inertia = arena_new_array(s->arena, double, s->n);
-    if (inertia == NULL || !find_inertia(p, inertia)) {
-        return NEWTON_MEMORY;
-    }
-    options.step_limit = 0.5;
-    return settle(&s->face, s->solver, &options, inertia, patient, p->x, s->work, &p->report);
+    return operating_point_guess(p->system, p->x) ? newton_within(p, COLD_ITERATIONS)
+                                                  : NEWTON_MEMORY;
 }
 
 static enum newton_status try_settling(struct operating_point *p)
 {
-    operating_point_guess(p->system, p->x);
-    enum newton_status status = settle_here(p, false);
-    if (status != NEWTON_CONVERGED && !ends_search(status)) {
-        operating_point_guess(p->system, p->x);
-        operating_point_balance(p->system, p->x);
-        status = settle_here(p, false);
+    if (!operating_point_guess(p->system, p->x)) {
+        return NEWTON_MEMORY;
+    }
+    enum newton_status status = search_settle(p, false);
+    if (status != NEWTON_CONVERGED && !search_ends(status)) {
+        const bool good =
+            operating_point_guess(p->system, p->x) && operating_point_balance(p->system, p->x);
+        status = good ? search_settle(p, false) : NEWTON_MEMORY;
     }
     return status;
 }
 
 static enum newton_status try_patient_settling(struct operating_point *p)
 {
-    operating_point_guess(p->system, p->x);
-    operating_point_balance(p->system, p->x);
-    return settle_here(p, true);
+    const bool good =
+        operating_point_guess(p->system, p->x) && operating_point_balance(p->system, p->x);
+    return good ? search_settle(p, true) : NEWTON_MEMORY;
 }
 
-static enum newton_status walk_with(struct operating_point *p, enum embedding embedding,
-                                    const struct continuation_options *options)
+enum newton_status search_walk(struct operating_point *p, enum embedding embedding,
+                               const struct continuation_options *options)
 {
     struct system *s = p->system;
     s->embedding = embedding;
@@ -238,8 +184,8 @@ static enum newton_status walk_with(struct operating_point *p, enum embedding em
 
 static enum newton_status walk(struct operating_point *p, enum embedding embedding)
 {
-    const struct continuation_options options = walk_settings(p);
-    return walk_with(p, embedding, &options);
+    const struct continuation_options options = search_walk_options(p);
+    return search_walk(p, embedding, &options);
 }
 
 static enum newton_status try_sources(struct operating_point *p)
@@ -265,7 +211,7 @@ static enum newton_status try_blended(struct operating_point *p)
         try_direct, try_balanced, try_settling, try_patient_settling, try_sources};
     enum newton_status status = NEWTON_STALLED;
     for (size_t k = 0; k < sizeof searches / sizeof searches[0]; k++) {
-        status = status == NEWTON_CONVERGED || ends_search(status) ? status : searches[k](p);
+        status = status == NEWTON_CONVERGED || search_ends(status) ? status : searches[k](p);
     }
     if (status == NEWTON_CONVERGED) {
         status = walk(p, EMBED_INVERSION);
@@ -278,10 +224,9 @@ static enum newton_status try_blended(struct operating_point *p)
 static enum newton_status try_conductance(struct operating_point *p)
 {
     double *anchor = arena_new_array(p->system->arena, double, p->system->n);
-    if (anchor == NULL) {
+    if (anchor == NULL || !operating_point_guess(p->system, anchor)) {
         return NEWTON_MEMORY;
     }
-    operating_point_guess(p->system, anchor);
     memcpy(p->x, anchor, (size_t)p->system->n * sizeof *anchor);
     p->system->anchor = anchor;
     return walk(p, EMBED_CONDUCTANCE);
@@ -290,7 +235,7 @@ static enum newton_status try_conductance(struct operating_point *p)
 static enum newton_status trace(struct operating_point *p, enum embedding embedding)
 {
     struct system *s = p->system;
-    struct continuation_options options = walk_settings(p);
+    struct continuation_options options = search_walk_options(p);
     bool ended = false;
     options.step_limit = 4000;
     s->embedding = embedding;
@@ -308,7 +253,7 @@ static enum newton_status try_arclength(struct operating_point *p)
 {
     memset(p->x, 0, (size_t)p->system->n * sizeof *p->x);
     enum newton_status status = trace(p, EMBED_SOURCES);
-    if (status != NEWTON_CONVERGED && status != NEWTON_STOPPED && status != NEWTON_MEMORY) {
+    if (status != NEWTON_CONVERGED && !search_ends(status)) {
         if (p->system->anchor != NULL) {
             memcpy(p->x, p->system->anchor, (size_t)p->system->n * sizeof *p->x);
         }
@@ -370,85 +315,6 @@ static const struct {
     {"arclength continuation", try_arclength},
 };
 
-/* --- words for a search that found nothing -------------------------------------------------- */
-
-static const char *name_of(const struct operating_point *p, int unknown)
-{
-    char text[200];
-    circuit_unknown_name(p->system->circuit, unknown, text, sizeof text);
-    return arena_copy(p->system->arena, text, strlen(text));
-}
-
-/* Devices at a node, at most three, for the message. */
-static const char *devices_at(const struct operating_point *p, int unknown)
-{
-    const struct circuit *c = p->system->circuit;
-    struct buffer text = BUFFER_EMPTY;
-    int count = 0;
-    for (int k = 0; k < c->instance_count && count < 3; k++) {
-        const struct instance *instance = &c->instances[k];
-        bool touches = false;
-        for (int l = 0; l < instance->local_count; l++) {
-            touches |= instance->local[l] == unknown;
-        }
-        if (touches && !instance->is_hidden) {
-            buffer_format(&text, "%s%s", count == 0 ? "" : ", ", instance->name);
-            count++;
-        }
-    }
-    const char *kept =
-        text.data == NULL ? "no device" : arena_copy(p->system->arena, text.data, text.length);
-    buffer_free(&text);
-    return kept;
-}
-
-static void tell_trouble(struct operating_point *p)
-{
-    struct arena *arena = p->system->arena;
-    struct solver_result *solver = &p->solver;
-    const int where = p->stalled_equation >= 0 ? p->stalled_equation : p->stalled_column;
-    solver->converged = false;
-    solver->method = "none";
-    solver->iterations = p->report.iterations;
-    solver->worst_residual = p->best_residual;
-    solver->worst_name = where < 0 ? "" : name_of(p, where);
-    const char *devices = where < 0 ? "" : devices_at(p, where);
-    /* Balanced and singular: any voltage would do. */
-    const bool open = p->best_residual < 1e-9 || !(p->best_residual < 1e-3);
-    if (p->stalled_column >= 0 && open) {
-        const char *column = name_of(p, p->stalled_column);
-        solver->trouble =
-            arena_format(arena,
-                         "nothing sets the %s: every device there (%s) is off or holds its current "
-                         "whatever the voltage",
-                         column == NULL ? "node" : column, devices_at(p, p->stalled_column));
-        solver->advice = "look for a gate or a node held by nothing, for two current sources that "
-                         "face each other, or for a transistor that is off in this view";
-        return;
-    }
-    solver->trouble = arena_format(
-        arena,
-        "no operating point was found: the search stalled at %s (%s); the currents there "
-        "miss balance by %.3g of their sum",
-        solver->worst_name, devices, p->best_residual);
-    solver->advice =
-        "check that currents set against each other can agree, that every device has a "
-        "path for its current, and the values of the devices named";
-}
-
-/* A residual above 1e-12 after the polish: rounding, and how badly the equations carry it on. */
-static void tell_limit(struct operating_point *p)
-{
-    struct system *s = p->system;
-    double *values = arena_new_array(s->arena, double, s->nonzeros);
-    for (int k = 0; values != NULL && k < s->nonzeros; k++) {
-        values[k] = (double)p->values[k];
-    }
-    p->solver.limited_by = arena_format(
-        s->arena, "rounding at %s: the equations have a condition number of about %.1e",
-        p->solver.worst_name, values == NULL ? INFINITY : linear_condition(s->solver, values));
-}
-
 enum status operating_point_find(struct operating_point *p)
 {
     const size_t rungs = sizeof ladder / sizeof ladder[0];
@@ -466,7 +332,7 @@ enum status operating_point_find(struct operating_point *p)
         }
         note_failure(p, status);
     }
-    tell_trouble(p);
+    trouble_tell(p);
     return STATUS_UNSOLVED;
 }
 
@@ -482,15 +348,15 @@ enum status operating_point_polish(struct operating_point *p)
     p->solver.converged = status == NEWTON_CONVERGED && worst < polished;
     p->solver.iterations = p->report.iterations;
     p->solver.worst_residual = worst;
-    p->solver.worst_name = equation < 0 ? "" : name_of(p, equation);
+    p->solver.worst_name = equation < 0 ? "" : trouble_name(p, equation);
     p->solver.limited_by = NULL;
     if (!p->solver.converged) {
         note_failure(p, status);
-        tell_trouble(p);
+        trouble_tell(p);
         return STATUS_UNSOLVED;
     }
-    if (!(worst < 1e-12)) {
-        tell_limit(p);
+    if (!(worst < 1e-12) && !trouble_tell_limit(p)) {
+        return STATUS_MEMORY;
     }
     for (int k = 0; k < s->n; k++) {
         p->x[k] = (double)p->refined[k];
@@ -498,122 +364,10 @@ enum status operating_point_polish(struct operating_point *p)
     return STATUS_OK;
 }
 
-static enum status from_newton(enum newton_status status)
+enum status operating_point_status(enum newton_status status)
 {
     return status == NEWTON_CONVERGED ? STATUS_OK
            : status == NEWTON_STOPPED ? STATUS_STOPPED
            : status == NEWTON_MEMORY  ? STATUS_MEMORY
                                       : STATUS_UNSOLVED;
-}
-
-/* --- following a state ---------------------------------------------------------------------- */
-
-/* A node further than this, V, from where the tangent led: the step is too long, or the state is
- * another. */
-static const double surprise = 0.1;
-
-struct turn {
-    double furthest; /* largest parameter so far */
-    bool turned;
-};
-
-static bool watch_turn(void *self, const struct trace_point *point)
-{
-    struct turn *turn = self;
-    turn->turned = point->lambda < turn->furthest;
-    turn->furthest = fmax(turn->furthest, point->lambda);
-    return !turn->turned;
-}
-
-/* Whether the curve of states turns back before the knob is at its end: a fold, and where. */
-static bool find_turn(struct operating_point *p, double from, double *furthest)
-{
-    struct system *s = p->system;
-    struct continuation_options options = walk_settings(p);
-    struct turn turn = {.furthest = from};
-    bool ended = false;
-    options.step_limit = 200;
-    options.first_step = 0.02;
-    s->embedding = EMBED_KNOB;
-    arclength_trace(&s->face, &options, from, 1, p->x, watch_turn, &turn, &ended, &p->report);
-    s->embedding = EMBED_NONE;
-    s->lambda = 1;
-    *furthest = turn.furthest;
-    return turn.turned;
-}
-
-const char *operating_point_lost_text(const struct operating_point *point)
-{
-    return point->folds ? "the state folds back here: beyond, the cell rests in another one"
-                        : "the state cannot be followed from here: it jumps";
-}
-
-/* The state is lost on the way: tells where, and looks for one at the end of the way. */
-static enum status land(struct operating_point *p, int instance, int parameter, double from,
-                        double to)
-{
-    struct system *s = p->system;
-    const double reached = p->reached;
-    double furthest = reached;
-    double *edge = arena_new_array(s->arena, double, s->n);
-    if (edge == NULL) {
-        return STATUS_MEMORY;
-    }
-    memcpy(edge, p->x, (size_t)s->n * sizeof *edge);
-    p->folds = find_turn(p, reached, &furthest);
-    p->lost_at = from + fmax(reached, p->folds ? furthest : 0) * (to - from);
-    memcpy(p->x, edge, (size_t)s->n * sizeof *edge);
-    system_set(s, instance, parameter, to);
-    const enum newton_status status = settle_here(p, false);
-    return status == NEWTON_CONVERGED || ends_search(status) ? from_newton(status)
-                                                             : operating_point_find(p);
-}
-
-/* Where rounding keeps the steps from converging (a gain of 1e9) the polish may still get there. */
-static bool is_near_start(const struct operating_point *p, const double *start)
-{
-    for (int k = 0; k < p->system->node_count; k++) {
-        if (!(fabs(p->x[k] - start[k]) <= surprise)) {
-            return false;
-        }
-    }
-    return true;
-}
-
-enum status operating_point_move(struct operating_point *p, int instance, int parameter,
-                                 double from, double to, bool *jumped)
-{
-    struct system *s = p->system;
-    struct continuation_options options = walk_settings(p);
-    double *start = p->saved;
-    memcpy(start, p->x, (size_t)s->n * sizeof *start);
-    s->knob_instance = instance;
-    s->knob_parameter = parameter;
-    s->knob_from = from;
-    s->knob_to = to;
-    options.first_step = 1;
-    options.surprise = surprise;
-    enum newton_status status = walk_with(p, EMBED_KNOB, &options);
-    system_set(s, instance, parameter, to);
-    if (status == NEWTON_CONVERGED || ends_search(status)) {
-        return from_newton(status);
-    }
-    if (!(p->reached > 0)) {
-        memcpy(p->x, start, (size_t)s->n * sizeof *start);
-        status = operating_point_newton(p);
-        if (ends_search(status) || (status == NEWTON_CONVERGED && is_near_start(p, start))) {
-            return from_newton(status);
-        }
-        memcpy(p->x, start, (size_t)s->n * sizeof *start);
-    }
-    enum status found = STATUS_UNSOLVED;
-    if (jumped != NULL) {
-        *jumped = true;
-        found = land(p, instance, parameter, from, to);
-    }
-    if (found != STATUS_OK) {
-        memcpy(p->x, start, (size_t)s->n * sizeof *start);
-        system_set(s, instance, parameter, to);
-    }
-    return found;
 }

@@ -23,8 +23,8 @@ struct operating_point {
     double best_residual;
     struct newton_report report; /* iterations add up over the whole search */
     double reached;              /* of the last walk along an embedding, 0..1 */
-    double lost_at;              /* of operating_point_move: where the state could not be followed */
-    bool folds;                  /* the curve of states turns back there */
+    double lost_at; /* of operating_point_move: where the state could not be followed */
+    bool folds;     /* the curve of states turns back there */
 };
 
 /* Workspaces from the system's arena. False when memory is short. */
@@ -45,7 +45,8 @@ enum status operating_point_polish(struct operating_point *point);
 
 /*
  * operating_point_move: changes one value of one instance from `from` (where x is a root) to `to`,
- * and follows the root in steps that are halved where it does not come to lie where the tangent led.
+ * and follows the root in steps that are halved where it does not come to lie where the tangent
+ * led.
  *
  * jumped  in: false. Out: true when the root could not be followed: it ends at point->lost_at, and
  *         the cell was let go from there to come to rest at `to` (or solved anew). NULL: it is only
@@ -60,10 +61,16 @@ const char *operating_point_lost_text(const struct operating_point *point);
 /* Newton from the x at hand with the values in force, without any fallback. */
 enum newton_status operating_point_newton(struct operating_point *point);
 
-/* A start for the search in which diode-like devices conduct, [n] out. */
-void operating_point_guess(const struct system *system, double *x);
+/* The same in the words of the layer: all that is not done, stopped or short of memory is unsolved.
+ */
+enum status operating_point_status(enum newton_status status);
 
-/* Moves the nodes of diode-like devices in the guess x to where their currents balance. */
-void operating_point_balance(const struct system *system, double *x);
+/* A start for the search in which diode-like devices conduct, [n] out. False when memory is short.
+ */
+bool operating_point_guess(const struct system *system, double *x);
+
+/* Moves the nodes of diode-like devices in the guess x to where their currents balance. False when
+ * memory is short. */
+bool operating_point_balance(const struct system *system, double *x);
 
 #endif

@@ -14,7 +14,7 @@
 #include "analyses/measure.h"
 #include "analyses/output.h"
 
-enum { POINTS_STANDARD = 51, EVENT_LIMIT = 20 };
+enum { EVENT_LIMIT = 20 };
 
 struct setting {
     const struct knob *knob;
@@ -234,11 +234,11 @@ static enum status build_at(struct series_task *t, struct stage *stage, double t
         return status != STATUS_OK ? status : operating_point_find(&stage->point);
     }
     memcpy(stage->point.x, last, (size_t)n * sizeof *last);
-    if (operating_point_newton(&stage->point) == NEWTON_CONVERGED) {
+    status = operating_point_status(operating_point_newton(&stage->point));
+    if (status == STATUS_OK) {
         *follows = is_near(stage->system, stage->point.x, last);
-        return STATUS_OK;
     }
-    return operating_point_find(&stage->point);
+    return status == STATUS_UNSOLVED ? operating_point_find(&stage->point) : status;
 }
 
 /*
@@ -349,7 +349,7 @@ enum status analyse_sweep(struct circuit *circuit, const struct sweep *sweep,
                           const struct analysis_options *options, struct arena *arena,
                           struct sweep_table *table)
 {
-    const int points = sweep->points > 0 ? sweep->points : POINTS_STANDARD;
+    const int points = sweep->points > 0 ? sweep->points : CIRCUIT_POINT_STANDARD;
     const int families = sweep->has_family ? sweep->family_count : 1;
     *table = (struct sweep_table){.sweep = sweep};
     table->series = arena_new_array(arena, struct sweep_series, families);

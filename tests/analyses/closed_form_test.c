@@ -63,7 +63,7 @@ static void test_square_law_diode(void **state)
 }
 
 /* Enz and Vittoz: ID = 2 n beta UT^2 (q^2 + q), 2q + ln q = (VG - VT)/UT, saturated; here the bare
- * core of models.md section 1 (n = 1), from weak to strong inversion, n- and p-channel. */
+ * core of docs/devices.md (n = 1), from weak to strong inversion, n- and p-channel. */
 static void test_charge_model(void **state)
 {
     (void)state;

@@ -93,7 +93,7 @@ static void test_unlimited(void **state)
 /* --- compliance and band -------------------------------------------------------------------------
  */
 
-/* Bare core of models.md section 1: vdsat = UT (2 q + 4), whatever the drain does. */
+/* Bare core of docs/devices.md: vdsat = UT (2 q + 4), whatever the drain does. */
 static void test_compliance(void **state)
 {
     (void)state;
@@ -308,7 +308,7 @@ static void test_curve(void **state)
 }
 
 /* A branch current enters its node as it is: femtoamperes at a held node are as exact as amperes.
- * Bare core of models.md section 1 at every point of the curve. */
+ * Bare core of docs/devices.md at every point of the curve. */
 static void test_small_current(void **state)
 {
     (void)state;
