@@ -20,10 +20,11 @@ bool operating_point_create(struct operating_point *p, struct system *system,
     p->x = arena_new_array(system->arena, double, system->n);
     p->refined = arena_new_array(system->arena, long double, system->n);
     p->values = arena_new_array(system->arena, long double, system->nonzeros);
+    p->best = arena_new_array(system->arena, double, system->n);
     p->saved = arena_new_array(system->arena, double, system->n);
     p->linear = arena_new_array(system->arena, long double, 4 * (size_t)system->n);
-    return p->linear != NULL && p->saved != NULL && p->x != NULL && p->refined != NULL &&
-           p->values != NULL;
+    return p->linear != NULL && p->saved != NULL && p->best != NULL && p->x != NULL &&
+           p->refined != NULL && p->values != NULL;
 }
 
 bool search_ends(enum newton_status status)
@@ -99,13 +100,34 @@ enum newton_status operating_point_newton(struct operating_point *p)
     return newton_within(p, newton_default_options().iteration_limit);
 }
 
+/* A node whose equation, or whose voltage, takes part in nothing: the plain reason of a singular
+ * matrix, which the column without a pivot may be far from. -1: none. */
+static int find_loose(const struct system *s, const double *values, double *seen)
+{
+    const struct pattern *pattern = s->face.pattern;
+    memset(seen, 0, 2 * (size_t)s->n * sizeof *seen);
+    for (int column = 0; column < s->n; column++) {
+        for (int k = pattern->start[column]; k < pattern->start[column + 1]; k++) {
+            seen[column] = fmax(seen[column], fabs(values[k]));
+            seen[s->n + pattern->row[k]] = fmax(seen[s->n + pattern->row[k]], fabs(values[k]));
+        }
+    }
+    for (int k = 0; k < s->node_count; k++) {
+        if (!(seen[k] > 0) || !(seen[s->n + k] > 0)) {
+            return k;
+        }
+    }
+    return -1;
+}
+
 /* The largest relative residual of the plain system at p->x, INFINITY when it has none. The
  * searches report that of their own, embedded one, which may well be solved. */
-static double plain_residual(struct operating_point *p, int *equation)
+static double plain_residual(struct operating_point *p, int *equation, int *loose)
 {
     struct system *s = p->system;
     double *f = arena_new_array(s->arena, double, 2 * (size_t)s->n + (size_t)s->nonzeros);
     double worst = -1;
+    *loose = -1;
     if (f == NULL || !s->face.evaluate(s, p->x, f, f + s->n, f + 2 * s->n)) {
         return INFINITY;
     }
@@ -116,19 +138,24 @@ static double plain_residual(struct operating_point *p, int *equation)
             *equation = k;
         }
     }
+    *loose = find_loose(s, f + 2 * s->n, f);
     return worst < 0 ? INFINITY : worst;
 }
 
 /* Remembers where a search came to an end, for the message. */
 static void note_failure(struct operating_point *p, enum newton_status status)
 {
-    int equation = -1;
-    const double residual = plain_residual(p, &equation);
-    if (status == NEWTON_SINGULAR) {
+    int equation = -1, loose;
+    const double residual = plain_residual(p, &equation, &loose);
+    if (loose >= 0) {
+        p->stalled_column = loose;
+        p->is_loose = true;
+    } else if (status == NEWTON_SINGULAR && !p->is_loose) {
         p->stalled_column = p->report.column;
     }
     if (residual < p->best_residual) {
         p->best_residual = residual;
+        memcpy(p->best, p->x, (size_t)p->system->n * sizeof *p->best);
         p->stalled_equation = equation;
     }
 }

@@ -20,7 +20,9 @@ struct operating_point {
     void *stopped_self;
     int stalled_equation; /* of the last failure, -1 */
     int stalled_column;
+    bool is_loose; /* stalled_column takes part in nothing */
     double best_residual;
+    double *best;                /* [n] where it was */
     struct newton_report report; /* iterations add up over the whole search */
     double reached;              /* of the last walk along an embedding, 0..1 */
     double lost_at; /* of operating_point_move: where the state could not be followed */

@@ -14,7 +14,7 @@ const char *trouble_name(const struct operating_point *p, int unknown)
     return name == NULL ? "" : name;
 }
 
-/* Devices at a node, at most three, for the message. Without memory "", as name_of: the arena
+/* Devices at a node, at most three, for the message. Without memory "": the arena
  * remembers. */
 static const char *devices_at(const struct operating_point *p, int unknown)
 {
@@ -31,6 +31,41 @@ static const char *devices_at(const struct operating_point *p, int unknown)
         if (touches && !instance->is_hidden) {
             text =
                 count == 0 ? instance->name : arena_format(arena, "%s, %s", text, instance->name);
+            count++;
+        }
+    }
+    return text == NULL ? "" : text;
+}
+
+/* Current of an instance into a node at the best point found, A. */
+static double current_into(const struct operating_point *p, int k, int node)
+{
+    const struct instance *instance = &p->system->circuit->instances[k];
+    double local[DEVICE_LOCAL_LIMIT], part[DEVICE_LOCAL_LIMIT];
+    double jac[DEVICE_LOCAL_LIMIT * DEVICE_LOCAL_LIMIT], sum = 0;
+    system_gather(instance, p->best, local);
+    instance->type->evaluate(system_block(p->system, k), local, part, jac);
+    for (int l = 0; l < instance->local_count; l++) {
+        sum -= instance->local[l] == node ? part[l] : 0;
+    }
+    return sum;
+}
+
+/* ": I1 brings 1e-05 A, M1 takes 2.5e-06 A", at most four; "" for what is no node. */
+static const char *currents_at(const struct operating_point *p, int node)
+{
+    enum { SHOWN = 4 };
+    const struct circuit *c = p->system->circuit;
+    struct arena *arena = p->system->arena;
+    const char *text = "";
+    int count = 0;
+    const bool is_node = node >= 0 && node < p->system->node_count && isfinite(p->best_residual);
+    for (int k = 0; is_node && k < c->instance_count && count < SHOWN && text != NULL; k++) {
+        const double current = current_into(p, k, node);
+        if (!c->instances[k].is_hidden && fabs(current) > 0) {
+            text =
+                arena_format(arena, "%s%s %s %s %.3g A", text, count == 0 ? ":" : ",",
+                             c->instances[k].name, current > 0 ? "brings" : "takes", fabs(current));
             count++;
         }
     }
@@ -63,8 +98,8 @@ void trouble_tell(struct operating_point *p)
     solver->trouble = arena_format(
         arena,
         "no operating point was found: the search stalled at %s (%s); the currents there "
-        "miss balance by %.3g of their sum",
-        solver->worst_name, devices, p->best_residual);
+        "miss balance by %.3g of their sum%s",
+        solver->worst_name, devices, p->best_residual, currents_at(p, where));
     solver->advice =
         "check that currents set against each other can agree, that every device has a "
         "path for its current, and the values of the devices named";
