@@ -1,6 +1,7 @@
 /* commands.c: a request from the options, and its results to where they are wanted. */
 #include "cli/commands.h"
 
+#include <errno.h>
 #include <langinfo.h>
 #include <stdlib.h>
 #include <string.h>
@@ -130,13 +131,31 @@ static bool check_outputs(const struct options *options)
     return true;
 }
 
+/* A whole number; kept when the option was not given. False after a message. */
+static bool read_boxes(const struct options *options, long *boxes)
+{
+    const char *text = options->values[OPTION_BOXES];
+    char *end = NULL;
+    if (text == NULL) {
+        return true;
+    }
+    errno = 0;
+    const long found = strtol(text, &end, 10);
+    if (end == text || *end != '\0' || errno != 0 || found < 0) {
+        fprintf(stderr, "ampstead: '%s' is no value of --boxes: a whole number, 0 or more\n", text);
+        return false;
+    }
+    *boxes = found;
+    return true;
+}
+
 static int run_cell(const struct options *options, const volatile sig_atomic_t *stop)
 {
     struct watch watch = {.stop = stop, .shows_progress = isatty(STDERR_FILENO)};
     struct ampstead_request request = AMPSTEAD_REQUEST;
     struct ampstead_result *result = NULL;
     const char *view = options->values[OPTION_VIEW];
-    if (!check_outputs(options)) {
+    if (!check_outputs(options) || !read_boxes(options, &request.boxes)) {
         return AMPSTEAD_INPUT;
     }
     (void)clock_gettime(CLOCK_MONOTONIC, &watch.start);
@@ -149,6 +168,8 @@ static int run_cell(const struct options *options, const volatile sig_atomic_t *
     request.sets = options->sets;
     request.set_count = options->set_count;
     request.sweep = options->values[OPTION_SWEEP];
+    request.certify = options->given[OPTION_CERTIFY];
+    request.leakage = options->values[OPTION_LEAKAGE];
     request.stopped = ask_stopped;
     request.stopped_self = &watch;
     request.progress = show_progress;

@@ -8,7 +8,7 @@
 #include <stdbool.h>
 #include <stdio.h>
 
-enum verb { VERB_REVIEW, VERB_POINT, VERB_SWEEP, VERB_MODELS, VERB_HELP, VERB_COUNT };
+enum verb { VERB_REVIEW, VERB_POINT, VERB_SWEEP, VERB_STATES, VERB_MODELS, VERB_HELP, VERB_COUNT };
 
 struct verb_row {
     const char *word;
@@ -24,6 +24,9 @@ enum option {
     OPTION_CORNER,
     OPTION_VIEW,
     OPTION_SWEEP,
+    OPTION_CERTIFY,
+    OPTION_BOXES,
+    OPTION_LEAKAGE,
     OPTION_JSON,
     OPTION_CSV,
     OPTION_COLOR,

@@ -12,13 +12,18 @@
 
 enum { REQUEST_SET_LIMIT = 1000 };
 
-enum command { COMMAND_REVIEW, COMMAND_POINT, COMMAND_SWEEP, COMMAND_MODELS, COMMAND_COUNT };
+enum command {
+    COMMAND_REVIEW,
+    COMMAND_POINT,
+    COMMAND_SWEEP,
+    COMMAND_STATES,
+    COMMAND_MODELS,
+    COMMAND_COUNT
+};
 
 static const char *const command_words[COMMAND_COUNT] = {
-    [COMMAND_REVIEW] = "review",
-    [COMMAND_POINT] = "point",
-    [COMMAND_SWEEP] = "sweep",
-    [COMMAND_MODELS] = "models",
+    [COMMAND_REVIEW] = "review", [COMMAND_POINT] = "point",   [COMMAND_SWEEP] = "sweep",
+    [COMMAND_STATES] = "states", [COMMAND_MODELS] = "models",
 };
 
 struct ampstead_result {
@@ -146,6 +151,9 @@ static enum status analyse(const struct ampstead_request *request, struct ampste
         .stopped_self = &hooks,
         .progress = request->progress,
         .progress_self = request->progress_self,
+        .certify = request->certify != 0,
+        .boxes = request->boxes,
+        .leakage = 1e-9,
     };
     switch (result->command) {
     case COMMAND_REVIEW:
@@ -162,6 +170,15 @@ static enum status analyse(const struct ampstead_request *request, struct ampste
             options.extra_sweep = &result->sweep;
         }
         return analysis_sweep(result->circuit, &options, &result->found);
+    case COMMAND_STATES:
+        if (request->leakage != NULL) {
+            enum status status =
+                request_current(result->cell, "--leakage", request->leakage, &options.leakage);
+            if (status != STATUS_OK) {
+                return status;
+            }
+        }
+        return analysis_states(result->circuit, &options, &result->found);
     case COMMAND_MODELS:
     case COMMAND_COUNT:
         break;
@@ -185,6 +202,9 @@ static const char *check_request(const struct ampstead_request *request, enum co
         (request->command == NULL || strcmp(request->command, "sweep") != 0)) {
         return "a sweep is given to a command other than sweep";
     }
+    if (request->boxes < 0) {
+        return "the number of boxes must not be negative";
+    }
     *command = COMMAND_REVIEW;
     for (int k = 0; k < COMMAND_COUNT && request->command != NULL; k++) {
         if (strcmp(request->command, command_words[k]) == 0) {
@@ -201,10 +221,19 @@ static enum status run(const struct ampstead_request *request, struct ampstead_r
     if (result->trouble != NULL) {
         return STATUS_INPUT;
     }
+    if (result->command != COMMAND_MODELS && ends_with(request->path, ".process")) {
+        result->trouble = "this is a process file: ampstead models FILE shows it";
+        return STATUS_INPUT;
+    }
     enum status status = read_cell(request, result);
     /* A cell with errors is built as far as it goes: all that is wrong is told in one run. */
     if (status == STATUS_OK || (status == STATUS_INPUT && result->cell != NULL)) {
         status = build(request, result);
+    }
+    if (status == STATUS_OK && result->command != COMMAND_MODELS &&
+        result->circuit->instance_count == 0) {
+        diagnostics_add(&result->cell->diagnostics, SPAN_NONE, NULL, "the cell holds no parts");
+        status = STATUS_INPUT;
     }
     if (status == STATUS_OK) {
         status = analyse(request, result);
@@ -314,6 +343,9 @@ const char *ampstead_result_text(struct ampstead_result *result, unsigned flags,
         break;
     case COMMAND_SWEEP:
         report_sweep(result->found, &style, &result->text);
+        break;
+    case COMMAND_STATES:
+        report_states(result->found, &style, &result->text);
         break;
     case COMMAND_MODELS:
         report_models(result->circuit, &style, &result->text);
