@@ -503,6 +503,18 @@ static void sweep_both(struct sweeper *w, const struct place *home)
     }
 }
 
+/* The point as it was before the sweep. */
+static void return_home(struct sweeper *w, const struct place *start)
+{
+    struct operating_point *home = w->point;
+    system_set(home->system, w->output->instance, w->parameter, start->v);
+    memcpy(home->x, start->x, (size_t)home->system->n * sizeof *home->x);
+    const enum status back = operating_point_status(operating_point_newton(home));
+    if (w->status == STATUS_OK && back != STATUS_UNSOLVED) {
+        w->status = back;
+    }
+}
+
 enum status analyse_output(struct operating_point *home, int index, struct arena *arena,
                            struct output_result *r)
 {
@@ -543,12 +555,7 @@ enum status analyse_output(struct operating_point *home, int index, struct arena
         read_place(&w, &start);
         if (keep_state(&w, &start)) {
             sweep_both(&w, &start);
-        }
-        system_set(s, output->instance, w.parameter, at);
-        memcpy(home->x, start.x, (size_t)s->n * sizeof *home->x);
-        const enum status back = operating_point_status(operating_point_newton(home));
-        if (w.status == STATUS_OK && back != STATUS_UNSOLVED) {
-            w.status = back;
+            return_home(&w, &start);
         }
     }
     arena_destroy(scratch);

@@ -71,6 +71,13 @@ static void close_session(struct session *session)
     system_free(session->system);
 }
 
+/* Whether a text is missing: arenas remember. */
+static bool lost_memory(const struct session *session, const struct result *result)
+{
+    return arena_failed(result->arena) || arena_failed(result->circuit->arena) ||
+           (session->system != NULL && arena_failed(session->system->arena));
+}
+
 /* The operating point, measured into the result. */
 static enum status solve_point(struct circuit *circuit, const struct analysis_options *options,
                                struct session *session, struct result *result)
@@ -139,6 +146,9 @@ static enum status solve_hand_view(struct circuit *circuit, const struct analysi
     for (int k = 0; status == STATUS_OK && k < result->hand_count; k++) {
         result->hands[k].in_hand_view = result_value(other, &result->hands[k].hand->probe);
     }
+    if (other != NULL && lost_memory(&session, other)) {
+        status = STATUS_MEMORY;
+    }
     close_session(&session);
     result_free(other);
     return status == STATUS_UNSOLVED ? STATUS_OK : status;
@@ -146,9 +156,9 @@ static enum status solve_hand_view(struct circuit *circuit, const struct analysi
 
 static enum status finish(enum status status, struct session *session, struct result **result)
 {
-    const bool texts_failed = session->system != NULL && arena_failed(session->system->arena);
+    const bool lost = lost_memory(session, *result);
     close_session(session);
-    if (status == STATUS_MEMORY || texts_failed || arena_failed((*result)->arena)) {
+    if (status == STATUS_MEMORY || lost) {
         result_free(*result);
         *result = NULL;
         return STATUS_MEMORY;
