@@ -34,9 +34,9 @@ bool operating_point_create(struct operating_point *point, struct system *system
                             const struct analysis_options *options);
 
 /*
- * operating_point_find: from cold: damped Newton from a guess that turns every diode-like device on,
- * then from one whose currents agree, then settling, then the steppings and continuations (the ladder
- * in operating_point.c); then the polish.
+ * operating_point_find: from cold: damped Newton from a guess that turns every diode-like device
+ * on, then from one whose currents agree, then settling, then the steppings and continuations (the
+ * ladder in operating_point.c); then the polish.
  *
  * Returns STATUS_OK (solver filled in), STATUS_UNSOLVED (trouble and advice say why),
  * STATUS_STOPPED, STATUS_MEMORY.

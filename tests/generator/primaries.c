@@ -179,12 +179,13 @@ static bool put_regulated_sink(struct draft *d, struct branches *out)
     }
     const int in = draft_node(d), gate = draft_node(d), sense = draft_node(d), node = draft_node(d);
     const int rail = rail_of(side), number = ++d->parts;
+    const double offset = draw_between(&d->draw, -2e-3, 2e-3); /* drawn in this order */
+    const double gain = draw_decades(&d->draw, 100, 1e6);
     draft_write(d, "voltage V%d %s -> %s %.5g\n", number, NAME(d, side == SIDE_N ? in : rail),
                 NAME(d, side == SIDE_N ? rail : in), set);
     draft_write(d, "opamp A%d out=%s plus=%s minus=%s gain=%.4g low=%s high=%s offset=%.3g\n",
-                number, NAME(d, gate), NAME(d, in), NAME(d, sense),
-                draw_decades(&d->draw, 100, 1e6), NAME(d, NODE_LOW), NAME(d, NODE_HIGH),
-                draw_between(&d->draw, -2e-3, 2e-3));
+                number, NAME(d, gate), NAME(d, in), NAME(d, sense), gain, NAME(d, NODE_LOW),
+                NAME(d, NODE_HIGH), offset);
     d->devices += 2;
     put_transistor(d, &size, node, gate, sense, 1);
     put_resistor(d, sense, rail, set / current);
@@ -256,10 +257,9 @@ static bool put_brokaw(struct draft *d, struct branches *out)
     const int c1 = draft_node(d), c2 = draft_node(d), line = draft_node(d), tail = draft_node(d);
     const int end = draft_node(d), node = draft_node(d), last = draft_node(d);
     const int high = rail_of(opposite(side));
-    const bool is_n = side == SIDE_N;
     draft_write(d, "opamp A%d out=%s plus=%s minus=%s gain=%.4g low=%s high=%s\n", ++d->parts,
-                NAME(d, line), NAME(d, is_n ? c2 : c2), NAME(d, is_n ? c1 : c1),
-                draw_decades(&d->draw, 1e3, 1e5), NAME(d, NODE_LOW), NAME(d, NODE_HIGH));
+                NAME(d, line), NAME(d, c2), NAME(d, c1), draw_decades(&d->draw, 1e3, 1e5),
+                NAME(d, NODE_LOW), NAME(d, NODE_HIGH));
     d->devices++;
     put_resistor(d, high, c1, 0.3 * d->supply / current);
     put_resistor(d, high, c2, 0.3 * d->supply / current);
