@@ -4,6 +4,7 @@
 #include <math.h>
 #include <string.h>
 
+#include "analyses/spread_result.h"
 #include "report/show.h"
 #include "report/table.h"
 
@@ -40,6 +41,30 @@ static enum tone judgement_tone(enum judgement judgement)
         break;
     }
     return TONE_BAD;
+}
+
+/* "98.50 % of 2000 samples" */
+const char *yield_text(struct layout *layout, const struct yield_result *yield)
+{
+    return layout_format(layout, "%.2f %% of %d samples", 100.0 * yield->share, yield->count);
+}
+
+/* Why, where and how sure, after the margin. */
+static const char *remark_text(struct layout *layout, const struct result *result,
+                               const struct requirement_result *row)
+{
+    const bool by_yield = row->requirement->scope == SCOPE_YIELD && row->yield != NULL;
+    const char *first = by_yield                ? yield_text(layout, row->yield)
+                        : row->worst_at != NULL ? page_place(layout, result, row->worst_at)
+                                                : "";
+    if (*first != '\0' && !by_yield) {
+        first = layout_format(layout, "at %s", first);
+    }
+    if (row->remark == NULL) {
+        return first;
+    }
+    return layout_format(layout, "%s%s%s", first, *first != '\0' ? "; " : "",
+                         layout_clean(layout, row->remark));
 }
 
 /* "3.600 nA to spare", "too far by 111.2 mV (44.48 %)" */
@@ -86,9 +111,9 @@ void page_requirements(struct layout *layout, const struct result *result)
     for (int k = 0; k < result->requirement_count; k++) {
         const struct requirement_result *row = &result->requirements[k];
         const char *margin = margin_text(layout, row);
-        if (row->remark != NULL) {
-            margin = layout_format(layout, "%s%s%s", margin, *margin != '\0' ? "; " : "",
-                                   layout_clean(layout, row->remark));
+        const char *remark = remark_text(layout, result, row);
+        if (*remark != '\0') {
+            margin = layout_format(layout, "%s%s%s", margin, *margin != '\0' ? "; " : "", remark);
         }
         table_row(&table, judgement_tone(row->judgement));
         table_cell(&table, 0, judgement_text(row->judgement));
@@ -100,6 +125,7 @@ void page_requirements(struct layout *layout, const struct result *result)
         table_cell(&table, 3, margin);
     }
     table_write(&table);
+    page_repairs(layout, result);
 }
 
 void page_paper(struct layout *layout, const struct result *result)
@@ -126,4 +152,5 @@ void page_paper(struct layout *layout, const struct result *result)
                    isnan(row->in_hand_view) ? "" : show_probe(layout, probe, row->in_hand_view));
     }
     table_write(&table);
+    page_why(layout, result);
 }

@@ -38,6 +38,18 @@ static const char latch_cell[] =
     "resistor RL vcc -> e 1k\npnp Q2 c=b b=c e=e\nnpn Q1 c=c b=b e=gnd\n"
     "resistor R1 b -> gnd 10k\nresistor R2 e -> c 10k\nresistor R3 vcc -> b 1M\n"
     "npn Q3 c=o b=b e=gnd\noutput o at 1 V from 0 V to 5 V\n";
+/* A mirror whose corners and let build the cell anew, with deviates to sample. */
+#define SPREAD_MIRROR                                                                              \
+    "model n nmos\n threshold = 0.5 V\n kprime = 100 uA/V^2\n match_threshold = 5 mV*um\nend\n"    \
+    "corner hot\n n.threshold += -20 mV\nend\n"                                                    \
+    "let R = 100k\nrail vdd 3 V\nresistor RB vdd -> g R tol=1%\n"                                  \
+    "nmos M1 d=g g=g s=gnd W=10u L=2u\nnmos M2 d=out g=g s=gnd W=10u L=2u\n"                       \
+    "output out at 1 V from 0.9 V to 1.1 V\n"
+
+static const char range_cell[] =
+    SPREAD_MIRROR "require out.current above 1 uA everywhere\nvary R from 90k to 110k\n";
+static const char corner_cell[] =
+    SPREAD_MIRROR "require out.resistance above 1 ohm for 50%\nvary process\n";
 
 static const char wrong_cell[] = "rail vcc 1 V\nresistor R vcc -> x 3 uA\nnmos M1 d=x g=y W=1u\n"
                                  "hand M1.vgs = 1 A\nresistr Q a -> b 3\nlet X = Y + 1\n";
@@ -45,7 +57,7 @@ static const char wrong_cell[] = "rail vcc 1 V\nresistor R vcc -> x 3 uA\nnmos M
 static const struct scenario scenarios[] = {
     {.name = "review", .cell = "netlists/mirror.cell"},
     {.name = "review with a process", .cell = "netlists/wide_swing_cascode.cell", .is_brief = true},
-    {.name = "bandgap", .cell = "netlists/bandgap.cell", .is_brief = true},
+    {.name = "bandgap", .cell = "netlists/bandgap_sub1v.cell", .is_brief = true},
     {.name = "many choices",
      .cell = "netlists/beta_multiplier.cell",
      .temperature = "60 C",
@@ -66,6 +78,8 @@ static const struct scenario scenarios[] = {
      .sweep = "temperature from 0 C to 60 C points 3 show tail.current",
      .set = "ITAIL=18 uA"},
     {.name = "states", .command = "states", .cell = "latch.cell", .text = latch_cell},
+    {.name = "spread", .command = "spread", .cell = "range.cell", .text = range_cell},
+    {.name = "corners", .command = "spread", .cell = "corner.cell", .text = corner_cell},
     {.name = "models", .command = "models", .cell = "netlists/mirror.cell"},
     {.name = "everything", .cell = "tests/faults/everything.cell"},
     {.name = "everything swept", .command = "sweep", .cell = "tests/faults/everything.cell"},
@@ -109,6 +123,8 @@ static struct outcome run(const struct scenario *s)
     request.text_length = s->text != NULL ? strlen(s->text) : 0;
     request.sets = &s->set;
     request.set_count = s->set != NULL;
+    request.jobs = 1; /* request k is then the same one in each run */
+    request.samples = 3;
     (void)ampstead_run(&request, &result);
     const char *parts[4];
     parts[1] = ampstead_result_text(result, 0, 100);

@@ -2,7 +2,14 @@
 # symbols_test.sh LIBRARY NM: every defined dynamic symbol must be one of the public functions.
 set -eu
 found=$("$2" -D --defined-only "$1" | awk '{ print $NF }' | grep -v '^_' | sort)
-wanted="ampstead_result_csv
+wanted="ampstead_calibrate
+ampstead_calibration_free
+ampstead_calibration_json
+ampstead_calibration_messages
+ampstead_calibration_process
+ampstead_calibration_text
+ampstead_result_cell
+ampstead_result_csv
 ampstead_result_free
 ampstead_result_json
 ampstead_result_messages
