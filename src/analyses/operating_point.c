@@ -1,12 +1,12 @@
 /*
- * operating_point.c: the ladder of searches, and following a root.
+ * operating_point.c: the ladder of searches for a resting state, and the polish.
  */
 #include "analyses/operating_point.h"
 
 #include <math.h>
 #include <string.h>
 
-#include "numerics/continuation.h"
+#include "analyses/search.h"
 
 bool operating_point_create(struct operating_point *p, struct system *system,
                             const struct analysis_options *options)
@@ -20,13 +20,19 @@ bool operating_point_create(struct operating_point *p, struct system *system,
     p->x = arena_new_array(system->arena, double, system->n);
     p->refined = arena_new_array(system->arena, long double, system->n);
     p->values = arena_new_array(system->arena, long double, system->nonzeros);
+    p->best = arena_new_array(system->arena, double, system->n);
     p->saved = arena_new_array(system->arena, double, system->n);
     p->linear = arena_new_array(system->arena, long double, 4 * (size_t)system->n);
-    return p->linear != NULL && p->saved != NULL && p->x != NULL && p->refined != NULL &&
-           p->values != NULL;
+    return p->linear != NULL && p->saved != NULL && p->best != NULL && p->x != NULL &&
+           p->refined != NULL && p->values != NULL;
 }
 
-static struct newton_options newton_settings(const struct operating_point *p)
+bool search_ends(enum newton_status status)
+{
+    return status == NEWTON_STOPPED || status == NEWTON_MEMORY;
+}
+
+struct newton_options search_newton_options(const struct operating_point *p)
 {
     struct newton_options options = newton_default_options();
     options.stopped = p->stopped;
@@ -34,7 +40,7 @@ static struct newton_options newton_settings(const struct operating_point *p)
     return options;
 }
 
-static struct continuation_options walk_settings(const struct operating_point *p)
+struct continuation_options search_walk_options(const struct operating_point *p)
 {
     struct continuation_options options = continuation_default_options();
     options.newton.stopped = p->stopped;
@@ -42,6 +48,8 @@ static struct continuation_options walk_settings(const struct operating_point *p
     return options;
 }
 
+/* Newton from a guess is given up early: what it has not solved by then, settling does sooner. */
+enum { COLD_ITERATIONS = 60 };
 /* A residual below this in a search that stalled may be rounding alone. */
 static const double near_root = 1e-2;
 /* What the polish must reach for a stalled search to count as a root. */
@@ -62,10 +70,11 @@ static enum newton_status polish(struct operating_point *p, double *worst, int *
  * Where a high gain magnifies the rounding of double (an opamp of 1e9), the plain iteration stalls
  * next to the root; in long double it gets there.
  */
-enum newton_status operating_point_newton(struct operating_point *p)
+static enum newton_status newton_within(struct operating_point *p, int iteration_limit)
 {
     struct system *s = p->system;
-    const struct newton_options options = newton_settings(p);
+    struct newton_options options = search_newton_options(p);
+    options.iteration_limit = iteration_limit;
     enum newton_status status =
         newton_solve(&s->face, s->solver, &options, p->x, s->work, &p->report);
     if ((status == NEWTON_STALLED || status == NEWTON_LIMIT) && s->embedding == EMBED_NONE &&
@@ -86,13 +95,39 @@ enum newton_status operating_point_newton(struct operating_point *p)
     return status;
 }
 
+enum newton_status operating_point_newton(struct operating_point *p)
+{
+    return newton_within(p, newton_default_options().iteration_limit);
+}
+
+/* A node whose equation, or whose voltage, takes part in nothing: the plain reason of a singular
+ * matrix, which the column without a pivot may be far from. -1: none. */
+static int find_loose(const struct system *s, const double *values, double *seen)
+{
+    const struct pattern *pattern = s->face.pattern;
+    memset(seen, 0, 2 * (size_t)s->n * sizeof *seen);
+    for (int column = 0; column < s->n; column++) {
+        for (int k = pattern->start[column]; k < pattern->start[column + 1]; k++) {
+            seen[column] = fmax(seen[column], fabs(values[k]));
+            seen[s->n + pattern->row[k]] = fmax(seen[s->n + pattern->row[k]], fabs(values[k]));
+        }
+    }
+    for (int k = 0; k < s->node_count; k++) {
+        if (!(seen[k] > 0) || !(seen[s->n + k] > 0)) {
+            return k;
+        }
+    }
+    return -1;
+}
+
 /* The largest relative residual of the plain system at p->x, INFINITY when it has none. The
  * searches report that of their own, embedded one, which may well be solved. */
-static double plain_residual(struct operating_point *p, int *equation)
+static double plain_residual(struct operating_point *p, int *equation, int *loose)
 {
     struct system *s = p->system;
     double *f = arena_new_array(s->arena, double, 2 * (size_t)s->n + (size_t)s->nonzeros);
     double worst = -1;
+    *loose = -1;
     if (f == NULL || !s->face.evaluate(s, p->x, f, f + s->n, f + 2 * s->n)) {
         return INFINITY;
     }
@@ -103,52 +138,114 @@ static double plain_residual(struct operating_point *p, int *equation)
             *equation = k;
         }
     }
+    *loose = find_loose(s, f + 2 * s->n, f);
     return worst < 0 ? INFINITY : worst;
 }
 
 /* Remembers where a search came to an end, for the message. */
 static void note_failure(struct operating_point *p, enum newton_status status)
 {
-    int equation = -1;
-    const double residual = plain_residual(p, &equation);
-    if (status == NEWTON_SINGULAR) {
+    int equation = -1, loose;
+    const double residual = plain_residual(p, &equation, &loose);
+    if (loose >= 0) {
+        p->stalled_column = loose;
+        p->is_loose = true;
+    } else if (status == NEWTON_SINGULAR && !p->is_loose) {
         p->stalled_column = p->report.column;
     }
     if (residual < p->best_residual) {
         p->best_residual = residual;
+        memcpy(p->best, p->x, (size_t)p->system->n * sizeof *p->best);
         p->stalled_equation = equation;
     }
 }
 
-static bool ends_search(enum newton_status status)
+/* Newton again, from the guess in which the current of one mirror sets the voltage of the next. */
+static enum newton_status try_balanced(struct operating_point *p)
 {
-    return status == NEWTON_STOPPED || status == NEWTON_MEMORY;
+    const bool good =
+        operating_point_guess(p->system, p->x) && operating_point_balance(p->system, p->x);
+    return good ? newton_within(p, COLD_ITERATIONS) : NEWTON_MEMORY;
 }
 
 /* --- the ladder: each starts from p->x and leaves a root of the plain system there ------------ */
 
 static enum newton_status try_direct(struct operating_point *p)
 {
-    return operating_point_guess(p->system, p->x) ? operating_point_newton(p) : NEWTON_MEMORY;
+    return operating_point_guess(p->system, p->x) ? newton_within(p, COLD_ITERATIONS)
+                                                  : NEWTON_MEMORY;
 }
 
-static enum newton_status walk(struct operating_point *p, enum embedding embedding, double from)
+static enum newton_status try_settling(struct operating_point *p)
+{
+    if (!operating_point_guess(p->system, p->x)) {
+        return NEWTON_MEMORY;
+    }
+    enum newton_status status = search_settle(p, false);
+    if (status != NEWTON_CONVERGED && !search_ends(status)) {
+        const bool good =
+            operating_point_guess(p->system, p->x) && operating_point_balance(p->system, p->x);
+        status = good ? search_settle(p, false) : NEWTON_MEMORY;
+    }
+    return status;
+}
+
+static enum newton_status try_patient_settling(struct operating_point *p)
+{
+    const bool good =
+        operating_point_guess(p->system, p->x) && operating_point_balance(p->system, p->x);
+    return good ? search_settle(p, true) : NEWTON_MEMORY;
+}
+
+enum newton_status search_walk(struct operating_point *p, enum embedding embedding,
+                               const struct continuation_options *options)
 {
     struct system *s = p->system;
-    const struct continuation_options options = walk_settings(p);
-    double reached = from;
     s->embedding = embedding;
-    enum newton_status status = continuation_walk(&s->face, s->solver, &options, from, 1, p->x,
-                                                  &reached, s->work, &p->report);
+    enum newton_status status = continuation_walk(&s->face, s->solver, options, 0, 1, p->x,
+                                                  &p->reached, s->work, &p->report);
     s->embedding = EMBED_NONE;
     s->lambda = 1;
     return status;
 }
 
+static enum newton_status walk(struct operating_point *p, enum embedding embedding)
+{
+    const struct continuation_options options = search_walk_options(p);
+    return search_walk(p, embedding, &options);
+}
+
 static enum newton_status try_sources(struct operating_point *p)
 {
     memset(p->x, 0, (size_t)p->system->n * sizeof *p->x);
-    return walk(p, EMBED_SOURCES, 0);
+    return walk(p, EMBED_SOURCES);
+}
+
+/*
+ * The square law has no current below threshold, so a search that gets there sees no slope. It is
+ * therefore started from the all-region solution of the same cell, whose weak inversion is then
+ * halved again and again (published_test.c shows that its limit is the square law).
+ */
+static enum newton_status try_blended(struct operating_point *p)
+{
+    struct system *s = p->system;
+    const unsigned effects = s->conditions.effects;
+    if ((effects & EFFECT_INVERSION) != 0) {
+        return NEWTON_STALLED;
+    }
+    system_conditions(s, s->conditions.kelvin, effects | EFFECT_INVERSION);
+    static enum newton_status (*const searches[])(struct operating_point *) = {
+        try_direct, try_balanced, try_settling, try_patient_settling, try_sources};
+    enum newton_status status = NEWTON_STALLED;
+    for (size_t k = 0; k < sizeof searches / sizeof searches[0]; k++) {
+        status = status == NEWTON_CONVERGED || search_ends(status) ? status : searches[k](p);
+    }
+    if (status == NEWTON_CONVERGED) {
+        status = walk(p, EMBED_INVERSION);
+    }
+    s->conditions.inversion_cut = 0;
+    system_conditions(s, s->conditions.kelvin, effects);
+    return status;
 }
 
 static enum newton_status try_conductance(struct operating_point *p)
@@ -159,13 +256,13 @@ static enum newton_status try_conductance(struct operating_point *p)
     }
     memcpy(p->x, anchor, (size_t)p->system->n * sizeof *anchor);
     p->system->anchor = anchor;
-    return walk(p, EMBED_CONDUCTANCE, 0);
+    return walk(p, EMBED_CONDUCTANCE);
 }
 
 static enum newton_status trace(struct operating_point *p, enum embedding embedding)
 {
     struct system *s = p->system;
-    struct continuation_options options = walk_settings(p);
+    struct continuation_options options = search_walk_options(p);
     bool ended = false;
     options.step_limit = 4000;
     s->embedding = embedding;
@@ -183,33 +280,13 @@ static enum newton_status try_arclength(struct operating_point *p)
 {
     memset(p->x, 0, (size_t)p->system->n * sizeof *p->x);
     enum newton_status status = trace(p, EMBED_SOURCES);
-    if (status != NEWTON_CONVERGED && !ends_search(status)) {
+    if (status != NEWTON_CONVERGED && !search_ends(status)) {
         if (p->system->anchor != NULL) {
             memcpy(p->x, p->system->anchor, (size_t)p->system->n * sizeof *p->x);
         }
         status = trace(p, EMBED_CONDUCTANCE);
     }
     return status;
-}
-
-/*
- * The square law has no current below threshold, so a search that starts there sees no slope. It is
- * therefore started from the all-region solution of the same cell, which lies close by.
- */
-static enum newton_status try_blended(struct operating_point *p)
-{
-    struct system *s = p->system;
-    const unsigned effects = s->conditions.effects;
-    if ((effects & EFFECT_INVERSION) != 0) {
-        return NEWTON_STALLED;
-    }
-    system_conditions(s, s->conditions.kelvin, effects | EFFECT_INVERSION);
-    enum newton_status status = try_direct(p);
-    if (status != NEWTON_CONVERGED && !ends_search(status)) {
-        status = try_sources(p);
-    }
-    system_conditions(s, s->conditions.kelvin, effects);
-    return status == NEWTON_CONVERGED ? operating_point_newton(p) : status;
 }
 
 /* Sets every opamp's gain to at most `limit`; the largest gain of the cell. */
@@ -255,97 +332,15 @@ static const struct {
     enum newton_status (*search)(struct operating_point *p);
 } ladder[] = {
     {"direct", try_direct},
+    {"balanced start", try_balanced},
+    {"settling", try_settling},
     {"from the all-region solution", try_blended},
     {"gain stepping", try_gain},
+    {"patient settling", try_patient_settling},
     {"source stepping", try_sources},
     {"conductance stepping", try_conductance},
     {"arclength continuation", try_arclength},
 };
-
-/* --- words for a search that found nothing -------------------------------------------------- */
-
-static const char *name_of(const struct operating_point *p, int unknown)
-{
-    char text[200];
-    circuit_unknown_name(p->system->circuit, unknown, text, sizeof text);
-    const char *name = arena_copy(p->system->arena, text, strlen(text));
-    return name == NULL ? "" : name;
-}
-
-/* Devices at a node, at most three, for the message. Without memory "", as name_of: the arena
- * remembers. */
-static const char *devices_at(const struct operating_point *p, int unknown)
-{
-    const struct circuit *c = p->system->circuit;
-    struct arena *arena = p->system->arena;
-    const char *text = "no device";
-    int count = 0;
-    for (int k = 0; k < c->instance_count && count < 3 && text != NULL; k++) {
-        const struct instance *instance = &c->instances[k];
-        bool touches = false;
-        for (int l = 0; l < instance->local_count; l++) {
-            touches |= instance->local[l] == unknown;
-        }
-        if (touches && !instance->is_hidden) {
-            text =
-                count == 0 ? instance->name : arena_format(arena, "%s, %s", text, instance->name);
-            count++;
-        }
-    }
-    return text == NULL ? "" : text;
-}
-
-static void tell_trouble(struct operating_point *p)
-{
-    struct arena *arena = p->system->arena;
-    struct solver_result *solver = &p->solver;
-    const int where = p->stalled_equation >= 0 ? p->stalled_equation : p->stalled_column;
-    solver->converged = false;
-    solver->method = "none";
-    solver->iterations = p->report.iterations;
-    solver->worst_residual = p->best_residual;
-    solver->worst_name = where < 0 ? "" : name_of(p, where);
-    const char *devices = where < 0 ? "" : devices_at(p, where);
-    /* Balanced and singular: any voltage would do. */
-    const bool open = p->best_residual < 1e-9 || !(p->best_residual < 1e-3);
-    if (p->stalled_column >= 0 && open) {
-        solver->trouble =
-            arena_format(arena,
-                         "nothing sets the %s: every device there (%s) is off or holds its current "
-                         "whatever the voltage",
-                         name_of(p, p->stalled_column), devices_at(p, p->stalled_column));
-        solver->advice = "look for a gate or a node held by nothing, for two current sources that "
-                         "face each other, or for a transistor that is off in this view";
-        return;
-    }
-    solver->trouble = arena_format(
-        arena,
-        "no operating point was found: the search stalled at %s (%s); the currents there "
-        "miss balance by %.3g of their sum",
-        solver->worst_name, devices, p->best_residual);
-    solver->advice =
-        "check that currents set against each other can agree, that every device has a "
-        "path for its current, and the values of the devices named";
-}
-
-/* A residual above 1e-12 after the polish: rounding, and how badly the equations carry it on. False
- * when memory is short. */
-static bool tell_limit(struct operating_point *p)
-{
-    struct system *s = p->system;
-    double *values = arena_new_array(s->arena, double, s->nonzeros);
-    if (values == NULL) {
-        return false;
-    }
-    for (int k = 0; k < s->nonzeros; k++) {
-        values[k] = (double)p->values[k];
-    }
-    const double condition = linear_condition(s->solver, values);
-    p->solver.limited_by = arena_format(
-        s->arena, "rounding at %s: the equations have a condition number of about %.1e",
-        p->solver.worst_name, condition);
-    return p->solver.limited_by != NULL && !isnan(condition);
-}
 
 enum status operating_point_find(struct operating_point *p)
 {
@@ -364,7 +359,7 @@ enum status operating_point_find(struct operating_point *p)
         }
         note_failure(p, status);
     }
-    tell_trouble(p);
+    trouble_tell(p);
     return STATUS_UNSOLVED;
 }
 
@@ -380,14 +375,14 @@ enum status operating_point_polish(struct operating_point *p)
     p->solver.converged = status == NEWTON_CONVERGED && worst < polished;
     p->solver.iterations = p->report.iterations;
     p->solver.worst_residual = worst;
-    p->solver.worst_name = equation < 0 ? "" : name_of(p, equation);
+    p->solver.worst_name = equation < 0 ? "" : trouble_name(p, equation);
     p->solver.limited_by = NULL;
     if (!p->solver.converged) {
         note_failure(p, status);
-        tell_trouble(p);
+        trouble_tell(p);
         return STATUS_UNSOLVED;
     }
-    if (!(worst < 1e-12) && !tell_limit(p)) {
+    if (!(worst < 1e-12) && !trouble_tell_limit(p)) {
         return STATUS_MEMORY;
     }
     for (int k = 0; k < s->n; k++) {
@@ -402,37 +397,4 @@ enum status operating_point_status(enum newton_status status)
            : status == NEWTON_STOPPED ? STATUS_STOPPED
            : status == NEWTON_MEMORY  ? STATUS_MEMORY
                                       : STATUS_UNSOLVED;
-}
-
-enum status operating_point_move(struct operating_point *p, int instance, int parameter,
-                                 double from, double to, bool *jumped)
-{
-    struct system *s = p->system;
-    double *start = p->saved;
-    memcpy(start, p->x, (size_t)s->n * sizeof *start);
-    system_set(s, instance, parameter, to);
-    enum newton_status status = operating_point_newton(p);
-    if (status == NEWTON_CONVERGED || ends_search(status)) {
-        return operating_point_status(status);
-    }
-    memcpy(p->x, start, (size_t)s->n * sizeof *start);
-    s->knob_instance = instance;
-    s->knob_parameter = parameter;
-    s->knob_from = from;
-    s->knob_to = to;
-    status = walk(p, EMBED_KNOB, 0);
-    system_set(s, instance, parameter, to);
-    if (status == NEWTON_CONVERGED || ends_search(status)) {
-        return operating_point_status(status);
-    }
-    if (jumped == NULL) {
-        memcpy(p->x, start, (size_t)s->n * sizeof *start);
-        return STATUS_UNSOLVED;
-    }
-    *jumped = true;
-    const enum status found = operating_point_find(p);
-    if (found != STATUS_OK) {
-        memcpy(p->x, start, (size_t)s->n * sizeof *start);
-    }
-    return found;
 }

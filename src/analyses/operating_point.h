@@ -20,8 +20,13 @@ struct operating_point {
     void *stopped_self;
     int stalled_equation; /* of the last failure, -1 */
     int stalled_column;
+    bool is_loose; /* stalled_column takes part in nothing */
     double best_residual;
+    double *best;                /* [n] where it was */
     struct newton_report report; /* iterations add up over the whole search */
+    double reached;              /* of the last walk along an embedding, 0..1 */
+    double lost_at; /* of operating_point_move: where the state could not be followed */
+    bool folds;     /* the curve of states turns back there */
 };
 
 /* Workspaces from the system's arena. False when memory is short. */
@@ -30,7 +35,8 @@ bool operating_point_create(struct operating_point *point, struct system *system
 
 /*
  * operating_point_find: from cold: damped Newton from a guess that turns every diode-like device
- * on, then source stepping, conductance stepping, arclength continuation; then the polish.
+ * on, then from one whose currents agree, then settling, then the steppings and continuations (the
+ * ladder in operating_point.c); then the polish.
  *
  * Returns STATUS_OK (solver filled in), STATUS_UNSOLVED (trouble and advice say why),
  * STATUS_STOPPED, STATUS_MEMORY.
@@ -42,13 +48,18 @@ enum status operating_point_polish(struct operating_point *point);
 
 /*
  * operating_point_move: changes one value of one instance from `from` (where x is a root) to `to`,
- * and follows the root: tangent step and Newton, then smaller steps, then continuation.
+ * and follows the root in steps that are halved where it does not come to lie where the tangent
+ * led.
  *
- * jumped  in: false. Out: true when the root could not be followed and the state at `to` was looked
- *         for in another way. NULL: it is only followed, else STATUS_UNSOLVED and x as it was
+ * jumped  in: false. Out: true when the root could not be followed: it ends at point->lost_at, and
+ *         the cell was let go from there to come to rest at `to` (or solved anew). NULL: it is only
+ *         followed, else STATUS_UNSOLVED and x as it was
  */
 enum status operating_point_move(struct operating_point *point, int instance, int parameter,
                                  double from, double to, bool *jumped);
+
+/* What is said about a state that operating_point_move lost. */
+const char *operating_point_lost_text(const struct operating_point *point);
 
 /* Newton from the x at hand with the values in force, without any fallback. */
 enum newton_status operating_point_newton(struct operating_point *point);
@@ -60,5 +71,9 @@ enum status operating_point_status(enum newton_status status);
 /* A start for the search in which diode-like devices conduct, [n] out. False when memory is short.
  */
 bool operating_point_guess(const struct system *system, double *x);
+
+/* Moves the nodes of diode-like devices in the guess x to where their currents balance. False when
+ * memory is short. */
+bool operating_point_balance(const struct system *system, double *x);
 
 #endif

@@ -144,7 +144,7 @@ static bool solve_at(struct sweeper *w, const struct place *near, double v, stru
         return false;
     }
     if (jumped) {
-        add_event(w, v, "the state cannot be followed: it folds or jumps here");
+        add_event(w, p->lost_at, operating_point_lost_text(p));
         const enum status again = operating_point_status(operating_point_newton(p));
         if (again != STATUS_OK) {
             w->status = again == STATUS_UNSOLVED ? w->status : again;

@@ -12,8 +12,7 @@ enum view { VIEW_FULL, VIEW_HAND };
 /* How the operating point was found, and how good it is. */
 struct solver_result {
     bool converged;
-    const char *method;     /* "direct", "source stepping", "conductance stepping", "arclength
-                               continuation" */
+    const char *method;     /* a rung of the ladder in operating_point.c: "direct", ... */
     int iterations;         /* Newton iterations in all */
     double worst_residual;  /* largest |sum of currents| / sum of |currents|, extended precision */
     const char *worst_name; /* node or branch where it is */

@@ -204,6 +204,87 @@ static bool add_event(struct series_task *t, double at, const char *text)
     return true;
 }
 
+/* A node that moves further in one step, V, is looked at in smaller steps: it may have jumped. */
+static const double longest_move = 0.25;
+enum { HALVING_LIMIT = 16 };
+
+static bool is_near(const struct system *system, const double *x, const double *last)
+{
+    for (int k = 0; k < system->node_count; k++) {
+        if (!(fabs(x[k] - last[k]) <= longest_move)) {
+            return false;
+        }
+    }
+    return true;
+}
+
+/* Builds the circuit anew at `to`, and goes on from `last` [n] where it has as many unknowns.
+ * *follows: the state is near the last one. */
+static enum status build_at(struct series_task *t, struct stage *stage, double to,
+                            const double *last, int n, bool *follows)
+{
+    const struct sweep *sweep = t->sweep;
+    const struct setting settings[2] = {{&sweep->knob, to},
+                                        {&sweep->family, t->series->family_value}};
+    *follows = false;
+    stage_close(stage);
+    enum status status = stage_open(stage, t->circuit, sweep, settings, sweep->has_family ? 2 : 1);
+    if (status != STATUS_OK || n != stage->system->n) {
+        *follows = true; /* another structure: there is nothing to compare with */
+        return status != STATUS_OK ? status : operating_point_find(&stage->point);
+    }
+    memcpy(stage->point.x, last, (size_t)n * sizeof *last);
+    status = operating_point_status(operating_point_newton(&stage->point));
+    if (status == STATUS_OK) {
+        *follows = is_near(stage->system, stage->point.x, last);
+    }
+    return status == STATUS_UNSOLVED ? operating_point_find(&stage->point) : status;
+}
+
+/*
+ * A let or the temperature goes from `from` (NAN: there is no state yet) to `to`. A state that ends
+ * up far from the last one is approached in halved steps, so that a jump is told, and where.
+ */
+static enum status build_and_follow(struct series_task *t, struct stage *stage, double from,
+                                    double to, int depth)
+{
+    struct arena *scratch = arena_create();
+    const int n = stage->system == NULL || isnan(from) ? 0 : stage->system->n;
+    double *last = scratch == NULL ? NULL : arena_new_array(scratch, double, n);
+    if (last == NULL) {
+        arena_destroy(scratch);
+        return STATUS_MEMORY;
+    }
+    if (n > 0) {
+        memcpy(last, stage->point.x, (size_t)n * sizeof *last);
+    }
+    bool follows = false;
+    enum status status = build_at(t, stage, to, last, n, &follows);
+    if (status == STATUS_OK && !follows && n > 0 && depth < HALVING_LIMIT) {
+        const double middle = (from + to) / 2;
+        status = build_at(t, stage, from, last, n, &follows); /* back, to go in smaller steps */
+        if (status == STATUS_OK) {
+            status = build_and_follow(t, stage, from, middle, depth + 1);
+        }
+        if (status == STATUS_OK) {
+            status = build_and_follow(t, stage, middle, to, depth + 1);
+        }
+        if (status == STATUS_UNSOLVED &&
+            depth == 0) { /* none on the way: is there one at the end? */
+            status = build_at(t, stage, to, last, n, &follows);
+            if (status == STATUS_OK &&
+                !add_event(t, from, "no state was found on the way to the next value")) {
+                status = STATUS_MEMORY;
+            }
+        }
+    } else if (status == STATUS_OK && !follows && n > 0 &&
+               !add_event(t, from, "the state cannot be followed from here: it jumps")) {
+        status = STATUS_MEMORY;
+    }
+    arena_destroy(scratch);
+    return status;
+}
+
 /* Moves the stage to the next value and solves there, from the state at the last value where there
  * is one. */
 static enum status advance(struct series_task *t, struct stage *stage, int k)
@@ -219,37 +300,13 @@ static enum status advance(struct series_task *t, struct stage *stage, int k)
         const enum status status = operating_point_move(
             &stage->point, sweep->knob.instance, sweep->knob.parameter, t->knob[k - 1], v, &jumped);
         if (status == STATUS_OK && jumped &&
-            !add_event(t, v, "the state cannot be followed: it folds or jumps here")) {
+            !add_event(t, stage->point.lost_at, operating_point_lost_text(&stage->point))) {
             return STATUS_MEMORY;
         }
         return status;
     }
-    const struct setting settings[2] = {{&sweep->knob, v},
-                                        {&sweep->family, t->series->family_value}};
-    struct arena *scratch = arena_create();
-    const int n = stage->system == NULL || !stage->is_solved ? 0 : stage->system->n;
-    double *last = scratch == NULL ? NULL : arena_new_array(scratch, double, n);
-    if (last == NULL) {
-        arena_destroy(scratch);
-        return STATUS_MEMORY;
-    }
-    if (n > 0) {
-        memcpy(last, stage->point.x, (size_t)n * sizeof *last);
-    }
-    stage_close(stage);
-    enum status status = stage_open(stage, t->circuit, sweep, settings, sweep->has_family ? 2 : 1);
-    if (status == STATUS_OK) {
-        status = STATUS_UNSOLVED;
-        if (n == stage->system->n) {
-            memcpy(stage->point.x, last, (size_t)n * sizeof *last);
-            status = operating_point_status(operating_point_newton(&stage->point));
-        }
-        if (status == STATUS_UNSOLVED) {
-            status = operating_point_find(&stage->point);
-        }
-    }
-    arena_destroy(scratch);
-    return status;
+    const double from = k > 0 && stage->is_solved ? t->knob[k - 1] : NAN;
+    return build_and_follow(t, stage, from, v, 0);
 }
 
 /* Whether a name or a text of the stage is missing: arenas remember. */

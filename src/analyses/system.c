@@ -17,6 +17,8 @@ enum { LOCAL = DEVICE_LOCAL_LIMIT };
 /* Conductance stepping: from this value, S, to nothing. */
 static const double conductance_first = 1e-3;
 static const double conductance_decades = 12;
+/* From all-region inversion to the square law: so often is its share halved, then it is 0. */
+static const double inversion_halvings = 16;
 
 const void *system_block(const struct system *s, int k)
 {
@@ -138,6 +140,11 @@ static void set_parameter(void *self, double lambda)
         system_set(s, s->knob_instance, s->knob_parameter,
                    s->knob_from + lambda * (s->knob_to - s->knob_from));
     }
+    if (s->embedding == EMBED_INVERSION) {
+        const unsigned rest = s->conditions.effects & ~(unsigned)EFFECT_INVERSION;
+        s->conditions.inversion_cut = lambda < 1 ? 1 - pow(2, -inversion_halvings * lambda) : 0;
+        system_conditions(s, s->conditions.kelvin, lambda < 1 ? rest | EFFECT_INVERSION : rest);
+    }
 }
 
 /* Sum over all sources of what they drive, at full value. */
@@ -164,6 +171,7 @@ static void parameter_slope(void *self, const double *x, double *slope)
     memset(slope, 0, (size_t)s->n * sizeof *slope);
     switch (s->embedding) {
     case EMBED_NONE:
+    case EMBED_INVERSION: /* no tangent: the last root is the prediction */
         break;
     case EMBED_SOURCES:
         add_drive(s, 1, slope);

@@ -16,7 +16,8 @@ enum embedding {
     EMBED_SOURCES,     /* independent sources at lambda times their value */
     EMBED_CONDUCTANCE, /* a conductance from every node to its place in `anchor`, gone at lambda = 1
                         */
-    EMBED_KNOB         /* one value moves from knob_from to knob_to */
+    EMBED_KNOB,        /* one value moves from knob_from to knob_to */
+    EMBED_INVERSION    /* MOS transistors go from all-region to the square law */
 };
 
 struct system {

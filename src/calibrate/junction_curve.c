@@ -18,7 +18,7 @@ void junction_prepare(struct junction *junction, const struct device_type *type,
     }
     own[parameter_find(type->parameters, type->parameter_count, "m")] = multiplicity;
     struct device_values values = {own, model, NULL, 1};
-    struct device_conditions conditions = {kelvin, measured, EFFECTS_FULL};
+    struct device_conditions conditions = {kelvin, measured, EFFECTS_FULL, 0};
     junction->type = type;
     type->prepare(&values, &conditions, junction->prepared);
     memset(junction->resistance, 0, sizeof junction->resistance);

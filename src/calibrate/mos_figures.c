@@ -34,7 +34,7 @@ static void prepare(struct judge *judge, int kelvin)
     mos_own(device, judge->offset, own);
     struct device_values values = {own, judge->model, NULL, 1};
     struct device_conditions conditions = {device->data.kelvins[kelvin],
-                                           judge->calibration->measured_kelvin, EFFECTS_FULL};
+                                           judge->calibration->measured_kelvin, EFFECTS_FULL, 0};
     device->type->prepare(&values, &conditions, judge->prepared);
     judge->kelvin = kelvin;
 }

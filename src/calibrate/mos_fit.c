@@ -74,7 +74,7 @@ static void constants_of(const struct problem *it, const struct part *part, cons
     double own[OWN_VALUE_LIMIT];
     mos_own(part->device, offset, own);
     struct device_values values = {own, model, NULL, 1};
-    struct device_conditions conditions = {kelvin, it->kelvin, EFFECTS_FULL};
+    struct device_conditions conditions = {kelvin, it->kelvin, EFFECTS_FULL, 0};
     it->base.type->prepare(&values, &conditions, prepared);
     if (constants != NULL) {
         mos_constants(prepared, constants);

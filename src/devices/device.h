@@ -97,6 +97,8 @@ struct device_conditions {
     double kelvin;          /* of the analysis */
     double measured_kelvin; /* at which the model values hold */
     unsigned effects;       /* sum of enum effect */
+    double inversion_cut;   /* of MOS: 0 all-region; towards 1 (excluded) the square law, for a
+                               search that goes from one to the other */
 };
 
 /* Values in the order of the tables; PARAMETER_NONE for none. */

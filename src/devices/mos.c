@@ -283,7 +283,7 @@ static void prepare(const struct device_values *values, const struct device_cond
     p->polarity = polarity;
     p->U = values->model[MODEL_SLOPE_FACTOR] * thermal;
     p->four_ut = 4 * thermal;
-    p->w = (effects & EFFECT_INVERSION) != 0 ? 1 : 0;
+    p->w = (effects & EFFECT_INVERSION) != 0 ? 1 - conditions->inversion_cut : 0;
     prepare_threshold(values, effects, &it, kelvin, measured, p);
     prepare_channel(values, effects, &it, kelvin, measured, p);
     if ((effects & EFFECT_LEAKAGE) != 0) {
@@ -318,7 +318,7 @@ static void prepare_hand(const struct device_values *values,
     p->polarity = polarity;
     p->U = own[HAND_SLOPE] * thermal;
     p->four_ut = 4 * thermal;
-    p->w = (conditions->effects & EFFECT_INVERSION) != 0 ? 1 : 0;
+    p->w = (conditions->effects & EFFECT_INVERSION) != 0 ? 1 - conditions->inversion_cut : 0;
     p->vt = own[HAND_THRESHOLD] + own[HAND_THRESHOLD_SHIFT];
     p->beta = 2 * own[HAND_CONDUCTION] * own[HAND_M] * device_share(own[HAND_GAIN_SHIFT]);
     p->knee = 1;

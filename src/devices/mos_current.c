@@ -88,9 +88,10 @@ static real charge(real v)
 
 static struct dual charge_of(const struct mos_prepared *p, struct dual v)
 {
-    if (p->w > 0) {
-        real q = charge(v.v);
-        return chain(q, q / (1 + 2 * q), v);
+    if (p->w > 0) { /* 2 q + w ln(q/w) = v */
+        const real w = p->w;
+        real q = charge(v.v / w);
+        return chain(w * q, q / (1 + 2 * q), v);
     }
     return v.v > 0 ? chain(v.v / 2, (real)0.5L, v) : (struct dual){0, 0, 0, 0};
 }
@@ -175,21 +176,21 @@ static void find_drain_charge(const struct mos_prepared *p, struct dual source_v
 {
     struct dual z = chain(drop.v / (real)p->U, 1 / (real)p->U, drop);
     s->qd = charge_of(p, chain2(source_v.v - z.v, 1, source_v, -1, z));
-    real qs = s->qs.v, qd = s->qd.v;
-    if (!(p->w > 0)) {
+    real qs = s->qs.v, qd = s->qd.v, w = p->w;
+    if (!(w > 0)) {
         bool pinched = !(qd > 0);
         s->difference = pinched ? s->qs : chain(z.v / 2, (real)0.5L, z);
         return;
     }
     real difference = qs - qd;
     if (qd > qs / 2) {
-        /* one Newton step on 2 d - ln(1 - d/qs) = z; its start is right to an ulp of qs */
-        real error = 2 * difference - log1p(-difference / qs) - z.v;
-        difference -= error * qd / (2 * qd + 1);
+        /* one Newton step on 2 d - w ln(1 - d/qs) = z; its start is right to an ulp of qs */
+        real error = 2 * difference - w * log1p(-difference / qs) - z.v;
+        difference -= error * qd / (2 * qd + w);
     }
     /* the derivatives of the same equation */
-    real scale = 1 / (2 * qd + 1);
-    s->difference = chain2(difference, qd * scale, z, difference / qs * scale, s->qs);
+    real scale = 1 / (2 * qd + w);
+    s->difference = chain2(difference, qd * scale, z, w * difference / qs * scale, s->qs);
 }
 
 /* 1 + channel-length modulation. */

@@ -15,7 +15,8 @@ struct continuation_options continuation_default_options(void)
     struct continuation_options options = {.newton = newton_default_options(),
                                            .first_step = 0.1,
                                            .least_step = 1e-6,
-                                           .step_limit = 1000};
+                                           .step_limit = 1000,
+                                           .surprise = INFINITY};
     options.newton.iteration_limit = 25;
     return options;
 }
@@ -61,6 +62,20 @@ static void predict(const struct nonlinear_system *system, const double *x, cons
     }
 }
 
+/* Whether the root at trial lies where the tangent at x led: a Newton that starts near a fold, or
+ * with too long a step, may well converge on another branch. */
+static bool is_expected(const struct nonlinear_system *system, const double *x,
+                        const double *tangent, double change, const double *trial, double surprise)
+{
+    for (int k = 0; k < system->n && isfinite(surprise); k++) {
+        const double w = system->weight != NULL ? system->weight[k] : 1;
+        if (!(w * fabs(trial[k] - x[k] - change * tangent[k]) <= surprise)) {
+            return false;
+        }
+    }
+    return true;
+}
+
 static bool ends_everything(enum newton_status status)
 {
     return status == NEWTON_STOPPED || status == NEWTON_MEMORY;
@@ -93,6 +108,10 @@ enum newton_status continuation_walk(const struct nonlinear_system *system,
         system->set_parameter(system->self, lambda);
         int before = report->iterations;
         status = newton_solve(system, solver, &options->newton, trial, newton_work, report);
+        if (status == NEWTON_CONVERGED &&
+            !is_expected(system, x, tangent, lambda - *reached, trial, options->surprise)) {
+            status = NEWTON_STALLED;
+        }
         if (status == NEWTON_CONVERGED) {
             for (int k = 0; k < n; k++) {
                 x[k] = trial[k];

@@ -11,6 +11,8 @@ struct continuation_options {
     double first_step; /* share of |to - from| */
     double least_step; /* share; below it the walk gives up */
     int step_limit;    /* accepted and rejected steps together */
+    double surprise;   /* continuation_walk: a root further than this (weighted) from where the
+                          tangent led is taken for another branch; INFINITY: any root will do */
 };
 
 struct continuation_options continuation_default_options(void);

@@ -85,7 +85,7 @@ static void test_unlimited(void **state)
     assert_true(o->is_sink);
     assert_true(o->resistance_unlimited);
     assert_true(isnan(o->resistance));
-    check_near(o->flatness, 0, 0);
+    assert_true(o->flatness >= 0 && o->flatness < 1e-14); /* rounding of the walk */
     assert_int_equal(run.result->verdict, VERDICT_MET);
     run_close(&run);
 }

@@ -186,26 +186,57 @@ static void test_lost_points(void **state)
 /* A bistable cell: the two branches of a hysteresis are told with the voltage of the jump. The fold
  * lies where the slope of G1's feedback reaches that of its load: x - 3/(1 + e^(-4(x + u - 1.5))) =
  * 0, turned by u. */
-static void test_fold(void **state)
+#define HYSTERESIS                                                                                 \
+    "law G1 x -> gnd i = 1 mA/V*(x.v - 3V*(1 + exp(-4*(x.v + u.v - 1.5V)/1V))^(-1))\n"
+
+/* 3*4*s(1-s) = 1 with the lower s, x = 3 s, u = 1.5 - x + ln(s/(1-s))/4 */
+static double rising_fold(void)
 {
-    (void)state;
-    struct run run;
-    const struct sweep_table *table = run_sweep(
-        &run, "rail u 0 V\nresistor R1 u -> gnd 1k\n"
-              "law G1 x -> gnd i = 1 mA/V*(x.v - 3V*(1 + exp(-4*(x.v + u.v - 1.5V)/1V))^(-1))\n"
-              "sweep u from -1 V to 1 V points 41 show x.v\n");
-    const struct sweep_series *series = &table->series[0];
-    /* fold: 3*4*s(1-s) = 1 with the lower s, x = 3 s, u = 1.5 - x + ln(s/(1-s))/4 */
     const double s = (1 - sqrt(1 - 4.0 / 12)) / 2;
-    const double fold = 1.5 - 3 * s + log(s / (1 - s)) / 4;
+    return 1.5 - 3 * s + log(s / (1 - s)) / 4;
+}
+
+static void check_hysteresis(const struct sweep_series *series, double tolerance)
+{
+    const double fold = rising_fold();
     assert_true(fold > 0 && fold < 1);
-    assert_true(series->event_count >= 1);
-    assert_true(series->events[0].at > fold && series->events[0].at < fold + 0.06);
+    assert_int_equal(series->event_count, 1);
+    assert_true(fabs(series->events[0].at - fold) < tolerance);
     for (int k = 0; k < series->count; k++) {
         const double u = series->knob[k], x = series->values[k];
         assert_true(fabs(x - 3 / (1 + exp(-4 * (x + u - 1.5)))) < 1e-9);
         assert_true(u > fold ? x > 1.5 : x < 1.5); /* below the fold the lower branch is kept */
     }
+}
+
+/* In small steps, and in steps that leap over the fold to where Newton finds the other state. */
+static void test_fold(void **state)
+{
+    (void)state;
+    static const int points[] = {41, 3, 2};
+    for (int k = 0; k < 3; k++) {
+        char text[400];
+        struct run run;
+        (void)snprintf(text, sizeof text,
+                       "rail u 0 V\nresistor R1 u -> gnd 1k\n" HYSTERESIS
+                       "sweep u from -1 V to 1 V points %d show x.v\n",
+                       points[k]);
+        const struct sweep_table *table = run_sweep(&run, text);
+        check_hysteresis(&table->series[0], 1e-5);
+        assert_non_null(strstr(table->series[0].events[0].text, "folds back"));
+        run_close(&run);
+    }
+}
+
+/* The same by a let, where the circuit is built anew for each point. */
+static void test_fold_of_let(void **state)
+{
+    (void)state;
+    struct run run;
+    const struct sweep_table *table =
+        run_sweep(&run, "let U = 0 V\nrail u U\nresistor R1 u -> gnd 1k\n" HYSTERESIS
+                        "sweep U from -1 V to 1 V points 5 show x.v\n");
+    check_hysteresis(&table->series[0], 1e-4);
     run_close(&run);
 }
 
@@ -217,6 +248,7 @@ int main(void)
         cmocka_unit_test(test_changing_structure),
         cmocka_unit_test(test_lost_points),
         cmocka_unit_test(test_fold),
+        cmocka_unit_test(test_fold_of_let),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

@@ -44,8 +44,33 @@ static void test_unsolved(void **state)
                   VIEW_FULL, "node x", "G1");
 }
 
+/* The sentence shows the two currents that cannot agree. In the hand view M1 has no slope at all.
+ */
+static void test_currents_are_told(void **state)
+{
+    (void)state;
+    static const char text[] = "rail vdd 3 V\nrail y 0.55 V\ncurrent I1 vdd -> x 10 uA\n"
+                               "nmos M1 d=x g=y s=gnd conduction=1 mA/V^2 threshold=0.5 V\n";
+    check_trouble(text, VIEW_FULL, "I1 brings 1e-05 A", "M1 takes ");
+    check_trouble(text, VIEW_HAND, "nothing sets the node x", "M1");
+}
+
+/* A gate that only transistors without current hold: nothing sets it, and a NAN is no answer. */
+static void test_floating_gate(void **state)
+{
+    (void)state;
+    check_trouble("rail vdd 3 V\n"
+                  "nmos M1 d=x g=gnd s=gnd conduction=1 mA/V^2 threshold=0.5 V\n"
+                  "pmos M2 d=x g=vdd s=vdd conduction=1 mA/V^2 threshold=0.5 V\n"
+                  "nmos M3 d=vdd g=x s=out conduction=1 mA/V^2 threshold=0.5 V\n"
+                  "resistor R1 out -> gnd 10k\n",
+                  VIEW_HAND, "node x", "M1, M2, M3");
+}
+
 int main(void)
 {
-    const struct CMUnitTest tests[] = {cmocka_unit_test(test_unsolved)};
+    const struct CMUnitTest tests[] = {cmocka_unit_test(test_unsolved),
+                                       cmocka_unit_test(test_currents_are_told),
+                                       cmocka_unit_test(test_floating_gate)};
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

@@ -219,7 +219,7 @@ static void write_transistor(struct curve_file *file, const struct device_type *
     struct device_values values = {own, model, NULL, 1};
     begin_file(file, "vgs,vds,vsb,id,temperature");
     for (int t = 0; t < it->temperature_count; t++) {
-        struct device_conditions conditions = {it->temperatures[t], 298.15, EFFECTS_FULL};
+        struct device_conditions conditions = {it->temperatures[t], 298.15, EFFECTS_FULL, 0};
         type->prepare(&values, &conditions, prepared);
         for (int row = 0; row < 10 * 37; row++) {
             int sweep = row / 37;

@@ -314,7 +314,7 @@ static double law_current(const char *expression, double volts)
                    expression);
     const struct circuit *c = open_good(&bench, text, NULL);
     const struct instance *law = part(c, "G1");
-    const struct device_conditions conditions = {300.15, 300.15, EFFECTS_FULL};
+    const struct device_conditions conditions = {300.15, 300.15, EFFECTS_FULL, 0};
     const struct device_values values = {law->own, NULL, law->extra, 1};
     long double prepared[64], x[8] = {0}, f[8], jac[64];
     assert_true(law->type->prepared_size <= sizeof prepared);

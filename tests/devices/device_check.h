@@ -48,7 +48,7 @@ static inline struct subject subject_of(const struct device_type *type)
     set_defaults(type->parameters, type->parameter_count, it.own);
     set_defaults(type->model_parameters, type->model_parameter_count, it.model);
     it.values.resistor_factor = 1;
-    it.conditions = (struct device_conditions){300.15, 300.15, EFFECTS_FULL};
+    it.conditions = (struct device_conditions){300.15, 300.15, EFFECTS_FULL, 0};
     assert_true(type->prepared_size <= sizeof it.prepared);
     return it;
 }

@@ -213,6 +213,33 @@ static void every_effect_has_exact_derivatives(void **state)
     }
 }
 
+/* A share w of inversion is the all-region transistor whose thermal voltage is w times smaller:
+ * with q = w y, U^2 (q^2 + w q) = (w U)^2 (y^2 + y) and 2 q + w ln(q/w) = v/U becomes 2 y + ln y =
+ * v/(w U).
+ */
+static void way_to_square_law_is_a_colder_transistor(void **state)
+{
+    (void)state;
+    static const double shares[] = {1, 0.5, 0.125, 1.0 / 1024};
+    struct subject it = transistor("nmos", BARE, 4e-6, 8e-6);
+    struct subject colder = transistor("nmos", BARE, 4e-6, 8e-6);
+    it.conditions.effects = colder.conditions.effects = EFFECT_INVERSION;
+    for (size_t k = 0; k < sizeof shares / sizeof shares[0]; k++) {
+        it.conditions.inversion_cut = 1 - shares[k];
+        set_value(&colder, "slope_factor", shares[k]);
+        prepare(&it);
+        prepare(&colder);
+        for (double gate = 0.3; gate < 1.5; gate += 0.1) {
+            const double x[MOS_TERMINALS] = {0.2, gate, 0.03, 0};
+            double f[MOS_TERMINALS], g[MOS_TERMINALS], jac[MOS_TERMINALS * MOS_TERMINALS];
+            it.type->evaluate(it.prepared, x, f, jac);
+            colder.type->evaluate(colder.prepared, x, g, jac);
+            assert_true(fabs(f[MOS_D] - g[MOS_D]) <= 1e-12 * fabs(g[MOS_D]));
+            check_bias(&it, x, STRICT);
+        }
+    }
+}
+
 static void far_voltages_stay_finite(void **state)
 {
     (void)state;
@@ -530,6 +557,7 @@ int main(void)
         cmocka_unit_test(meets_check_values),
         cmocka_unit_test(derivatives_are_exact),
         cmocka_unit_test(every_effect_has_exact_derivatives),
+        cmocka_unit_test(way_to_square_law_is_a_colder_transistor),
         cmocka_unit_test(far_voltages_stay_finite),
         cmocka_unit_test(drain_and_source_exchange),
         cmocka_unit_test(small_drain_voltages_keep_their_digits),
