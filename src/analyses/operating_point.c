@@ -377,10 +377,13 @@ enum status operating_point_polish(struct operating_point *p)
     p->solver.worst_residual = worst;
     p->solver.worst_name = equation < 0 ? "" : trouble_name(p, equation);
     p->solver.limited_by = NULL;
+    if (p->solver.worst_name == NULL) {
+        return STATUS_MEMORY;
+    }
     if (!p->solver.converged) {
         note_failure(p, status);
         trouble_tell(p);
-        return STATUS_UNSOLVED;
+        return arena_failed(s->arena) ? STATUS_MEMORY : STATUS_UNSOLVED;
     }
     if (!(worst < 1e-12) && !trouble_tell_limit(p)) {
         return STATUS_MEMORY;

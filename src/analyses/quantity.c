@@ -78,7 +78,8 @@ enum status quantity_values(struct operating_point *point, const struct probe *p
     if (scratch.arena == NULL) {
         return STATUS_MEMORY;
     }
-    const enum status status = read_outputs(point, probes, count, &scratch);
+    enum status status = read_outputs(point, probes, count, &scratch);
+    status = arena_failed(scratch.arena) ? STATUS_MEMORY : status;
     for (int k = 0; status == STATUS_OK && k < count; k++) {
         if (is_of_output(&probes[k])) {
             values[k] = result_value(&scratch, &probes[k]);
