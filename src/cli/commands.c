@@ -9,6 +9,7 @@
 #include <unistd.h>
 
 #include "cli/output.h"
+#include "cli/picture.h"
 #include "library/ampstead.h"
 
 /* What the callbacks of a run share. */
@@ -95,7 +96,31 @@ static bool deliver(const char *path, const char *text)
         output_text(text);
         return true;
     }
-    return output_file(path, text);
+    return output_file(path, text, strlen(text));
+}
+
+/* The picture in the form that the ending of the path asks for. */
+static bool deliver_plot(const char *path, struct ampstead_result *result)
+{
+    const char *svg = ampstead_result_plot(result);
+    if (svg == NULL && ampstead_result_status(result) != AMPSTEAD_MACHINE) {
+        fprintf(stderr, "ampstead: %s: nothing to draw: no output and no sweep has a curve\n",
+                path);
+        return true;
+    }
+    if (svg == NULL || picture_form(path) == PICTURE_SVG) {
+        return deliver(path, svg);
+    }
+    struct picture picture = {NULL, 0, 0};
+    const char *trouble = picture_make(svg, picture_form(path), &picture);
+    bool is_written = false;
+    if (trouble != NULL) {
+        fprintf(stderr, "ampstead: %s: %s\n", path, trouble);
+    } else {
+        is_written = output_file(path, picture.data, picture.length);
+    }
+    picture_free(&picture);
+    return is_written;
 }
 
 /* Writes what was asked for; false when something could not be written. */
@@ -112,6 +137,9 @@ static bool deliver_all(const struct options *options, struct ampstead_result *r
         wants_text = wants_text && !is_stdout(path);
         is_written = deliver(path, ampstead_result_csv(result)) && is_written;
     }
+    if (options->given[OPTION_PLOT] && ampstead_result_status(result) != AMPSTEAD_UNSOLVED) {
+        is_written = deliver_plot(options->values[OPTION_PLOT], result) && is_written;
+    }
     if (wants_text) {
         const char *text = ampstead_result_text(result, text_flags(options), text_columns());
         is_written = deliver(NULL, text) && is_written;
@@ -126,6 +154,13 @@ static bool check_outputs(const struct options *options)
         is_stdout(options->values[OPTION_JSON]) && is_stdout(options->values[OPTION_CSV])) {
         fputs("ampstead: '--json' and '--csv' cannot both go to standard output\n", stderr);
         return false;
+    }
+    if (options->given[OPTION_PLOT]) {
+        const char *path = options->values[OPTION_PLOT], *trouble = picture_refused(path);
+        if (trouble != NULL) {
+            fprintf(stderr, "ampstead: '%s' %s\n", path, trouble);
+            return false;
+        }
     }
     return true;
 }

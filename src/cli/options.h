@@ -26,6 +26,7 @@ enum option {
     OPTION_SWEEP,
     OPTION_JSON,
     OPTION_CSV,
+    OPTION_PLOT,
     OPTION_COLOR,
     OPTION_HELP,
     OPTION_VERSION,

@@ -29,7 +29,7 @@ struct ampstead_result {
     struct circuit *circuit;
     struct result *found; /* NULL for `models` and after errors */
     struct sweep sweep;   /* the one of the request */
-    struct buffer messages, text, json, csv;
+    struct buffer messages, text, json, csv, plot;
 };
 
 const char *ampstead_version(void)
@@ -240,6 +240,7 @@ void ampstead_result_free(struct ampstead_result *result)
     buffer_free(&result->text);
     buffer_free(&result->json);
     buffer_free(&result->csv);
+    buffer_free(&result->plot);
     result_free(result->found);
     circuit_free(result->circuit);
     cell_free(result->cell);
@@ -349,6 +350,17 @@ const char *ampstead_result_csv(struct ampstead_result *result)
     restart(&result->csv);
     report_csv(result->found, &result->csv);
     return finished(result, &result->csv);
+}
+
+const char *ampstead_result_plot(struct ampstead_result *result)
+{
+    if (!has_report(result) || result->found == NULL) {
+        return NULL;
+    }
+    restart(&result->plot);
+    report_plot(result->found, &result->plot);
+    return result->plot.length == 0 && !result->plot.failed ? NULL
+                                                            : finished(result, &result->plot);
 }
 
 int ampstead_result_value(const struct ampstead_result *result, const char *name, double *value)

@@ -103,8 +103,9 @@ enum {
 };
 
 /*
- * Each of the next four makes a text, kept until the same function is called again for this result
- * or the result is freed. A NULL result gives "out of memory" as messages and NULL elsewhere.
+ * Each of the next functions makes a text, kept until the same function is called again for this
+ * result or the result is freed. A NULL result gives "out of memory" as messages and NULL
+ * elsewhere.
  */
 
 /* What is wrong with the input, one or many messages with line ends; "" when nothing is. Never
@@ -123,6 +124,10 @@ AMPSTEAD_API const char *ampstead_result_json(struct ampstead_result *result);
 
 /* Curves (review) or sweeps (sweep) as CSV. NULL as above, and for the other commands. */
 AMPSTEAD_API const char *ampstead_result_csv(struct ampstead_result *result);
+
+/* The curves of review or sweep as one SVG document, text as text. NULL as above, and when there is
+ * no curve. */
+AMPSTEAD_API const char *ampstead_result_plot(struct ampstead_result *result);
 
 /*
  * ampstead_result_value: one quantity by its name in the cell language: "tail.current", "M1.vgs",
