@@ -140,6 +140,10 @@ static bool deliver_all(const struct options *options, struct ampstead_result *r
     if (options->given[OPTION_PLOT] && ampstead_result_status(result) != AMPSTEAD_UNSOLVED) {
         is_written = deliver_plot(options->values[OPTION_PLOT], result) && is_written;
     }
+    if (options->given[OPTION_PAGE]) {
+        is_written =
+            deliver(options->values[OPTION_PAGE], ampstead_result_page(result)) && is_written;
+    }
     if (wants_text) {
         const char *text = ampstead_result_text(result, text_flags(options), text_columns());
         is_written = deliver(NULL, text) && is_written;

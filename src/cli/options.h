@@ -27,6 +27,7 @@ enum option {
     OPTION_JSON,
     OPTION_CSV,
     OPTION_PLOT,
+    OPTION_PAGE,
     OPTION_COLOR,
     OPTION_HELP,
     OPTION_VERSION,

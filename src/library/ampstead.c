@@ -29,7 +29,7 @@ struct ampstead_result {
     struct circuit *circuit;
     struct result *found; /* NULL for `models` and after errors */
     struct sweep sweep;   /* the one of the request */
-    struct buffer messages, text, json, csv, plot;
+    struct buffer messages, text, json, csv, plot, page;
 };
 
 const char *ampstead_version(void)
@@ -241,6 +241,7 @@ void ampstead_result_free(struct ampstead_result *result)
     buffer_free(&result->json);
     buffer_free(&result->csv);
     buffer_free(&result->plot);
+    buffer_free(&result->page);
     result_free(result->found);
     circuit_free(result->circuit);
     cell_free(result->cell);
@@ -361,6 +362,17 @@ const char *ampstead_result_plot(struct ampstead_result *result)
     report_plot(result->found, &result->plot);
     return result->plot.length == 0 && !result->plot.failed ? NULL
                                                             : finished(result, &result->plot);
+}
+
+const char *ampstead_result_page(struct ampstead_result *result)
+{
+    if (!has_report(result) || result->command != COMMAND_REVIEW) {
+        return NULL;
+    }
+    const struct report_style style = {.stopped = result->status == AMPSTEAD_STOPPED};
+    restart(&result->page);
+    report_web(result->found, &style, AMPSTEAD_VERSION, &result->page);
+    return finished(result, &result->page);
 }
 
 int ampstead_result_value(const struct ampstead_result *result, const char *name, double *value)

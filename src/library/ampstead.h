@@ -129,6 +129,9 @@ AMPSTEAD_API const char *ampstead_result_csv(struct ampstead_result *result);
  * no curve. */
 AMPSTEAD_API const char *ampstead_result_plot(struct ampstead_result *result);
 
+/* The review as one self-contained HTML file. NULL as above, and for the other commands. */
+AMPSTEAD_API const char *ampstead_result_page(struct ampstead_result *result);
+
 /*
  * ampstead_result_value: one quantity by its name in the cell language: "tail.current", "M1.vgs",
  * "ref.v", "vbat.power", "all.headroom", "cell.power". For tail.line the value of greatest size

@@ -70,6 +70,16 @@ static const char *margin_text(struct layout *layout, const struct requirement_r
                               : layout_format(layout, "too far by %s%s", size, share);
 }
 
+const char *requirement_margin(struct layout *layout, const struct requirement_result *row)
+{
+    const char *margin = margin_text(layout, row);
+    if (row->remark != NULL) {
+        margin = layout_format(layout, "%s%s%s", margin, *margin != '\0' ? "; " : "",
+                               layout_clean(layout, row->remark));
+    }
+    return margin;
+}
+
 void page_requirements(struct layout *layout, const struct result *result)
 {
     struct table table;
@@ -81,11 +91,6 @@ void page_requirements(struct layout *layout, const struct result *result)
     table_column(&table, (struct table_column){.head = "margin", .wraps = true});
     for (int k = 0; k < result->requirement_count; k++) {
         const struct requirement_result *row = &result->requirements[k];
-        const char *margin = margin_text(layout, row);
-        if (row->remark != NULL) {
-            margin = layout_format(layout, "%s%s%s", margin, *margin != '\0' ? "; " : "",
-                                   layout_clean(layout, row->remark));
-        }
         table_row(&table, judgement_tone(row->judgement));
         table_cell(&table, 0, judgement_text(row->judgement));
         table_cell(&table, 1, requirement_text(layout, row->requirement));
@@ -93,7 +98,7 @@ void page_requirements(struct layout *layout, const struct result *result)
                    row->judgement == JUDGED_UNKNOWN
                        ? "no value"
                        : show_probe(layout, &row->requirement->probe, row->computed));
-        table_cell(&table, 3, margin);
+        table_cell(&table, 3, requirement_margin(layout, row));
     }
     table_write(&table);
 }

@@ -92,6 +92,22 @@ run 0 "$cell" --csv - && out_has "output,v,current"
 "$program" "$cell" --json >"$work/two" 2>&1
 cmp -s "$work/one" "$work/two" || fail "two runs differ"
 
+# Pictures: the ending says how; the same cell gives the same bytes; the page
+run 0 "$cell" --plot "$work/p.svg" && head -c 4 "$work/p.svg" | grep -q '<svg' || fail "--plot .svg"
+if "$program" "$cell" --plot "$work/p.png" >"$work/out" 2>"$work/err"; then
+    head -c 4 "$work/p.png" | grep -q 'PNG' || fail "--plot .png"
+    run 0 "$cell" --plot "$work/p.PDF" && head -c 5 "$work/p.PDF" | grep -q '%PDF-' || fail "--plot .pdf"
+    run 0 "$cell" --plot "$work/q.pdf" && cmp -s "$work/p.PDF" "$work/q.pdf" || fail "two PDFs differ"
+else
+    err_has "cannot be drawn: this build has no librsvg"
+fi
+run 2 "$cell" --plot "$work/p.gif" && err_has "must end with .svg, .pdf or .png" && out_empty
+[ ! -e "$work/p.gif" ] || fail "--plot .gif wrote"
+run 0 sweep "$cell" --sweep "temperature from 0 C to 60 C show M1.vgs" --plot "$work/s.svg" &&
+    grep -q 'M1.vgs against temperature' "$work/s.svg" || fail "--plot of a sweep"
+run 0 "$cell" --page "$work/p.html" && grep -q '</html>' "$work/p.html" || fail "--page"
+run 2 point "$cell" --page "$work/p.html" && err_has "does not go with"
+
 # Colour: only on demand here, where standard output is no terminal; NO_COLOR holds for auto
 escape=$(printf '\033')
 run 0 "$cell" && ! grep -q "$escape" "$work/out" || fail "colour without a terminal"
