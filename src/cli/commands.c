@@ -169,6 +169,37 @@ static bool check_outputs(const struct options *options)
     return true;
 }
 
+/* Errors of `check` on standard output; nothing when all is well. */
+static int deliver_check(struct ampstead_result *result, int status)
+{
+    const char *text = ampstead_result_text(result, 0, 0);
+    if (text == NULL) {
+        fputs(ampstead_result_messages(result, 0), stderr);
+    } else {
+        output_text(text);
+    }
+    return status;
+}
+
+/* The formatted text to where it came from, if it differs. */
+static int deliver_format(const struct options *options, struct ampstead_result *result, int status)
+{
+    const char *text = ampstead_result_text(result, 0, 0);
+    fputs(
+        ampstead_result_messages(result, wants_color(options, STDERR_FILENO) ? AMPSTEAD_COLOR : 0),
+        stderr);
+    if (status != AMPSTEAD_WELL || text == NULL) {
+        return status == AMPSTEAD_WELL ? AMPSTEAD_MACHINE : status;
+    }
+    if (is_stdout(options->file)) {
+        output_text(text);
+    } else if (!output_same(options->file, text) &&
+               !output_file(options->file, text, strlen(text))) {
+        return AMPSTEAD_MACHINE;
+    }
+    return status;
+}
+
 static int run_cell(const struct options *options, const volatile sig_atomic_t *stop)
 {
     struct watch watch = {.stop = stop, .shows_progress = isatty(STDERR_FILENO)};
@@ -194,6 +225,12 @@ static int run_cell(const struct options *options, const volatile sig_atomic_t *
     request.progress_self = &watch;
     int status = (int)ampstead_run(&request, &result);
     end_progress(&watch);
+    if (options->verb == VERB_CHECK || options->verb == VERB_FORMAT) {
+        status = options->verb == VERB_CHECK ? deliver_check(result, status)
+                                             : deliver_format(options, result, status);
+        ampstead_result_free(result);
+        return status;
+    }
     fputs(
         ampstead_result_messages(result, wants_color(options, STDERR_FILENO) ? AMPSTEAD_COLOR : 0),
         stderr);

@@ -8,7 +8,16 @@
 #include <stdbool.h>
 #include <stdio.h>
 
-enum verb { VERB_REVIEW, VERB_POINT, VERB_SWEEP, VERB_MODELS, VERB_HELP, VERB_COUNT };
+enum verb {
+    VERB_REVIEW,
+    VERB_POINT,
+    VERB_SWEEP,
+    VERB_MODELS,
+    VERB_CHECK,
+    VERB_FORMAT,
+    VERB_HELP,
+    VERB_COUNT
+};
 
 struct verb_row {
     const char *word;

@@ -114,6 +114,20 @@ bool output_file(const char *path, const char *bytes, size_t length)
     return error == 0 || complain(path, error);
 }
 
+bool output_same(const char *path, const char *text)
+{
+    FILE *file = fopen(path, "rb");
+    bool is_same = file != NULL;
+    for (; is_same && *text != '\0'; text++) {
+        is_same = fgetc(file) == (unsigned char)*text;
+    }
+    is_same = is_same && fgetc(file) == EOF && !ferror(file);
+    if (file != NULL) {
+        (void)fclose(file);
+    }
+    return is_same;
+}
+
 void output_text(const char *text)
 {
     (void)fputs(text, stdout);

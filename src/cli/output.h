@@ -14,6 +14,9 @@
  */
 bool output_file(const char *path, const char *bytes, size_t length);
 
+/* Whether the file holds exactly this text. */
+bool output_same(const char *path, const char *text);
+
 /* Writes to standard output; failures show in output_close. */
 void output_text(const char *text);
 

@@ -6,7 +6,7 @@
 enum {
     RESULT_VERBS = 1 << VERB_REVIEW | 1 << VERB_POINT | 1 << VERB_SWEEP,
     CELL_VERBS = RESULT_VERBS | 1 << VERB_MODELS,
-    ALL_VERBS = CELL_VERBS | 1 << VERB_HELP
+    ALL_VERBS = CELL_VERBS | 1 << VERB_CHECK | 1 << VERB_FORMAT | 1 << VERB_HELP
 };
 
 const struct verb_row verb_rows[VERB_COUNT] = {
@@ -26,6 +26,14 @@ const struct verb_row verb_rows[VERB_COUNT] = {
          "family, and each quantity, with SI units in the header."},
     [VERB_MODELS] = {"models", "FILE", "every model value in force, given or default",
                      "FILE is a cell, or a process file by itself."},
+    [VERB_CHECK] =
+        {"check", "FILE", "errors only, one a line, as editors read them",
+         "Reads and checks a cell or a process file and solves nothing. Each error is a\n"
+         "line FILE:LINE:COLUMN: error: TEXT on standard output; the status is 2 then."},
+    [VERB_FORMAT] = {"format", "FILE", "aligns a cell or process file; only blanks change",
+                     "Rewrites FILE in the house layout, or with - standard input to standard\n"
+                     "output. Comments and every number stay as written; a file with errors is\n"
+                     "left alone. Formatting twice is the same as once."},
     [VERB_HELP] = {"help", "[VERB]", "this overview, or what one verb does and takes",
                    "ampstead VERB --help shows the same."},
 };
@@ -35,11 +43,11 @@ static const char *const color_words[] = {"auto", "always", "never", NULL};
 
 const struct option_row option_rows[OPTION_COUNT] = {
     [OPTION_SET] = {"set", 's', ARGUMENT_NEEDED, "NAME=EXPR", NULL, "the value in the cell",
-                    "overrides a `let`; may be given often", CELL_VERBS},
+                    "overrides a `let`; may be given often", CELL_VERBS | 1 << VERB_CHECK},
     [OPTION_TEMPERATURE] = {"temperature", 't', ARGUMENT_NEEDED, "T", NULL, "the cell's, else 27 C",
                             "such as \"60 C\" or \"333 K\"", CELL_VERBS},
     [OPTION_CORNER] = {"corner", 0, ARGUMENT_NEEDED, "NAME", NULL, "typical",
-                       "a corner of the process", CELL_VERBS},
+                       "a corner of the process", CELL_VERBS | 1 << VERB_CHECK},
     [OPTION_VIEW] = {"view", 0, ARGUMENT_NEEDED, "full|hand", view_words, "full",
                      "hand: the assumptions of a paper design (square law, no Early effect)",
                      RESULT_VERBS},

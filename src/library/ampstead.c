@@ -6,19 +6,26 @@
 #include <string.h>
 
 #include "analyses/analysis.h"
+#include "library/edit.h"
 #include "library/request.h"
 #include "library/value.h"
 #include "report/report.h"
 
 enum { REQUEST_SET_LIMIT = 1000 };
 
-enum command { COMMAND_REVIEW, COMMAND_POINT, COMMAND_SWEEP, COMMAND_MODELS, COMMAND_COUNT };
+enum command {
+    COMMAND_REVIEW,
+    COMMAND_POINT,
+    COMMAND_SWEEP,
+    COMMAND_MODELS,
+    COMMAND_CHECK,
+    COMMAND_FORMAT,
+    COMMAND_COUNT
+};
 
 static const char *const command_words[COMMAND_COUNT] = {
-    [COMMAND_REVIEW] = "review",
-    [COMMAND_POINT] = "point",
-    [COMMAND_SWEEP] = "sweep",
-    [COMMAND_MODELS] = "models",
+    [COMMAND_REVIEW] = "review", [COMMAND_POINT] = "point", [COMMAND_SWEEP] = "sweep",
+    [COMMAND_MODELS] = "models", [COMMAND_CHECK] = "check", [COMMAND_FORMAT] = "format",
 };
 
 struct ampstead_result {
@@ -85,8 +92,8 @@ static enum status read_cell(const struct ampstead_request *request, struct amps
     }
     folders[count++] = AMPSTEAD_MODEL_FOLDER;
     folders[count++] = AMPSTEAD_SOURCE_MODELS;
-    if (result->command == COMMAND_MODELS && request->text == NULL &&
-        ends_with(request->path, ".process")) {
+    bool takes_process = result->command == COMMAND_MODELS || result->command == COMMAND_CHECK;
+    if (takes_process && request->text == NULL && ends_with(request->path, ".process")) {
         char *text = process_cell(request->path);
         if (text == NULL) {
             return STATUS_MEMORY;
@@ -163,6 +170,8 @@ static enum status analyse(const struct ampstead_request *request, struct ampste
         }
         return analysis_sweep(result->circuit, &options, &result->found);
     case COMMAND_MODELS:
+    case COMMAND_CHECK:
+    case COMMAND_FORMAT:
     case COMMAND_COUNT:
         break;
     }
@@ -200,6 +209,10 @@ static enum status run(const struct ampstead_request *request, struct ampstead_r
     result->trouble = check_request(request, &result->command);
     if (result->trouble != NULL) {
         return STATUS_INPUT;
+    }
+    if (result->command == COMMAND_FORMAT) {
+        return edit_format(request->path, request->text, request->text_length, &result->cell,
+                           &result->text);
     }
     enum status status = read_cell(request, result);
     /* A cell with errors is built as far as it goes: all that is wrong is told in one run. */
@@ -300,6 +313,14 @@ static bool has_report(const struct ampstead_result *result)
 
 const char *ampstead_result_text(struct ampstead_result *result, unsigned flags, int columns)
 {
+    if (result != NULL && result->command == COMMAND_FORMAT) {
+        return result->status == AMPSTEAD_WELL ? finished(result, &result->text) : NULL;
+    }
+    if (result != NULL && result->command == COMMAND_CHECK && result->cell != NULL) {
+        restart(&result->text);
+        edit_list_errors(result->cell, &result->text);
+        return finished(result, &result->text);
+    }
     if (!has_report(result)) {
         return NULL;
     }
@@ -321,6 +342,8 @@ const char *ampstead_result_text(struct ampstead_result *result, unsigned flags,
         report_models(result->circuit, &style, &result->text);
         break;
     case COMMAND_REVIEW:
+    case COMMAND_CHECK:
+    case COMMAND_FORMAT:
     case COMMAND_COUNT:
         report_page(result->found, &style, &result->text);
         break;
@@ -330,7 +353,7 @@ const char *ampstead_result_text(struct ampstead_result *result, unsigned flags,
 
 const char *ampstead_result_json(struct ampstead_result *result)
 {
-    if (!has_report(result)) {
+    if (!has_report(result) || result->command == COMMAND_CHECK) {
         return NULL;
     }
     restart(&result->json);

@@ -50,7 +50,8 @@ enum ampstead_view { AMPSTEAD_VIEW_FULL = 0, AMPSTEAD_VIEW_HAND = 1 };
  * and stays the caller's. */
 struct ampstead_request {
     size_t size;             /* sizeof(struct ampstead_request): set by AMPSTEAD_REQUEST */
-    const char *command;     /* "review", "point", "sweep" or "models"; NULL: review */
+    const char *command;     /* "review", "point", "sweep", "models", "check" or "format"; NULL:
+                                review */
     const char *path;        /* the cell file; "-": standard input. With text: its name. Required */
     const char *text;        /* the cell itself, instead of the file; NULL: read the file */
     size_t text_length;      /* bytes of text */
@@ -113,7 +114,8 @@ enum {
 AMPSTEAD_API const char *ampstead_result_messages(struct ampstead_result *result, unsigned flags);
 
 /*
- * The report of the command for people; `columns` is the widest line, 72 to 100 (0: 100). NULL
+ * The report of the command for people (for "check" one line an error, "" when there is none; for
+ * "format" the text in the house layout); `columns` is the widest line, 72 to 100 (0: 100). NULL
  * when there is no result (AMPSTEAD_INPUT) or memory is short.
  */
 AMPSTEAD_API const char *ampstead_result_text(struct ampstead_result *result, unsigned flags,

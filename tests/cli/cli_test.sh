@@ -108,6 +108,34 @@ run 0 sweep "$cell" --sweep "temperature from 0 C to 60 C show M1.vgs" --plot "$
 run 0 "$cell" --page "$work/p.html" && grep -q '</html>' "$work/p.html" || fail "--page"
 run 2 point "$cell" --page "$work/p.html" && err_has "does not go with"
 
+# check: errors only, one a line in the form editors read, all of them, with true paths
+run 0 check "$cell" && out_empty && err_empty
+run 0 check "$source/models/n180.process" && out_empty && err_empty
+run 2 check "$work/wrong.cell" && err_empty
+grep -qx "$work/wrong.cell:2:23: error: .*" "$work/out" || fail "check: form of an error"
+cp "$source/models/n180.process" "$work/bad.process"
+echo 'model broken what' >>"$work/bad.process"
+echo 'end' >>"$work/bad.process"
+printf 'process "bad.process"\n' >"$work/uses.cell"
+run 2 check "$work/uses.cell" && err_empty
+grep -q "^$work/bad.process:[0-9]*:[0-9]*: error: " "$work/out" || fail "check: path of a process file"
+run 2 check "$work/none.cell" && grep -q ":1:1: error: " "$work/out" || fail "check: a missing file"
+
+# format: in place or through; the answers stay; twice is once; a wrong file is left alone
+cp "$source/netlists/bias_tree.cell" "$work/tree.cell"
+"$program" review "$work/tree.cell" --json 2>&1 | grep -v '"line":' >"$work/one"
+sed 's/^rail  */rail\t/; s/  */ /g' "$work/tree.cell" >"$work/ragged" && cp "$work/ragged" "$work/tree.cell"
+run 0 format "$work/tree.cell" && out_empty && err_empty
+cmp -s "$work/ragged" "$work/tree.cell" && fail "format changed nothing"
+"$program" review "$work/tree.cell" --json 2>&1 | grep -v '"line":' >"$work/two"
+cmp -s "$work/one" "$work/two" || fail "format changed the answers"
+cp "$work/tree.cell" "$work/first.cell"
+run 0 format "$work/tree.cell" && cmp -s "$work/first.cell" "$work/tree.cell" || fail "format twice"
+"$program" format - <"$work/ragged" >"$work/out" && cmp -s "$work/out" "$work/tree.cell" || fail "format -"
+printf 'rail vcc 3 V\nresistor R1 vcc -> \n' >"$work/torn.cell" && cp "$work/torn.cell" "$work/kept.cell"
+run 2 format "$work/torn.cell" && err_begins "$work/torn.cell:2:" && cmp -s "$work/torn.cell" "$work/kept.cell" ||
+    fail "format of a wrong file"
+
 # Colour: only on demand here, where standard output is no terminal; NO_COLOR holds for auto
 escape=$(printf '\033')
 run 0 "$cell" && ! grep -q "$escape" "$work/out" || fail "colour without a terminal"
