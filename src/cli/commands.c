@@ -265,7 +265,7 @@ int command_run(const struct options *options, const volatile sig_atomic_t *stop
 {
     int status = AMPSTEAD_WELL;
     if (options->given[OPTION_VERSION]) {
-        printf("ampstead %s\n", ampstead_version());
+        printf("ampstead %s\n%s\n", ampstead_version(), ampstead_build());
     } else if (options->given[OPTION_HELP] || options->verb == VERB_HELP) {
         show_help(options);
     } else {

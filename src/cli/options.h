@@ -57,6 +57,12 @@ struct option_row {
 };
 extern const struct option_row option_rows[OPTION_COUNT];
 
+struct status_row {
+    int status;
+    const char *text;
+};
+extern const struct status_row status_rows[]; /* ends with a NULL text */
+
 /* The command line as read. Texts are borrowed from argv. */
 struct options {
     enum verb verb;

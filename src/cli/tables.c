@@ -2,6 +2,7 @@
 #include <stddef.h>
 
 #include "cli/options.h"
+#include "library/ampstead.h"
 
 enum {
     RESULT_VERBS = 1 << VERB_REVIEW | 1 << VERB_POINT | 1 << VERB_SWEEP,
@@ -72,4 +73,14 @@ const struct option_row option_rows[OPTION_COUNT] = {
     [OPTION_HELP] = {"help", 'h', ARGUMENT_NONE, NULL, NULL, "off", "what a verb does and takes",
                      ALL_VERBS},
     [OPTION_VERSION] = {"version", 0, ARGUMENT_NONE, NULL, NULL, "off", "the version", ALL_VERBS},
+};
+
+const struct status_row status_rows[] = {
+    {AMPSTEAD_WELL, "all well"},
+    {AMPSTEAD_NOT_MET, "a requirement is not met"},
+    {AMPSTEAD_INPUT, "the input is wrong: language, options, files"},
+    {AMPSTEAD_UNSOLVED, "no operating point was found"},
+    {AMPSTEAD_MACHINE, "the machine failed: memory, disk"},
+    {AMPSTEAD_STOPPED, "stopped by the user"},
+    {0, NULL},
 };

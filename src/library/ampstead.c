@@ -7,6 +7,7 @@
 
 #include "analyses/analysis.h"
 #include "library/edit.h"
+#include "library/place.h"
 #include "library/request.h"
 #include "library/value.h"
 #include "report/report.h"
@@ -42,6 +43,20 @@ struct ampstead_result {
 const char *ampstead_version(void)
 {
     return AMPSTEAD_VERSION;
+}
+
+#if defined(__clang__)
+#define COMPILER "clang " __clang_version__
+#elif defined(__GNUC__)
+#define COMPILER "gcc " __VERSION__
+#else
+#define COMPILER "another compiler"
+#endif
+
+const char *ampstead_build(void)
+{
+    static const char text[] = AMPSTEAD_KLU_VERSION ", " COMPILER ", " AMPSTEAD_BUILD_TYPE;
+    return text;
 }
 
 static enum ampstead_status public_status(enum status status)
@@ -83,14 +98,15 @@ static char *process_cell(const char *path)
     return text;
 }
 
-static enum status read_cell(const struct ampstead_request *request, struct ampstead_result *result)
+static enum status read_with(const struct ampstead_request *request, const char *installed,
+                             struct ampstead_result *result)
 {
     const char *folders[3];
     int count = 0;
     if (request->model_folder_count > 0 && request->model_folders != NULL) {
         folders[count++] = request->model_folders[0];
     }
-    folders[count++] = AMPSTEAD_MODEL_FOLDER;
+    folders[count++] = installed;
     folders[count++] = AMPSTEAD_SOURCE_MODELS;
     bool takes_process = result->command == COMMAND_MODELS || result->command == COMMAND_CHECK;
     if (takes_process && request->text == NULL && ends_with(request->path, ".process")) {
@@ -105,6 +121,17 @@ static enum status read_cell(const struct ampstead_request *request, struct amps
     }
     return cell_read(request->path, request->text, request->text_length, folders, count,
                      &result->cell);
+}
+
+static enum status read_cell(const struct ampstead_request *request, struct ampstead_result *result)
+{
+    char *installed = place_models();
+    if (installed == NULL) {
+        return STATUS_MEMORY;
+    }
+    enum status status = read_with(request, installed, result);
+    free(installed);
+    return status;
 }
 
 /* Reads the texts of the request, then builds the circuit. Errors of all of them are found. */

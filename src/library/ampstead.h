@@ -148,6 +148,9 @@ AMPSTEAD_API int ampstead_result_value(const struct ampstead_result *result, con
 /* "1.0.0"; lives as long as the program. */
 AMPSTEAD_API const char *ampstead_version(void);
 
+/* What it was built with: "KLU 1.3.9, gcc 12.2.0, Release"; lives as long as the program. */
+AMPSTEAD_API const char *ampstead_build(void);
+
 #ifdef __cplusplus
 }
 #endif

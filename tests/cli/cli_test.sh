@@ -36,11 +36,11 @@ err_empty() { [ ! -s "$work/err" ] || fail "standard error must be empty"; }
 run 0 help && out_has "--temperature T, -t" && err_empty
 run 0 --help && out_has "Verbs:"
 run 0 -h && out_has "Verbs:"
-for verb in review point sweep models help; do
-    run 0 help $verb && out_has "ampstead $verb" && out_has "Exit status: 0 all well"
-    run 0 $verb --help && out_has "Exit status: 0 all well"
+for verb in review point sweep models check format help; do
+    run 0 help $verb && out_has "ampstead $verb" && out_has "all well"
+    run 0 $verb --help && out_has "all well"
 done
-run 0 --version && out_has "ampstead 1."
+run 0 --version && out_has "ampstead 1." && out_has "KLU "
 
 # Usage errors: the bad word first, the near one, nothing on standard output
 run 2 && err_begins "ampstead: a cell is wanted" && out_empty
