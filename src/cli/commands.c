@@ -8,8 +8,10 @@
 #include <time.h>
 #include <unistd.h>
 
+#include "cli/live.h"
 #include "cli/output.h"
 #include "cli/picture.h"
+#include "cli/watch.h"
 #include "library/ampstead.h"
 
 /* What the callbacks of a run share. */
@@ -123,10 +125,12 @@ static bool deliver_plot(const char *path, struct ampstead_result *result)
     return is_written;
 }
 
-/* Writes what was asked for; false when something could not be written. */
-static bool deliver_all(const struct options *options, struct ampstead_result *result)
+/* Writes what was asked for; false when something could not be written. With a live version (not 0)
+ * the page reloads itself, and the text is left to the watch. */
+static bool deliver_all(const struct options *options, struct ampstead_result *result,
+                        int live_version)
 {
-    bool wants_text = true, is_written = true;
+    bool wants_text = live_version == 0, is_written = true;
     if (options->given[OPTION_JSON]) {
         const char *path = options->values[OPTION_JSON];
         wants_text = wants_text && !is_stdout(path);
@@ -141,8 +145,10 @@ static bool deliver_all(const struct options *options, struct ampstead_result *r
         is_written = deliver_plot(options->values[OPTION_PLOT], result) && is_written;
     }
     if (options->given[OPTION_PAGE]) {
+        const char *path = options->values[OPTION_PAGE], *page = ampstead_result_page(result);
+        bool is_live = live_version != 0 && page != NULL;
         is_written =
-            deliver(options->values[OPTION_PAGE], ampstead_result_page(result)) && is_written;
+            (is_live ? live_write(path, page, live_version) : deliver(path, page)) && is_written;
     }
     if (wants_text) {
         const char *text = ampstead_result_text(result, text_flags(options), text_columns());
@@ -200,15 +206,13 @@ static int deliver_format(const struct options *options, struct ampstead_result 
     return status;
 }
 
-static int run_cell(const struct options *options, const volatile sig_atomic_t *stop)
+/* Runs the library with what the options say; the result is the caller's. */
+static int run_request(const struct options *options, const volatile sig_atomic_t *stop,
+                       struct ampstead_result **result)
 {
     struct watch watch = {.stop = stop, .shows_progress = isatty(STDERR_FILENO)};
     struct ampstead_request request = AMPSTEAD_REQUEST;
-    struct ampstead_result *result = NULL;
     const char *view = options->values[OPTION_VIEW];
-    if (!check_outputs(options)) {
-        return AMPSTEAD_INPUT;
-    }
     (void)clock_gettime(CLOCK_MONOTONIC, &watch.start);
     request.command = verb_rows[options->verb].word;
     request.path = options->file;
@@ -223,8 +227,23 @@ static int run_cell(const struct options *options, const volatile sig_atomic_t *
     request.stopped_self = &watch;
     request.progress = show_progress;
     request.progress_self = &watch;
-    int status = (int)ampstead_run(&request, &result);
+    int status = (int)ampstead_run(&request, result);
     end_progress(&watch);
+    return status;
+}
+
+static bool has_results(int status)
+{
+    return status != AMPSTEAD_INPUT && status != AMPSTEAD_MACHINE;
+}
+
+static int run_cell(const struct options *options, const volatile sig_atomic_t *stop)
+{
+    struct ampstead_result *result = NULL;
+    if (!check_outputs(options)) {
+        return AMPSTEAD_INPUT;
+    }
+    int status = run_request(options, stop, &result);
     if (options->verb == VERB_CHECK || options->verb == VERB_FORMAT) {
         status = options->verb == VERB_CHECK ? deliver_check(result, status)
                                              : deliver_format(options, result, status);
@@ -239,11 +258,89 @@ static int run_cell(const struct options *options, const volatile sig_atomic_t *
     } else if (status == AMPSTEAD_STOPPED) {
         fputs("ampstead: stopped\n", stderr);
     }
-    if (status != AMPSTEAD_INPUT && status != AMPSTEAD_MACHINE && !deliver_all(options, result)) {
+    if (has_results(status) && !deliver_all(options, result, 0)) {
         status = AMPSTEAD_MACHINE;
     }
     ampstead_result_free(result);
     return status;
+}
+
+/* What a watch keeps from run to run. */
+struct vigil {
+    struct ampstead_result *good; /* the last one with results; NULL: none yet */
+    int status, version;
+};
+
+/* Errors, if any, above the last good page, on a cleared terminal. */
+static void show_vigil(const struct options *options, const struct vigil *vigil,
+                       struct ampstead_result *wrong)
+{
+    if (isatty(STDOUT_FILENO)) {
+        output_text("\033[H\033[2J");
+    }
+    if (wrong != NULL) {
+        output_text(ampstead_result_messages(
+            wrong, wants_color(options, STDOUT_FILENO) ? AMPSTEAD_COLOR : 0));
+        output_text(vigil->good != NULL ? "\nas it was before:\n\n" : "");
+    }
+    if (vigil->good != NULL) {
+        const char *text = ampstead_result_text(vigil->good, text_flags(options), text_columns());
+        output_text(text != NULL ? text : "");
+    }
+    (void)fflush(stdout);
+}
+
+/* One run of a watch: results replace the last good ones, errors leave them. */
+static void run_vigil(const struct options *options, const volatile sig_atomic_t *stop,
+                      struct vigil *vigil, struct watcher *watcher)
+{
+    struct ampstead_result *result = NULL;
+    int status = run_request(options, stop, &result);
+    if (status == AMPSTEAD_STOPPED) {
+        ampstead_result_free(result);
+        return;
+    }
+    vigil->status = status;
+    for (int k = 0; ampstead_result_file(result, k) != NULL; k++) {
+        watcher_add(watcher, ampstead_result_file(result, k));
+    }
+    if (has_results(status)) {
+        ampstead_result_free(vigil->good);
+        vigil->good = result;
+        vigil->version++;
+        (void)deliver_all(options, result, vigil->version);
+        show_vigil(options, vigil, NULL);
+    } else {
+        show_vigil(options, vigil, result);
+        ampstead_result_free(result);
+    }
+}
+
+static int run_watch(const struct options *options, const volatile sig_atomic_t *stop)
+{
+    struct vigil vigil = {NULL, AMPSTEAD_WELL, 0};
+    struct watcher watcher;
+    if (is_stdout(options->file)) {
+        fputs("ampstead: '--watch' wants a file that can be saved again\n", stderr);
+        return AMPSTEAD_INPUT;
+    }
+    if (!check_outputs(options)) {
+        return AMPSTEAD_INPUT;
+    }
+    watcher_open(&watcher);
+    watcher_add(&watcher, options->file);
+    do {
+        run_vigil(options, stop, &vigil, &watcher);
+    } while (watcher_wait(&watcher, stop));
+    if (options->given[OPTION_PAGE] && vigil.good != NULL) {
+        const char *page = ampstead_result_page(vigil.good);
+        if (page == NULL || !live_end(options->values[OPTION_PAGE], page)) {
+            vigil.status = AMPSTEAD_MACHINE;
+        }
+    }
+    ampstead_result_free(vigil.good);
+    watcher_close(&watcher);
+    return vigil.status;
 }
 
 static void show_help(const struct options *options)
@@ -269,7 +366,7 @@ int command_run(const struct options *options, const volatile sig_atomic_t *stop
     } else if (options->given[OPTION_HELP] || options->verb == VERB_HELP) {
         show_help(options);
     } else {
-        status = run_cell(options, stop);
+        status = options->given[OPTION_WATCH] ? run_watch(options, stop) : run_cell(options, stop);
     }
     return output_close() ? status : AMPSTEAD_MACHINE;
 }

@@ -37,6 +37,7 @@ enum option {
     OPTION_CSV,
     OPTION_PLOT,
     OPTION_PAGE,
+    OPTION_WATCH,
     OPTION_COLOR,
     OPTION_HELP,
     OPTION_VERSION,

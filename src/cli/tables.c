@@ -68,6 +68,11 @@ const struct option_row option_rows[OPTION_COUNT] = {
     [OPTION_PAGE] = {"page", 0, ARGUMENT_NEEDED, "FILE", NULL, "off",
                      "writes the whole review as one HTML file that needs nothing else",
                      1 << VERB_REVIEW},
+    [OPTION_WATCH] =
+        {"watch", 0, ARGUMENT_NONE, NULL, NULL, "off",
+         "runs again at every save, until Ctrl-C; errors are shown above the last good "
+         "page, and an open --page reloads itself",
+         RESULT_VERBS},
     [OPTION_COLOR] = {"color", 0, ARGUMENT_NEEDED, "auto|always|never", color_words, "auto",
                       "auto: on a terminal, unless NO_COLOR is set", ALL_VERBS},
     [OPTION_HELP] = {"help", 'h', ARGUMENT_NONE, NULL, NULL, "off", "what a verb does and takes",

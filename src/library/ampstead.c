@@ -425,6 +425,16 @@ const char *ampstead_result_page(struct ampstead_result *result)
     return finished(result, &result->page);
 }
 
+const char *ampstead_result_file(const struct ampstead_result *result, int index)
+{
+    if (result == NULL || result->cell == NULL || index < 0) {
+        return NULL;
+    }
+    return index == 0                                ? result->cell->path
+           : index - 1 < result->cell->process_count ? result->cell->processes[index - 1].path
+                                                     : NULL;
+}
+
 int ampstead_result_value(const struct ampstead_result *result, const char *name, double *value)
 {
     if (result == NULL || result->found == NULL || name == NULL) {

@@ -134,6 +134,9 @@ AMPSTEAD_API const char *ampstead_result_plot(struct ampstead_result *result);
 /* The review as one self-contained HTML file. NULL as above, and for the other commands. */
 AMPSTEAD_API const char *ampstead_result_page(struct ampstead_result *result);
 
+/* The files that were read, from 0 on: the cell, then those it names; NULL after the last. */
+AMPSTEAD_API const char *ampstead_result_file(const struct ampstead_result *result, int index);
+
 /*
  * ampstead_result_value: one quantity by its name in the cell language: "tail.current", "M1.vgs",
  * "ref.v", "vbat.power", "all.headroom", "cell.power". For tail.line the value of greatest size

@@ -8,6 +8,7 @@ import base64
 import json
 import os
 import shutil
+import signal
 import subprocess
 import sys
 import tempfile
@@ -270,8 +271,41 @@ def check_page(browser, name):
     check(browser.messages() == [], name + ": console messages at the end")
 
 
+def check_live(browser):
+    """While the program watches, a save reaches the open page; the reader's place is kept."""
+    cell, page = os.path.join(work, "live.cell"), os.path.join(work, "live.html")
+    with open(os.path.join(source, "netlists", "widlar_mos.cell"), encoding="utf-8") as file:
+        text = file.read()
+    with open(cell, "w", encoding="utf-8") as file:
+        file.write(text)
+    watch = subprocess.Popen([program, cell, "--watch", "--page", page], stdout=subprocess.DEVNULL)
+    try:
+        for _ in range(600):
+            if os.path.exists(page + ".live.js"):
+                break
+            time.sleep(0.1)
+        browser.open(page)
+        with open(cell, "w", encoding="utf-8") as file:
+            file.write(text.replace('title   "', 'title   "saved again: '))
+        for _ in range(600):
+            if "saved again" in browser.run("return document.querySelector('h1').textContent"):
+                break
+            time.sleep(0.1)
+        check("saved again" in browser.run("return document.querySelector('h1').textContent"),
+              "the open page did not reload")
+        bad = [m for m in browser.messages() if m["level"] == "SEVERE"]
+        check(bad == [], "live: console messages: %r" % bad)
+    finally:
+        watch.send_signal(signal.SIGINT)
+        watch.wait()
+    browser.open(page)
+    check(browser.run("return performance.getEntriesByType('resource').length") == 0,
+          "the page after the watch fetches something")
+
+
 browser = Browser()
 try:
+    check_live(browser)
     for name in ("widlar_mos_paper", "bias_tree", "bandgap"):
         check_page(browser, name)
 finally:
