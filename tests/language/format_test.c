@@ -99,7 +99,8 @@ static void check_text(const char *text, enum tree_role role, const char *name)
     char *twice = formatted(once, role);
     struct buffer before = BUFFER_EMPTY, after = BUFFER_EMPTY;
     if (twice == NULL || strcmp(once, twice) != 0) {
-        fprintf(stderr, "%s: not settled:\n%s\n---\n%s\n---\n%s\n", name, text, once, twice == NULL ? "-" : twice);
+        fprintf(stderr, "%s: not settled:\n%s\n---\n%s\n---\n%s\n", name, text, once,
+                twice == NULL ? "-" : twice);
         fail();
     }
     tokens_of(text, &before);
