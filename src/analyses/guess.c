@@ -142,22 +142,39 @@ static bool apply(struct guess *g, enum pass pass, int k)
 }
 
 /*
- * Repeats a pass until it places nothing more; true when it placed anything. Resistors are the
- * weakest evidence: in a cell of ordinary size the first one that places a node hands back to the
- * better passes.
+ * Resistors are the weakest evidence: one at a time, and the smallest first, so that a wire places
+ * its node before a bias resistor does.
  */
+static bool place_by_smallest(struct guess *g)
+{
+    const struct circuit *c = g->system->circuit;
+    double least = INFINITY;
+    int best = -1;
+    for (int k = 0; k < c->instance_count; k++) {
+        const struct instance *instance = &c->instances[k];
+        const int p = instance->type->value_parameter;
+        if (instance->type->letter == 'R' && p >= 0 && g->system->own[k][p] < least &&
+            is_known(g, instance->local[0]) != is_known(g, instance->local[1])) {
+            least = g->system->own[k][p];
+            best = k;
+        }
+    }
+    return best >= 0 && apply(g, PASS_RESISTORS, best);
+}
+
+/* Repeats a pass until it places nothing more; true when it placed anything. In a cell of ordinary
+ * size the first resistor that places a node hands back to the better passes. */
 static bool run_pass(struct guess *g, enum pass pass)
 {
     const int count = g->system->circuit->instance_count;
-    const bool one_by_one = pass == PASS_RESISTORS && count < ONE_BY_ONE_LIMIT;
+    if (pass == PASS_RESISTORS && count < ONE_BY_ONE_LIMIT && place_by_smallest(g)) {
+        return true;
+    }
     bool any = false, moved = true;
     for (int wave = 0; moved && wave < WAVE_LIMIT; wave++) {
         moved = false;
         for (int k = 0; k < count; k++) {
             moved |= apply(g, pass, k);
-            if (moved && one_by_one) {
-                return true;
-            }
         }
         any |= moved;
     }
@@ -216,27 +233,32 @@ static void relax(const struct guess *g, double *work, int node)
     }
 }
 
-static void relax_suspects(const struct guess *g)
+/* False when memory is short. */
+static bool relax_suspects(const struct guess *g)
 {
     const struct system *s = g->system;
     double *work = calloc(2 * (size_t)s->n + (size_t)s->nonzeros + 1, sizeof *work);
     int count = 0;
-    for (int k = 0; work != NULL && k < s->node_count && count < SUSPECT_LIMIT; k++) {
+    if (work == NULL) {
+        return false;
+    }
+    for (int k = 0; k < s->node_count && count < SUSPECT_LIMIT; k++) {
         if (g->suspect[k]) {
             relax(g, work, k);
             count++;
         }
     }
     free(work);
+    return true;
 }
 
-void operating_point_guess(const struct system *system, double *x)
+bool operating_point_guess(const struct system *system, double *x)
 {
     struct guess g = {.system = system, .x = x};
     memset(x, 0, (size_t)system->n * sizeof *x);
     g.known = calloc(3 * (size_t)system->node_count + 1, sizeof *g.known);
     if (g.known == NULL) {
-        return; /* a poorer start, not a failure */
+        return false;
     }
     g.fixed = g.known + system->node_count;
     g.suspect = g.fixed + system->node_count;
@@ -252,8 +274,8 @@ void operating_point_guess(const struct system *system, double *x)
             x[k] = (g.lowest + g.highest) / 2;
         }
     }
-    if (system->circuit->instance_count < ONE_BY_ONE_LIMIT) {
-        relax_suspects(&g);
-    }
+    const bool is_small = system->circuit->instance_count < ONE_BY_ONE_LIMIT;
+    const bool good = !is_small || relax_suspects(&g);
     free(g.known);
+    return good;
 }

@@ -62,20 +62,28 @@ static bool names_thermal_voltage(const struct circuit *c)
     return false;
 }
 
-/* Adds factor * F(x) of the cell built for another temperature. False when it cannot be built. */
-static bool add_residual_at(const struct system *s, double kelvin, long double factor,
-                            const long double *x, long double *slope)
+/* Adds factor * F(x) of the cell built for another temperature. STATUS_INPUT when it cannot be
+ * built, STATUS_MEMORY. */
+static enum status add_residual_at(const struct system *s, double kelvin, long double factor,
+                                   const long double *x, long double *slope)
 {
     struct circuit_settings settings = s->circuit->settings;
     struct diagnostics unseen = {.arena = s->arena};
     struct circuit *circuit = NULL;
     settings.kelvin = kelvin;
-    if (circuit_build(s->circuit->cell, &settings, &unseen, &circuit) != STATUS_OK) {
-        return false;
+    const enum status built = circuit_build(s->circuit->cell, &settings, &unseen, &circuit);
+    if (built != STATUS_OK) {
+        return built;
     }
     struct system *other = system_create(circuit, kelvin, s->conditions.effects);
-    bool good =
-        other != NULL && other->n == s->n && circuit->instance_count == s->circuit->instance_count;
+    long double *f =
+        other == NULL ? NULL : arena_new_array(other->arena, long double, 2 * (size_t)other->n);
+    if (f == NULL) {
+        system_free(other);
+        circuit_free(circuit);
+        return STATUS_MEMORY;
+    }
+    bool good = other->n == s->n && circuit->instance_count == s->circuit->instance_count;
     for (int k = 0; good && k < circuit->instance_count; k++) {
         /* Values that a sweep has turned stay turned. */
         for (int v = 0; v < circuit->instances[k].type->parameter_count; v++) {
@@ -85,37 +93,43 @@ static bool add_residual_at(const struct system *s, double kelvin, long double f
             }
         }
     }
-    long double *f = good ? arena_new_array(other->arena, long double, 2 * (size_t)s->n) : NULL;
-    good = f != NULL && other->face.evaluate_extended(other, x, f, f + s->n, NULL);
+    good = good && other->face.evaluate_extended(other, x, f, f + s->n, NULL);
     for (int k = 0; good && k < s->n; k++) {
         slope[k] += factor * f[k];
     }
     system_free(other);
     circuit_free(circuit);
-    return good;
+    return good ? STATUS_OK : STATUS_INPUT;
 }
 
 /* dF/dT where lets and laws contain thermal_voltage: the whole cell is built anew on both sides. */
-static bool rebuilt_temperature_slope(const struct system *s, const long double *x,
-                                      long double *slope)
+static enum status rebuilt_temperature_slope(const struct system *s, const long double *x,
+                                             long double *slope)
 {
     const double above = s->conditions.kelvin + 1e-3, below = s->conditions.kelvin - 1e-3;
     const long double width = (long double)above - below;
     memset(slope, 0, (size_t)s->n * sizeof *slope);
-    return add_residual_at(s, above, 1 / width, x, slope) &&
-           add_residual_at(s, below, -1 / width, x, slope);
+    const enum status status = add_residual_at(s, above, 1 / width, x, slope);
+    return status != STATUS_OK ? status : add_residual_at(s, below, -1 / width, x, slope);
 }
 
-long double linearised_temperature(struct operating_point *p, int branch)
+bool linearised_temperature(struct operating_point *p, int branch, long double *slope)
 {
     struct system *s = p->system;
     const struct workspace w = workspace_of(p);
-    if ((s->conditions.effects & EFFECT_TEMPERATURE) == 0 || !names_thermal_voltage(s->circuit) ||
-        !rebuilt_temperature_slope(s, p->refined, w.b)) {
+    enum status status = STATUS_INPUT;
+    if ((s->conditions.effects & EFFECT_TEMPERATURE) != 0 && names_thermal_voltage(s->circuit)) {
+        status = rebuilt_temperature_slope(s, p->refined, w.b);
+    }
+    if (status == STATUS_MEMORY) {
+        return false;
+    }
+    if (status != STATUS_OK) {
         system_temperature_slope(s, p->refined, w.b);
     }
     solve(p, &w, false);
-    return -w.y[branch];
+    *slope = -w.y[branch];
+    return true;
 }
 
 double linearised_sigma(struct operating_point *p, int branch)

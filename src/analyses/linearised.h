@@ -16,8 +16,8 @@ long double linearised_conductance(struct operating_point *point, int branch);
 /* Derivative of the branch current in the value of a voltage source whose branch is `driver`, S. */
 long double linearised_transfer(struct operating_point *point, int branch, int driver);
 
-/* Derivative of a branch current in temperature, A/K. */
-long double linearised_temperature(struct operating_point *point, int branch);
+/* Derivative of a branch current in temperature, A/K. False when memory is short. */
+bool linearised_temperature(struct operating_point *point, int branch, long double *slope);
 
 /*
  * linearised_sigma: standard deviation of a branch current from the mismatch of all devices, A, to

@@ -70,7 +70,10 @@ static bool is_output(const struct circuit *c, int instance)
     return false;
 }
 
-/* What rails and sources deliver; the load at an output is not part of the cell. */
+/*
+ * What rails and sources deliver. The load at an output is not part of the cell, and a source that
+ * takes power stands for a part that does: it is not given back.
+ */
 static double source_power(const struct system *system, const double *x)
 {
     const struct circuit *c = system->circuit;
@@ -82,8 +85,9 @@ static double source_power(const struct system *system, const double *x)
         }
         double q[QUANTITY_LIMIT];
         describe_plain(system, k, x, q);
-        if (isfinite(q[type->quantity_power])) {
-            sum -= q[type->quantity_power];
+        const double delivered = -q[type->quantity_power];
+        if (isfinite(delivered) && (delivered > 0 || c->instances[k].is_hidden)) {
+            sum += delivered;
         }
     }
     return sum;

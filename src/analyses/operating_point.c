@@ -72,7 +72,11 @@ enum newton_status operating_point_newton(struct operating_point *p)
         p->report.residual < near_root) {
         double worst = INFINITY;
         int equation;
-        if (polish(p, &worst, &equation) == NEWTON_CONVERGED && worst < polished) {
+        const enum newton_status refined = polish(p, &worst, &equation);
+        if (refined == NEWTON_MEMORY) {
+            return NEWTON_MEMORY;
+        }
+        if (refined == NEWTON_CONVERGED && worst < polished) {
             for (int k = 0; k < s->n; k++) {
                 p->x[k] = (double)p->refined[k];
             }
@@ -116,12 +120,16 @@ static void note_failure(struct operating_point *p, enum newton_status status)
     }
 }
 
+static bool ends_search(enum newton_status status)
+{
+    return status == NEWTON_STOPPED || status == NEWTON_MEMORY;
+}
+
 /* --- the ladder: each starts from p->x and leaves a root of the plain system there ------------ */
 
 static enum newton_status try_direct(struct operating_point *p)
 {
-    operating_point_guess(p->system, p->x);
-    return operating_point_newton(p);
+    return operating_point_guess(p->system, p->x) ? operating_point_newton(p) : NEWTON_MEMORY;
 }
 
 static enum newton_status walk(struct operating_point *p, enum embedding embedding, double from)
@@ -146,10 +154,9 @@ static enum newton_status try_sources(struct operating_point *p)
 static enum newton_status try_conductance(struct operating_point *p)
 {
     double *anchor = arena_new_array(p->system->arena, double, p->system->n);
-    if (anchor == NULL) {
+    if (anchor == NULL || !operating_point_guess(p->system, anchor)) {
         return NEWTON_MEMORY;
     }
-    operating_point_guess(p->system, anchor);
     memcpy(p->x, anchor, (size_t)p->system->n * sizeof *anchor);
     p->system->anchor = anchor;
     return walk(p, EMBED_CONDUCTANCE, 0);
@@ -176,7 +183,7 @@ static enum newton_status try_arclength(struct operating_point *p)
 {
     memset(p->x, 0, (size_t)p->system->n * sizeof *p->x);
     enum newton_status status = trace(p, EMBED_SOURCES);
-    if (status != NEWTON_CONVERGED && status != NEWTON_STOPPED && status != NEWTON_MEMORY) {
+    if (status != NEWTON_CONVERGED && !ends_search(status)) {
         if (p->system->anchor != NULL) {
             memcpy(p->x, p->system->anchor, (size_t)p->system->n * sizeof *p->x);
         }
@@ -198,7 +205,7 @@ static enum newton_status try_blended(struct operating_point *p)
     }
     system_conditions(s, s->conditions.kelvin, effects | EFFECT_INVERSION);
     enum newton_status status = try_direct(p);
-    if (status != NEWTON_CONVERGED && status != NEWTON_STOPPED) {
+    if (status != NEWTON_CONVERGED && !ends_search(status)) {
         status = try_sources(p);
     }
     system_conditions(s, s->conditions.kelvin, effects);
@@ -261,30 +268,31 @@ static const char *name_of(const struct operating_point *p, int unknown)
 {
     char text[200];
     circuit_unknown_name(p->system->circuit, unknown, text, sizeof text);
-    return arena_copy(p->system->arena, text, strlen(text));
+    const char *name = arena_copy(p->system->arena, text, strlen(text));
+    return name == NULL ? "" : name;
 }
 
-/* Devices at a node, at most three, for the message. */
+/* Devices at a node, at most three, for the message. Without memory "", as name_of: the arena
+ * remembers. */
 static const char *devices_at(const struct operating_point *p, int unknown)
 {
     const struct circuit *c = p->system->circuit;
-    struct buffer text = BUFFER_EMPTY;
+    struct arena *arena = p->system->arena;
+    const char *text = "no device";
     int count = 0;
-    for (int k = 0; k < c->instance_count && count < 3; k++) {
+    for (int k = 0; k < c->instance_count && count < 3 && text != NULL; k++) {
         const struct instance *instance = &c->instances[k];
         bool touches = false;
         for (int l = 0; l < instance->local_count; l++) {
             touches |= instance->local[l] == unknown;
         }
         if (touches && !instance->is_hidden) {
-            buffer_format(&text, "%s%s", count == 0 ? "" : ", ", instance->name);
+            text =
+                count == 0 ? instance->name : arena_format(arena, "%s, %s", text, instance->name);
             count++;
         }
     }
-    const char *kept =
-        text.data == NULL ? "no device" : arena_copy(p->system->arena, text.data, text.length);
-    buffer_free(&text);
-    return kept;
+    return text == NULL ? "" : text;
 }
 
 static void tell_trouble(struct operating_point *p)
@@ -301,12 +309,11 @@ static void tell_trouble(struct operating_point *p)
     /* Balanced and singular: any voltage would do. */
     const bool open = p->best_residual < 1e-9 || !(p->best_residual < 1e-3);
     if (p->stalled_column >= 0 && open) {
-        const char *column = name_of(p, p->stalled_column);
         solver->trouble =
             arena_format(arena,
                          "nothing sets the %s: every device there (%s) is off or holds its current "
                          "whatever the voltage",
-                         column == NULL ? "node" : column, devices_at(p, p->stalled_column));
+                         name_of(p, p->stalled_column), devices_at(p, p->stalled_column));
         solver->advice = "look for a gate or a node held by nothing, for two current sources that "
                          "face each other, or for a transistor that is off in this view";
         return;
@@ -321,17 +328,23 @@ static void tell_trouble(struct operating_point *p)
         "path for its current, and the values of the devices named";
 }
 
-/* A residual above 1e-12 after the polish: rounding, and how badly the equations carry it on. */
-static void tell_limit(struct operating_point *p)
+/* A residual above 1e-12 after the polish: rounding, and how badly the equations carry it on. False
+ * when memory is short. */
+static bool tell_limit(struct operating_point *p)
 {
     struct system *s = p->system;
     double *values = arena_new_array(s->arena, double, s->nonzeros);
-    for (int k = 0; values != NULL && k < s->nonzeros; k++) {
+    if (values == NULL) {
+        return false;
+    }
+    for (int k = 0; k < s->nonzeros; k++) {
         values[k] = (double)p->values[k];
     }
+    const double condition = linear_condition(s->solver, values);
     p->solver.limited_by = arena_format(
         s->arena, "rounding at %s: the equations have a condition number of about %.1e",
-        p->solver.worst_name, values == NULL ? INFINITY : linear_condition(s->solver, values));
+        p->solver.worst_name, condition);
+    return p->solver.limited_by != NULL && !isnan(condition);
 }
 
 enum status operating_point_find(struct operating_point *p)
@@ -374,8 +387,8 @@ enum status operating_point_polish(struct operating_point *p)
         tell_trouble(p);
         return STATUS_UNSOLVED;
     }
-    if (!(worst < 1e-12)) {
-        tell_limit(p);
+    if (!(worst < 1e-12) && !tell_limit(p)) {
+        return STATUS_MEMORY;
     }
     for (int k = 0; k < s->n; k++) {
         p->x[k] = (double)p->refined[k];
@@ -383,7 +396,7 @@ enum status operating_point_polish(struct operating_point *p)
     return STATUS_OK;
 }
 
-static enum status from_newton(enum newton_status status)
+enum status operating_point_status(enum newton_status status)
 {
     return status == NEWTON_CONVERGED ? STATUS_OK
            : status == NEWTON_STOPPED ? STATUS_STOPPED
@@ -399,8 +412,8 @@ enum status operating_point_move(struct operating_point *p, int instance, int pa
     memcpy(start, p->x, (size_t)s->n * sizeof *start);
     system_set(s, instance, parameter, to);
     enum newton_status status = operating_point_newton(p);
-    if (status == NEWTON_CONVERGED || status == NEWTON_STOPPED || status == NEWTON_MEMORY) {
-        return from_newton(status);
+    if (status == NEWTON_CONVERGED || ends_search(status)) {
+        return operating_point_status(status);
     }
     memcpy(p->x, start, (size_t)s->n * sizeof *start);
     s->knob_instance = instance;
@@ -409,8 +422,8 @@ enum status operating_point_move(struct operating_point *p, int instance, int pa
     s->knob_to = to;
     status = walk(p, EMBED_KNOB, 0);
     system_set(s, instance, parameter, to);
-    if (status == NEWTON_CONVERGED || status == NEWTON_STOPPED || status == NEWTON_MEMORY) {
-        return from_newton(status);
+    if (status == NEWTON_CONVERGED || ends_search(status)) {
+        return operating_point_status(status);
     }
     if (jumped == NULL) {
         memcpy(p->x, start, (size_t)s->n * sizeof *start);

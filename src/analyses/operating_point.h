@@ -53,7 +53,12 @@ enum status operating_point_move(struct operating_point *point, int instance, in
 /* Newton from the x at hand with the values in force, without any fallback. */
 enum newton_status operating_point_newton(struct operating_point *point);
 
-/* A start for the search in which diode-like devices conduct, [n] out. */
-void operating_point_guess(const struct system *system, double *x);
+/* The same in the words of the layer: all that is not done, stopped or short of memory is unsolved.
+ */
+enum status operating_point_status(enum newton_status status);
+
+/* A start for the search in which diode-like devices conduct, [n] out. False when memory is short.
+ */
+bool operating_point_guess(const struct system *system, double *x);
 
 #endif

@@ -69,7 +69,7 @@ static void read_place(struct sweeper *w, struct place *place)
     memset(w->rhs, 0, (size_t)s->n * sizeof *w->rhs);
     w->rhs[w->branch] = 1;
     linear_solve(s->solver, w->rhs);
-    place->i = w->sign * w->point->x[w->branch];
+    place->i = w->sign * w->point->x[w->branch] + 0.0; /* never a negative zero */
     place->slope = w->sign * w->rhs[w->branch];
 }
 
@@ -123,7 +123,9 @@ static bool solve_at(struct sweeper *w, const struct place *near, double v, stru
     }
     if (jumped) {
         add_event(w, v, "the state cannot be followed: it folds or jumps here");
-        if (operating_point_newton(p) != NEWTON_CONVERGED) {
+        const enum status again = operating_point_status(operating_point_newton(p));
+        if (again != STATUS_OK) {
+            w->status = again == STATUS_UNSOLVED ? w->status : again;
             return false;
         }
     }
@@ -408,10 +410,14 @@ static bool find_derivatives(struct operating_point *home, int branch, double si
     }
     for (int k = 0; k < c->rail_count; k++) {
         const int driver = system_branch(&c->instances[c->rails[k].instance]);
-        line[k] = sign * (double)linearised_transfer(home, branch, driver) / r->current;
+        line[k] = sign * (double)linearised_transfer(home, branch, driver) / r->current + 0.0;
     }
     r->line = line;
-    r->tempco = sign * (double)linearised_temperature(home, branch) / r->current;
+    long double per_kelvin;
+    if (!linearised_temperature(home, branch, &per_kelvin)) {
+        return false;
+    }
+    r->tempco = sign * (double)per_kelvin / r->current;
     r->sigma = linearised_sigma(home, branch) / r->current;
     return true;
 }
@@ -518,7 +524,10 @@ enum status analyse_output(struct operating_point *home, int index, struct arena
         }
         system_set(s, output->instance, w.parameter, at);
         memcpy(home->x, start.x, (size_t)s->n * sizeof *home->x);
-        operating_point_newton(home);
+        const enum status back = operating_point_status(operating_point_newton(home));
+        if (w.status == STATUS_OK && back != STATUS_UNSOLVED) {
+            w.status = back;
+        }
     }
     arena_destroy(scratch);
     return good ? w.status : STATUS_MEMORY;

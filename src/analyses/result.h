@@ -124,6 +124,7 @@ struct result {
     enum view view;
     double kelvin;
     enum verdict verdict;
+    bool is_stopped; /* on request: a part of the work; the verdict is none */
     struct point_result point;
     struct output_result *outputs;
     int output_count;

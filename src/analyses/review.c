@@ -145,12 +145,14 @@ static enum status solve_hand_view(struct circuit *circuit, const struct analysi
 
 static enum status finish(enum status status, struct session *session, struct result **result)
 {
+    const bool texts_failed = session->system != NULL && arena_failed(session->system->arena);
     close_session(session);
-    if (status == STATUS_MEMORY || arena_failed((*result)->arena)) {
+    if (status == STATUS_MEMORY || texts_failed || arena_failed((*result)->arena)) {
         result_free(*result);
         *result = NULL;
         return STATUS_MEMORY;
     }
+    (*result)->is_stopped = status == STATUS_STOPPED;
     return status;
 }
 

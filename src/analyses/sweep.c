@@ -14,7 +14,7 @@
 #include "analyses/measure.h"
 #include "analyses/output.h"
 
-enum { POINTS_STANDARD = 51, EVENT_LIMIT = 20 };
+enum { EVENT_LIMIT = 20 };
 
 struct setting {
     const struct knob *knob;
@@ -239,12 +239,14 @@ static enum status advance(struct series_task *t, struct stage *stage, int k)
     stage_close(stage);
     enum status status = stage_open(stage, t->circuit, sweep, settings, sweep->has_family ? 2 : 1);
     if (status == STATUS_OK) {
-        bool followed = false;
+        status = STATUS_UNSOLVED;
         if (n == stage->system->n) {
             memcpy(stage->point.x, last, (size_t)n * sizeof *last);
-            followed = operating_point_newton(&stage->point) == NEWTON_CONVERGED;
+            status = operating_point_status(operating_point_newton(&stage->point));
         }
-        status = followed ? STATUS_OK : operating_point_find(&stage->point);
+        if (status == STATUS_UNSOLVED) {
+            status = operating_point_find(&stage->point);
+        }
     }
     arena_destroy(scratch);
     return status;
@@ -290,7 +292,7 @@ enum status analyse_sweep(struct circuit *circuit, const struct sweep *sweep,
                           const struct analysis_options *options, struct arena *arena,
                           struct sweep_table *table)
 {
-    const int points = sweep->points > 0 ? sweep->points : POINTS_STANDARD;
+    const int points = sweep->points > 0 ? sweep->points : CIRCUIT_POINT_STANDARD;
     const int families = sweep->has_family ? sweep->family_count : 1;
     *table = (struct sweep_table){.sweep = sweep};
     table->series = arena_new_array(arena, struct sweep_series, families);

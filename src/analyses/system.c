@@ -143,6 +143,13 @@ static void parameter_slope(void *self, const double *x, double *slope)
  * and the same microvolt.
  */
 static const double volts_floor = 1e-6;
+/* The same for a branch current, which enters its nodes as it is, A. */
+static const double amperes_floor = 1e-18;
+
+static double floor_of(const struct system *s, int unknown)
+{
+    return unknown < s->node_count ? volts_floor : amperes_floor;
+}
 
 /*
  * In double, what rounding of the unknowns alone makes of an equation (eps |J| |x|) must pass the
@@ -179,7 +186,7 @@ static bool evaluate(void *self, const double *x, double *f, double *scale, doub
                     values[place] += jac[n * r + q];
                 }
                 const double slope = fabs(jac[n * r + q]);
-                size += row < s->node_count ? slope * volts_floor
+                size += row < s->node_count ? slope * floor_of(s, instance->local[q])
                                             : fmin(slope, 1) * (fabs(local[q]) + volts_floor);
                 size += rounding_share * slope * fabs(local[q]);
             }
@@ -237,7 +244,7 @@ static bool evaluate_extended(void *self, const long double *x, long double *f, 
                     values[place] += jac[n * r + q];
                 }
                 const long double slope = fabsl(jac[n * r + q]);
-                size += row < s->node_count ? slope * volts_floor
+                size += row < s->node_count ? slope * floor_of(s, instance->local[q])
                                             : fminl(slope, 1) * (fabsl(local[q]) + volts_floor);
             }
             scale[row] += size;

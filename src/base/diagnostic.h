@@ -87,4 +87,13 @@ void diagnostics_list(const struct diagnostics *diagnostics, const struct source
  */
 const char *near_name(const char *wanted, const char *const *candidates, int count);
 
+/* "did you mean 'NAME'?" with the near name, else `otherwise` (may be NULL). */
+const char *hint_near(struct arena *arena, const char *wanted, const char *const *candidates,
+                      int count, const char *otherwise);
+
+/* "BEFOREa, b, c" with at most HINT_LIST_LIMIT names, each once; `otherwise` for an empty list. */
+enum { HINT_LIST_LIMIT = 24 };
+const char *hint_list(struct arena *arena, const char *before, const char *const *names, int count,
+                      const char *otherwise);
+
 #endif

@@ -78,3 +78,36 @@ const char *near_name(const char *wanted, const char *const *candidates, int cou
     }
     return best;
 }
+
+const char *hint_near(struct arena *arena, const char *wanted, const char *const *candidates,
+                      int count, const char *otherwise)
+{
+    const char *near = near_name(wanted, candidates, count);
+    return near == NULL ? otherwise : arena_format(arena, "did you mean '%s'?", near);
+}
+
+static bool listed_before(const char *const *names, int index)
+{
+    for (int k = 0; k < index; k++) {
+        if (strcmp(names[k], names[index]) == 0) {
+            return true;
+        }
+    }
+    return false;
+}
+
+const char *hint_list(struct arena *arena, const char *before, const char *const *names, int count,
+                      const char *otherwise)
+{
+    struct buffer list = BUFFER_EMPTY;
+    int shown = 0;
+    for (int k = 0; k < count && shown < HINT_LIST_LIMIT; k++) {
+        if (!listed_before(names, k)) {
+            buffer_format(&list, "%s%s", shown == 0 ? before : ", ", names[k]);
+            shown++;
+        }
+    }
+    const char *hint = list.length == 0 ? otherwise : arena_copy(arena, list.data, list.length);
+    buffer_free(&list);
+    return hint;
+}

@@ -12,6 +12,8 @@
  * block, which has a name but no quantities. */
 enum { NAME_REJECTED = -2, NAME_OF_BLOCK = -3 };
 
+enum { TERMINAL_LIMIT = 6 }; /* of one part */
+
 enum { LET_DEPTH_LIMIT = 100, BLOCK_DEPTH_LIMIT = 20, LIST_LIMIT = 4000 };
 
 enum let_state { LET_WAITING, LET_VISITING, LET_DONE, LET_WRONG };
@@ -51,6 +53,10 @@ struct builder {
     int let_capacity;
     int let_depth;
     double thermal_voltage;
+    int placed;           /* parts and uses of blocks so far */
+    int errors_before;    /* this build began */
+    bool is_over_limit;   /* reported: what is left is not built */
+    double sweep_values;  /* of all sweeps */
     bool process_missing; /* a process was not read: its models and corners are unknown */
     struct block_entry *blocks;
     int block_count, block_capacity;
@@ -61,23 +67,49 @@ struct builder {
 /* Each step returns false only when memory is short; wrong input goes to the diagnostics. */
 bool build_lets(struct builder *builder);
 bool build_models(struct builder *builder);
-bool build_parts(struct builder *builder);
+bool build_rails(struct builder *builder);
+bool build_blocks(struct builder *builder); /* definitions only; uses are part of a body */
+bool build_outputs(struct builder *builder);
 bool build_requests(struct builder *builder);
 bool build_checks(struct builder *builder);
+
+/* True once a limit is met: the rest is not built. The first time it is reported at `where`. */
+bool build_is_over_limit(struct builder *builder, struct span where);
 
 /* Expression scope of a frame; valid as long as the frame. */
 struct expression_scope frame_scope(const struct frame *frame);
 
-/* The scope with all names listed, for a message about an unknown one. */
-void frame_names(const struct frame *frame, struct expression_scope *scope);
-
 /* Node of a name in a frame, made when it is new; -1 when memory is short or the name is wrong. */
 int build_node(const struct frame *frame, const char *name, struct span where);
+
+/* A node behind a terminal of a part; -1 when memory is short. */
+int build_hidden_node(struct builder *builder, const char *part, const char *terminal,
+                      struct span where);
+
+/* A new instance with the default values of its type; NULL when memory is short. It moves when the
+ * next one is made. */
+struct instance *build_instance(struct builder *builder, const char *name,
+                                const struct device_type *type, struct span where);
+
+/* Gives an instance its unknowns: nodes at its outer terminals, nodes that it sees itself (behind
+ * series resistances), and nodes that a law reads. False when memory is short. */
+bool build_join(struct builder *builder, struct instance *instance, const int *outer,
+                const int *local, const int *inputs, int input_count);
+
+/* Numbers the branches behind the nodes, once all nodes are known. */
+void build_finish_unknowns(struct circuit *circuit);
+
+/* Whether a part or use may have this name; an error when it is taken. */
+bool build_name_is_new(struct builder *builder, const char *name, struct span where);
 
 /* A hidden voltage source that holds a node at `volts` above gnd (rails, outputs): its index, or -1
  * when memory is short. */
 int build_holder(struct builder *builder, const char *name, int node, double volts,
                  struct span where);
+
+/* One part line, and all part and use lines of a body. False when memory is short. */
+bool build_part(const struct frame *frame, const struct statement *statement);
+bool build_body(const struct frame *frame, struct statement *const *body, int count);
 
 /* Law and curve of a part; NULL after an error or when memory is short. */
 const struct law_program *build_law(const struct frame *frame, const struct expression *expression,

@@ -9,7 +9,7 @@
 #include "language/parser.h"
 #include "language/source.h"
 
-enum { FOLDER_LIMIT = 3 };
+enum { FOLDER_LIMIT = 3, CIRCUIT_PROCESS_LIMIT = 20 };
 
 /* The folder of a path with its slash, "" for a bare name. */
 static const char *folder_of(struct arena *arena, const char *path)
@@ -47,6 +47,11 @@ static enum status read_process(struct cell *cell, const struct statement *state
                             "process \"%s\" is already in use", statement->text);
             return STATUS_INPUT;
         }
+    }
+    if (cell->process_count >= CIRCUIT_PROCESS_LIMIT) {
+        diagnostics_add(&cell->diagnostics, statement->text_span, NULL,
+                        "the cell names more than %d processes, the limit", CIRCUIT_PROCESS_LIMIT);
+        return STATUS_INPUT;
     }
     const char *path = find_process(cell, statement->text);
     if (path == NULL) {

@@ -43,6 +43,42 @@ static bool start(struct circuit *c, struct cell *cell, const struct circuit_set
     return names_add(c->names, NAME_NODE, "gnd", 0);
 }
 
+bool build_is_over_limit(struct builder *b, struct span where)
+{
+    const int parts = b->settings->part_limit > 0 ? b->settings->part_limit : CIRCUIT_PART_LIMIT;
+    if (b->is_over_limit) {
+        return true;
+    }
+    b->is_over_limit = true;
+    if (b->placed >= parts) {
+        diagnostics_add(b->diagnostics, where, "blocks that use blocks multiply",
+                        "the cell has more than %d parts, the limit", parts);
+    } else if (arena_used(b->arena) >> 20 >= CIRCUIT_MEMORY_LIMIT) {
+        diagnostics_add(b->diagnostics, where, "blocks that use blocks multiply",
+                        "the parts of the cell need more than %d MiB, the limit",
+                        CIRCUIT_MEMORY_LIMIT);
+    } else if (b->diagnostics->count - b->errors_before >= LANGUAGE_ERROR_LIMIT) {
+        diagnostics_add(b->diagnostics, where, NULL,
+                        "more than %d errors: the rest of the cell was not built",
+                        LANGUAGE_ERROR_LIMIT);
+    } else {
+        b->is_over_limit = false;
+    }
+    return b->is_over_limit;
+}
+
+/* Rails first: they decide the bulk of p-channel devices. */
+static bool build_parts(struct builder *b)
+{
+    const struct frame top = {.builder = b, .prefix = ""};
+    if (!build_rails(b) || !build_blocks(b) ||
+        !build_body(&top, b->cell->tree.statements, b->cell->tree.count) || !build_outputs(b)) {
+        return false;
+    }
+    build_finish_unknowns(b->circuit);
+    return true;
+}
+
 /* All steps; false when memory is short. */
 static bool build(struct builder *b)
 {
@@ -75,6 +111,7 @@ enum status circuit_build(struct cell *cell, const struct circuit_settings *sett
                               .diagnostics = diagnostics,
                               .arena = arena,
                               .settings = settings,
+                              .errors_before = before,
                               .thermal_voltage = BOLTZMANN_OVER_CHARGE * 300.15};
     const bool good = start(circuit, cell, settings) && build(&builder);
     if (!good || arena_failed(arena) || diagnostics->out_of_memory) {

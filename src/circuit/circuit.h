@@ -14,7 +14,19 @@
 #include "circuit/cell.h"
 #include "devices/device.h"
 
-enum { CIRCUIT_GROUND = -1, CIRCUIT_PART_LIMIT = 4000000 };
+enum { CIRCUIT_GROUND = -1 };
+
+/* Limits; each message that meets one prints it. A cell of a few lines can ask for any number of
+ * parts by blocks that use blocks. */
+enum {
+    CIRCUIT_PART_LIMIT = 2000000, /* parts and uses of blocks */
+    CIRCUIT_MEMORY_LIMIT = 2048,  /* MiB of all that is built from a cell, before it is solved */
+    CIRCUIT_NAME_LIMIT = 1000,    /* pins, parameters and lets of one block */
+    CIRCUIT_MODEL_LIMIT = 10000,
+    CIRCUIT_POINT_STANDARD = 51,   /* points of a sweep that says nothing */
+    CIRCUIT_POINT_LIMIT = 100000,  /* points of one sweep */
+    CIRCUIT_SWEEP_LIMIT = 10000000 /* values of all sweeps: points, quantities and families */
+};
 
 struct node {
     const char *name;
@@ -179,6 +191,7 @@ struct circuit_settings {
     int set_count;
     double kelvin;      /* NAN: the cell's own */
     const char *corner; /* NULL: typical */
+    int part_limit;     /* 0: CIRCUIT_PART_LIMIT */
 };
 
 struct circuit {

@@ -276,7 +276,6 @@ const struct law_program *build_law(const struct frame *frame, const struct expr
 {
     struct builder *b = frame->builder;
     struct compiler c = {.frame = frame, .scope = frame_scope(frame)};
-    frame_names(frame, &c.scope);
     const struct kind kind = compile(&c, expression);
     if (!c.failed && !kind.bare && !dimension_equal(kind.dimension, DIMENSION_CURRENT)) {
         char found[64];

@@ -54,7 +54,7 @@ static bool collect(struct builder *b, const struct tree *tree)
     return true;
 }
 
-static void apply_sets(struct builder *b, const struct expression_scope *scope)
+static void apply_sets(struct builder *b)
 {
     struct circuit *c = b->circuit;
     for (int k = 0; k < b->settings->set_count; k++) {
@@ -62,11 +62,10 @@ static void apply_sets(struct builder *b, const struct expression_scope *scope)
         const int index = names_find(c->names, NAME_LET, set->name);
         if (index < 0) {
             const int count = names_list(c->names, NAME_LET, b->known, LIST_LIMIT);
-            const char *near = near_name(set->name, b->known, count);
-            diagnostics_add(b->diagnostics, set->where,
-                            near == NULL ? "only a `let` can be set"
-                                         : arena_format(b->arena, "did you mean '%s'?", near),
-                            "no let is called '%s'", set->name);
+            diagnostics_add(
+                b->diagnostics, set->where,
+                hint_near(b->arena, set->name, b->known, count, "only a `let` can be set"),
+                "no let is called '%s'", set->name);
             continue;
         }
         c->lets[index].is_set = true;
@@ -79,7 +78,6 @@ static void apply_sets(struct builder *b, const struct expression_scope *scope)
             b->lets[index].state = LET_WAITING;
         }
     }
-    (void)scope;
 }
 
 static bool find_let(struct builder *b, int index, struct span where, struct quantity *value);
@@ -100,6 +98,20 @@ static bool find_in_frame(void *self, const char *name, struct span where, struc
     return index >= 0 && find_let(b, index, where, value);
 }
 
+static int list_in_frame(void *self, const char *const **names)
+{
+    const struct frame *frame = self;
+    struct builder *b = frame->builder;
+    int count = names_list(b->circuit->names, NAME_LET, b->known, LIST_LIMIT);
+    for (const struct frame *f = frame; f != NULL; f = f->outer) {
+        for (int k = 0; k < f->value_count && count < LIST_LIMIT; k++) {
+            b->known[count++] = f->values[k].name;
+        }
+    }
+    *names = b->known;
+    return count;
+}
+
 struct expression_scope frame_scope(const struct frame *frame)
 {
     union {
@@ -108,20 +120,8 @@ struct expression_scope frame_scope(const struct frame *frame)
     } plain = {.from = frame};
     return (struct expression_scope){.find = find_in_frame,
                                      .self = plain.to,
+                                     .list = list_in_frame,
                                      .thermal_voltage = frame->builder->thermal_voltage};
-}
-
-void frame_names(const struct frame *frame, struct expression_scope *scope)
-{
-    struct builder *b = frame->builder;
-    int count = names_list(b->circuit->names, NAME_LET, b->known, LIST_LIMIT);
-    for (const struct frame *f = frame; f != NULL; f = f->outer) {
-        for (int k = 0; k < f->value_count && count < LIST_LIMIT; k++) {
-            b->known[count++] = f->values[k].name;
-        }
-    }
-    scope->names = b->known;
-    scope->name_count = count;
 }
 
 /* A plain number from outside has the unit of the let that it replaces. */
@@ -154,7 +154,6 @@ static bool find_let(struct builder *b, int index, struct span where, struct qua
     if (entry->state == LET_WAITING) {
         const struct frame top = {.builder = b, .prefix = ""};
         struct expression_scope scope = frame_scope(&top);
-        frame_names(&top, &scope);
         entry->state = LET_VISITING;
         b->let_depth++;
         const bool good = entry->expression == NULL ||
@@ -212,7 +211,7 @@ bool build_lets(struct builder *b)
     }
     const struct frame top = {.builder = b, .prefix = ""};
     struct expression_scope scope = frame_scope(&top);
-    apply_sets(b, &scope);
+    apply_sets(b);
     find_temperature(b, &scope);
     /* Values that the temperature asked for saw no thermal voltage yet: compute them anew. */
     b->thermal_voltage = BOLTZMANN_OVER_CHARGE * b->circuit->kelvin;

@@ -53,11 +53,10 @@ static void unknown_parameter(struct builder *b, const struct model *m, const st
     for (int k = 0; k < type->model_parameter_count && count < LIST_LIMIT; k++) {
         b->known[count++] = type->model_parameters[k].name;
     }
-    const char *near = near_name(key->text, b->known, count);
-    diagnostics_add(b->diagnostics, key->span,
-                    near == NULL ? "`ampstead models FILE` lists them all"
-                                 : arena_format(b->arena, "did you mean '%s'?", near),
-                    "a model of kind %s has no parameter '%s'", type->model_kind, key->text);
+    diagnostics_add(
+        b->diagnostics, key->span,
+        hint_near(b->arena, key->text, b->known, count, "`ampstead models FILE` lists them all"),
+        "a model of kind %s has no parameter '%s'", type->model_kind, key->text);
 }
 
 static void read_values(struct builder *b, struct model *m, const struct statement *statement,
@@ -109,10 +108,9 @@ static const struct device_type *model_type(struct builder *b, const struct word
             b->known[count++] = device_types[k]->model_kind;
         }
     }
-    const char *near = near_name(kind->text, b->known, count);
     diagnostics_add(b->diagnostics, kind->span,
-                    near == NULL ? "nmos, pmos, diode, npn, pnp, njfet, pjfet"
-                                 : arena_format(b->arena, "did you mean '%s'?", near),
+                    hint_near(b->arena, kind->text, b->known, count,
+                              hint_list(b->arena, "known: ", b->known, count, NULL)),
                     "there is no model kind '%s'", kind->text);
     return NULL;
 }
@@ -128,6 +126,11 @@ static bool add_model(struct builder *b, const struct statement *statement,
     if (names_find(c->names, NAME_MODEL, statement->name.text) >= 0) {
         diagnostics_add(b->diagnostics, statement->name.span, "give it another name",
                         "there are two models called '%s'", statement->name.text);
+        return true;
+    }
+    if (c->model_count >= CIRCUIT_MODEL_LIMIT) {
+        diagnostics_add(b->diagnostics, statement->name.span, NULL,
+                        "the cell has more than %d models, the limit", CIRCUIT_MODEL_LIMIT);
         return true;
     }
     struct model *list =
@@ -203,7 +206,6 @@ static bool models_of(struct builder *b, const struct tree *tree, const char *pr
 {
     const struct frame top = {.builder = b, .prefix = ""};
     struct expression_scope scope = frame_scope(&top);
-    frame_names(&top, &scope);
     const struct file_facts facts = read_facts(b, tree, process, &scope);
     if (process == NULL) {
         b->circuit->measured_kelvin = facts.measured_kelvin;
@@ -224,9 +226,7 @@ static void unknown_model(struct builder *b, const struct assignment *a, const c
         return;
     }
     const int count = names_list(b->circuit->names, NAME_MODEL, b->known, LIST_LIMIT);
-    const char *near = near_name(name, b->known, count);
-    diagnostics_add(b->diagnostics, a->key.span,
-                    near == NULL ? NULL : arena_format(b->arena, "did you mean '%s'?", near),
+    diagnostics_add(b->diagnostics, a->key.span, hint_near(b->arena, name, b->known, count, NULL),
                     "there is no model '%s'", name);
 }
 
@@ -324,7 +324,6 @@ static bool corners_of(struct builder *b, const struct tree *tree, bool apply)
     const struct frame top = {.builder = b, .prefix = ""};
     struct expression_scope scope = frame_scope(&top);
     const char *wanted = b->settings->corner;
-    frame_names(&top, &scope);
     for (int k = 0; k < tree->count; k++) {
         const struct statement *statement = tree->statements[k];
         if (statement->kind != STATEMENT_CORNER || statement->name.text == NULL) {
@@ -357,11 +356,10 @@ static void check_corner(struct builder *b)
         }
         b->known[count++] = c->corners[k].name;
     }
-    const char *near = near_name(wanted, b->known, count);
     diagnostics_add(b->diagnostics, SPAN_NONE,
-                    near != NULL ? arena_format(b->arena, "did you mean '%s'?", near)
-                    : count > 0  ? arena_format(b->arena, "the first is '%s'", b->known[0])
-                                 : "the processes of this cell have no corners",
+                    hint_near(b->arena, wanted, b->known, count,
+                              hint_list(b->arena, "known: ", b->known, count,
+                                        "the processes of this cell have no corners")),
                     "there is no corner '%s'", wanted);
 }
 

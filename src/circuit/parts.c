@@ -1,5 +1,5 @@
 /*
- * parts.c: rails, parts and uses of blocks to nodes and instances.
+ * parts.c: a part line to an instance: terminals, values, model, series resistances.
  */
 #include "circuit/build.h"
 
@@ -9,8 +9,6 @@
 #include "devices/law.h"
 #include "devices/series.h"
 #include "language/parser.h"
-
-enum { TERMINAL_LIMIT = 6 };
 
 /* A part line on its way to an instance. */
 struct part {
@@ -26,135 +24,11 @@ struct part {
     bool model_named;
 };
 
-int build_node(const struct frame *frame, const char *name, struct span where)
-{
-    struct builder *b = frame->builder;
-    struct circuit *c = b->circuit;
-    if (strcmp(name, "gnd") == 0) {
-        return 0;
-    }
-    for (int k = 0; k < frame->pin_count; k++) {
-        if (strcmp(frame->pins[k].text, name) == 0) {
-            return frame->pin_nodes[k];
-        }
-    }
-    const char *full =
-        frame->prefix[0] == '\0' ? name : arena_format(b->arena, "%s%s", frame->prefix, name);
-    int index = full == NULL ? -1 : names_find(c->names, NAME_NODE, full);
-    if (full == NULL || index >= 0) {
-        return index;
-    }
-    struct node *list =
-        arena_grow(b->arena, c->nodes, c->node_count, &c->node_capacity, sizeof *list);
-    if (list == NULL || !names_add(c->names, NAME_NODE, full, c->node_count)) {
-        return -1;
-    }
-    c->nodes = list;
-    index = c->node_count++;
-    list[index] = (struct node){.name = full, .where = where};
-    return index;
-}
-
-static int hidden_node(struct builder *b, const char *part, const char *terminal, struct span where)
-{
-    struct circuit *c = b->circuit;
-    struct node *list =
-        arena_grow(b->arena, c->nodes, c->node_count, &c->node_capacity, sizeof *list);
-    const char *name = arena_format(b->arena, "%s.%s (inner)", part, terminal);
-    if (list == NULL || name == NULL) {
-        return -1;
-    }
-    c->nodes = list;
-    list[c->node_count] = (struct node){.name = name, .where = where, .is_hidden = true};
-    return c->node_count++;
-}
-
-static struct instance *new_instance(struct builder *b, const char *name,
-                                     const struct device_type *type, struct span where)
-{
-    struct circuit *c = b->circuit;
-    struct instance *list =
-        arena_grow(b->arena, c->instances, c->instance_count, &c->instance_capacity, sizeof *list);
-    if (list == NULL) {
-        return NULL;
-    }
-    c->instances = list;
-    struct instance *instance = &list[c->instance_count++];
-    *instance = (struct instance){.name = name, .type = type, .parent = -1, .where = where};
-    instance->own = arena_new_array(b->arena, double, type->parameter_count);
-    instance->given = arena_new_array(b->arena, bool, type->parameter_count);
-    if (instance->own == NULL || instance->given == NULL) {
-        return NULL;
-    }
-    for (int p = 0; p < type->parameter_count; p++) {
-        const struct parameter *row = &type->parameters[p];
-        instance->own[p] = row->when_absent == DEFAULT_NONE ? PARAMETER_NONE : row->standard;
-    }
-    return instance;
-}
-
-/*
- * Unknowns of an instance: local terminals (perhaps hidden nodes), law inputs, then branches, whose
- * numbers are counted from 0 here and moved behind the nodes when all nodes are known
- * (finish_unknowns).
- */
-static bool join(struct builder *b, struct instance *instance, const int *outer, const int *local,
-                 const int *inputs, int input_count)
-{
-    const struct device_type *type = instance->type;
-    const int terminals = type->terminal_count;
-    instance->local_count = terminals + input_count + type->branch_count;
-    instance->outer = arena_new_array(b->arena, int, terminals);
-    instance->local = arena_new_array(b->arena, int, instance->local_count);
-    if (instance->outer == NULL || instance->local == NULL) {
-        return false;
-    }
-    for (int t = 0; t < terminals; t++) {
-        instance->outer[t] = node_unknown(outer[t]);
-        instance->local[t] = node_unknown(local[t]);
-    }
-    for (int k = 0; k < input_count; k++) {
-        instance->local[terminals + k] = node_unknown(inputs[k]);
-    }
-    for (int k = 0; k < type->branch_count; k++) {
-        instance->local[terminals + input_count + k] = b->circuit->branch_count++;
-    }
-    return true;
-}
-
-static void finish_unknowns(struct circuit *c)
-{
-    const int nodes = c->node_count - 1;
-    for (int k = 0; k < c->instance_count; k++) {
-        struct instance *instance = &c->instances[k];
-        const int branches = instance->type->branch_count;
-        for (int l = instance->local_count - branches; l < instance->local_count; l++) {
-            instance->local[l] += nodes;
-        }
-    }
-    c->unknown_count = nodes + c->branch_count;
-}
-
-int build_holder(struct builder *b, const char *name, int node, double volts, struct span where)
-{
-    const struct device_type *type = device_find("voltage");
-    struct instance *instance = new_instance(b, name, type, where);
-    const int nodes[2] = {node, 0};
-    if (instance == NULL || !join(b, instance, nodes, nodes, NULL, 0)) {
-        return -1;
-    }
-    instance->is_hidden = true;
-    instance->own[type->value_parameter] = volts;
-    return b->circuit->instance_count - 1;
-}
-
 /* "an nmos", "a pmos". */
 static const char *article(const struct device_type *type)
 {
     return strchr("aeino", type->word[0]) != NULL ? "an" : "a";
 }
-
-/* --- parts --------------------------------------------------------------------------------- */
 
 static void unknown_word(struct builder *b, const struct statement *statement)
 {
@@ -167,10 +41,9 @@ static void unknown_word(struct builder *b, const struct statement *statement)
     for (int k = 0; k < word_count; k++) {
         b->known[count++] = words[k];
     }
-    const char *near = near_name(statement->type.text, b->known, count);
     diagnostics_add(b->diagnostics, statement->type.span,
-                    near == NULL ? "`ampstead help language` lists the statements"
-                                 : arena_format(b->arena, "did you mean '%s'?", near),
+                    hint_near(b->arena, statement->type.text, b->known, count,
+                              "docs/language.md lists the statements"),
                     "'%s' is neither a statement nor a device", statement->type.text);
 }
 
@@ -252,11 +125,10 @@ static void set_model(struct part *part, const struct assignment *a)
                 b->known[count++] = c->models[k].name;
             }
         }
-        const char *near = near_name(a->value->name, b->known, count);
         diagnostics_add(b->diagnostics, a->value->span,
-                        near != NULL ? arena_format(b->arena, "did you mean '%s'?", near)
-                        : count > 0  ? arena_format(b->arena, "there is '%s'", b->known[0])
-                                     : "no model of this kind is known: name a process",
+                        hint_near(b->arena, a->value->name, b->known, count,
+                                  hint_list(b->arena, "known: ", b->known, count,
+                                            "no model of this kind is known: name a process")),
                         "there is no model '%s'", a->value->name);
     } else if (strcmp(c->models[m].type->model_kind, part->type->model_kind) != 0) {
         diagnostics_add(b->diagnostics, a->value->span, NULL,
@@ -287,16 +159,8 @@ static void unknown_key(const struct part *part, const struct word *key)
     if (type->extra_kind == EXTRA_LAW) {
         b->known[count++] = "i";
     }
-    const char *near = near_name(key->text, b->known, count);
-    const char *hint = near == NULL ? NULL : arena_format(b->arena, "did you mean '%s'?", near);
-    if (near == NULL) {
-        struct buffer list = BUFFER_EMPTY;
-        for (int k = 0; k < count; k++) {
-            buffer_format(&list, "%s%s", k == 0 ? "known: " : ", ", b->known[k]);
-        }
-        hint = list.length == 0 ? "it takes none" : arena_copy(b->arena, list.data, list.length);
-        buffer_free(&list);
-    }
+    const char *hint = hint_near(b->arena, key->text, b->known, count,
+                                 hint_list(b->arena, "known: ", b->known, count, "it takes none"));
     diagnostics_add(b->diagnostics, key->span, hint, "%s %s has no parameter '%s'", article(type),
                     type->word, key->text);
 }
@@ -311,7 +175,6 @@ static void set_parameter(struct part *part, int p, const struct expression *val
         return;
     }
     struct expression_scope scope = frame_scope(part->frame);
-    frame_names(part->frame, &scope);
     part->given[p] = build_parameter(row, value, &scope, b->diagnostics, &part->own[p]);
     part->wrong[p] = !part->given[p];
 }
@@ -537,14 +400,14 @@ static bool add_series(struct builder *b, const struct part *part, const double 
             continue;
         }
         const char *terminal = type->terminals[row->terminal].name;
-        const int node = hidden_node(b, part->name, terminal, part->statement->name.span);
+        const int node = build_hidden_node(b, part->name, terminal, part->statement->name.span);
         const char *name = arena_format(b->arena, "%s.%s", part->name, row->model_parameter);
         struct instance *series =
             node < 0 || name == NULL
                 ? NULL
-                : new_instance(b, name, &device_series, part->statement->name.span);
+                : build_instance(b, name, &device_series, part->statement->name.span);
         const int ends[2] = {outer[row->terminal], node};
-        if (series == NULL || !join(b, series, ends, ends, NULL, 0)) {
+        if (series == NULL || !build_join(b, series, ends, ends, NULL, 0)) {
             return false;
         }
         series->own[0] =
@@ -601,7 +464,8 @@ static bool make_instance(struct part *part)
                         wrong);
         return true;
     }
-    struct instance *instance = new_instance(b, part->name, part->type, part->statement->name.span);
+    struct instance *instance =
+        build_instance(b, part->name, part->type, part->statement->name.span);
     if (instance == NULL) {
         return false;
     }
@@ -616,20 +480,10 @@ static bool make_instance(struct part *part)
     if (!add_series(b, part, model, part->nodes, local, index)) {
         return false;
     }
-    return join(b, &c->instances[index], part->nodes, local, inputs, input_count);
+    return build_join(b, &c->instances[index], part->nodes, local, inputs, input_count);
 }
 
-static bool new_name(struct builder *b, const char *name, struct span where, bool *is_new)
-{
-    const int before = names_find(b->circuit->names, NAME_INSTANCE, name);
-    *is_new = before == -1; /* the names of blocks and of rejected parts are taken, too */
-    if (!*is_new) {
-        diagnostics_add(b->diagnostics, where, "give it another name", "there are two '%s'", name);
-    }
-    return true;
-}
-
-static bool add_part(const struct frame *frame, const struct statement *statement)
+bool build_part(const struct frame *frame, const struct statement *statement)
 {
     struct builder *b = frame->builder;
     const struct device_type *type = part_type(b, statement);
@@ -653,10 +507,9 @@ static bool add_part(const struct frame *frame, const struct statement *statemen
     for (int t = 0; t < TERMINAL_LIMIT; t++) {
         part.nodes[t] = -1;
     }
-    bool is_new;
     const int errors = b->diagnostics->count;
-    if (!new_name(b, part.name, statement->name.span, &is_new) || !read_arrow(&part) ||
-        !read_assignments(&part)) {
+    const bool is_new = build_name_is_new(b, part.name, statement->name.span);
+    if (!read_arrow(&part) || !read_assignments(&part)) {
         return false;
     }
     read_value(&part);
@@ -672,317 +525,4 @@ static bool add_part(const struct frame *frame, const struct statement *statemen
     }
     return names_add(b->circuit->names, NAME_INSTANCE, part.name,
                      index < b->circuit->instance_count ? index : NAME_REJECTED);
-}
-
-/* --- blocks -------------------------------------------------------------------------------- */
-
-static bool add_use(const struct frame *outer, const struct statement *use);
-
-static bool add_body(const struct frame *frame, struct statement *const *body, int count)
-{
-    for (int k = 0; k < count; k++) {
-        const struct statement *statement = body[k];
-        if (statement->kind == STATEMENT_PART && !add_part(frame, statement)) {
-            return false;
-        }
-        if (statement->kind == STATEMENT_USE && !add_use(frame, statement)) {
-            return false;
-        }
-    }
-    return true;
-}
-
-static bool keep_value(struct frame *frame, const char *name, struct quantity value,
-                       struct span where)
-{
-    struct builder *b = frame->builder;
-    struct let_value *list = arena_grow(b->arena, frame->values, frame->value_count,
-                                        &frame->value_capacity, sizeof *list);
-    if (list == NULL) {
-        return false;
-    }
-    frame->values = list;
-    list[frame->value_count++] = (struct let_value){.name = name, .value = value, .where = where};
-    return true;
-}
-
-static const struct assignment *find_assignment(const struct statement *statement, const char *key)
-{
-    for (int k = 0; k < statement->assignment_count; k++) {
-        if (strcmp(statement->assignments[k].key.text, key) == 0) {
-            return &statement->assignments[k];
-        }
-    }
-    return NULL;
-}
-
-/* Parameters of a block: the defaults, replaced by what the use says; then its lets. */
-static bool block_values(struct frame *frame, const struct frame *outer,
-                         const struct statement *block, const struct statement *use)
-{
-    struct builder *b = frame->builder;
-    struct expression_scope scope = frame_scope(outer);
-    for (int k = 0; k < block->assignment_count; k++) {
-        const struct assignment *standard = &block->assignments[k];
-        const struct assignment *given = find_assignment(use, standard->key.text);
-        const struct expression *e = given != NULL ? given->value : standard->value;
-        struct quantity value = {.value = 1, .bare = true};
-        if (e != NULL) {
-            frame_names(outer, &scope);
-            expression_value(e, &scope, b->diagnostics, &value);
-        }
-        if (!keep_value(frame, standard->key.text, value, standard->key.span)) {
-            return false;
-        }
-    }
-    struct expression_scope inner = frame_scope(frame);
-    for (int k = 0; k < block->body_count; k++) {
-        const struct statement *let = block->body[k];
-        if (let->kind == STATEMENT_LET && let->value != NULL && let->name.text != NULL) {
-            struct quantity value = {.value = 1, .bare = true};
-            frame_names(frame, &inner);
-            expression_value(let->value, &inner, b->diagnostics, &value);
-            if (!keep_value(frame, let->name.text, value, let->name.span)) {
-                return false;
-            }
-        }
-    }
-    return true;
-}
-
-static bool block_pins(const struct frame *outer, const struct statement *block,
-                       const struct statement *use, int *nodes)
-{
-    struct builder *b = outer->builder;
-    for (int k = 0; k < block->word_count; k++) {
-        const struct assignment *a = find_assignment(use, block->words[k].text);
-        nodes[k] = 0;
-        if (a == NULL) {
-            diagnostics_add(b->diagnostics, use->name.span,
-                            arena_format(b->arena, "add %s=NODE", block->words[k].text),
-                            "%s leaves out pin '%s' of block %s", use->name.text,
-                            block->words[k].text, block->name.text);
-        } else if (a->value != NULL && a->value->kind != EXPRESSION_NAME) {
-            diagnostics_add(b->diagnostics, a->value->span, NULL, "pin %s wants the name of a node",
-                            a->key.text);
-        } else if (a->value != NULL) {
-            nodes[k] = build_node(outer, a->value->name, a->value->span);
-            if (nodes[k] < 0) {
-                return false;
-            }
-        }
-    }
-    for (int k = 0; k < use->assignment_count; k++) {
-        const struct assignment *a = &use->assignments[k];
-        bool known = find_assignment(block, a->key.text) != NULL;
-        int count = 0;
-        for (int p = 0; p < block->word_count && count < LIST_LIMIT; p++) {
-            known |= strcmp(block->words[p].text, a->key.text) == 0;
-            b->known[count++] = block->words[p].text;
-        }
-        for (int p = 0; p < block->assignment_count && count < LIST_LIMIT; p++) {
-            b->known[count++] = block->assignments[p].key.text;
-        }
-        if (!known) {
-            const char *near = near_name(a->key.text, b->known, count);
-            diagnostics_add(b->diagnostics, a->key.span,
-                            near == NULL ? NULL
-                                         : arena_format(b->arena, "did you mean '%s'?", near),
-                            "block %s has no pin or parameter '%s'", block->name.text, a->key.text);
-        }
-    }
-    return true;
-}
-
-static const struct statement *find_block(struct builder *b, const struct word *name)
-{
-    const int index = names_find(b->circuit->names, NAME_BLOCK, name->text);
-    if (index >= 0) {
-        return b->blocks[index].statement;
-    }
-    const int count = names_list(b->circuit->names, NAME_BLOCK, b->known, LIST_LIMIT);
-    const char *near = near_name(name->text, b->known, count);
-    diagnostics_add(b->diagnostics, name->span,
-                    near == NULL ? NULL : arena_format(b->arena, "did you mean '%s'?", near),
-                    "there is no block '%s'", name->text);
-    return NULL;
-}
-
-static bool add_use(const struct frame *outer, const struct statement *use)
-{
-    struct builder *b = outer->builder;
-    if (use->name.text == NULL || use->type.text == NULL) {
-        return true;
-    }
-    const struct statement *block = find_block(b, &use->type);
-    if (block == NULL) {
-        return true;
-    }
-    if (outer->depth >= BLOCK_DEPTH_LIMIT) {
-        diagnostics_add(b->diagnostics, use->name.span, NULL,
-                        "blocks that use blocks are nested deeper than %d (does %s use itself?)",
-                        BLOCK_DEPTH_LIMIT, block->name.text);
-        return true;
-    }
-    struct frame frame = {.builder = b,
-                          .outer = outer,
-                          .pins = block->words,
-                          .pin_count = block->word_count,
-                          .depth = outer->depth + 1};
-    const char *name = arena_format(b->arena, "%s%s", outer->prefix, use->name.text);
-    frame.prefix = name == NULL ? NULL : arena_format(b->arena, "%s.", name);
-    int *nodes = arena_new_array(b->arena, int, block->word_count);
-    bool is_new;
-    if (frame.prefix == NULL || nodes == NULL || !new_name(b, name, use->name.span, &is_new) ||
-        !block_pins(outer, block, use, nodes)) {
-        return false;
-    }
-    if (!is_new) {
-        return true;
-    }
-    frame.pin_nodes = nodes;
-    return names_add(b->circuit->names, NAME_INSTANCE, name, NAME_OF_BLOCK) &&
-           block_values(&frame, outer, block, use) &&
-           add_body(&frame, block->body, block->body_count);
-}
-
-static bool collect_blocks(struct builder *b)
-{
-    for (int k = 0; k < b->cell->tree.count; k++) {
-        const struct statement *statement = b->cell->tree.statements[k];
-        if (statement->kind != STATEMENT_BLOCK || statement->name.text == NULL) {
-            continue;
-        }
-        if (names_find(b->circuit->names, NAME_BLOCK, statement->name.text) >= 0) {
-            diagnostics_add(b->diagnostics, statement->name.span, "give it another name",
-                            "there are two blocks called '%s'", statement->name.text);
-            continue;
-        }
-        struct block_entry *list =
-            arena_grow(b->arena, b->blocks, b->block_count, &b->block_capacity, sizeof *list);
-        if (list == NULL ||
-            !names_add(b->circuit->names, NAME_BLOCK, statement->name.text, b->block_count)) {
-            return false;
-        }
-        b->blocks = list;
-        list[b->block_count++] = (struct block_entry){statement};
-    }
-    return true;
-}
-
-/* --- rails --------------------------------------------------------------------------------- */
-
-static bool add_rail(const struct frame *top, const struct statement *statement)
-{
-    struct builder *b = top->builder;
-    struct circuit *c = b->circuit;
-    const char *name = statement->name.text;
-    struct expression_scope scope = frame_scope(top);
-    frame_names(top, &scope);
-    double volts = 1;
-    if (statement->value != NULL) {
-        expression_wanted(statement->value, &scope, DIMENSION_VOLTAGE, b->diagnostics, &volts);
-    }
-    if (strcmp(name, "gnd") == 0 || names_find(c->names, NAME_RAIL, name) >= 0) {
-        diagnostics_add(b->diagnostics, statement->name.span, NULL,
-                        strcmp(name, "gnd") == 0 ? "gnd is 0 V already and cannot be a rail"
-                                                 : "there are two rails at one node");
-        return true;
-    }
-    const int node = build_node(top, name, statement->name.span);
-    struct rail *list =
-        arena_grow(b->arena, c->rails, c->rail_count, &c->rail_capacity, sizeof *list);
-    const int instance =
-        node < 0 || list == NULL ? -1 : build_holder(b, name, node, volts, statement->name.span);
-    if (instance < 0 || !names_add(c->names, NAME_RAIL, name, c->rail_count)) {
-        return false;
-    }
-    c->rails = list;
-    list[c->rail_count++] = (struct rail){.name = name,
-                                          .unknown = node_unknown(node),
-                                          .instance = instance,
-                                          .volts = volts,
-                                          .where = statement->name.span};
-    return true;
-}
-
-static bool add_output(const struct frame *top, const struct statement *statement)
-{
-    struct builder *b = top->builder;
-    struct circuit *c = b->circuit;
-    struct expression_scope scope = frame_scope(top);
-    frame_names(top, &scope);
-    struct output out = {
-        .name = statement->name.text, .within = 0.01, .where = statement->name.span};
-    if (statement->at == NULL || statement->from == NULL || statement->to == NULL) {
-        return true;
-    }
-    /* all three, so that each error is told */
-    bool good =
-        expression_wanted(statement->at, &scope, DIMENSION_VOLTAGE, b->diagnostics, &out.at);
-    good =
-        expression_wanted(statement->from, &scope, DIMENSION_VOLTAGE, b->diagnostics, &out.from) &&
-        good;
-    good = expression_wanted(statement->to, &scope, DIMENSION_VOLTAGE, b->diagnostics, &out.to) &&
-           good;
-    if (statement->within != NULL &&
-        expression_share(statement->within, &scope, b->diagnostics, &out.within) &&
-        !(out.within > 0 && out.within < 1)) {
-        diagnostics_add(b->diagnostics, statement->within->span, "within 1%",
-                        "the band of an output lies between 0 and 100 %%");
-    }
-    if (out.from > out.to) {
-        const double turned = out.from;
-        out.from = out.to;
-        out.to = turned;
-    }
-    if (good && !(out.from < out.to)) {
-        diagnostics_add(b->diagnostics, statement->to->span, NULL,
-                        "the sweep of an output needs two different voltages");
-    } else if (good && !(out.at >= out.from && out.at <= out.to)) {
-        diagnostics_add(b->diagnostics, statement->at->span, "move `at`, or widen from ... to",
-                        "the voltage at which output '%s' is judged lies outside its sweep",
-                        out.name);
-    }
-    if (strcmp(out.name, "gnd") == 0 || names_find(c->names, NAME_OUTPUT, out.name) >= 0) {
-        diagnostics_add(b->diagnostics, statement->name.span, NULL,
-                        strcmp(out.name, "gnd") == 0 ? "gnd cannot be an output"
-                                                     : "there are two outputs at one node");
-        return true;
-    }
-    const int node = build_node(top, out.name, out.where);
-    struct output *list =
-        arena_grow(b->arena, c->outputs, c->output_count, &c->output_capacity, sizeof *list);
-    out.instance =
-        node < 0 || list == NULL ? -1 : build_holder(b, out.name, node, out.at, out.where);
-    if (out.instance < 0 || !names_add(c->names, NAME_OUTPUT, out.name, c->output_count)) {
-        return false;
-    }
-    out.unknown = node_unknown(node);
-    c->outputs = list;
-    list[c->output_count++] = out;
-    return true;
-}
-
-bool build_parts(struct builder *b)
-{
-    const struct frame top = {.builder = b, .prefix = ""};
-    const struct tree *tree = &b->cell->tree;
-    for (int k = 0; k < tree->count; k++) { /* first: they decide the bulk of p-channel devices */
-        if (tree->statements[k]->kind == STATEMENT_RAIL && tree->statements[k]->name.text != NULL &&
-            !add_rail(&top, tree->statements[k])) {
-            return false;
-        }
-    }
-    if (!collect_blocks(b) || !add_body(&top, tree->statements, tree->count)) {
-        return false;
-    }
-    for (int k = 0; k < tree->count; k++) {
-        if (tree->statements[k]->kind == STATEMENT_OUTPUT &&
-            tree->statements[k]->name.text != NULL && !add_output(&top, tree->statements[k])) {
-            return false;
-        }
-    }
-    finish_unknowns(b->circuit);
-    return true;
 }

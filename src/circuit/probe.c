@@ -78,10 +78,7 @@ static void unknown_thing(const struct circuit *c, const char *thing, struct spa
     for (size_t k = 0; k < sizeof sorts / sizeof sorts[0]; k++) {
         count += names_list(c->names, sorts[k], list + count, LIST_LIMIT - count);
     }
-    const char *near = near_name(thing, list, count);
-    diagnostics_add(diagnostics, where,
-                    near == NULL ? NULL
-                                 : arena_format(diagnostics->arena, "did you mean '%s'?", near),
+    diagnostics_add(diagnostics, where, hint_near(diagnostics->arena, thing, list, count, NULL),
                     "nothing is called '%s'", thing);
 }
 
@@ -91,21 +88,16 @@ static void unknown_quantity(const struct sort *sorts, int count, const char *th
 {
     const char *list[200];
     int known = 0;
-    struct buffer all = BUFFER_EMPTY;
     for (int s = 0; s < count; s++) {
         for (int r = 0; r < sorts[s].row_count && known < 200; r++) {
             list[known++] = sorts[s].rows[r].name;
-            buffer_format(&all, "%s%s", known == 1 ? "it has: " : " ", sorts[s].rows[r].name);
         }
     }
-    const char *near = near_name(quantity, list, known);
-    const char *hint = near != NULL ? arena_format(diagnostics->arena, "did you mean '%s'?", near)
-                       : all.length > 0 ? arena_copy(diagnostics->arena, all.data, all.length)
-                                        : NULL;
-    buffer_free(&all);
-    if (strcmp(thing, "gnd") == 0) {
-        hint = "gnd is 0 V by itself";
-    }
+    struct arena *arena = diagnostics->arena;
+    const char *hint = strcmp(thing, "gnd") == 0
+                           ? "gnd is 0 V by itself"
+                           : hint_near(arena, quantity, list, known,
+                                       hint_list(arena, "it has: ", list, known, NULL));
     diagnostics_add(diagnostics, where, hint, "%s has no quantity '%s'", thing, quantity);
 }
 
@@ -248,10 +240,9 @@ bool circuit_knob(const struct circuit *c, const char *name, struct span where,
     for (size_t k = 0; k < sizeof sorts / sizeof sorts[0]; k++) {
         count += names_list(c->names, sorts[k], list + count, LIST_LIMIT - count);
     }
-    const char *near = near_name(text, list, count);
     diagnostics_add(diagnostics, where,
-                    near == NULL ? "a rail, let, source, resistor, output, M1.W or temperature"
-                                 : arena_format(diagnostics->arena, "did you mean '%s'?", near),
+                    hint_near(diagnostics->arena, text, list, count,
+                              "a rail, let, source, resistor, output, M1.W or temperature"),
                     "'%s' is nothing that can be turned", text);
     return false;
 }

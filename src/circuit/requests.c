@@ -16,7 +16,6 @@ static bool read_as(struct builder *b, const struct expression *e, struct dimens
 {
     const struct frame top = {.builder = b, .prefix = ""};
     struct expression_scope scope = frame_scope(&top);
-    frame_names(&top, &scope);
     if (e == NULL) {
         return false;
     }
@@ -75,7 +74,6 @@ static bool read_tolerance(struct builder *b, const struct expression *e, struct
 {
     const struct frame top = {.builder = b, .prefix = ""};
     struct expression_scope scope = frame_scope(&top);
-    frame_names(&top, &scope);
     struct quantity found;
     if (e == NULL || !expression_value(e, &scope, b->diagnostics, &found)) {
         return false;
@@ -141,7 +139,6 @@ static bool read_knob(struct builder *b, const struct knob *knob, const struct e
     if (e != NULL && knob->kind == KNOB_LET && b->circuit->lets[knob->parameter].value.bare) {
         const struct frame top = {.builder = b, .prefix = ""};
         struct expression_scope scope = frame_scope(&top);
-        frame_names(&top, &scope);
         struct quantity found;
         if (!expression_value(e, &scope, b->diagnostics, &found)) {
             return false;
@@ -177,8 +174,6 @@ static bool read_range(struct builder *b, const struct knob *knob,
            in_range(b, knob, *to, statement->to->span);
 }
 
-enum { SWEEP_POINT_LIMIT = 100000 };
-
 static bool read_family(struct builder *b, const struct statement *statement, struct sweep *sweep)
 {
     struct circuit *c = b->circuit;
@@ -198,6 +193,19 @@ static bool read_family(struct builder *b, const struct statement *statement, st
     return sweep->family_values != NULL;
 }
 
+/* False after an error: the tables of all sweeps would be too long. */
+static bool count_values(struct builder *b, const struct sweep *sweep)
+{
+    const double points = sweep->points > 0 ? sweep->points : CIRCUIT_POINT_STANDARD;
+    b->sweep_values += points * sweep->shown_count * (sweep->has_family ? sweep->family_count : 1);
+    if (b->sweep_values <= CIRCUIT_SWEEP_LIMIT) {
+        return true;
+    }
+    diagnostics_add(b->diagnostics, sweep->where, "fewer points, quantities or families",
+                    "the sweeps have more than %d values, the limit", CIRCUIT_SWEEP_LIMIT);
+    return false;
+}
+
 static bool read_sweep(struct builder *b, const struct statement *statement, struct sweep *sweep)
 {
     struct circuit *c = b->circuit;
@@ -208,9 +216,9 @@ static bool read_sweep(struct builder *b, const struct statement *statement, str
     if (statement->points != NULL) {
         double points = 0;
         good &= read_as(b, statement->points, DIMENSION_NONE, false, &points);
-        if (good && !(points >= 2 && points <= SWEEP_POINT_LIMIT)) {
+        if (good && !(points >= 2 && points <= CIRCUIT_POINT_LIMIT)) {
             diagnostics_add(b->diagnostics, statement->points->span, NULL,
-                            "a sweep has 2 to %d points", SWEEP_POINT_LIMIT);
+                            "a sweep has 2 to %d points", CIRCUIT_POINT_LIMIT);
             good = false;
         } else if (good) {
             sweep->points = (int)points;
@@ -225,7 +233,7 @@ static bool read_sweep(struct builder *b, const struct statement *statement, str
     if (statement->thing2.text != NULL) {
         good &= read_family(b, statement, sweep);
     }
-    return good && sweep->shown != NULL;
+    return good && sweep->shown != NULL && count_values(b, sweep);
 }
 
 bool circuit_sweep(const struct circuit *circuit, const struct statement *statement,
@@ -334,10 +342,9 @@ static void check_quiet(struct builder *b, const struct statement *statement)
         }
     }
     if (count >= 0) {
-        const char *near = near_name(code->text, b->known, count);
         diagnostics_add(b->diagnostics, code->span,
-                        near == NULL ? "the codes stand beside the cautions of a review"
-                                     : arena_format(b->arena, "did you mean '%s'?", near),
+                        hint_near(b->arena, code->text, b->known, count,
+                                  "the codes stand beside the cautions of a review"),
                         "there is no caution '%s'", code->text);
     }
     static const enum name_sort sorts[] = {NAME_INSTANCE, NAME_NODE, NAME_OUTPUT, NAME_MODEL,
@@ -350,9 +357,8 @@ static void check_quiet(struct builder *b, const struct statement *statement)
         count += names_list(names, sorts[k], b->known + count, LIST_LIMIT - count);
     }
     if (name->text != NULL) {
-        const char *near = near_name(name->text, b->known, count);
         diagnostics_add(b->diagnostics, name->span,
-                        near == NULL ? NULL : arena_format(b->arena, "did you mean '%s'?", near),
+                        hint_near(b->arena, name->text, b->known, count, NULL),
                         "nothing is called '%s'", name->text);
     }
 }
@@ -399,7 +405,11 @@ bool build_requests(struct builder *b)
 {
     b->circuit->title = "";
     for (int k = 0; k < b->cell->tree.count; k++) {
-        if (!add_request(b, b->cell->tree.statements[k])) {
+        const struct statement *statement = b->cell->tree.statements[k];
+        if (build_is_over_limit(b, statement->span)) {
+            break;
+        }
+        if (!add_request(b, statement)) {
             return false;
         }
     }

@@ -108,6 +108,9 @@ bool output_file(const char *path, const char *bytes, size_t length)
     }
     /* a link stays a link: the file behind it is replaced */
     char *target = exists ? realpath(path, NULL) : NULL;
+    if (exists && target == NULL) {
+        return complain(path, errno);
+    }
     int error = write_renamed(target != NULL ? target : path, bytes, length,
                               wanted_mode(exists ? &old : NULL));
     free(target);

@@ -199,12 +199,13 @@ static void prepare_pnp(const struct device_values *values,
     prepare(values, conditions, prepared, -1);
 }
 
-/* On: a junction carries a thousand saturation currents (0.18 V at 27 C and above). */
+/* On: a junction carries a hundred saturation currents (0.12 V at 27 C); at 85 C that is nanoamperes,
+ * and a transistor there still works as a current source. */
 static unsigned region_of(const struct bipolar_prepared *p, const double *inner, double vce)
 {
     double vbe = p->polarity * (inner[BIPOLAR_B] - inner[BIPOLAR_E]);
     double vbc = p->polarity * (inner[BIPOLAR_B] - inner[BIPOLAR_C]);
-    double least = log(1e3);
+    double least = log(100);
     if (!(vbe > least * p->thermal_f) && !(vbc > least * p->thermal_r)) {
         return REGION_OFF;
     }

@@ -366,8 +366,10 @@ void expression_unknown_name(const char *name, struct span where,
                              const struct expression_scope *scope, struct diagnostics *diagnostics)
 {
     const char *near = NULL;
-    if (scope->names != NULL && diagnostics->count < NEAR_LIMIT) {
-        near = near_name(name, scope->names, scope->name_count);
+    if (scope->list != NULL && diagnostics->count < NEAR_LIMIT) {
+        const char *const *names = NULL;
+        const int count = scope->list(scope->self, &names);
+        near = near_name(name, names, count);
     }
     if (near == NULL) {
         static const char *const constants[] = {"pi", "thermal_voltage"};

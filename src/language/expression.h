@@ -14,8 +14,9 @@
 struct expression_scope {
     bool (*find)(void *self, const char *name, struct span where, struct quantity *value);
     void *self;
-    const char *const *names; /* all names known, for near names; may be NULL */
-    int name_count;
+    /* All names known, for near names: fills *names, returns how many; asked only when a name is
+     * unknown. NULL: none. */
+    int (*list)(void *self, const char *const **names);
     double thermal_voltage; /* kT/q at the cell's temperature, V */
 };
 

@@ -164,6 +164,16 @@ enum status source_add_text(struct arena *arena, struct source_set *sources, con
         text += 3;
         length -= 3;
     }
+    size_t total = length;
+    for (int k = 0; k < sources->count; k++) {
+        total += sources->files[k].length;
+    }
+    if (total > LANGUAGE_TOTAL_LIMIT) {
+        diagnostics_add(diagnostics, SPAN_NONE, NULL,
+                        "with '%s' the files of the cell are longer than the limit of %d bytes",
+                        name, LANGUAGE_TOTAL_LIMIT);
+        return diagnostics->out_of_memory ? STATUS_MEMORY : STATUS_INPUT;
+    }
     struct source_file *files =
         arena_grow(arena, sources->files, sources->count, &sources->capacity, sizeof *files);
     if (files == NULL) {

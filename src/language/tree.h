@@ -15,13 +15,14 @@
 
 /* Limits; each message that meets one prints it. */
 enum {
-    LANGUAGE_FILE_LIMIT = 4 * 1024 * 1024, /* bytes of one file */
-    LANGUAGE_NAME_LIMIT = 100,             /* bytes of one name */
-    LANGUAGE_DEPTH_LIMIT = 64,             /* nested parentheses, calls, signs and powers */
-    LANGUAGE_TERM_LIMIT = 10000,           /* operators of one expression */
-    LANGUAGE_TOKEN_LIMIT = 100000,         /* words, numbers and signs of one statement */
-    LANGUAGE_STATEMENT_LIMIT = 2000000,    /* statements of one file */
-    LANGUAGE_ERROR_LIMIT = 1000            /* errors after which the rest of a file is not read */
+    LANGUAGE_FILE_LIMIT = 4 * 1024 * 1024,   /* bytes of one file */
+    LANGUAGE_TOTAL_LIMIT = 16 * 1024 * 1024, /* bytes of a cell and all files it names */
+    LANGUAGE_NAME_LIMIT = 100,               /* bytes of one name */
+    LANGUAGE_DEPTH_LIMIT = 64,               /* nested parentheses, calls, signs and powers */
+    LANGUAGE_TERM_LIMIT = 10000,             /* operators of one expression */
+    LANGUAGE_TOKEN_LIMIT = 100000,           /* words, numbers and signs of one statement */
+    LANGUAGE_STATEMENT_LIMIT = 2000000,      /* statements of one file */
+    LANGUAGE_ERROR_LIMIT = 1000              /* errors after which the rest of a file is not read */
 };
 
 enum expression_kind {

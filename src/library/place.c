@@ -17,14 +17,12 @@ char *place_models(void)
     if (dladdr(&inside, &info) != 0 && info.dli_fname != NULL) {
         slash = strrchr(info.dli_fname, '/');
     }
-    if (slash == NULL) {
-        return strdup(installed);
-    }
-    size_t length = (size_t)(slash - info.dli_fname) + 1;
-    char *path = malloc(length + sizeof way);
+    size_t length = slash == NULL ? 0 : (size_t)(slash - info.dli_fname) + 1;
+    const char *rest = slash == NULL ? installed : way;
+    char *path = malloc(length + strlen(rest) + 1);
     if (path != NULL) {
-        memcpy(path, info.dli_fname, length);
-        memcpy(path + length, way, sizeof way);
+        memcpy(path, slash == NULL ? "" : info.dli_fname, length);
+        strcpy(path + length, rest);
     }
     return path;
 }

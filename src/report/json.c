@@ -9,6 +9,8 @@
 #include <stdlib.h>
 #include <string.h>
 
+#include "base/utf8.h"
+
 enum { SCHEMA_VERSION = 1, DIGITS = 17 };
 
 /* The functions below add one key. A failed allocation marks the writer and the rest does nothing
@@ -38,18 +40,37 @@ static void put_number(struct writer *writer, json_t *object, const char *key, d
     }
 }
 
-/* A string; bytes that are no UTF-8 (a file name may hold any) become '?'. */
+static bool is_utf8(const char *text)
+{
+    const size_t length = strlen(text);
+    for (size_t at = 0; at < length;) {
+        uint32_t character;
+        const size_t bytes = utf8_decode(text + at, length - at, &character);
+        if (bytes == 0) {
+            return false;
+        }
+        at += bytes;
+    }
+    return true;
+}
+
+/* A string; NULL when memory is short. Of a text that is no UTF-8 (a file name may hold any bytes)
+ * all that is not ASCII becomes '?'. */
 static json_t *make_text(const char *text)
 {
-    json_t *value = json_string(text);
-    char *plain = value == NULL ? strdup(text) : NULL;
-    if (plain != NULL) {
-        for (char *at = plain; *at != '\0'; at++) {
-            *at = (char)((unsigned char)*at < 0x80 ? *at : '?');
-        }
-        value = json_string(plain);
-        free(plain);
+    if (is_utf8(text)) {
+        return json_string(text);
     }
+    const size_t size = strlen(text) + 1;
+    char *plain = malloc(size);
+    if (plain == NULL) {
+        return NULL;
+    }
+    for (size_t k = 0; k < size; k++) {
+        plain[k] = (char)((unsigned char)text[k] < 0x80 ? text[k] : '?');
+    }
+    json_t *value = json_string(plain);
+    free(plain);
     return value;
 }
 
@@ -330,7 +351,8 @@ void report_json(const struct result *result, const char *version, struct buffer
     json_t *root = json_object();
     put_heading(&writer, root, version, result->command, result->circuit, result->kelvin);
     put_text(&writer, root, "view", result->view == VIEW_HAND ? "hand" : "full");
-    put_text(&writer, root, "verdict", verdict_text(result->verdict));
+    put_text(&writer, root, "verdict",
+             result->is_stopped ? "stopped" : verdict_text(result->verdict));
     put_solver(&writer, root, &result->point.solver);
     if (result->point.solver.converged) {
         put_point(&writer, root, result);

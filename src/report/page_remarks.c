@@ -2,32 +2,57 @@
 #include "report/page_parts.h"
 
 #include <math.h>
+#include <stdbool.h>
 #include <string.h>
 
 #include "report/show.h"
 
+static void one_caution(struct layout *layout, const struct caution *caution)
+{
+    const char *thing = layout_clean(layout, caution->thing);
+    const char *text = layout_clean(layout, caution->text);
+    if (strncmp(text, thing, strlen(thing)) == 0) {
+        thing = ""; /* the text names it already */
+    }
+    const char *place = "";
+    if (caution->line > 0) {
+        place = layout_format(layout, ", line %d", caution->line);
+    }
+    layout_paragraph(layout, TONE_PLAIN, 2,
+                     layout_format(layout, "%s %s%s%s  [%s%s]",
+                                   layout->style.ascii ? "-" : "\xC2\xB7", thing,
+                                   *thing != '\0' ? ": " : "", text, caution->code, place));
+}
+
+static bool seen_before(const struct caution_list *cautions, int index)
+{
+    for (int k = 0; k < index; k++) {
+        if (strcmp(cautions->list[k].code, cautions->list[index].code) == 0) {
+            return true;
+        }
+    }
+    return false;
+}
+
+/* Those of one kind stand together, with the rule behind them said once. */
 void page_cautions(struct layout *layout, const struct result *result)
 {
+    const struct caution_list *cautions = &result->cautions;
     layout_part(layout, "cautions");
-    for (int k = 0; k < result->cautions.count; k++) {
-        const struct caution *caution = &result->cautions.list[k];
-        const char *thing = layout_clean(layout, caution->thing);
-        const char *text = layout_clean(layout, caution->text);
-        if (strncmp(text, thing, strlen(thing)) == 0) {
-            thing = ""; /* the text names it already */
+    for (int k = 0; k < cautions->count; k++) {
+        const struct caution *first = &cautions->list[k];
+        if (seen_before(cautions, k)) {
+            continue;
         }
-        const char *place = "";
-        if (caution->line > 0) {
-            place = layout_format(layout, ", line %d", caution->line);
+        for (int m = k; m < cautions->count; m++) {
+            if (strcmp(cautions->list[m].code, first->code) == 0) {
+                one_caution(layout, &cautions->list[m]);
+            }
         }
-        layout_paragraph(layout, TONE_PLAIN, 2,
-                         layout_format(layout, "%s %s%s%s  [%s%s]",
-                                       layout->style.ascii ? "-" : "\xC2\xB7", thing,
-                                       *thing != '\0' ? ": " : "", text, caution->code, place));
-        if (caution->rule != NULL) {
+        if (first->rule != NULL) {
             layout_paragraph(
                 layout, TONE_QUIET, 2,
-                layout_format(layout, "  rule: %s", layout_clean(layout, caution->rule)));
+                layout_format(layout, "  rule: %s", layout_clean(layout, first->rule)));
         }
     }
 }

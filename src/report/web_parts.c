@@ -142,36 +142,57 @@ void web_paper(struct layout *layout, const struct result *result)
     web_table_end(&table);
 }
 
-void web_cautions(struct layout *layout, const struct result *result)
+static void one_caution(struct layout *layout, const struct caution *caution)
 {
     struct buffer *out = layout->out;
-    if (result->cautions.count == 0) {
+    buffer_text(out, "<li>");
+    if (strncmp(caution->text, caution->thing, strlen(caution->thing)) != 0) {
+        web_text(layout, caution->thing);
+        buffer_text(out, ": ");
+    }
+    web_text(layout, caution->text);
+    if (caution->line > 0) {
+        buffer_format(out, ", <a href=\"#L%d\">line %d</a>", caution->line, caution->line);
+    }
+    buffer_text(out, "</li>\n");
+}
+
+static bool seen_before(const struct caution_list *cautions, int index)
+{
+    for (int k = 0; k < index; k++) {
+        if (strcmp(cautions->list[k].code, cautions->list[index].code) == 0) {
+            return true;
+        }
+    }
+    return false;
+}
+
+/* Those of one kind stand together, with the rule behind them said once. */
+void web_cautions(struct layout *layout, const struct result *result)
+{
+    const struct caution_list *cautions = &result->cautions;
+    struct buffer *out = layout->out;
+    if (cautions->count == 0) {
         return;
     }
     web_heading(layout, "cautions", "Cautions");
-    buffer_text(out, "<ul class=\"cautions\">\n");
-    for (int k = 0; k < result->cautions.count; k++) {
-        const struct caution *caution = &result->cautions.list[k];
-        buffer_text(out, "<li>");
-        if (strncmp(caution->text, caution->thing, strlen(caution->thing)) != 0) {
-            web_text(layout, caution->thing);
-            buffer_text(out, ": ");
+    for (int k = 0; k < cautions->count; k++) {
+        const struct caution *first = &cautions->list[k];
+        if (seen_before(cautions, k)) {
+            continue;
         }
-        web_text(layout, caution->text);
-        buffer_text(out, " <code>");
-        web_text(layout, caution->code);
-        buffer_text(out, "</code>");
-        if (caution->line > 0) {
-            buffer_format(out, ", <a href=\"#L%d\">line %d</a>", caution->line, caution->line);
+        buffer_text(out, "<p><code>");
+        web_text(layout, first->code);
+        buffer_text(out, "</code> <span class=\"quiet\">");
+        web_text(layout, first->rule != NULL ? first->rule : "");
+        buffer_text(out, "</span></p>\n<ul class=\"cautions\">\n");
+        for (int m = k; m < cautions->count; m++) {
+            if (strcmp(cautions->list[m].code, first->code) == 0) {
+                one_caution(layout, &cautions->list[m]);
+            }
         }
-        if (caution->rule != NULL) {
-            buffer_text(out, "<br><span class=\"quiet\">");
-            web_text(layout, caution->rule);
-            buffer_text(out, "</span>");
-        }
-        buffer_text(out, "</li>\n");
+        buffer_text(out, "</ul>\n");
     }
-    buffer_text(out, "</ul>\n");
 }
 
 void web_cell(struct layout *layout, const struct result *result)

@@ -63,7 +63,7 @@ static void test_square_law_diode(void **state)
 }
 
 /* Enz and Vittoz: ID = 2 n beta UT^2 (q^2 + q), 2q + ln q = (VG - VT)/UT, saturated; here the bare
- * core of models.md section 1 (n = 1), from weak to strong inversion, n- and p-channel. */
+ * core of docs/devices.md (n = 1), from weak to strong inversion, n- and p-channel. */
 static void test_charge_model(void **state)
 {
     (void)state;
@@ -203,6 +203,39 @@ static void test_extremes(void **state)
     run_close(&run);
 }
 
+/* The start of a search: self-biased loops, switches that are off, opamp loops and wires beside
+ * megohms are found from cold in a few steps, in the running state. */
+static void test_cold_start(void **state)
+{
+    (void)state;
+    static const struct {
+        const char *text, *quantity;
+        double least; /* of the running state */
+    } rows[] = {
+        {"process \"n180.process\"\nrail vdd 1.8 V\nnmos M1 d=nb g=nb s=gnd W=4u L=4u\n"
+         "nmos M2 d=pb g=nb s=deg W=4u L=4u m=4\nresistor R deg -> gnd 15k\n"
+         "pmos M3 d=nb g=pb s=vdd W=24u L=4u\npmos M4 d=pb g=pb s=vdd W=24u L=4u\n"
+         "pmos MS1 d=st g=nb s=vdd W=0.5u L=20u\nnmos MS2 d=st g=nb s=gnd W=4u L=0.5u\n"
+         "nmos MS3 d=pb g=st s=gnd W=1u L=0.5u\n",
+         "M1.id", 8e-6},
+        {"rail vcc 9 V\nrail set 0.5 V\nopamp A1 out=g plus=set minus=s gain=1e5 low=gnd high=vcc "
+         "offset=1mV\nnmos M1 d=vcc g=g s=s b=s conduction=0.4 A/V^2 threshold=2 V slope=1.3\n"
+         "resistor RS s -> gnd 5\n",
+         "M1.id", 0.1},
+        {"rail vcc 60 V\nresistor W1 vcc -> c 1m\nresistor RB c -> b 5.6M\n"
+         "npn Q1 c=b b=b e=e\nresistor W2 e -> gnd 1m\n",
+         "Q1.ic", 1e-6},
+    };
+    for (size_t k = 0; k < sizeof rows / sizeof rows[0]; k++) {
+        struct run run;
+        run_review(&run, rows[k].text, VIEW_FULL);
+        assert_string_equal(run.result->point.solver.method, "direct");
+        assert_true(run.result->point.solver.iterations <= 20);
+        assert_true(value_of(&run, rows[k].quantity) > rows[k].least);
+        run_close(&run);
+    }
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -216,6 +249,7 @@ int main(void)
         cmocka_unit_test(test_jfet_source),
         cmocka_unit_test(test_zener),
         cmocka_unit_test(test_extremes),
+        cmocka_unit_test(test_cold_start),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

@@ -93,7 +93,7 @@ static void test_unlimited(void **state)
 /* --- compliance and band -------------------------------------------------------------------------
  */
 
-/* Bare core of models.md section 1: vdsat = UT (2 q + 4), whatever the drain does. */
+/* Bare core of docs/devices.md: vdsat = UT (2 q + 4), whatever the drain does. */
 static void test_compliance(void **state)
 {
     (void)state;
@@ -307,6 +307,43 @@ static void test_curve(void **state)
                 3);
 }
 
+/* A branch current enters its node as it is: femtoamperes at a held node are as exact as amperes.
+ * Bare core of docs/devices.md at every point of the curve. */
+static void test_small_current(void **state)
+{
+    (void)state;
+    struct run run;
+    run_review(&run,
+               BARE "rail vdd 3 V\ncurrent I1 vdd -> a 20 fA\n"
+                    "nmos M1 d=a g=a s=gnd W=4u L=8u\nnmos M2 d=o g=a s=gnd W=28u L=8u\n"
+                    "output o at 1 V from 0.01 V to 3 V\n",
+               VIEW_FULL);
+    const double u = thermal(300.15), vg = value_of(&run, "a.v") - 0.45;
+    const struct output_result *o = output_of(&run, "o");
+    const double q = charge_of(vg / u);
+    for (int k = 0; k < o->curve.count; k++) {
+        const double d = charge_of((vg - o->curve.v[k]) / u);
+        check_near(o->curve.current[k], 2 * 300e-6 * 3.5 * u * u * (q * q + q - d * d - d), 1e-9);
+    }
+    run_close(&run);
+}
+
+/* A bipolar source of nanoamperes in the heat still has a compliance: 0.2 V above its emitter. */
+static void test_hot_bipolar_compliance(void **state)
+{
+    (void)state;
+    struct run run;
+    run_open(&run,
+             "process \"bench.process\"\nrail vcc 5 V\nresistor RB vcc -> b 10k\n"
+             "npn Q1 c=b b=b e=gnd\nnpn Q2 c=o b=b e=e2\nresistor RE e2 -> gnd 10M\n"
+             "output o at 2 V from 0 V to 5 V\n",
+             VERB_REVIEW, VIEW_FULL, 358.15);
+    assert_int_equal(run.status, STATUS_OK);
+    /* e2 moves little between 2 V and the edge: 0.3 mV */
+    assert_true(fabs(value_of(&run, "o.compliance") - (value_of(&run, "e2.v") + 0.2)) < 2e-3);
+    run_close(&run);
+}
+
 /* Two outputs: while one is swept the other stays at its own `at`. */
 static void test_two_outputs(void **state)
 {
@@ -343,6 +380,8 @@ int main(void)
         cmocka_unit_test(test_sigma),
         cmocka_unit_test(test_curve),
         cmocka_unit_test(test_two_outputs),
+        cmocka_unit_test(test_small_current),
+        cmocka_unit_test(test_hot_bipolar_compliance),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

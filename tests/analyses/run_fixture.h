@@ -97,7 +97,7 @@ static inline double lambert_of_exponent(double z)
     return (double)expl(y);
 }
 
-/* 2q + ln q = v, the normalised charge of models.md section 1. */
+/* 2q + ln q = v, the normalised charge of docs/devices.md */
 static inline double charge_of(double v)
 {
     return lambert_of_exponent(v + 0.69314718055994530942) / 2;

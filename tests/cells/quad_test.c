@@ -1,6 +1,6 @@
 /*
  * quad_test.c: the reference itself against the published check values of the transistor model
- * (models.md, section 1.2: 30-digit arithmetic of its authors), solved from zero.
+ * (docs/devices.md: 30-digit arithmetic of its authors), solved from zero.
  */
 #include <stdarg.h>
 #include <stddef.h>

@@ -120,7 +120,7 @@ static void test_terminals(void **state)
     check_near(own(c, "M2", "W"), 3e-6, 1e-15);
     check_near(own(c, "M2", "m"), 4, 0);
     check_near(own(c, "M5", "conduction"), 1e-3, 1e-15);
-    check_near(own(c, "M5", "slope"), 1.3, 0); /* models.md section 6 */
+    check_near(own(c, "M5", "slope"), 1.3, 0); /* docs/devices.md */
     check_near(own(c, "R1", "resistance"), 4700, 0);
     check_near(own(c, "R2", "resistance"), 1.5e6, 0);
     /* unknowns: x, y, vdd, vee and the branch currents of the two rails */
@@ -242,7 +242,7 @@ static void test_default_model(void **state)
     const struct circuit *c = open_good(&bench, text, NULL);
     check_near(of_model(c, "M1", "threshold"), 0.4, 0);
     check_near(of_model(c, "M2", "threshold"), 0.3, 0);
-    /* left out: the defaults of models.md, sections 1 and 2 */
+    /* left out: the defaults of docs/devices.md */
     check_near(of_model(c, "M1", "phi"), 0.8, 0);
     check_near(of_model(c, "M1", "threshold_tempco"), -1e-3, 0);
     assert_true(isnan(of_model(c, "M1", "early")));

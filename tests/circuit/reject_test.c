@@ -130,7 +130,7 @@ static void test_late_names(void **state)
     assert_non_null(bench.out.data);
     static const char *const said[] = {"R1 has no quantity 'ii'\n",
                                        "'R1' has no dot\n",
-                                       "it has: v current power",
+                                       "it has: v, current, power",
                                        "gnd has no quantity 'v'\n",
                                        "'R1.tolerance' is nothing that can be turned\n",
                                        "'R1.value_shift' is nothing that can be turned\n"};

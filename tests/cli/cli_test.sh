@@ -9,6 +9,8 @@ work=$(mktemp -d) || exit 1
 trap 'rm -rf "$work"' EXIT
 failures=0
 unset NO_COLOR
+LSAN_OPTIONS=suppressions=$source/tests/support/leaks.txt:print_suppressions=0
+export LSAN_OPTIONS
 
 fail() {
     echo "FAILED: $*"

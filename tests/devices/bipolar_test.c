@@ -92,7 +92,7 @@ static void open_collector_rests_at_its_saturation_voltage(void **state)
     assert_int_equal(region(&it, x), REGION_ON | REGION_TRIODE);
 }
 
-/* models.md section 3: betas go as (T/T0)^r, leakage as (T/T0)^(p/n_L - r) times the bandgap
+/* docs/devices.md: betas go as (T/T0)^r, leakage as (T/T0)^(p/n_L - r) times the bandgap
  * term; spelled out for one temperature. */
 static void gain_and_leakage_follow_temperature(void **state)
 {
@@ -132,7 +132,8 @@ static double vbe_for(struct subject *it, double current)
     return low;
 }
 
-/* references.md C04: dVBE = UT ln N: 59.526 mV for N = 10 at 300 K; 0.179192 mV/K for N = 8. */
+/* Horowitz and Hill, The Art of Electronics (from memory): dVBE = UT ln N: 59.526 mV for N = 10 at
+ * 300 K; 0.179192 mV/K for N = 8. */
 static void areas_give_a_voltage_proportional_to_temperature(void **state)
 {
     (void)state;
@@ -153,8 +154,9 @@ static void areas_give_a_voltage_proportional_to_temperature(void **state)
     }
 }
 
-/* references.md C05: dVBE/dT = -(VG0 - VBE + (gamma - alpha) UT)/T; here VG0 = bandgap, gamma -
- * alpha = saturation_exponent at constant current. About -2 mV/K. */
+/* Gray, Hurst, Lewis and Meyer, sec. 4.4.3 (from memory): dVBE/dT = -(VG0 - VBE + (gamma - alpha)
+ * UT)/T; here VG0 = bandgap, gamma - alpha = saturation_exponent at constant current. About -2
+ * mV/K. */
 static void vbe_falls_with_temperature(void **state)
 {
     (void)state;

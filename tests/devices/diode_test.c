@@ -9,7 +9,7 @@ static double current_at(struct subject *it, double v)
     return quantity(it, "i", x);
 }
 
-/* references.md D02: Banwell and Jayakumar (2000): 5 V, 1 kohm, IS 1e-14 A, 300 K. */
+/* Banwell and Jayakumar (2000): 5 V, 1 kohm, IS 1e-14 A, 300 K. */
 static void meets_the_lambert_form(void **state)
 {
     (void)state;
@@ -57,7 +57,7 @@ static void zener_carries_its_current_at_its_voltage(void **state)
     check_relative("40 K up", current_at(&it, -5.6 * 1.012), -15e-3, 1e-8);
 }
 
-/* I_S(T) as models.md section 2 writes it, spelled out for one temperature. */
+/* I_S(T) as docs/devices.md writes it, spelled out for one temperature. */
 static void saturation_current_follows_temperature(void **state)
 {
     (void)state;

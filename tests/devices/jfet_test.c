@@ -14,7 +14,8 @@ static struct subject transistor(const char *word, double idss, double pinchoff)
     return it;
 }
 
-/* references.md D05: (a) 8 mA, -6 V, 2 mA at vgs = -3 V; (b) 10 mA, -8 V, 5.625 mA at -2 V. */
+/* da Silva, High Frequency and Microwave Engineering, ch. 6; Boylestad and Nashelsky, example 7.1
+ * (from memory): (a) 8 mA, -6 V, 2 mA at vgs = -3 V; (b) 10 mA, -8 V, 5.625 mA at -2 V. */
 static void meets_the_published_points(void **state)
 {
     (void)state;

@@ -23,7 +23,7 @@ static double ohms_at(struct subject *it, double kelvin)
 static void resistor_follows_published_temperature_laws(void **state)
 {
     (void)state;
-    /* references.md D06: IEC 60028 copper, 100 C over 20 C; +100 ppm/K from 25 C to 125 C */
+    /* IEC 60028 copper, 100 C over 20 C; +100 ppm/K from 25 C to 125 C */
     struct subject it = resistor(10);
     it.conditions.measured_kelvin = 293.15;
     set_value(&it, "tempco", 3.93e-3);
@@ -32,7 +32,7 @@ static void resistor_follows_published_temperature_laws(void **state)
     it.conditions.measured_kelvin = 298.15;
     set_value(&it, "tempco", 100e-6);
     check_relative("10 kohm", ohms_at(&it, 398.15), 10100, 1e-12);
-    /* references.md D07: IEC 60751 platinum: 138.51 ohm at 100 C, 247.09 ohm at 400 C */
+    /* IEC 60751 platinum: 138.51 ohm at 100 C, 247.09 ohm at 400 C */
     it = resistor(100);
     it.conditions.measured_kelvin = 273.15;
     set_value(&it, "tempco", 3.9083e-3);

@@ -3,7 +3,7 @@
  *
  * rms error of the drain current in saturation without body bias: vds above 0.4 V, vgs 50 mV above
  * the constant-current threshold of the index file, current above 20 nA (ten times the noise
- * floor). Limits: 3 %, p-channel at 0.15 um 5.5 % (models.md section 1 states 0.8 to 2.8 % and 3.6
+ * floor). Limits: 3 %, p-channel at 0.15 um 5.5 % (docs/devices.md states 0.8 to 2.8 % and 3.6
  * to 4.9 %). n 25/0.15 (12 mA) is allowed 3.1 %: it stands at 3.05 %, nearly all of it within 0.1 V
  * of threshold.
  */

@@ -5,7 +5,7 @@
 
 #include "devices/mos.h"
 
-/* ---- 30-digit check values: shared/models.md, section 1.2 ---- */
+/* ---- 30-digit check values: the authors of the equations, 30 digits ---- */
 
 struct check_value {
     double vg, vd, vs, id, qs, qd, vdsat;
@@ -61,7 +61,7 @@ static const struct check_value bare[] = {
     {0.3, 1, 0, 5.7537611678911e-10, 0.00289706879924, 3.63895185849e-20, 0.102919182823},
 };
 
-/* The scalable n set of models.md section 1.1. */
+/* The scalable n set of models/open130.process. */
 static void set_scalable(struct subject *it)
 {
     static const struct {
@@ -263,7 +263,7 @@ static void small_drain_voltages_keep_their_digits(void **state)
     }
 }
 
-/* Output conductance stays positive (models.md, last line of section 1's table). */
+/* Output conductance stays positive (docs/devices.md). */
 static void output_conductance_is_positive(void **state)
 {
     (void)state;
@@ -311,7 +311,7 @@ static void charge_is_exact(void **state)
     }
 }
 
-/* n UT gm/ID = G(IC) = 2/(1 + sqrt(1 + 4 IC)): references.md M08, Enz and Vittoz (2006), Binkley
+/* n UT gm/ID = G(IC) = 2/(1 + sqrt(1 + 4 IC)): Enz and Vittoz (2006), Binkley
  * (2008). n is 1 here; slope_factor takes its place. */
 static void follows_the_inversion_coefficient(void **state)
 {
@@ -440,7 +440,7 @@ static void hand_transistor_agrees_in_both_views(void **state)
 }
 
 /* Off and reverse biased, the drain carries junction_leak W m, grown with temperature by the law
- * of models.md section 2 (emission 1, 1.12 V, cube). */
+ * of docs/devices.md (emission 1, 1.12 V, cube). */
 static void bulk_junctions_leak(void **state)
 {
     (void)state;
@@ -468,7 +468,8 @@ static void bulk_junctions_leak(void **state)
 static void deviates_have_the_published_pair_sigma(void **state)
 {
     (void)state;
-    /* references.md M09: 30 mV um and 2.3 % um give 1.5 mV and 0.115 % for 20 um by 20 um */
+    /* Pelgrom, Duinmaijer and Welbers (1989), from memory: 30 mV um and 2.3 % um give 1.5 mV and
+     * 0.115 % for 20 um by 20 um */
     struct subject it = transistor("nmos", BARE, 20e-6, 20e-6);
     set_value(&it, "match_threshold", 30e-9);
     set_value(&it, "match_gain", 0.023e-6);

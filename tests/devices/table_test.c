@@ -60,7 +60,7 @@ static void tables_are_whole(void **state)
     }
 }
 
-/* design.md section 4 fixes the names and their order. */
+/* docs/language.md lists the names and their order. */
 static void quantities_are_those_of_the_design(void **state)
 {
     (void)state;

@@ -1,6 +1,6 @@
 /*
  * test_continuation.c: walks along a parameter, traces through folds, and all published roots of
- * the tunnel-diode problems (references.md N01, N02, N06).
+ * the tunnel-diode problems (docs/numerics.md).
  */
 #include "dense.h"
 
@@ -231,7 +231,7 @@ static void mark(const double *x, const double wanted[9][2], bool *seen)
     seen[which] = true;
 }
 
-/* N02: nine roots (own calculation of references.md, 6 decimals). Five lie on the curve from E = 0,
+/* N02: nine roots (own calculation, 6 decimals). Five lie on the curve from E = 0,
  * four on a closed curve of its own, entered from the neighbourhood of root 5. */
 static void test_tunnel_pair(void **state)
 {

@@ -46,7 +46,7 @@ static void count_library(void)
 #endif
 }
 
-/* Broyden tridiagonal (references.md T04) of 9 unknowns on its own sparse pattern. */
+/* Broyden tridiagonal of 9 unknowns on its own sparse pattern. */
 enum { N = 9 };
 
 struct tridiagonal {
