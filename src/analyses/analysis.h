@@ -15,6 +15,9 @@ struct analysis_options {
     void (*progress)(void *self, const char *what, double share); /* NULL: none */
     void *progress_self;
     struct sweep *extra_sweep; /* a sweep given by options, for analysis_sweep; NULL: the cell's */
+    bool certify;              /* analysis_point: proves the point unique in a small box */
+    long boxes;                /* analysis_states: boxes to look at, then it gives up */
+    double leakage;            /* analysis_states: A, a start-up push below it is at risk */
 };
 
 /*
@@ -29,6 +32,9 @@ enum status analysis_review(struct circuit *circuit, const struct analysis_optio
                             struct result **result);
 enum status analysis_sweep(struct circuit *circuit, const struct analysis_options *options,
                            struct result **result);
+/* Every resting state with proof, and the start-up verdict: result->states. */
+enum status analysis_states(struct circuit *circuit, const struct analysis_options *options,
+                            struct result **result);
 void result_free(struct result *result);
 
 #endif

@@ -153,7 +153,7 @@ static bool place_by_smallest(struct guess *g)
     for (int k = 0; k < c->instance_count; k++) {
         const struct instance *instance = &c->instances[k];
         const int p = instance->type->value_parameter;
-        if (instance->type->letter == 'R' && p >= 0 && g->system->own[k][p] < least &&
+        if (instance->type->is_resistor && p >= 0 && g->system->own[k][p] < least &&
             is_known(g, instance->local[0]) != is_known(g, instance->local[1])) {
             least = g->system->own[k][p];
             best = k;

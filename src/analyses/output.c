@@ -322,6 +322,27 @@ static bool list_held(struct sweeper *w)
     return w->held != NULL;
 }
 
+/* The conducting transistor at the output that is out of headroom already, when none there holds;
+ * or NULL. */
+static const char *lost_at_start(const struct sweeper *w, const struct place *home)
+{
+    const struct system *s = w->point->system;
+    const char *lost = NULL;
+    for (int k = 0; k < s->circuit->instance_count; k++) {
+        const struct instance *instance = &s->circuit->instances[k];
+        if (!instance->type->is_transistor || instance->outer[0] != w->output->unknown) {
+            continue;
+        }
+        unsigned region;
+        const double headroom = measure_headroom(s, k, home->x, &region);
+        if ((region & REGION_SATURATED) != 0 && headroom > 0) {
+            return NULL;
+        }
+        lost = (region & REGION_OFF) != 0 ? lost : instance->name;
+    }
+    return lost;
+}
+
 /* Where the band is left on the way to `end`, or where the state itself ends; NAN: nowhere. */
 static double band_edge(struct sweeper *w, double end)
 {
@@ -334,7 +355,8 @@ static double band_edge(struct sweeper *w, double end)
 static void find_compliance(struct sweeper *w)
 {
     struct output_result *r = w->result;
-    if (w->held_count == 0) {
+    r->unheld_device = lost_at_start(w, &w->places[0]);
+    if (w->held_count == 0 || r->unheld_device != NULL) {
         return;
     }
     r->compliance = first_loss(w, headroom_left);

@@ -39,13 +39,29 @@ static bool is_mos(const struct device_result *d)
 
 /* --- one device ------------------------------------------------------------------------------- */
 
-/* The square law asks for more overdrive than the device has. n UT from the model: (vgs and
- * inversion) by 2 n UT at n = 1.3, the middle of what bulk processes show. */
+/* The slope factor n of a device at its bias: that of the body (1 + gmb/gm), widened by the model's
+ * own. */
+static double slope_of(const struct device_result *d)
+{
+    const struct instance *instance = d->instance;
+    const double body = quantity(d, "gmb") / quantity(d, "gm");
+    const int own =
+        parameter_find(instance->type->parameters, instance->type->parameter_count, "slope");
+    double widened = own < 0 ? 1 : instance->own[own];
+    if (instance->model != NULL) {
+        const int p = parameter_find(instance->type->model_parameters,
+                                     instance->type->model_parameter_count, "slope_factor");
+        widened = p < 0 ? 1 : instance->model->values[p];
+    }
+    return (isfinite(body) && body > 0 ? 1 + body : 1) * widened;
+}
+
+/* A hand calculation by the square law wants more overdrive than the device has. */
 static bool square_law(const struct remarks *m, const struct device_result *d)
 {
     const bool has_hand = m->circuit->hand_count > 0;
     const double overdrive = quantity(d, "overdrive");
-    const double limit = 2 * 1.3 * BOLTZMANN_OVER_CHARGE * m->result->kelvin;
+    const double limit = 2 * slope_of(d) * BOLTZMANN_OVER_CHARGE * m->result->kelvin;
     if (!is_mos(d) || !(has_hand || m->result->view == VIEW_HAND) ||
         (d->region & REGION_OFF) != 0 || !(overdrive < limit)) {
         return true;
@@ -111,7 +127,7 @@ static bool dissipation(const struct remarks *m, const struct device_result *d)
     const struct device_type *type = d->instance->type;
     const double power = type->quantity_power < 0 ? NAN : d->q[type->quantity_power];
     const double limit = type->is_transistor ? 0.5 : 0.25;
-    if ((!type->is_transistor && type->letter != 'R') || !(power > limit)) {
+    if ((!type->is_transistor && !type->is_resistor) || !(power > limit)) {
         return true;
     }
     SHOW(found, power, "W");
@@ -167,7 +183,7 @@ static bool process_leaks(const struct circuit *c)
 static bool leakage(const struct remarks *m, const struct device_result *d)
 {
     const struct device_type *type = d->instance->type;
-    const bool resistor = type->letter == 'R';
+    const bool resistor = type->is_resistor;
     const double current = type->quantity_current < 0 ? NAN : fabs(d->q[type->quantity_current]);
     const double ohm = resistor ? d->instance->own[type->value_parameter] : NAN;
     const bool small = is_mos(d) && current < 1e-12;
@@ -222,7 +238,8 @@ static bool pair_remarks(const struct remarks *m, const struct device_result *in
     const double conductance = is_mos(out) ? quantity(out, slope) : 1 / quantity(out, slope);
     const double current = out->q[out->instance->type->quantity_current];
     const double error = conductance * dv / current;
-    if (!(fabs(error) > 0.01) || (out->region & REGION_SATURATED) == 0) {
+    /* The rule is about two saturated devices; a triode has a caution of its own. */
+    if (!(fabs(error) > 0.01) || (out->region & in->region & REGION_SATURATED) == 0) {
         return true;
     }
     SHOW(difference, fabs(dv), "V");
@@ -233,28 +250,41 @@ static bool pair_remarks(const struct remarks *m, const struct device_result *in
                        in->instance->name, 100 * error);
 }
 
-/* Mirrors: one diode-connected device, partners of the same type with the same gate and source
- * (base and emitter). */
+/*
+ * Mirrors: one diode-connected device, partners of the same type with the same gate and source
+ * (base and emitter). Transistors are chained by the node of their gate, so that a large tree stays
+ * linear.
+ */
 static bool mirrors(const struct remarks *m)
 {
     const struct point_result *point = &m->result->point;
-    for (int a = 0; a < point->device_count; a++) {
+    struct arena *scratch = arena_create();
+    int *first = scratch == NULL ? NULL : arena_new_array(scratch, int, m->circuit->node_count);
+    int *next = first == NULL ? NULL : arena_new_array(scratch, int, point->device_count);
+    bool good = next != NULL;
+    for (int b = point->device_count - 1; good && b >= 0; b--) { /* 0 ends a chain: index + 1 */
+        const struct instance *out = point->devices[b].instance;
+        if (out->type->is_transistor && !is_diode_connected(out)) {
+            next[b] = first[out->outer[1] + 1];
+            first[out->outer[1] + 1] = b + 1;
+        }
+    }
+    for (int a = 0; good && a < point->device_count; a++) {
         const struct device_result *in = &point->devices[a];
         if (!in->instance->type->is_transistor || !is_diode_connected(in->instance) ||
             (in->region & REGION_OFF) != 0) {
             continue;
         }
-        for (int b = 0; b < point->device_count; b++) {
-            const struct device_result *out = &point->devices[b];
-            if (a != b && out->instance->type == in->instance->type &&
-                out->instance->outer[1] == in->instance->outer[1] &&
-                out->instance->outer[2] == in->instance->outer[2] &&
-                !is_diode_connected(out->instance) && !pair_remarks(m, in, out)) {
-                return false;
+        for (int b = first[in->instance->outer[1] + 1]; good && b > 0; b = next[b - 1]) {
+            const struct device_result *out = &point->devices[b - 1];
+            if (out->instance->type == in->instance->type &&
+                out->instance->outer[2] == in->instance->outer[2]) {
+                good = pair_remarks(m, in, out);
             }
         }
     }
-    return true;
+    arena_destroy(scratch);
+    return good;
 }
 
 /* --- the cell -----------------------------------------------------------------------------------
@@ -307,6 +337,31 @@ static bool model_temperature(const struct remarks *m)
     return true;
 }
 
+/* What the sweep reaches beyond `at`: dangerous voltages, and heat in the cell. */
+static bool far_end(const struct remarks *m, const struct output_result *o)
+{
+    const int line = line_of(m, o->output->where);
+    const double most = fmax(fabs(o->output->from), fabs(o->output->to));
+    double power = 0, where = 0;
+    for (int k = 0; k < o->curve.count; k++) {
+        const double here = fabs(o->curve.v[k] * o->curve.current[k]);
+        if (o->is_sink && here > power) {
+            power = here;
+            where = o->curve.v[k];
+        }
+    }
+    SHOW(volts, most, "V");
+    SHOW(heat, power, "W");
+    SHOW(at, where, "V");
+    return (!(most > 60) ||
+            caution_add(m->circuit, &m->result->cautions, CAUTION_TOUCH, o->output->name, line,
+                        "the sweep of output %s reaches %s", o->output->name, volts)) &&
+           (!(power > 0.5) ||
+            caution_add(m->circuit, &m->result->cautions, CAUTION_DISSIPATION, o->output->name,
+                        line, "output %s brings %s into the cell at %s", o->output->name, heat,
+                        at));
+}
+
 static bool outputs(const struct remarks *m)
 {
     for (int k = 0; k < m->result->output_count; k++) {
@@ -332,6 +387,9 @@ static bool outputs(const struct remarks *m)
                          "output %s carries almost no current (%.3g A): the cell rests in its off "
                          "state, or the output is cut off",
                          o->output->name, o->current)) {
+            return false;
+        }
+        if (!far_end(m, o)) {
             return false;
         }
     }

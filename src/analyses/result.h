@@ -66,12 +66,13 @@ struct output_result {
     double compliance; /* V; NAN when nothing lost its headroom within the sweep, or nothing was
                           saturated */
     const char *compliance_device;
-    bool compliance_beyond; /* everything still held at the end of the sweep in that direction */
-    double low, high;       /* V; NAN where the band is not left within the sweep */
-    double flatness;        /* share */
-    const double *line;     /* [rail_count] relative change per volt, 1/V */
-    double tempco;          /* 1/K */
-    double sigma;           /* share; NAN when no mismatch coefficients are given */
+    const char *unheld_device; /* at the output, out of headroom at `at` already: no compliance */
+    bool compliance_beyond;    /* everything still held at the end of the sweep in that direction */
+    double low, high;          /* V; NAN where the band is not left within the sweep */
+    double flatness;           /* share */
+    const double *line;        /* [rail_count] relative change per volt, 1/V */
+    double tempco;             /* 1/K */
+    double sigma;              /* share; NAN when no mismatch coefficients are given */
     struct curve_points curve;
     struct sweep_event *events;
     int event_count;
@@ -116,6 +117,8 @@ struct sweep_table {
     int series_count;
 };
 
+struct states_result; /* states.h */
+
 /* Everything one run found. Parts that a command does not make are empty. */
 struct result {
     struct arena *arena;
@@ -135,6 +138,7 @@ struct result {
     struct sweep_table *sweeps;
     int sweep_count;
     struct caution_list cautions;
+    struct states_result *states; /* of `states`, or of one certified point; NULL: none */
 };
 
 #endif

@@ -10,6 +10,7 @@
 #include "analyses/measure.h"
 #include "analyses/output.h"
 #include "analyses/remarks.h"
+#include "analyses/states.h"
 #include "analyses/sweep.h"
 
 static unsigned effects_of(enum view view)
@@ -167,7 +168,8 @@ enum status analysis_point(struct circuit *circuit, const struct analysis_option
     enum status status = solve_point(circuit, options, &session, *result);
     if (status == STATUS_OK) {
         (*result)->verdict = VERDICT_NO_REQUIREMENTS;
-        if (!remarks_add(&session.point, *result)) {
+        if (!remarks_add(&session.point, *result) ||
+            (options->certify && !states_certify(&session.point, *result))) {
             status = STATUS_MEMORY;
         }
     }
@@ -186,7 +188,8 @@ enum status analysis_review(struct circuit *circuit, const struct analysis_optio
     if (status == STATUS_OK) {
         status = solve_outputs(circuit, options, &session, *result);
         if (status != STATUS_MEMORY &&
-            (!judge_all(*result) || !remarks_add(&session.point, *result))) {
+            (!judge_all(*result) || !remarks_add(&session.point, *result) ||
+             !states_glance(&session.point, *result))) {
             status = STATUS_MEMORY;
         }
     }

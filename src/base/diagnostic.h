@@ -83,7 +83,7 @@ void diagnostics_list(const struct diagnostics *diagnostics, const struct source
 /*
  * near_name: the candidate that a mistyped name most likely meant, or NULL when none is near
  * (Damerau-Levenshtein distance in the restricted form, at most a third of the length, at least 1;
- * letter case alone counts half).
+ * letter case alone counts half; a name that differs in nothing else is always near).
  */
 const char *near_name(const char *wanted, const char *const *candidates, int count);
 

@@ -52,6 +52,16 @@ static int distance(const char *a, int m, const char *b, int n)
     return last[n];
 }
 
+/* Whether two names differ only in case. */
+static bool same_letters(const char *a, const char *b)
+{
+    while (*a != '\0' && lower(*a) == lower(*b)) {
+        a++;
+        b++;
+    }
+    return *a == *b;
+}
+
 const char *near_name(const char *wanted, const char *const *candidates, int count)
 {
     size_t length = strlen(wanted);
@@ -62,6 +72,11 @@ const char *near_name(const char *wanted, const char *const *candidates, int cou
     int limit = m < 3 ? WHOLE : WHOLE * m / 3;
     if (m == 1) {
         limit = HALF; /* another single letter is not near */
+    }
+    for (int k = 0; k < count; k++) {
+        if (strcmp(wanted, candidates[k]) != 0 && same_letters(wanted, candidates[k])) {
+            return candidates[k];
+        }
     }
     const char *best = NULL;
     for (int k = 0; k < count; k++) {

@@ -98,8 +98,8 @@ static bool block_pins(const struct frame *outer, const struct statement *block,
                             "%s leaves out pin '%s' of block %s", use->name.text,
                             block->words[k].text, block->name.text);
         } else if (a->value != NULL && a->value->kind != EXPRESSION_NAME) {
-            diagnostics_add(b->diagnostics, a->value->span, NULL, "pin %s wants the name of a node",
-                            a->key.text);
+            diagnostics_add(b->diagnostics, a->value->span, build_ground_hint(a->value),
+                            "pin %s wants the name of a node", a->key.text);
         } else if (a->value != NULL) {
             nodes[k] = build_node(outer, a->value->name, a->value->span);
             if (nodes[k] < 0) {
@@ -120,7 +120,8 @@ static bool block_pins(const struct frame *outer, const struct statement *block,
         }
         if (!known) {
             diagnostics_add(b->diagnostics, a->key.span,
-                            hint_near(b->arena, a->key.text, b->known, count, NULL),
+                            hint_near(b->arena, a->key.text, b->known, count,
+                                      hint_list(b->arena, "known: ", b->known, count, NULL)),
                             "block %s has no pin or parameter '%s'", block->name.text, a->key.text);
         }
     }

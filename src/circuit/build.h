@@ -82,6 +82,12 @@ struct expression_scope frame_scope(const struct frame *frame);
 /* Node of a name in a frame, made when it is new; -1 when memory is short or the name is wrong. */
 int build_node(const struct frame *frame, const char *name, struct span where);
 
+/* "0 V is called gnd" for a 0 where the name of a node is wanted, else NULL. */
+static inline const char *build_ground_hint(const struct expression *e)
+{
+    return e->kind == EXPRESSION_NUMBER && e->number.value == 0 ? "0 V is called gnd" : NULL;
+}
+
 /* A node behind a terminal of a part; -1 when memory is short. */
 int build_hidden_node(struct builder *builder, const char *part, const char *terminal,
                       struct span where);

@@ -39,8 +39,32 @@ static const char *find_process(struct cell *cell, const char *name)
     return "";
 }
 
+static bool ends_with(const char *text, const char *end)
+{
+    const size_t length = strlen(text), tail = strlen(end);
+    return length >= tail && strcmp(text + length - tail, end) == 0;
+}
+
+/* "did you mean 'n180.process'?" when its ending was left out or a file beside the cell or in the
+ * model folders has nearly the name. */
+static const char *process_hint(struct cell *cell, const char *name)
+{
+    const char *full = arena_format(cell->arena, "%s.process", name);
+    const char *path = full == NULL || ends_with(name, ".process") ? "" : find_process(cell, full);
+    const char *near = path != NULL && path[0] != '\0' ? full : NULL;
+    const char *folder = folder_of(cell->arena, cell->path);
+    for (int k = -1; near == NULL && (k < 0 || cell->model_folders[k] != NULL); k++) {
+        folder = k < 0 ? folder : cell->model_folders[k];
+        near = folder == NULL ? NULL : source_near(cell->arena, folder, name, ".process");
+    }
+    return near == NULL ? "looked beside the cell and in the installed models"
+                        : arena_format(cell->arena, "did you mean '%s'?", near);
+}
+
 static enum status read_process(struct cell *cell, const struct statement *statement)
 {
+    /* `models FILE.process` reads a cell of that one line, which nobody wrote: no place to show */
+    const struct span where = ends_with(cell->path, ".process") ? SPAN_NONE : statement->text_span;
     for (int k = 0; k < cell->process_count; k++) {
         if (strcmp(cell->processes[k].name, statement->text) == 0) {
             diagnostics_add(&cell->diagnostics, statement->text_span, NULL,
@@ -58,8 +82,7 @@ static enum status read_process(struct cell *cell, const struct statement *state
         return STATUS_MEMORY;
     }
     if (path[0] == '\0') {
-        diagnostics_add(&cell->diagnostics, statement->text_span,
-                        "looked beside the cell and in the installed models",
+        diagnostics_add(&cell->diagnostics, where, process_hint(cell, statement->text),
                         "there is no process file \"%s\"", statement->text);
         return STATUS_INPUT;
     }

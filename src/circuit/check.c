@@ -14,6 +14,13 @@
 
 enum { TOUCH_SHOWN = 4 };
 
+static int compare_folded(const char *a, const char *b)
+{
+    for (; *a != '\0' && tolower((unsigned char)*a) == tolower((unsigned char)*b); a++, b++) {
+    }
+    return tolower((unsigned char)*a) - tolower((unsigned char)*b);
+}
+
 static int find_root(int *parent, int k)
 {
     while (parent[k] != k) {
@@ -117,6 +124,13 @@ static void check_lonely(struct builder *b, const int *touches)
         /* A node that others touch is the likelier one; else another lonely one. */
         const char *near = near_node(b, touches, n, 2);
         near = near != NULL ? near : near_node(b, touches, n, 1);
+        if (names_find(c->names, NAME_RAIL, c->nodes[n].name) >= 0) {
+            diagnostics_add(b->diagnostics, c->nodes[n].where,
+                            near == NULL ? NULL
+                                         : arena_format(b->arena, "did you mean '%s'?", near),
+                            "rail '%s' feeds nothing", c->nodes[n].name);
+            continue;
+        }
         diagnostics_add(b->diagnostics, c->nodes[n].where,
                         near == NULL ? arena_format(b->arena, "only %s touches it", touching(b, n))
                                      : arena_format(b->arena, "did you mean '%s'?", near),
@@ -164,8 +178,10 @@ static void report_island(struct builder *b, int *parent, int root)
                             "%s %s %s fed only by current sources: nothing sets the voltage", what,
                             names.data, count == 1 ? "is" : "are");
         } else {
+            const bool is_ground = compare_folded(c->nodes[first].name, "gnd") == 0;
             diagnostics_add(b->diagnostics, c->nodes[first].where,
-                            arena_format(b->arena, "touched by %s", touching(b, first)),
+                            is_ground ? "did you mean 'gnd'?"
+                                      : arena_format(b->arena, "touched by %s", touching(b, first)),
                             "%s %s %s no DC path to gnd", what, names.data,
                             count == 1 ? "has" : "have");
         }
@@ -295,6 +311,23 @@ static void check_loops(struct builder *b, int *parent)
     }
 }
 
+/* --- a part called like a rail or an output: 'v.i' and a sweep of 'v' would mean either ------- */
+
+static void check_shared_names(struct builder *b)
+{
+    const struct circuit *c = b->circuit;
+    for (int k = 0; k < c->instance_count; k++) {
+        const struct instance *instance = &c->instances[k];
+        const bool is_rail = names_find(c->names, NAME_RAIL, instance->name) >= 0;
+        if (!instance->is_hidden &&
+            (is_rail || names_find(c->names, NAME_OUTPUT, instance->name) >= 0)) {
+            diagnostics_add(b->diagnostics, instance->where, "give it another name",
+                            "there are two things called '%s': this and %s", instance->name,
+                            is_rail ? "a rail" : "an output");
+        }
+    }
+}
+
 /* --- names that differ only in case --------------------------------------------------------- */
 
 struct cased {
@@ -302,13 +335,6 @@ struct cased {
     struct span where;
     int order;
 };
-
-static int compare_folded(const char *a, const char *b)
-{
-    for (; *a != '\0' && tolower((unsigned char)*a) == tolower((unsigned char)*b); a++, b++) {
-    }
-    return tolower((unsigned char)*a) - tolower((unsigned char)*b);
-}
 
 static int by_folded_name(const void *a, const void *b)
 {
@@ -326,7 +352,7 @@ static bool check_case(struct builder *b)
         return false;
     }
     int count = 0;
-    for (int n = 1; n < c->node_count; n++) {
+    for (int n = 0; n < c->node_count; n++) { /* gnd, too: 'GND' is another node */
         if (!c->nodes[n].is_hidden) {
             list[count] = (struct cased){c->nodes[n].name, c->nodes[n].where, count};
             count++;
@@ -357,6 +383,7 @@ static bool check_case(struct builder *b)
 
 bool build_checks(struct builder *b)
 {
+    check_shared_names(b);
     struct circuit *c = b->circuit;
     int *touches = arena_new_array(b->arena, int, c->node_count);
     int *parent = arena_new_array(b->arena, int, c->node_count);

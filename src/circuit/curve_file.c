@@ -44,6 +44,50 @@ static size_t signed_number(const char *text, size_t length, double *value)
     return used == 0 ? 0 : sign + used;
 }
 
+static bool complain(const struct reader *r, uint32_t begin, uint32_t end, const char *hint,
+                     const char *text)
+{
+    diagnostics_add(r->builder->diagnostics, (struct span){r->file, begin, end}, hint, "%s", text);
+    return false;
+}
+
+/* End of the field that begins at `k`: before the comma, semicolon or comment behind it. */
+static uint32_t field_end(const char *text, uint32_t k, uint32_t end)
+{
+    while (k < end && strchr(",;#", text[k]) == NULL) {
+        k++;
+    }
+    while (k > 0 && (text[k - 1] == ' ' || text[k - 1] == '\t' || text[k - 1] == '\r')) {
+        k--;
+    }
+    return k;
+}
+
+/* The field that begins at *k, a number and nothing more; *k moves behind it. False after an
+ * error at the field. */
+static bool read_field(const struct reader *r, const char *text, uint32_t *k, uint32_t end,
+                       double *value)
+{
+    const uint32_t begin = *k, last = field_end(text, begin, end);
+    const size_t used = signed_number(text + begin, end - begin, value);
+    if (last <= begin) {
+        return complain(r, begin, begin, "0.65, 1.2e-6",
+                        "a row of a table is a voltage and a current; one is missing");
+    }
+    if (used == 0) {
+        return complain(r, begin, last, NULL, "this is not a number");
+    }
+    if (begin + used < last) {
+        return complain(r, begin, last, "0.4e-3 for 0.4m, 3 for 3 V",
+                        "a table holds plain numbers, in V and A");
+    }
+    if (!isfinite(*value)) {
+        return complain(r, begin, last, NULL, "this number is too large");
+    }
+    *k = skip_blanks(text, last, end);
+    return true;
+}
+
 /* One row; false after an error or when memory is short. */
 static bool read_row(struct reader *r, const char *text, uint32_t begin, uint32_t end)
 {
@@ -53,24 +97,25 @@ static bool read_row(struct reader *r, const char *text, uint32_t begin, uint32_
     if (k == end || text[k] == '#') {
         return true;
     }
-    size_t used = signed_number(text + k, end - k, &row.v);
+    const size_t used = signed_number(text + k, end - k, &row.v);
     const bool may_be_header = !r->seen_line;
     r->seen_line = true;
     if (used == 0 && may_be_header) {
         return true;
     }
-    const uint32_t comma = skip_blanks(text, k + (uint32_t)used, end);
-    size_t second = 0;
-    uint32_t after = comma;
-    if (used > 0 && comma < end && text[comma] == ',') {
-        const uint32_t start = skip_blanks(text, comma + 1, end);
-        second = signed_number(text + start, end - start, &row.i);
-        after = skip_blanks(text, start + (uint32_t)second, end);
-    }
-    if (second == 0 || after != end || !isfinite(row.v) || !isfinite(row.i)) {
-        diagnostics_add(b->diagnostics, (struct span){r->file, k, end}, "0.65, 1.2e-6",
-                        "a row of a table is a voltage and a current");
+    if (!read_field(r, text, &k, end, &row.v)) {
         return false;
+    }
+    if (k == end || text[k] != ',') {
+        return complain(r, k, k < end ? k + 1 : k, "0.65, 1.2e-6",
+                        "a comma is wanted between the voltage and the current");
+    }
+    k = skip_blanks(text, k + 1, end);
+    if (!read_field(r, text, &k, end, &row.i)) {
+        return false;
+    }
+    if (k < end && text[k] != '#') {
+        return complain(r, k, end, NULL, "a row of a table is a voltage and a current, no more");
     }
     struct row *list = arena_grow(b->arena, r->rows, r->count, &r->capacity, sizeof *list);
     if (list == NULL) {

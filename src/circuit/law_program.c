@@ -88,8 +88,52 @@ static bool has_voltage(const struct expression *e)
 
 static struct kind compile(struct compiler *c, const struct expression *e);
 
+/* Whether a name is that of a node and of no value: its voltage was meant. */
+static bool is_node(struct compiler *c, const char *name)
+{
+    const struct frame *frame = c->frame;
+    struct quantity ignored;
+    struct dimension dimension;
+    double factor;
+    bool celsius;
+    if (c->scope.find(c->scope.self, name, SPAN_NONE, &ignored) ||
+        unit_parse(name, strlen(name), &factor, &dimension, &celsius)) {
+        return false;
+    }
+    for (int k = 0; k < frame->pin_count; k++) {
+        if (strcmp(frame->pins[k].text, name) == 0) {
+            return true;
+        }
+    }
+    const char *full = arena_format(frame->builder->arena, "%s%s", frame->prefix, name);
+    return full != NULL && names_find(frame->builder->circuit->names, NAME_NODE, full) >= 0;
+}
+
+/* Reports names that no law can have: a node without its ".v", a quantity of a part. */
+static void check_names(struct compiler *c, const struct expression *e)
+{
+    for (; e != NULL && !c->failed; e = e->left) {
+        if (e->kind == EXPRESSION_NAME && strchr(e->name, '.') != NULL) {
+            complain(c, e->span, "node voltages are written NODE.v",
+                     "a law sees node voltages and lets only");
+        } else if (e->kind == EXPRESSION_NAME && is_node(c, e->name)) {
+            complain(c, e->span,
+                     arena_format(c->frame->builder->arena, "its voltage is '%s.v'", e->name),
+                     "this is a node, not a value");
+        }
+        for (int k = 0; k < e->argument_count; k++) {
+            check_names(c, e->arguments[k]);
+        }
+        check_names(c, e->right);
+    }
+}
+
 static struct kind compile_constant(struct compiler *c, const struct expression *e)
 {
+    check_names(c, e);
+    if (c->failed) {
+        return (struct kind){DIMENSION_NONE, true};
+    }
     struct quantity value = {.bare = true};
     if (!expression_value(e, &c->scope, c->frame->builder->diagnostics, &value)) {
         c->failed = true;
@@ -280,8 +324,8 @@ const struct law_program *build_law(const struct frame *frame, const struct expr
     if (!c.failed && !kind.bare && !dimension_equal(kind.dimension, DIMENSION_CURRENT)) {
         char found[64];
         dimension_describe(kind.dimension, found, sizeof found);
-        diagnostics_add(b->diagnostics, expression->span, NULL,
-                        "the current of a law is wanted; this is %s", found);
+        diagnostics_add(b->diagnostics, expression->span, NULL, "a current is wanted; this is %s",
+                        found);
         c.failed = true;
     }
     struct law_program *program = c.failed ? NULL : arena_new(b->arena, struct law_program);

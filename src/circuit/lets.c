@@ -124,16 +124,41 @@ struct expression_scope frame_scope(const struct frame *frame)
                                      .thermal_voltage = frame->builder->thermal_voltage};
 }
 
-/* A plain number from outside has the unit of the let that it replaces. */
-static void take_dimension(struct builder *b, const struct let_entry *entry,
+/* Where the value of a let was set: the expression, else the name; the last one counts. */
+static struct span set_place(const struct builder *b, const char *name)
+{
+    struct span where = SPAN_NONE;
+    for (int k = 0; k < b->settings->set_count; k++) {
+        const struct set_value *set = &b->settings->sets[k];
+        if (strcmp(set->name, name) == 0) {
+            where = set->expression != NULL ? set->expression->span : set->where;
+        }
+    }
+    return where;
+}
+
+/* A plain number from outside has the unit of the let that it replaces; any other must have its
+ * dimension. False after an error. */
+static bool take_dimension(struct builder *b, const struct let_entry *entry, const char *name,
                            const struct expression_scope *scope, struct quantity *value)
 {
     struct diagnostics unseen = {.arena = b->arena};
     struct quantity written;
-    if (entry->written != NULL && expression_value(entry->written, scope, &unseen, &written)) {
+    if (entry->written == NULL || !expression_value(entry->written, scope, &unseen, &written)) {
+        return true;
+    }
+    if (value->bare) {
         value->dimension = written.dimension;
         value->bare = written.bare;
+    } else if (!written.bare && !dimension_equal(value->dimension, written.dimension)) {
+        char in_cell[96], found[96];
+        dimension_describe(written.dimension, in_cell, sizeof in_cell);
+        dimension_describe(value->dimension, found, sizeof found);
+        diagnostics_add(b->diagnostics, set_place(b, name), NULL,
+                        "%s is %s in the cell; this is %s", name, in_cell, found);
+        return false;
     }
+    return true;
 }
 
 static bool find_let(struct builder *b, int index, struct span where, struct quantity *value)
@@ -156,11 +181,10 @@ static bool find_let(struct builder *b, int index, struct span where, struct qua
         struct expression_scope scope = frame_scope(&top);
         entry->state = LET_VISITING;
         b->let_depth++;
-        const bool good = entry->expression == NULL ||
-                          expression_value(entry->expression, &scope, b->diagnostics, &let->value);
-        if (good && let->is_set && let->value.bare) {
-            take_dimension(b, entry, &scope, &let->value);
-        }
+        const bool good =
+            (entry->expression == NULL ||
+             expression_value(entry->expression, &scope, b->diagnostics, &let->value)) &&
+            (!let->is_set || take_dimension(b, entry, let->name, &scope, &let->value));
         b->let_depth--;
         entry = &b->lets[index];
         entry->state = good ? LET_DONE : LET_WRONG;

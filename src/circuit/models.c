@@ -3,6 +3,7 @@
  */
 #include "circuit/build.h"
 
+#include <stdio.h>
 #include <string.h>
 
 /* What a file says about all of its models. */
@@ -23,8 +24,14 @@ bool build_range(const struct parameter *p, double value, struct span where,
     dimension_unit(p->dimension, unit, sizeof unit);
     number_show(value, 4, unit, found, sizeof found);
     number_show(low ? p->least : p->most, 4, unit, limit, sizeof limit);
-    diagnostics_add(diagnostics, where, NULL, "%s must be %s %s; this is %s", p->name,
-                    low ? (p->above_least ? "above" : "at least") : "at most", limit, found);
+    /* a width such as 10 was meant in um */
+    const bool is_metre = !low && dimension_equal(p->dimension, DIMENSION_LENGTH);
+    char digits[40], hint[64];
+    number_exact(value, digits, sizeof digits);
+    (void)snprintf(hint, sizeof hint, "did you mean '%su'?", digits);
+    diagnostics_add(diagnostics, where, is_metre ? hint : NULL, "%s must be %s %s; this is %s",
+                    p->name, low ? (p->above_least ? "above" : "at least") : "at most", limit,
+                    found);
     return false;
 }
 

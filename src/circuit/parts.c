@@ -7,6 +7,7 @@
 #include <string.h>
 
 #include "devices/law.h"
+#include "devices/resistor.h"
 #include "devices/series.h"
 #include "language/parser.h"
 
@@ -92,7 +93,7 @@ static bool set_terminal(struct part *part, int t, const struct assignment *a)
         return true;
     }
     if (a->value->kind != EXPRESSION_NAME) {
-        diagnostics_add(b->diagnostics, a->value->span, NULL,
+        diagnostics_add(b->diagnostics, a->value->span, build_ground_hint(a->value),
                         "terminal %s wants the name of a node", a->key.text);
         part->nodes[t] = 0;
         return true;
@@ -246,6 +247,16 @@ static bool read_arrow(struct part *part)
     return true;
 }
 
+/* "write 'i = 3 A'" for a value that stands where the current of a law is wanted. */
+static const char *law_hint(struct builder *b, const struct expression *value)
+{
+    const struct span where = value->span;
+    const bool is_plain = value->kind == EXPRESSION_NUMBER && value->number.bare;
+    return arena_format(b->arena, "write 'i = %.*s%s'", (int)(where.end - where.begin),
+                        b->cell->sources.files[where.file].text + where.begin,
+                        is_plain ? " A" : "");
+}
+
 static void read_value(struct part *part)
 {
     struct builder *b = part->frame->builder;
@@ -254,7 +265,9 @@ static void read_value(struct part *part)
     if (statement->value != NULL && p >= 0) {
         set_parameter(part, p, statement->value, statement->value->span);
     } else if (statement->value != NULL) {
-        diagnostics_add(b->diagnostics, statement->value->span, "write parameters as name=value",
+        const bool is_law = part->type->extra_kind == EXTRA_LAW;
+        diagnostics_add(b->diagnostics, statement->value->span,
+                        is_law ? law_hint(b, statement->value) : "write parameters as name=value",
                         "%s %s takes no value here", article(part->type), part->type->word);
     }
     if (statement->text != NULL && part->type->extra_kind != EXTRA_CURVE) {
@@ -364,9 +377,14 @@ static void default_model(struct part *part)
             b->diagnostics, part->statement->name.span,
             arena_format(b->arena, "add model=NAME, such as model=%s", c->models[found].name),
             "%s must name its model: %d of kind %s are known", part->name, count, kind);
-    } else if (!part->type->model_optional && !b->process_missing) {
+    } else if ((!part->type->model_optional || b->cell->process_count > 0) && !b->process_missing) {
         diagnostics_add(b->diagnostics, part->statement->name.span,
-                        "name a process, or write a model in the cell",
+                        b->cell->process_count == 0
+                            ? "name a process, or write a model in the cell"
+                            : arena_format(b->arena,
+                                           "write 'model %s %s ... end' in the cell, or name a "
+                                           "process that has one",
+                                           kind, kind),
                         "%s has no model: none of kind %s is known", part->name, kind);
     }
 }
@@ -444,6 +462,26 @@ static bool add_extra(struct part *part, const void **extra, int **inputs, int *
     return false;
 }
 
+/* A resistor whose tempco turns it negative at the cell's temperature. False after an error. */
+static bool check_resistor(const struct part *part, const struct device_values *values)
+{
+    struct builder *b = part->frame->builder;
+    const struct circuit *c = b->circuit;
+    if (!part->type->is_resistor) {
+        return true;
+    }
+    const struct device_conditions conditions = {
+        .kelvin = c->kelvin, .measured_kelvin = c->measured_kelvin, .effects = EFFECTS_FULL};
+    if (resistor_at(values, &conditions) > 0) {
+        return true;
+    }
+    char celsius[40];
+    number_show(c->kelvin - 273.15, 4, "", celsius, sizeof celsius);
+    diagnostics_add(b->diagnostics, part->statement->name.span, "look at tempco and tempco2",
+                    "%s would be negative at %s C", part->name, celsius);
+    return false;
+}
+
 static bool make_instance(struct part *part)
 {
     struct builder *b = part->frame->builder;
@@ -462,6 +500,9 @@ static bool make_instance(struct part *part)
     if (wrong != NULL) {
         diagnostics_add(b->diagnostics, part->statement->name.span, NULL, "%s: %s", part->name,
                         wrong);
+        return true;
+    }
+    if (!check_resistor(part, &values)) {
         return true;
     }
     struct instance *instance =

@@ -190,6 +190,30 @@ static bool part_knob(const struct circuit *c, const char *text, struct knob *kn
            value_knob(c, instance, p, text, knob);
 }
 
+/* "M1.W", "M1.L", ... for the part of a name "M1.w"; returns how many, at most `limit`. */
+static int part_knob_names(const struct circuit *c, struct arena *arena, const char *text,
+                           const char **list, int limit)
+{
+    const char *dot = strrchr(text, '.');
+    const char *thing = dot == NULL ? NULL : arena_copy(arena, text, (size_t)(dot - text));
+    const int instance = thing == NULL ? -1 : circuit_find_instance(c, thing);
+    int count = 0;
+    if (instance < 0) {
+        return 0;
+    }
+    const struct device_type *type = c->instances[instance].type;
+    for (int p = 0; p < type->parameter_count && count < limit; p++) {
+        const struct parameter *row = &type->parameters[p];
+        const char *name = row->when_absent == DEFAULT_HIDDEN
+                               ? NULL
+                               : arena_format(arena, "%s.%s", thing, row->name);
+        if (name != NULL) {
+            list[count++] = name;
+        }
+    }
+    return count;
+}
+
 bool circuit_knob(const struct circuit *c, const char *name, struct span where,
                   struct diagnostics *diagnostics, struct knob *knob)
 {
@@ -235,7 +259,7 @@ bool circuit_knob(const struct circuit *c, const char *name, struct span where,
     }
     static const enum name_sort sorts[] = {NAME_LET, NAME_RAIL, NAME_OUTPUT, NAME_INSTANCE};
     const char *list[LIST_LIMIT];
-    int count = 0;
+    int count = part_knob_names(c, diagnostics->arena, text, list, LIST_LIMIT / 2);
     list[count++] = "temperature";
     for (size_t k = 0; k < sizeof sorts / sizeof sorts[0]; k++) {
         count += names_list(c->names, sorts[k], list + count, LIST_LIMIT - count);

@@ -3,6 +3,8 @@
  */
 #include "circuit/build.h"
 
+#include <math.h>
+#include <stdio.h>
 #include <string.h>
 
 static bool is_plain(struct dimension dimension)
@@ -76,6 +78,13 @@ static bool read_tolerance(struct builder *b, const struct expression *e, struct
     struct expression_scope scope = frame_scope(&top);
     struct quantity found;
     if (e == NULL || !expression_value(e, &scope, b->diagnostics, &found)) {
+        return false;
+    }
+    if (found.bare && !is_plain(r->probe.dimension)) {
+        char number[40], hint[80];
+        number_exact(found.value, number, sizeof number);
+        (void)snprintf(hint, sizeof hint, "write '%s%%', or give it a unit", number);
+        diagnostics_add(b->diagnostics, e->span, hint, "a tolerance is a share or has a unit");
         return false;
     }
     const bool is_share = is_plain(found.dimension) && !found.bare;
@@ -174,12 +183,22 @@ static bool read_range(struct builder *b, const struct knob *knob,
            in_range(b, knob, *to, statement->to->span);
 }
 
+static bool is_same_knob(const struct knob *a, const struct knob *b)
+{
+    return a->kind == b->kind && a->instance == b->instance && a->parameter == b->parameter;
+}
+
 static bool read_family(struct builder *b, const struct statement *statement, struct sweep *sweep)
 {
     struct circuit *c = b->circuit;
     sweep->has_family = true;
     if (!circuit_knob(c, statement->thing2.text, statement->thing2.span, b->diagnostics,
                       &sweep->family)) {
+        return false;
+    }
+    if (is_same_knob(&sweep->knob, &sweep->family)) {
+        diagnostics_add(b->diagnostics, statement->thing2.span, NULL, "%s is already swept",
+                        statement->thing2.text);
         return false;
     }
     sweep->family_values = arena_new_array(c->arena, double, statement->value_count);
@@ -220,6 +239,10 @@ static bool read_sweep(struct builder *b, const struct statement *statement, str
             diagnostics_add(b->diagnostics, statement->points->span, NULL,
                             "a sweep has 2 to %d points", CIRCUIT_POINT_LIMIT);
             good = false;
+        } else if (good && points != floor(points)) {
+            diagnostics_add(b->diagnostics, statement->points->span, NULL,
+                            "the number of points is a whole number");
+            good = false;
         } else if (good) {
             sweep->points = (int)points;
         }
@@ -230,8 +253,8 @@ static bool read_sweep(struct builder *b, const struct statement *statement, str
                               &sweep->shown[k]);
     }
     sweep->shown_count = statement->word_count;
-    if (statement->thing2.text != NULL) {
-        good &= read_family(b, statement, sweep);
+    if (good && statement->thing2.text != NULL) {
+        good = read_family(b, statement, sweep);
     }
     return good && sweep->shown != NULL && count_values(b, sweep);
 }
@@ -293,6 +316,14 @@ static bool add_condition(struct builder *b, const struct statement *statement)
                              &condition.knob) ||
                !read_range(b, &condition.knob, statement, &condition.from, &condition.to)) {
         return true;
+    }
+    for (int k = 0; k < c->condition_count; k++) {
+        if (is_same_knob(&c->conditions[k].knob, &condition.knob)) {
+            diagnostics_add(b->diagnostics, statement->name.span, NULL,
+                            "%s is already varied on line %d", statement->name.text,
+                            source_line(&b->cell->sources, c->conditions[k].where));
+            return true;
+        }
     }
     struct condition *list = arena_grow(b->arena, c->conditions, c->condition_count,
                                         &c->condition_capacity, sizeof *list);

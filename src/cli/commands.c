@@ -1,6 +1,7 @@
 /* commands.c: a request from the options, and its results to where they are wanted. */
 #include "cli/commands.h"
 
+#include <errno.h>
 #include <langinfo.h>
 #include <stdlib.h>
 #include <string.h>
@@ -157,9 +158,31 @@ static bool deliver_all(const struct options *options, struct ampstead_result *r
     return is_written;
 }
 
+/* A whole number; kept when the option was not given. False after a message. */
+static bool read_boxes(const struct options *options, long *boxes)
+{
+    const char *text = options->values[OPTION_BOXES];
+    char *end = NULL;
+    if (text == NULL) {
+        return true;
+    }
+    errno = 0;
+    const long found = strtol(text, &end, 10);
+    if (end == text || *end != '\0' || errno != 0 || found < 0) {
+        fprintf(stderr, "ampstead: '%s' is no value of --boxes: a whole number, 0 or more\n", text);
+        return false;
+    }
+    *boxes = found;
+    return true;
+}
+
 /* Two streams into one would be neither. */
 static bool check_outputs(const struct options *options)
 {
+    long boxes = 0;
+    if (!read_boxes(options, &boxes)) {
+        return false;
+    }
     if (options->given[OPTION_JSON] && options->given[OPTION_CSV] &&
         is_stdout(options->values[OPTION_JSON]) && is_stdout(options->values[OPTION_CSV])) {
         fputs("ampstead: '--json' and '--csv' cannot both go to standard output\n", stderr);
@@ -213,6 +236,7 @@ static int run_request(const struct options *options, const volatile sig_atomic_
     struct watch watch = {.stop = stop, .shows_progress = isatty(STDERR_FILENO)};
     struct ampstead_request request = AMPSTEAD_REQUEST;
     const char *view = options->values[OPTION_VIEW];
+    (void)read_boxes(options, &request.boxes); /* was checked before */
     (void)clock_gettime(CLOCK_MONOTONIC, &watch.start);
     request.command = verb_rows[options->verb].word;
     request.path = options->file;
@@ -223,6 +247,8 @@ static int run_request(const struct options *options, const volatile sig_atomic_
     request.sets = options->sets;
     request.set_count = options->set_count;
     request.sweep = options->values[OPTION_SWEEP];
+    request.certify = options->given[OPTION_CERTIFY];
+    request.leakage = options->values[OPTION_LEAKAGE];
     request.stopped = ask_stopped;
     request.stopped_self = &watch;
     request.progress = show_progress;

@@ -14,7 +14,8 @@ struct reader {
     int next;
     FILE *errors;
     struct options *options;
-    const char *words[2]; /* what is no option: verb and file, or one of them */
+    const char *words[2];   /* what is no option: verb and file, or one of them */
+    const char *after_json; /* the word behind a --json that took no file, or NULL */
     int word_count;
 };
 
@@ -121,6 +122,9 @@ static bool take_option(struct reader *reader, int index, const char *word, cons
     if (value != NULL && !check_choice(reader, row, value)) {
         return false;
     }
+    if (index == OPTION_JSON && value == NULL && reader->next < reader->argc) {
+        reader->after_json = reader->argv[reader->next];
+    }
     options->given[index] = true;
     options->values[index] = value;
     if (index == OPTION_SET) {
@@ -162,10 +166,18 @@ static bool read_short(struct reader *reader, const char *word)
     return usage_error(reader, word, "is no option; `ampstead help` lists them");
 }
 
+static bool one_too_many(const struct reader *reader, const char *word)
+{
+    if (word == reader->after_json) {
+        return usage_error(reader, word, "is one too many; for a file write --json=%s", word);
+    }
+    return usage_error(reader, word, "is one too many: one cell a run");
+}
+
 static bool take_word(struct reader *reader, const char *word)
 {
     if (reader->word_count == 2) {
-        return usage_error(reader, word, "is one word too many; one cell is read at a time");
+        return one_too_many(reader, word);
     }
     reader->words[reader->word_count++] = word;
     return true;
@@ -191,6 +203,9 @@ static bool settle_words(struct reader *reader)
     if (probe != NULL) {
         fclose(probe);
         return true;
+    }
+    if (second != NULL && strpbrk(first, "./-") != NULL) {
+        return one_too_many(reader, second);
     }
     const char *near = near_verb(first);
     const char *what = second == NULL ? "is neither a verb nor a file" : "is no verb";
@@ -245,7 +260,7 @@ static bool check_together(const struct reader *reader)
 bool options_parse(int argc, char **argv, FILE *errors, struct options *options,
                    bool *out_of_memory)
 {
-    struct reader reader = {argc, argv, 1, errors, options, {NULL, NULL}, 0};
+    struct reader reader = {argc, argv, 1, errors, options, {NULL, NULL}, NULL, 0};
     *options = (struct options){0};
     *out_of_memory = false;
     options->sets = calloc((size_t)argc + 1, sizeof *options->sets);

@@ -5,7 +5,7 @@
 #include "library/ampstead.h"
 
 enum {
-    RESULT_VERBS = 1 << VERB_REVIEW | 1 << VERB_POINT | 1 << VERB_SWEEP,
+    RESULT_VERBS = 1 << VERB_REVIEW | 1 << VERB_POINT | 1 << VERB_SWEEP | 1 << VERB_STATES,
     CELL_VERBS = RESULT_VERBS | 1 << VERB_MODELS,
     ALL_VERBS = CELL_VERBS | 1 << VERB_CHECK | 1 << VERB_FORMAT | 1 << VERB_HELP
 };
@@ -25,6 +25,11 @@ const struct verb_row verb_rows[VERB_COUNT] = {
          "Moves a rail, let, source, resistor, output or the temperature, and shows what\n"
          "follows. --csv writes one row a point: number of the sweep, the swept thing, the\n"
          "family, and each quantity, with SI units in the header."},
+    [VERB_STATES] =
+        {"states", "FILE.cell", "every resting state with proof, and whether the cell starts",
+         "Finds all DC states and proves that none was missed; says which cannot be held, where\n"
+         "slowly rising rails lead, how strongly the loop is pushed out of its off state, and the\n"
+         "lowest supply. The proof may take seconds; Ctrl-C shows what was found until then."},
     [VERB_MODELS] = {"models", "FILE", "every model value in force, given or default",
                      "FILE is a cell, or a process file by itself."},
     [VERB_CHECK] =
@@ -54,6 +59,13 @@ const struct option_row option_rows[OPTION_COUNT] = {
                      RESULT_VERBS},
     [OPTION_SWEEP] = {"sweep", 0, ARGUMENT_NEEDED, "TEXT", NULL, "the cell's sweeps",
                       "\"THING from A to B points N show Q, Q\", as in a cell", 1 << VERB_SWEEP},
+    [OPTION_CERTIFY] = {"certify", 0, ARGUMENT_NONE, NULL, NULL, "off",
+                        "proves that the point is the only one in a box a few pV wide",
+                        1 << VERB_POINT},
+    [OPTION_BOXES] = {"boxes", 0, ARGUMENT_NEEDED, "N", NULL, "100000",
+                      "boxes that the proof may look at before it gives up", 1 << VERB_STATES},
+    [OPTION_LEAKAGE] = {"leakage", 0, ARGUMENT_NEEDED, "I", NULL, "1 nA",
+                        "a start-up push below this current is at risk", 1 << VERB_STATES},
     [OPTION_JSON] = {"json", 0, ARGUMENT_OPTIONAL, "FILE", NULL, "off",
                      "writes JSON (SI units) to FILE, or without FILE to standard output instead "
                      "of the text; the next word is FILE only if it ends with .json, else "

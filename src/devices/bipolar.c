@@ -199,8 +199,8 @@ static void prepare_pnp(const struct device_values *values,
     prepare(values, conditions, prepared, -1);
 }
 
-/* On: a junction carries a hundred saturation currents (0.12 V at 27 C); at 85 C that is nanoamperes,
- * and a transistor there still works as a current source. */
+/* On: a junction carries a hundred saturation currents (0.12 V at 27 C); at 85 C that is
+ * nanoamperes, and a transistor there still works as a current source. */
 static unsigned region_of(const struct bipolar_prepared *p, const double *inner, double vce)
 {
     double vbe = p->polarity * (inner[BIPOLAR_B] - inner[BIPOLAR_E]);
@@ -271,7 +271,7 @@ static const struct deviate deviates[] = {
 };
 
 #define BIPOLAR_COMMON                                                                             \
-    .form = FORM_PINS, .letter = 'Q', .is_transistor = true, .terminals = terminals,               \
+    .form = FORM_PINS, .is_transistor = true, .terminals = terminals,                              \
     .terminal_count = BIPOLAR_TERMINALS, .parameters = own_parameters,                             \
     .parameter_count = ROWS(own_parameters), .value_parameter = -1,                                \
     .model_parameters = model_parameters, .model_parameter_count = ROWS(model_parameters),         \

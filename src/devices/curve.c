@@ -88,7 +88,6 @@ const struct device_type device_table = {
     .word = "table",
     .summary = "measured curve of a two-terminal device",
     .form = FORM_ARROW,
-    .letter = 'T',
     .extra_kind = EXTRA_CURVE,
     .terminals = terminals,
     .terminal_count = ROWS(terminals),

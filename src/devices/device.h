@@ -137,8 +137,8 @@ struct device_type {
     const char *word;    /* "nmos" */
     const char *summary; /* one line */
     enum device_form form;
-    char letter;  /* reference designator of the trade: 'M', 'Q', 'R', ... */
-    int polarity; /* +1, -1; 0 where it has no meaning */
+    bool is_resistor;
+    int polarity;                          /* +1, -1; 0 where it has no meaning */
     const struct device_type *alternative; /* same word, another form; NULL: none */
     const char *alternative_key;           /* the parameter that selects it ("conduction") */
     enum device_extra extra_kind;

@@ -131,7 +131,6 @@ const struct device_type device_diode = {
     .word = "diode",
     .summary = "junction diode; a Zener diode by its breakdown voltage",
     .form = FORM_ARROW,
-    .letter = 'D',
     .terminals = terminals,
     .terminal_count = DIODE_TERMINALS,
     .parameters = own_parameters,

@@ -160,7 +160,7 @@ static bool typical(const void *prepared, int *high, int *low, double *volts)
 }
 
 #define JFET_COMMON                                                                                \
-    .form = FORM_PINS, .letter = 'J', .is_transistor = true, .terminals = terminals,               \
+    .form = FORM_PINS, .is_transistor = true, .terminals = terminals,                              \
     .terminal_count = JFET_TERMINALS, .parameters = own_parameters,                                \
     .parameter_count = ROWS(own_parameters), .value_parameter = -1,                                \
     .model_parameters = model_parameters, .model_parameter_count = ROWS(model_parameters),         \

@@ -47,7 +47,6 @@ const struct device_type device_law = {
     .word = "law",
     .summary = "current set by an expression of node voltages",
     .form = FORM_ARROW,
-    .letter = 'F',
     .extra_kind = EXTRA_LAW,
     .uses_ground = true,
     .terminals = terminals,

@@ -12,8 +12,8 @@
 enum { OWN_W, OWN_L, OWN_M, OWN_THRESHOLD_SHIFT, OWN_GAIN_SHIFT };
 
 static const struct parameter own_parameters[] = {
-    [OWN_W] = {"W", UNIT_METRE, DEFAULT_REQUIRED, 0, 0, INFINITY, true, "drawn width"},
-    [OWN_L] = {"L", UNIT_METRE, DEFAULT_REQUIRED, 0, 0, INFINITY, true, "drawn length"},
+    [OWN_W] = {"W", UNIT_METRE, DEFAULT_REQUIRED, 0, 0, 10e-3, true, "drawn width"},
+    [OWN_L] = {"L", UNIT_METRE, DEFAULT_REQUIRED, 0, 0, 10e-3, true, "drawn length"},
     [OWN_M] = {"m", UNIT_NONE, DEFAULT_VALUE, 1, 0, INFINITY, true, "equal devices in parallel"},
     [OWN_THRESHOLD_SHIFT] = {"threshold_shift", UNIT_VOLT, DEFAULT_HIDDEN, 0, -INFINITY, INFINITY,
                              false, "deviate added to the threshold"},
@@ -438,7 +438,7 @@ static const struct deviate deviates[] = {
 };
 
 #define MOS_COMMON                                                                                 \
-    .form = FORM_PINS, .letter = 'M', .is_transistor = true, .terminals = terminals,               \
+    .form = FORM_PINS, .is_transistor = true, .terminals = terminals,                              \
     .terminal_count = MOS_TERMINALS, .value_parameter = -1, .quantities = quantities,              \
     .quantity_count = ROWS(quantities), .quantity_current = ROW_ID,                                \
     .quantity_headroom = ROW_HEADROOM, .quantity_power = ROW_POWER,                                \

@@ -85,7 +85,6 @@ const struct device_type device_opamp = {
     .word = "opamp",
     .summary = "operational amplifier of finite gain with smooth limits",
     .form = FORM_PINS,
-    .letter = 'U',
     .terminals = terminals,
     .terminal_count = OPAMP_TERMINALS,
     .branch_count = 1,

@@ -9,7 +9,8 @@
 enum { OWN_RESISTANCE, OWN_TEMPCO, OWN_TEMPCO2, OWN_TOL, OWN_MATCH, OWN_VALUE_SHIFT };
 
 static const struct parameter own_parameters[] = {
-    [OWN_RESISTANCE] = {"resistance", UNIT_OHM, DEFAULT_REQUIRED, 0, 0, INFINITY, true,
+    /* a nanoohm is less than any joint has */
+    [OWN_RESISTANCE] = {"resistance", UNIT_OHM, DEFAULT_REQUIRED, 0, 1e-9, INFINITY, false,
                         "resistance"},
     [OWN_TEMPCO] = {"tempco", UNIT_PER_KELVIN, DEFAULT_VALUE, 0, -INFINITY, INFINITY, false,
                     "relative change per kelvin"},
@@ -73,7 +74,7 @@ const struct device_type device_resistor = {
     .word = "resistor",
     .summary = "resistor",
     .form = FORM_ARROW,
-    .letter = 'R',
+    .is_resistor = true,
     .terminals = terminals,
     .terminal_count = LINEAR_TERMINALS,
     .parameters = own_parameters,

@@ -38,7 +38,6 @@ const struct device_type device_series = {
     .word = "series resistance",
     .summary = "resistance in a lead of a device",
     .form = FORM_ARROW,
-    .letter = 'R',
     .terminals = terminals,
     .terminal_count = 2,
     .branch_count = 1,

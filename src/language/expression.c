@@ -453,14 +453,42 @@ bool expression_value(const struct expression *expression, const struct expressi
     return true;
 }
 
+/* "'10k' is a plain number: write '10kohm'" when a factor of a product was left without the unit
+ * that would give it the dimension wanted; else NULL. `text` has room for it. */
+static const char *plain_factor_hint(const struct expression *expression, struct dimension found,
+                                     struct dimension wanted, char *text, size_t size)
+{
+    while (expression->kind == EXPRESSION_MULTIPLY || expression->kind == EXPRESSION_DIVIDE) {
+        const struct expression *factor = expression->right;
+        if (factor->kind == EXPRESSION_NUMBER && factor->number.bare && factor->name != NULL) {
+            const struct dimension missing = expression->kind == EXPRESSION_DIVIDE
+                                                 ? dimension_divide(found, wanted)
+                                                 : dimension_divide(wanted, found);
+            char unit[DESCRIPTION];
+            dimension_unit(missing, unit, sizeof unit);
+            if (strpbrk(unit, "*/^") != NULL || strcmp(unit, "") == 0) {
+                return NULL;
+            }
+            (void)snprintf(text, size, "'%.40s' is a plain number: write '%.40s%s'", factor->name,
+                           factor->name, unit);
+            return text;
+        }
+        expression = expression->left;
+    }
+    return NULL;
+}
+
 static bool unwanted(const struct expression *expression, const char *what,
                      const struct quantity *found, struct dimension wanted,
                      struct diagnostics *diagnostics)
 {
-    char text[DESCRIPTION], kilo[DESCRIPTION];
+    char text[DESCRIPTION], kilo[DESCRIPTION], factor[3 * DESCRIPTION];
     describe(found, text, sizeof text);
-    diagnostics_add(diagnostics, expression->span, kilo_hint(expression, wanted, kilo, sizeof kilo),
-                    "%s is wanted; this is %s", what, text);
+    const char *hint = kilo_hint(expression, wanted, kilo, sizeof kilo);
+    if (hint == NULL) {
+        hint = plain_factor_hint(expression, found->dimension, wanted, factor, sizeof factor);
+    }
+    diagnostics_add(diagnostics, expression->span, hint, "%s is wanted; this is %s", what, text);
     return false;
 }
 
@@ -484,7 +512,8 @@ bool expression_temperature(const struct expression *expression,
                             const struct expression_scope *scope, struct diagnostics *diagnostics,
                             double *kelvin)
 {
-    enum { LEAST_PLAIN = 100 }; /* K; a plain number below was meant in C */
+    /* K; a plain number below the least was meant in C; above the most no device here exists */
+    enum { LEAST_PLAIN = 100, MOST = 1000 };
     struct quantity found;
     if (!expression_value(expression, scope, diagnostics, &found)) {
         return false;
@@ -503,6 +532,11 @@ bool expression_temperature(const struct expression *expression,
     if (!(found.value > 0.0)) {
         diagnostics_add(diagnostics, expression->span, NULL,
                         "a temperature lies above absolute zero, 0 K or -273.15 C");
+        return false;
+    }
+    if (!(found.value <= MOST)) {
+        diagnostics_add(diagnostics, expression->span, NULL,
+                        "no device here works at such a temperature: at most %d K", MOST);
         return false;
     }
     *kelvin = found.value;

@@ -33,7 +33,7 @@ bool expression_wanted(const struct expression *expression, const struct express
                        struct dimension wanted, struct diagnostics *diagnostics, double *value);
 
 /* An absolute temperature in K. A plain number is kelvin; below 100 K it is an error that suggests
- * C. Never below 0 K. */
+ * C. Never below 0 K, at most 1000 K. */
 bool expression_temperature(const struct expression *expression,
                             const struct expression_scope *scope, struct diagnostics *diagnostics,
                             double *kelvin);

@@ -58,10 +58,11 @@ static const char *copy(struct lexer *lexer, uint32_t begin, uint32_t end)
     return text;
 }
 
-/* Bytes of a mu or an omega at `at`, which units may hold; 0 when there is none. */
+/* Bytes of a mu, omega or degree sign at `at`, which units may hold; 0 when there is none. */
 static uint32_t unit_sign(const struct lexer *lexer, uint32_t at)
 {
-    static const char *const signs[] = {"\xC2\xB5", "\xCE\xBC", "\xCE\xA9", "\xE2\x84\xA6"};
+    static const char *const signs[] = {"\xC2\xB5", "\xCE\xBC", "\xCE\xA9", "\xE2\x84\xA6",
+                                        "\xC2\xB0"};
     for (size_t i = 0; i < sizeof signs / sizeof signs[0]; i++) {
         size_t size = strlen(signs[i]);
         if (lexer->length - at >= size && memcmp(lexer->text + at, signs[i], size) == 0) {
@@ -102,6 +103,12 @@ static bool apply_word(struct lexer *lexer, struct token *token, uint32_t number
 {
     const char *number = lexer->text + token->begin;
     size_t length = number_end - token->begin;
+    if (end - word == 3 && memcmp(lexer->text + word,
+                                  "\xC2\xB0"
+                                  "C",
+                                  3) == 0) {
+        word += 2; /* "27 °C" is 27 C */
+    }
     double factor = 0.0;
     struct dimension dimension = DIMENSION_NONE;
     bool celsius = false;
@@ -115,6 +122,7 @@ static bool apply_word(struct lexer *lexer, struct token *token, uint32_t number
         if (bytes == 0 || bytes != end - word) {
             return false;
         }
+        token->has_prefix = true;
     }
     (void)number_parse_scaled(number, length, power_of_ten(factor), &token->number.value);
     if (celsius) {
@@ -363,6 +371,39 @@ static bool lex_text(struct lexer *lexer, struct token *token)
     return token->text != NULL;
 }
 
+/* What a character that word processors and web pages put in stands for, and its name. */
+static const char *foreign_hint(uint32_t character, const char **name)
+{
+    static const struct {
+        uint32_t character;
+        const char *name, *hint;
+    } table[] = {
+        {0x2192, "arrow", "write '->'"},
+        {0x21D2, "arrow", "write '->'"},
+        {0x2018, "quotation mark", "write '\"'"},
+        {0x2019, "quotation mark", "write '\"'"},
+        {0x201C, "quotation mark", "write '\"'"},
+        {0x201D, "quotation mark", "write '\"'"},
+        {0x201E, "quotation mark", "write '\"'"},
+        {0x00AB, "quotation mark", "write '\"'"},
+        {0x00BB, "quotation mark", "write '\"'"},
+        {0x00A0, "no-break space", "write an ordinary space"},
+        {0x2009, "thin space", "write an ordinary space"},
+        {0x202F, "narrow no-break space", "write an ordinary space"},
+        {0x2212, "minus sign", "write '-'"},
+        {0x2013, "dash", "write '-'"},
+        {0x00D7, "multiplication sign", "write '*'"},
+        {0x00B7, "dot", "write '*'"},
+    };
+    for (size_t i = 0; i < sizeof table / sizeof table[0]; i++) {
+        if (table[i].character == character) {
+            *name = table[i].name;
+            return table[i].hint;
+        }
+    }
+    return NULL;
+}
+
 /* A character that begins no token. */
 static bool wrong_character(struct lexer *lexer, uint32_t at)
 {
@@ -379,6 +420,12 @@ static bool wrong_character(struct lexer *lexer, uint32_t at)
     uint32_t character = 0;
     uint32_t bytes = (uint32_t)utf8_decode(lexer->text + at, lexer->length - at, &character);
     bytes = bytes == 0 ? 1 : bytes;
+    const char *name = NULL, *hint = foreign_hint(character, &name);
+    if (name != NULL) {
+        return fail(lexer, at, at + bytes, hint,
+                    arena_format(lexer->arena, "the %s U+%04lX has no meaning here", name,
+                                 (unsigned long)character));
+    }
     if (character < 0x20 || character == 0x7F) {
         return fail(lexer, at, at + bytes, NULL,
                     arena_format(lexer->arena, "the control character U+%04lX has no place here",

@@ -20,6 +20,7 @@ struct token {
     double count;           /* the number alone ... */
     struct quantity unit;   /* ... and one of its unit, when has_unit */
     bool has_unit;          /* a unit word was written, not only a prefix */
+    bool has_prefix;        /* a prefix without a unit: "10k" */
 };
 
 /* The first error of a line; text NULL when there is none. */

@@ -137,6 +137,14 @@ static struct expression *parse_number(struct parser *parser)
         return NULL;
     }
     expression->number = token->number;
+    if (token->has_prefix) {
+        expression->name =
+            arena_copy(parser->arena, parser->lexer.text + token->begin, token->end - token->begin);
+        if (expression->name == NULL) {
+            (void)parser_no_memory(parser);
+            return NULL;
+        }
+    }
     parser->at++;
     if (token->has_unit && parser_is_symbol(parser, 0, '^')) {
         return parse_unit_power(parser, token, expression);

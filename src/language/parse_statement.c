@@ -11,12 +11,13 @@
 
 #include "language/expression_unit.h"
 
-/* The words inside statements, for near names. */
+/* The words inside statements, for near names; the word itself, out of place, is none. */
 static const char *near_inner_word(const char *word)
 {
     static const char *const words[] = {"from",  "to",     "at",   "within",     "of",  "below",
                                         "above", "points", "show", "everywhere", "for", "so"};
-    return near_name(word, words, (int)(sizeof words / sizeof words[0]));
+    const char *near = near_name(word, words, (int)(sizeof words / sizeof words[0]));
+    return near != NULL && strcmp(near, word) == 0 ? NULL : near;
 }
 
 /* "`wanted` is wanted here; found ...". The near name is shown when it is the word wanted. */
@@ -55,7 +56,9 @@ static bool read_word(struct parser *parser, struct word *word, const char *what
 {
     const struct token *token = parser_peek(parser, 0);
     if (token->kind == TOKEN_NUMBER) {
-        return parser_error(parser, parser_span(parser, token), "a name begins with a letter or _",
+        const bool is_ground = token->number.value == 0 && strcmp(what, "a node") == 0;
+        return parser_error(parser, parser_span(parser, token),
+                            is_ground ? "0 V is called gnd" : "a name begins with a letter or _",
                             "%s is wanted here; found a number", what);
     }
     if (token->kind != TOKEN_NAME) {
@@ -68,6 +71,11 @@ static bool read_word(struct parser *parser, struct word *word, const char *what
     *word = (struct word){token->text, parser_span(parser, token)};
     parser->at++;
     return true;
+}
+
+static bool at_assignment(const struct parser *parser)
+{
+    return parser_peek(parser, 0)->kind == TOKEN_NAME && parser_is_symbol(parser, 1, '=');
 }
 
 static bool step_text(struct parser *parser, struct statement *statement)
@@ -84,6 +92,11 @@ static bool step_text(struct parser *parser, struct statement *statement)
 
 static bool step_name(struct parser *parser, struct statement *statement)
 {
+    if (statement->kind == STATEMENT_USE && at_assignment(parser)) {
+        return parser_error(parser, parser_span(parser, parser_peek(parser, 0)),
+                            arena_format(parser->arena, "use %s NAME ...", statement->type.text),
+                            "the name of this use is missing");
+    }
     return read_word(parser, &statement->name, "a name", false);
 }
 
@@ -126,6 +139,25 @@ static bool step_quantity(struct parser *parser, struct statement *statement)
 static bool step_value(struct parser *parser, struct statement *statement)
 {
     return read_value(parser, &statement->value);
+}
+
+/* The voltage of a rail stands behind its name, without a sign between. */
+static bool step_volts(struct parser *parser, struct statement *statement)
+{
+    const struct token *token = parser_peek(parser, 0);
+    if (parser_is_symbol(parser, 0, '=')) {
+        const uint32_t end = statement->span.end;
+        uint32_t begin = token->end;
+        while (begin < end && parser->lexer.text[begin] == ' ') {
+            begin++;
+        }
+        return parser_error(parser, parser_span(parser, token),
+                            arena_format(parser->arena, "write 'rail %s %.*s'",
+                                         statement->name.text, (int)(end - begin),
+                                         parser->lexer.text + begin),
+                            "a value is wanted here; found '='");
+    }
+    return step_value(parser, statement);
 }
 
 static bool step_equals(struct parser *parser, struct statement *statement)
@@ -316,11 +348,6 @@ static bool read_assignment(struct parser *parser, struct statement *statement, 
     return assignment.value != NULL && add_assignment(parser, statement, capacity, assignment);
 }
 
-static bool at_assignment(const struct parser *parser)
-{
-    return parser_peek(parser, 0)->kind == TOKEN_NAME && parser_is_symbol(parser, 1, '=');
-}
-
 static bool step_assignments(struct parser *parser, struct statement *statement)
 {
     int capacity = 0;
@@ -355,7 +382,7 @@ static const struct statement_rule rules[] = {
     {"valid", STATEMENT_VALID, true, false, {step_name, step_range}, BODY_NONE},
     {"model", STATEMENT_MODEL, true, false, {step_name, step_type}, BODY_VALUES},
     {"corner", STATEMENT_CORNER, true, false, {step_name}, BODY_VALUES},
-    {"rail", STATEMENT_RAIL, false, false, {step_name, step_value}, BODY_NONE},
+    {"rail", STATEMENT_RAIL, false, false, {step_name, step_volts}, BODY_NONE},
     {"block", STATEMENT_BLOCK, false, false, {step_name, step_pins}, BODY_STATEMENTS},
     {"use", STATEMENT_USE, false, true, {step_type, step_name, step_assignments}, BODY_NONE},
     {"output",
@@ -423,6 +450,16 @@ static bool surplus(struct parser *parser)
                                 "there is no unit %s", found);
         }
     }
+    if (token->kind == TOKEN_NUMBER && token->number.bare && token->number.value == 1 &&
+        parser_is_symbol(parser, 1, '/') && parser_peek(parser, 2)->kind == TOKEN_NAME &&
+        parser_peek(parser, -1)->kind == TOKEN_NUMBER) { /* "20 1/V" */
+        const struct token *number = parser_peek(parser, -1);
+        const char *hint =
+            arena_format(parser->arena, "write '%.*s/%s'", (int)(number->end - number->begin),
+                         parser->lexer.text + number->begin, parser_peek(parser, 2)->text);
+        return parser_error(parser, parser_span(parser, token), hint,
+                            "nothing more is wanted here; found %s", found);
+    }
     const char *near = token->kind == TOKEN_NAME ? near_inner_word(token->text) : NULL;
     return parser_error(parser, parser_span(parser, token), parser_hint(parser, near),
                         "nothing more is wanted here; found %s", found);
@@ -439,6 +476,22 @@ bool statement_parse(struct parser *parser, const struct statement_rule *rule,
     return parser_peek(parser, 0)->kind == TOKEN_END || surplus(parser);
 }
 
+/* Two names behind the name of a part: its nodes, or more than two pins without their names. */
+static bool two_nodes(struct parser *parser, const struct token *first, const struct token *second)
+{
+    const struct span both = {parser->lexer.file, first->begin, second->end};
+    if (parser_peek(parser, 1)->kind == TOKEN_NAME) {
+        return parser_error(parser, both,
+                            arena_format(parser->arena,
+                                         "write '%s -> %s', or PIN=%s for each of its pins",
+                                         first->text, second->text, first->text),
+                            "an arrow is wanted between two nodes");
+    }
+    return parser_error(parser, both,
+                        arena_format(parser->arena, "write '%s -> %s'", first->text, second->text),
+                        "an arrow is wanted between the nodes");
+}
+
 /* A second value behind the first: most often an '=' or an arrow was left out between two names. */
 static bool second_value(struct parser *parser, const struct statement *statement)
 {
@@ -449,8 +502,10 @@ static bool second_value(struct parser *parser, const struct statement *statemen
     }
     if (before->kind == TOKEN_NAME && token->kind == TOKEN_NAME) {
         bool arrow = statement->node_from.text == NULL && statement->assignment_count == 0;
-        hint = arena_format(parser->arena, arrow ? "write '%s -> %s'" : "write '%s=%s'",
-                            before->text, token->text);
+        if (arrow) {
+            return two_nodes(parser, before, token);
+        }
+        hint = arena_format(parser->arena, "write '%s=%s'", before->text, token->text);
     }
     const char *found = parser_found(parser, token);
     return found != NULL &&

@@ -1,6 +1,7 @@
 /* source.c: files into memory, checked to be text. */
 #include "language/source.h"
 
+#include <dirent.h>
 #include <errno.h>
 #include <fcntl.h>
 #include <stdlib.h>
@@ -191,6 +192,38 @@ enum status source_add_text(struct arena *arena, struct source_set *sources, con
         return diagnostics->out_of_memory ? STATUS_MEMORY : STATUS_INPUT;
     }
     return STATUS_OK;
+}
+
+/* The name without its ending when it has that one. */
+static const char *copy_stem(struct arena *arena, const char *name, const char *ending)
+{
+    const char *tail = strrchr(name, '.');
+    const bool has_ending = tail != NULL && strcmp(tail, ending) == 0;
+    return arena_copy(arena, name, has_ending ? (size_t)(tail - name) : strlen(name));
+}
+
+const char *source_near(struct arena *arena, const char *folder, const char *name,
+                        const char *ending)
+{
+    enum { SEEN_LIMIT = 1000 }; /* files of one folder */
+    const char *stems[SEEN_LIMIT];
+    int count = 0;
+    DIR *list = opendir(*folder == '\0' ? "." : folder);
+    if (list == NULL) {
+        return NULL;
+    }
+    for (const struct dirent *entry = readdir(list); entry != NULL && count < SEEN_LIMIT;
+         entry = readdir(list)) {
+        const char *tail = strrchr(entry->d_name, '.');
+        if (tail != NULL && strcmp(tail, ending) == 0) {
+            stems[count] = copy_stem(arena, entry->d_name, ending);
+            count += stems[count] != NULL ? 1 : 0;
+        }
+    }
+    (void)closedir(list);
+    const char *wanted = copy_stem(arena, name, ending);
+    const char *near = wanted == NULL ? NULL : near_name(wanted, stems, count);
+    return near == NULL ? NULL : arena_format(arena, "%s%s", near, ending);
 }
 
 bool source_exists(const char *path)

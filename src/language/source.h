@@ -28,6 +28,11 @@ enum status source_add_text(struct arena *arena, struct source_set *sources, con
                             const char *text, size_t length, struct diagnostics *diagnostics,
                             uint32_t *index);
 
+/* The file of a folder ("" is the current one), among those with an ending such as ".process", that
+ * a mistyped name most likely meant; NULL when there is none. The text is of the arena. */
+const char *source_near(struct arena *arena, const char *folder, const char *name,
+                        const char *ending);
+
 /* True when path names a file that can be opened for reading. */
 bool source_exists(const char *path);
 

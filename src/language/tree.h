@@ -41,7 +41,7 @@ struct expression {
     enum expression_kind kind;
     struct span span;
     struct quantity number;
-    const char *name;
+    const char *name; /* of a number with a prefix and no unit: as written, "10k" */
     const struct expression *left, *right;
     const struct expression **arguments;
     int argument_count;

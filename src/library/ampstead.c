@@ -18,6 +18,7 @@ enum command {
     COMMAND_REVIEW,
     COMMAND_POINT,
     COMMAND_SWEEP,
+    COMMAND_STATES,
     COMMAND_MODELS,
     COMMAND_CHECK,
     COMMAND_FORMAT,
@@ -25,8 +26,9 @@ enum command {
 };
 
 static const char *const command_words[COMMAND_COUNT] = {
-    [COMMAND_REVIEW] = "review", [COMMAND_POINT] = "point", [COMMAND_SWEEP] = "sweep",
-    [COMMAND_MODELS] = "models", [COMMAND_CHECK] = "check", [COMMAND_FORMAT] = "format",
+    [COMMAND_REVIEW] = "review", [COMMAND_POINT] = "point",   [COMMAND_SWEEP] = "sweep",
+    [COMMAND_STATES] = "states", [COMMAND_MODELS] = "models", [COMMAND_CHECK] = "check",
+    [COMMAND_FORMAT] = "format",
 };
 
 struct ampstead_result {
@@ -180,6 +182,9 @@ static enum status analyse(const struct ampstead_request *request, struct ampste
         .stopped_self = &hooks,
         .progress = request->progress,
         .progress_self = request->progress_self,
+        .certify = request->certify != 0,
+        .boxes = request->boxes,
+        .leakage = 1e-9,
     };
     switch (result->command) {
     case COMMAND_REVIEW:
@@ -196,6 +201,15 @@ static enum status analyse(const struct ampstead_request *request, struct ampste
             options.extra_sweep = &result->sweep;
         }
         return analysis_sweep(result->circuit, &options, &result->found);
+    case COMMAND_STATES:
+        if (request->leakage != NULL) {
+            enum status status =
+                request_current(result->cell, "--leakage", request->leakage, &options.leakage);
+            if (status != STATUS_OK) {
+                return status;
+            }
+        }
+        return analysis_states(result->circuit, &options, &result->found);
     case COMMAND_MODELS:
     case COMMAND_CHECK:
     case COMMAND_FORMAT:
@@ -221,6 +235,9 @@ static const char *check_request(const struct ampstead_request *request, enum co
         (request->command == NULL || strcmp(request->command, "sweep") != 0)) {
         return "a sweep is given to a command other than sweep";
     }
+    if (request->boxes < 0) {
+        return "the number of boxes must not be negative";
+    }
     *command = COMMAND_REVIEW;
     for (int k = 0; k < COMMAND_COUNT && request->command != NULL; k++) {
         if (strcmp(request->command, command_words[k]) == 0) {
@@ -237,6 +254,11 @@ static enum status run(const struct ampstead_request *request, struct ampstead_r
     if (result->trouble != NULL) {
         return STATUS_INPUT;
     }
+    if (result->command != COMMAND_MODELS && result->command != COMMAND_CHECK &&
+        result->command != COMMAND_FORMAT && ends_with(request->path, ".process")) {
+        result->trouble = "this is a process file: ampstead models FILE shows it";
+        return STATUS_INPUT;
+    }
     if (result->command == COMMAND_FORMAT) {
         return edit_format(request->path, request->text, request->text_length, &result->cell,
                            &result->text);
@@ -245,6 +267,11 @@ static enum status run(const struct ampstead_request *request, struct ampstead_r
     /* A cell with errors is built as far as it goes: all that is wrong is told in one run. */
     if (status == STATUS_OK || (status == STATUS_INPUT && result->cell != NULL)) {
         status = build(request, result);
+    }
+    if (status == STATUS_OK && result->command != COMMAND_MODELS &&
+        result->circuit->instance_count == 0) {
+        diagnostics_add(&result->cell->diagnostics, SPAN_NONE, NULL, "the cell holds no parts");
+        status = STATUS_INPUT;
     }
     if (status == STATUS_OK) {
         status = analyse(request, result);
@@ -364,6 +391,9 @@ const char *ampstead_result_text(struct ampstead_result *result, unsigned flags,
         break;
     case COMMAND_SWEEP:
         report_sweep(result->found, &style, &result->text);
+        break;
+    case COMMAND_STATES:
+        report_states(result->found, &style, &result->text);
         break;
     case COMMAND_MODELS:
         report_models(result->circuit, &style, &result->text);

@@ -50,8 +50,8 @@ enum ampstead_view { AMPSTEAD_VIEW_FULL = 0, AMPSTEAD_VIEW_HAND = 1 };
  * and stays the caller's. */
 struct ampstead_request {
     size_t size;             /* sizeof(struct ampstead_request): set by AMPSTEAD_REQUEST */
-    const char *command;     /* "review", "point", "sweep", "models", "check" or "format"; NULL:
-                                review */
+    const char *command;     /* "review", "point", "sweep", "states", "models", "check" or
+                                "format"; NULL: review */
     const char *path;        /* the cell file; "-": standard input. With text: its name. Required */
     const char *text;        /* the cell itself, instead of the file; NULL: read the file */
     size_t text_length;      /* bytes of text */
@@ -69,12 +69,15 @@ struct ampstead_request {
     void *stopped_self;
     void (*progress)(void *self, const char *what, double share); /* share: 0 to 1. NULL: none */
     void *progress_self;
+    int certify;         /* for command "point": not 0 proves it unique in a small box */
+    long boxes;          /* for command "states": boxes of the proof, then it gives up */
+    const char *leakage; /* for command "states": "1 nA", a push below it is at risk; NULL: that */
 };
 
 #define AMPSTEAD_REQUEST                                                                           \
     {                                                                                              \
         sizeof(struct ampstead_request), 0, 0, 0, 0, AMPSTEAD_VIEW_FULL, 0, 0, 0, 0, 0, 0, 0, 0,   \
-            0, 0, 0                                                                                \
+            0, 0, 0, 0, 100000, 0                                                                  \
     }
 
 struct ampstead_result;

@@ -51,6 +51,12 @@ enum status request_set(struct cell *cell, const char *text, struct set_value *s
     if (status != STATUS_OK) {
         return status;
     }
+    if (memchr(text, '.', length) != NULL) {
+        diagnostics_add(&cell->diagnostics, (struct span){file, 0, (uint32_t)length},
+                        "set a let of the cell that the `use` line passes on",
+                        "what is inside a block cannot be set");
+        return STATUS_INPUT;
+    }
     if (!is_name(text, length)) {
         const struct span where = {file, 0, (uint32_t)(length > 0 ? length : strlen(text))};
         diagnostics_add(&cell->diagnostics, where, "such as RE=51k",
@@ -86,6 +92,19 @@ enum status request_temperature(struct cell *cell, const char *text, double *kel
     }
     return expression_temperature(expression, &scope, &cell->diagnostics, kelvin) ? STATUS_OK
                                                                                   : STATUS_INPUT;
+}
+
+enum status request_current(struct cell *cell, const char *name, const char *text, double *amperes)
+{
+    const struct expression *expression = NULL;
+    const struct expression_scope scope = {.find = find_nothing, .thermal_voltage = NAN};
+    enum status status = read_expression(cell, name, text, &expression);
+    if (status != STATUS_OK) {
+        return status;
+    }
+    return expression_wanted(expression, &scope, DIMENSION_CURRENT, &cell->diagnostics, amperes)
+               ? STATUS_OK
+               : STATUS_INPUT;
 }
 
 enum status request_sweep(struct cell *cell, const struct circuit *circuit, const char *text,

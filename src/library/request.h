@@ -15,6 +15,9 @@ enum status request_set(struct cell *cell, const char *text, struct set_value *s
 /* "60 C" */
 enum status request_temperature(struct cell *cell, const char *text, double *kelvin);
 
+/* "1 nA": a current above 0. `name` of the text for messages. */
+enum status request_current(struct cell *cell, const char *name, const char *text, double *amperes);
+
 /* "THING from A to B points N show Q, Q"; the word `sweep` in front is allowed. */
 enum status request_sweep(struct cell *cell, const struct circuit *circuit, const char *text,
                           struct sweep *sweep);

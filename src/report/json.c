@@ -4,112 +4,13 @@
  */
 #include "report/report.h"
 
-#include <jansson.h>
 #include <math.h>
-#include <stdlib.h>
 #include <string.h>
 
-#include "base/utf8.h"
+#include "report/json_parts.h"
+#include "report/json_states.h"
 
 enum { SCHEMA_VERSION = 1, DIGITS = 17 };
-
-/* The functions below add one key. A failed allocation marks the writer and the rest does nothing
- * harmful: jansson takes a NULL as a refusal. */
-struct writer {
-    bool failed;
-};
-
-static void put(struct writer *writer, json_t *object, const char *key, json_t *value)
-{
-    if (json_object_set_new(object, key, value) != 0) {
-        writer->failed = true;
-    }
-}
-
-static void append(struct writer *writer, json_t *array, json_t *value)
-{
-    if (json_array_append_new(array, value) != 0) {
-        writer->failed = true;
-    }
-}
-
-static void put_number(struct writer *writer, json_t *object, const char *key, double value)
-{
-    if (isfinite(value)) {
-        put(writer, object, key, json_real(value));
-    }
-}
-
-static bool is_utf8(const char *text)
-{
-    const size_t length = strlen(text);
-    for (size_t at = 0; at < length;) {
-        uint32_t character;
-        const size_t bytes = utf8_decode(text + at, length - at, &character);
-        if (bytes == 0) {
-            return false;
-        }
-        at += bytes;
-    }
-    return true;
-}
-
-/* A string; NULL when memory is short. Of a text that is no UTF-8 (a file name may hold any bytes)
- * all that is not ASCII becomes '?'. */
-static json_t *make_text(const char *text)
-{
-    if (is_utf8(text)) {
-        return json_string(text);
-    }
-    const size_t size = strlen(text) + 1;
-    char *plain = malloc(size);
-    if (plain == NULL) {
-        return NULL;
-    }
-    for (size_t k = 0; k < size; k++) {
-        plain[k] = (char)((unsigned char)text[k] < 0x80 ? text[k] : '?');
-    }
-    json_t *value = json_string(plain);
-    free(plain);
-    return value;
-}
-
-static void put_text(struct writer *writer, json_t *object, const char *key, const char *text)
-{
-    if (text != NULL) {
-        put(writer, object, key, make_text(text));
-    }
-}
-
-static void put_numbers(struct writer *writer, json_t *object, const char *key,
-                        const double *values, int count, int stride)
-{
-    json_t *array = json_array();
-    for (int k = 0; k < count; k++) {
-        double value = values[k * stride];
-        append(writer, array, isfinite(value) ? json_real(value) : json_null());
-    }
-    put(writer, object, key, array);
-}
-
-/* An object or array under a key; borrowed by the caller, NULL when memory is short. */
-static json_t *put_object(struct writer *writer, json_t *object, const char *key)
-{
-    put(writer, object, key, json_object());
-    return json_object_get(object, key);
-}
-
-static json_t *put_array(struct writer *writer, json_t *object, const char *key)
-{
-    put(writer, object, key, json_array());
-    return json_object_get(object, key);
-}
-
-static json_t *append_object(struct writer *writer, json_t *array)
-{
-    append(writer, array, json_object());
-    return json_array_get(array, json_array_size(array) - 1);
-}
 
 static const char *verdict_text(enum verdict verdict)
 {
@@ -207,7 +108,8 @@ static void put_output(struct writer *writer, json_t *outputs, const struct circ
         put_number(writer, object, "resistance", row->resistance);
     }
     put_number(writer, object, "compliance", row->compliance);
-    put_text(writer, object, "compliance_device", row->compliance_device);
+    put_text(writer, object, "compliance_device",
+             row->unheld_device != NULL ? row->unheld_device : row->compliance_device);
     put_number(writer, object, "low", row->low);
     put_number(writer, object, "high", row->high);
     put_number(writer, object, "flatness", row->flatness);
@@ -364,6 +266,7 @@ void report_json(const struct result *result, const char *version, struct buffer
         put_requirements(&writer, root, result);
         put_sweeps(&writer, root, result);
     }
+    json_put_states(&writer, root, result);
     put_cautions(&writer, root, &result->cautions);
     finish(&writer, root, out);
 }

@@ -68,6 +68,9 @@ const char *page_verdict_reason(struct layout *layout, const struct result *resu
             layout, judged == 1 ? "%d requirement, and it holds%s" : "all %d requirements hold%s",
             judged, rest);
     }
+    if (judged == 1) {
+        return layout_format(layout, "the requirement is not met%s", rest);
+    }
     return layout_format(layout, "%d of %d requirements %s%s", judged - met, judged,
                          judged - met == 1 ? "is not met" : "are not met", rest);
 }
@@ -77,7 +80,7 @@ const char *page_conditions(struct layout *layout, const struct result *result)
     const struct circuit *circuit = result->circuit;
     const char *text =
         layout_format(layout, "%s, %s, %s", layout_clean(layout, circuit->cell->path),
-                      result->view == VIEW_HAND ? "hand view (square law)" : "full view",
+                      result->view == VIEW_HAND ? "hand view" : "full view",
                       show_celsius(layout, result->kelvin));
     if (circuit->corner != NULL) {
         text = layout_format(layout, "%s, corner %s", text, layout_clean(layout, circuit->corner));
@@ -102,10 +105,14 @@ const char *page_conditions(struct layout *layout, const struct result *result)
 static void name_failures(struct layout *layout, const struct result *result)
 {
     enum { NAMED = 3 };
-    int named = 0;
-    for (int k = 0; k < result->requirement_count && named < NAMED; k++) {
+    int named = 0, left = 0;
+    for (int k = 0; k < result->requirement_count; k++) {
         const struct requirement_result *row = &result->requirements[k];
         if (row->judgement != JUDGED_NOT_MET && row->judgement != JUDGED_UNKNOWN) {
+            continue;
+        }
+        if (named == NAMED) {
+            left++;
             continue;
         }
         named++;
@@ -117,6 +124,9 @@ static void name_failures(struct layout *layout, const struct result *result)
         layout_paragraph(
             layout, TONE_PLAIN, 2,
             layout_format(layout, "%s: %s", requirement_text(layout, row->requirement), value));
+    }
+    if (left > 0) {
+        layout_paragraph(layout, TONE_PLAIN, 2, layout_format(layout, "and %d more", left));
     }
 }
 

@@ -59,6 +59,10 @@ static const char *margin_text(struct layout *layout, const struct requirement_r
     if (isinf(row->margin)) {
         return "no limit near";
     }
+    const bool at_limit = fabs(row->margin) <= 1e-9 * fabs(row->requirement->value);
+    if (at_limit || (row->judgement == JUDGED_MET && row->margin < 0.0)) {
+        return "at the limit";
+    }
     const char *size = show_probe(layout, probe, fabs(row->margin));
     double limit = fabs(row->requirement->value);
     const char *share = "";
@@ -105,7 +109,7 @@ void page_requirements(struct layout *layout, const struct result *result)
 
 void page_paper(struct layout *layout, const struct result *result)
 {
-    static const char *const heads[] = {"", "paper", "computed", "differs by", "", "square law"};
+    static const char *const heads[] = {"", "paper", "computed", "differs by", "", "hand view"};
     struct table table;
     layout_part(layout, "paper");
     table_begin(&table, layout);

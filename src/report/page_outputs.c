@@ -46,6 +46,10 @@ static void compliance_fact(struct table *table, const struct output_result *row
         fact(table, "compliance", show_value(layout, end, DIMENSION_VOLTAGE),
              layout_format(layout, "the end of the sweep; still held there, so the edge lies %s",
                            row->is_sink ? "lower" : "higher"));
+    } else if (row->unheld_device != NULL) {
+        fact(table, "compliance", "-",
+             layout_format(layout, "not held: %s is out of headroom already",
+                           layout_short(layout, row->unheld_device, 28)));
     } else {
         fact(table, "compliance", "-", "no transistor holds the current here");
     }

@@ -16,6 +16,8 @@ void page_paper(struct layout *layout, const struct result *result);
 void page_cautions(struct layout *layout, const struct result *result);
 /* How the point was found and how good it is. */
 void page_evidence(struct layout *layout, const struct result *result);
+/* What `point --certify` proved. */
+void page_certificate(struct layout *layout, const struct result *result);
 /* The last line of every text report. */
 void page_closing(struct layout *layout);
 extern const char page_sign_off[];

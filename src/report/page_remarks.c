@@ -66,8 +66,8 @@ void page_evidence(struct layout *layout, const struct result *result)
     layout_part(layout, "evidence");
     layout_paragraph(
         layout, TONE_PLAIN, 0,
-        layout_format(layout, "%s, %d Newton iterations; worst residual %s of the currents%s%s",
-                      solver->method, solver->iterations,
+        layout_format(layout, "%s, %d Newton iteration%s; worst residual %s of the currents%s%s",
+                      solver->method, solver->iterations, solver->iterations == 1 ? "" : "s",
                       show_value(layout, solver->worst_residual, DIMENSION_NONE),
                       solver->worst_name != NULL ? " at " : "",
                       solver->worst_name != NULL ? layout_clean(layout, solver->worst_name) : ""));

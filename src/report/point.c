@@ -139,6 +139,7 @@ void report_point(const struct result *result, const struct report_style *style,
     } else if (!style->stopped) {
         page_unsolved(&layout, result);
     }
+    page_certificate(&layout, result);
     page_cautions(&layout, result);
     page_evidence(&layout, result);
     page_closing(&layout);

@@ -32,6 +32,10 @@ void report_point(const struct result *result, const struct report_style *style,
 void report_sweep(const struct result *result, const struct report_style *style,
                   struct buffer *out);
 
+/* Every resting state, the proof, and the start-up verdict. */
+void report_states(const struct result *result, const struct report_style *style,
+                   struct buffer *out);
+
 /* Every model value in force. */
 void report_models(const struct circuit *circuit, const struct report_style *style,
                    struct buffer *out);

@@ -57,7 +57,9 @@ run 2 "$cell" --view=hnd && err_begins "ampstead: 'hnd' is no value of --view (f
 run 2 "$cell" --color blue && err_begins "ampstead: 'blue' is no value of --color"
 run 2 --help=yes && err_begins "ampstead: '--help=yes' takes no value"
 run 2 point "$cell" --csv x.csv && err_begins "ampstead: '--csv' does not go with \`point\`, only with \`review\` \`sweep\`"
-run 2 review "$cell" again && err_begins "ampstead: 'again' is one word too many"
+run 2 review "$cell" again && err_begins "ampstead: 'again' is one too many: one cell a run"
+run 2 "$cell" y.cell && err_begins "ampstead: 'y.cell' is one too many: one cell a run"
+run 2 "$cell" --json out.txt && err_begins "ampstead: 'out.txt' is one too many; for a file write --json=out.txt"
 run 2 "$cell" --json --csv - && err_begins "ampstead: '--json' and '--csv' cannot both"
 
 # Options anywhere, --opt=value, short forms, -- ends them
@@ -72,6 +74,20 @@ run 2 "$work/none.cell" && err_has "none.cell" && out_empty
 run 2 "$cell" --set NOPE=1 && err_begins "--set:1:1: " && out_empty
 printf 'rail vcc 3 V\nresistor R vcc -> gnd 3 uA\n' >"$work/wrong.cell"
 run 2 "$work/wrong.cell" && err_begins "$work/wrong.cell:2:23: "
+printf 'block b p\nresistor R p -> gnd 1k\nend\nlet R = 100 kohm\nrail vcc 3 V\nresistor RA vcc -> gnd R\n' >"$work/set.cell"
+run 2 "$work/set.cell" --set "R=1 V" && err_begins "--set R:1:1: R is a resistance in the cell; this is a voltage"
+run 0 "$work/set.cell" --set "R=1 kohm"
+run 2 "$work/set.cell" --set X.K=3 && err_begins "--set:1:1: what is inside a block cannot be set"
+run 2 "$work/set.cell" -t "1e9 K" && err_begins "--temperature:1:1: no device here works at such a temperature"
+printf 'rail vcc 3 V\nresistor RA vcc -> gnd 1k tempco=-20000 ppm/K\n' >"$work/turned.cell"
+run 0 "$work/turned.cell" -t "76 C"
+run 2 "$work/turned.cell" -t "85 C" && err_begins "$work/turned.cell:2:10: RA would be negative at 85.00 C"
+printf '# nothing\n' >"$work/empty.cell"
+run 2 "$work/empty.cell" && err_begins "ampstead: the cell holds no parts"
+# Process files in the place of cells, and those that are not there
+run 2 "$source/models/n180.process" && err_begins "ampstead: this is a process file: ampstead models FILE"
+run 0 models "$source/models/n180.process" && out_has "kprime"
+run 2 models nofile.process && err_begins "ampstead: there is no process file"
 # no finite current can solve v = 1 V over a law that draws no current at any voltage it could reach
 cat >"$work/never.cell" <<'CELL'
 rail vcc 1 V

@@ -24,7 +24,7 @@ static void tables_are_whole(void **state)
     for (int k = 0; k < device_type_count; k++) {
         const struct device_type *type = device_types[k];
         assert_true(strlen(type->word) > 0 && strlen(type->summary) > 0);
-        assert_true(type->letter >= 'A' && type->letter <= 'Z');
+        assert_false(type->is_resistor && type->is_transistor);
         assert_true(type->terminal_count + type->branch_count <= DEVICE_LOCAL_LIMIT);
         assert_true(type->value_parameter < type->parameter_count);
         check_parameters(type->parameters, type->parameter_count);

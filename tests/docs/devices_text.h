@@ -72,7 +72,7 @@ static const struct family families[] = {
      "effect and\n"
      "slope_factor = `slope`, so that both agree in strong inversion; a slope that was assumed "
      "earns a\n"
-     "caution. `early` multiplies by 1 + (x - xe)/early.\n"},
+     "caution. `early` multiplies by 1 + vds/early in both views.\n"},
     {"diode", NULL, "Diode",
      "    I = area m (I_S (exp(V/(n UT)) - 1) - I_Z exp(-(V_Z + V)/(n_Z UT)))\n"
      "\n"

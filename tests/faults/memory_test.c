@@ -30,6 +30,13 @@ static const char hard_cell[] = "rail vcc 1 V\n"
                                 "law L x -> gnd i = 1 nA * (1 + sqrt((x.v / 1 V)^2)) / "
                                 "(1 + sqrt((x.v / 1 V)^2))\n";
 
+/* Three states, a loop, and a start-up verdict. */
+static const char latch_cell[] =
+    "model n npn\n early = 50 V\nend\nmodel p pnp\nend\nrail vcc 5 V\n"
+    "resistor RL vcc -> e 1k\npnp Q2 c=b b=c e=e\nnpn Q1 c=c b=b e=gnd\n"
+    "resistor R1 b -> gnd 10k\nresistor R2 e -> c 10k\nresistor R3 vcc -> b 1M\n"
+    "npn Q3 c=o b=b e=gnd\noutput o at 1 V from 0 V to 5 V\n";
+
 static const char wrong_cell[] = "rail vcc 1 V\nresistor R vcc -> x 3 uA\nnmos M1 d=x g=y W=1u\n"
                                  "hand M1.vgs = 1 A\nresistr Q a -> b 3\nlet X = Y + 1\n";
 
@@ -49,6 +56,7 @@ static const struct scenario scenarios[] = {
      .cell = "netlists/mirror.cell",
      .sweep = "temperature from 0 C to 60 C points 3 show tail.current",
      .set = "ITAIL=18 uA"},
+    {.name = "states", .command = "states", .cell = "latch.cell", .text = latch_cell},
     {.name = "models", .command = "models", .cell = "netlists/mirror.cell"},
     {.name = "unsolved", .command = "point", .cell = "hard.cell", .text = hard_cell},
     {.name = "wrong", .cell = "wrong.cell", .text = wrong_cell},

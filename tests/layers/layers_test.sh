@@ -14,9 +14,10 @@ fail() {
 allowed() {
     case $1 in
     base) ;;
-    numerics | devices | language) echo base ;;
+    numerics | devices | language | interval) echo base ;;
+    proof) echo base interval devices ;;
     circuit) echo base devices language ;;
-    analyses) echo base numerics devices language circuit ;;
+    analyses) echo base numerics devices language circuit interval proof ;;
     report) echo base devices language circuit analyses ;;
     library) echo base devices language circuit analyses report ;;
     cli) echo base library ;;

@@ -63,7 +63,7 @@ static void figures(void **state)
                                  "+320.1 ppm/K",
                                  "NOT MET     tail.compliance below 150 mV",
                                  "too far by 30.30 mV (20.20 %)",
-                                 "+16.40 nA  +2.050 %    790.1 nA",
+                                 "+16.40 nA  +2.050 %   790.1 nA",
                                  "rule: square law above",
                                  "9 Newton iterations; worst residual 3.100e-17",
                                  NULL};

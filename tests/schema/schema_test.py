@@ -46,6 +46,9 @@ for cell in sorted(glob.glob(os.path.join(source, "netlists", "*.cell"))):
     data = run("review", cell)
     for verb in ("point", "sweep", "models"):
         run(verb, cell)
+for name in ("beta_multiplier", "mirror", "bandgap"):
+    run("states", os.path.join(source, "netlists", name + ".cell"), "--boxes", "2000")
+run("point", os.path.join(source, "netlists", "mirror.cell"), "--certify")
 run("point", os.path.join(source, "netlists", "mirror.cell"), "--view", "hand", "--corner", "slow")
 for process in glob.glob(os.path.join(source, "models", "*.process")):
     run("models", process)
