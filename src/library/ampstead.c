@@ -268,7 +268,8 @@ static enum status run(const struct ampstead_request *request, struct ampstead_r
     if (status == STATUS_OK || (status == STATUS_INPUT && result->cell != NULL)) {
         status = build(request, result);
     }
-    if (status == STATUS_OK && result->command != COMMAND_MODELS &&
+    bool is_process = ends_with(request->path, ".process"); /* which `check` and `models` take */
+    if (status == STATUS_OK && result->command != COMMAND_MODELS && !is_process &&
         result->circuit->instance_count == 0) {
         diagnostics_add(&result->cell->diagnostics, SPAN_NONE, NULL, "the cell holds no parts");
         status = STATUS_INPUT;
