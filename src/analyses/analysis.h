@@ -4,6 +4,8 @@
 #ifndef ANALYSES_ANALYSIS_H
 #define ANALYSES_ANALYSIS_H
 
+#include <stdint.h>
+
 #include "analyses/result.h"
 #include "base/status.h"
 
@@ -18,6 +20,14 @@ struct analysis_options {
     bool certify;              /* analysis_point: proves the point unique in a small box */
     long boxes;                /* analysis_states: boxes to look at, then it gives up */
     double leakage;            /* analysis_states: A, a start-up push below it is at risk */
+    bool all_conditions; /* analysis_review: reads every quantity that the cell asks for over all
+                            `vary` conditions, not only those of `everywhere` lines, and leaves
+                            explanations and repairs out */
+    int jobs;            /* threads; 0: one a processor */
+    int samples;         /* analysis_spread: 0 leaves the sampled part out */
+    uint64_t seed;
+    const struct probe *wanted; /* for analysis_sensitivity; NULL: the currents of all outputs */
+    double grid;                /* m, for analysis_size: lengths are whole multiples of it */
 };
 
 /*
@@ -35,6 +45,19 @@ enum status analysis_sweep(struct circuit *circuit, const struct analysis_option
 /* Every resting state with proof, and the start-up verdict: result->states. */
 enum status analysis_states(struct circuit *circuit, const struct analysis_options *options,
                             struct result **result);
+/* Review, then conditions, mismatch and yield. */
+enum status analysis_spread(struct circuit *circuit, const struct analysis_options *options,
+                            struct result **result);
+/* Shares of the effects in what differs from the paper; docs/explain.md. */
+enum status analysis_explain(struct circuit *circuit, const struct analysis_options *options,
+                             struct result **result);
+/* The `choose` lines solved; verdict "not met" when there is no solution in the ranges.
+ * STATUS_INPUT and *result NULL after messages in the cell's diagnostics. */
+enum status analysis_size(struct circuit *circuit, const struct analysis_options *options,
+                          struct result **result);
+/* Derivatives in every parameter; STATUS_INPUT as above. */
+enum status analysis_sensitivity(struct circuit *circuit, const struct analysis_options *options,
+                                 struct result **result);
 void result_free(struct result *result);
 
 #endif

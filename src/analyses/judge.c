@@ -127,6 +127,27 @@ static bool is_judged_by_size(const struct probe *probe)
            (probe->quantity == OUTPUT_LINE || probe->quantity == OUTPUT_TEMPCO);
 }
 
+static double margin_of(const struct requirement *q, double value)
+{
+    const double size =
+        is_judged_by_size(&q->probe) && q->relation == RELATION_BELOW ? fabs(value) : value;
+    return q->relation == RELATION_BELOW   ? q->value - size
+           : q->relation == RELATION_ABOVE ? size - q->value
+                                           : q->tolerance - fabs(size - q->value);
+}
+
+double judge_margin(const struct result *r, const struct requirement *q, double value)
+{
+    const char *ignored = NULL;
+    return margin_of(q, isnan(value) ? bound_of(r, &q->probe, q->relation, &ignored) : value);
+}
+
+bool judge_is_met(const struct requirement *q, double margin)
+{
+    const double spare = margin + accuracy_of(&q->probe);
+    return q->relation == RELATION_WITHIN ? spare >= 0 : spare > 0;
+}
+
 static struct requirement_result judge(const struct result *r, const struct requirement *q)
 {
     struct requirement_result out = {.requirement = q, .margin = NAN};
@@ -135,7 +156,7 @@ static struct requirement_result judge(const struct result *r, const struct requ
     if (q->scope != SCOPE_POINT) {
         out.judgement = JUDGED_NOT;
         out.remark = q->scope == SCOPE_EVERYWHERE ? "over all conditions: not judged here"
-                                                  : "over mismatch: not judged here";
+                                                  : "over mismatch: `ampstead spread` judges it";
         return out;
     }
     if (isnan(value)) {
@@ -146,15 +167,22 @@ static struct requirement_result judge(const struct result *r, const struct requ
         out.remark = reason_of(r, &q->probe);
         return out;
     }
-    const double size =
-        is_judged_by_size(&q->probe) && q->relation == RELATION_BELOW ? fabs(value) : value;
-    out.margin = q->relation == RELATION_BELOW   ? q->value - size
-                 : q->relation == RELATION_ABOVE ? size - q->value
-                                                 : q->tolerance - fabs(size - q->value);
-    const double spare = out.margin + accuracy_of(&q->probe);
-    const bool strict = q->relation != RELATION_WITHIN;
-    out.judgement = (strict ? spare > 0 : spare >= 0) ? JUDGED_MET : JUDGED_NOT_MET;
+    out.margin = margin_of(q, value);
+    out.judgement = judge_is_met(q, out.margin) ? JUDGED_MET : JUDGED_NOT_MET;
     return out;
+}
+
+void judge_verdict(struct result *r)
+{
+    r->verdict = VERDICT_NO_REQUIREMENTS;
+    for (int k = 0; k < r->requirement_count; k++) {
+        const enum judgement judgement = r->requirements[k].judgement;
+        if (judgement == JUDGED_NOT_MET || judgement == JUDGED_UNKNOWN) {
+            r->verdict = VERDICT_NOT_MET;
+        } else if (judgement == JUDGED_MET && r->verdict == VERDICT_NO_REQUIREMENTS) {
+            r->verdict = VERDICT_MET;
+        }
+    }
 }
 
 bool judge_all(struct result *r)
@@ -171,16 +199,10 @@ bool judge_all(struct result *r)
             (struct hand_result){&c->hands[k], computed, computed - c->hands[k].value, NAN};
     }
     r->hand_count = c->hand_count;
-    r->verdict = VERDICT_NO_REQUIREMENTS;
     for (int k = 0; k < c->requirement_count; k++) {
         r->requirements[k] = judge(r, &c->requirements[k]);
-        const enum judgement judgement = r->requirements[k].judgement;
-        if (judgement == JUDGED_NOT_MET || judgement == JUDGED_UNKNOWN) {
-            r->verdict = VERDICT_NOT_MET;
-        } else if (judgement == JUDGED_MET && r->verdict == VERDICT_NO_REQUIREMENTS) {
-            r->verdict = VERDICT_MET;
-        }
     }
     r->requirement_count = c->requirement_count;
+    judge_verdict(r);
     return true;
 }

@@ -33,6 +33,14 @@ unsigned measure_device(const struct system *system, int k, const long double *x
     return type->describe(system_block(system, k), outer, inner, q);
 }
 
+double measure_device_quantity(const struct system *system, int k, int quantity,
+                               const long double *x)
+{
+    double q[QUANTITY_LIMIT];
+    measure_device(system, k, x, q);
+    return q[quantity];
+}
+
 static unsigned describe_plain(const struct system *system, int k, const double *x, double *q)
 {
     const struct instance *instance = &system->circuit->instances[k];
@@ -71,22 +79,28 @@ static bool is_output(const struct circuit *c, int instance)
 }
 
 /*
- * What rails and sources deliver. The load at an output is not part of the cell, and a source that
- * takes power stands for a part that does: it is not given back.
+ * Rails and sources deliver. The load at an output is not part of the cell, and a source that takes
+ * power stands for a part that does: it is not given back.
  */
+double measure_delivered(const struct system *system, int k, const double *x)
+{
+    const struct instance *instance = &system->circuit->instances[k];
+    const struct device_type *type = instance->type;
+    if (type->drive == NULL || type->quantity_power < 0 || is_output(system->circuit, k)) {
+        return NAN;
+    }
+    double q[QUANTITY_LIMIT];
+    describe_plain(system, k, x, q);
+    const double delivered = -q[type->quantity_power];
+    return delivered > 0 || instance->is_hidden ? delivered : (double)NAN;
+}
+
 static double source_power(const struct system *system, const double *x)
 {
-    const struct circuit *c = system->circuit;
     double sum = 0;
-    for (int k = 0; k < c->instance_count; k++) {
-        const struct device_type *type = c->instances[k].type;
-        if (type->drive == NULL || type->quantity_power < 0 || is_output(c, k)) {
-            continue;
-        }
-        double q[QUANTITY_LIMIT];
-        describe_plain(system, k, x, q);
-        const double delivered = -q[type->quantity_power];
-        if (isfinite(delivered) && (delivered > 0 || c->instances[k].is_hidden)) {
+    for (int k = 0; k < system->circuit->instance_count; k++) {
+        const double delivered = measure_delivered(system, k, x);
+        if (isfinite(delivered)) {
             sum += delivered;
         }
     }
@@ -107,6 +121,13 @@ static double least_headroom(const struct system *system, const double *x, int *
         }
     }
     return least;
+}
+
+int measure_tightest(const struct system *system, const double *x)
+{
+    int where = -1;
+    least_headroom(system, x, &where);
+    return where;
 }
 
 double measure_probe(const struct system *system, const struct probe *probe, const double *x)

@@ -16,9 +16,18 @@
  */
 unsigned measure_device(const struct system *system, int instance, const long double *x, double *q);
 
+/* One of them. */
+double measure_device_quantity(const struct system *system, int instance, int quantity,
+                               const long double *x);
+
 /* Headroom of a transistor at a point in double, V; NAN when it has none. *region may be NULL. */
 double measure_headroom(const struct system *system, int instance, const double *x,
                         unsigned *region);
+
+/* The transistor with the least headroom, -1 when there is none; and what an instance delivers to
+ * the power of the cell, W, NAN when it does not count. */
+int measure_tightest(const struct system *system, const double *x);
+double measure_delivered(const struct system *system, int instance, const double *x);
 
 /* All of a point, into the arena. False when memory is short. */
 bool measure_point(const struct operating_point *point, struct arena *arena,

@@ -45,6 +45,7 @@ struct sweeper {
     struct place *spare; /* states for bisection */
     int *held;           /* transistors saturated at `at` */
     int held_count;
+    bool edges_only; /* the curve itself is not wanted */
     enum status status;
 };
 
@@ -106,6 +107,24 @@ static bool follow_to(struct sweeper *w, const struct place *near, double v, str
     return keep_state(w, place);
 }
 
+/* The same by Newton alone: what lies beyond an edge is of no interest, and steps are halved. */
+static bool step_to(struct sweeper *w, const struct place *near, double v, struct place *place)
+{
+    struct operating_point *p = w->point;
+    memcpy(p->x, near->x, (size_t)p->system->n * sizeof *p->x);
+    system_set(p->system, w->output->instance, w->parameter, v);
+    const enum newton_status status = operating_point_newton(p);
+    if (status != NEWTON_CONVERGED) {
+        w->status = status == NEWTON_STOPPED  ? STATUS_STOPPED
+                    : status == NEWTON_MEMORY ? STATUS_MEMORY
+                                              : w->status;
+        return false;
+    }
+    place->v = v;
+    read_place(w, place);
+    return keep_state(w, place);
+}
+
 /*
  * Solves at v from a near state. A root that cannot be followed is looked for in another way and
  * told as an event; false when there is none, or when the work is to end.
@@ -114,6 +133,9 @@ static bool solve_at(struct sweeper *w, const struct place *near, double v, stru
 {
     struct operating_point *p = w->point;
     bool jumped = false;
+    if (w->edges_only) {
+        return step_to(w, near, v, place);
+    }
     memcpy(p->x, near->x, (size_t)p->system->n * sizeof *p->x);
     const enum status status =
         operating_point_move(p, w->output->instance, w->parameter, near->v, v, &jumped);
@@ -503,15 +525,23 @@ static void sweep_both(struct sweeper *w, const struct place *home)
     }
 }
 
-enum status analyse_output(struct operating_point *home, int index, struct arena *arena,
-                           struct output_result *r)
+/* The point as it was before the sweep. */
+static void return_home(struct sweeper *w, const struct place *start)
 {
-    struct system *s = home->system;
-    const struct output *output = &s->circuit->outputs[index];
-    struct arena *scratch = arena_create();
-    if (scratch == NULL) {
-        return STATUS_MEMORY;
+    struct operating_point *home = w->point;
+    system_set(home->system, w->output->instance, w->parameter, start->v);
+    memcpy(home->x, start->x, (size_t)home->system->n * sizeof *home->x);
+    const enum status back = operating_point_status(operating_point_newton(home));
+    if (w->status == STATUS_OK && back != STATUS_UNSOLVED) {
+        w->status = back;
     }
+}
+
+bool output_at_point(struct operating_point *home, int index, struct arena *arena,
+                     struct output_result *r)
+{
+    const struct system *s = home->system;
+    const struct output *output = &s->circuit->outputs[index];
     const int branch = system_branch(&s->circuit->instances[output->instance]);
     const double i = (double)home->refined[branch];
     *r = (struct output_result){.output = output,
@@ -523,6 +553,76 @@ enum status analyse_output(struct operating_point *home, int index, struct arena
                                 .flatness = NAN,
                                 .tempco = NAN,
                                 .sigma = NAN};
+    return find_derivatives(home, branch, i <= 0 ? -1 : 1, arena, r);
+}
+
+/* Outwards in the same steps without filling in, until the band is left and the headroom lost; a
+ * step that fails is halved until the end of the state is near. */
+static bool walk_edges(struct sweeper *w, const struct place *home, double end,
+                       bool towards_compliance)
+{
+    const double first = (w->to - w->from) / FIRST_SEGMENTS;
+    const double side = end < home->v ? -1 : 1;
+    double step = first;
+    w->count = 0;
+    if (!add_place(w, home)) {
+        return false;
+    }
+    while ((end - w->places[w->count - 1].v) * side > 1e-12 && step > volts_edge) {
+        const struct place last = w->places[w->count - 1];
+        const double left = fabs(end - last.v);
+        struct place next;
+        if (solve_at(w, &last, step < left ? last.v + side * step : end, &next)) {
+            step = fmin(2 * step, first);
+            if (!add_place(w, &next)) {
+                return false;
+            }
+            if (band_left(w, &next) < 0 && !(towards_compliance && headroom_left(w, &next) > 0)) {
+                return true;
+            }
+        } else if (w->status != STATUS_OK) {
+            return false;
+        } else {
+            step /= 2;
+        }
+    }
+    return true;
+}
+
+/* The edges on one side of home. */
+static void edges_beside(struct sweeper *w, const struct place *home, double end, double *band,
+                         bool towards_compliance)
+{
+    w->places = NULL;
+    w->count = w->capacity = 0;
+    if (walk_edges(w, home, end, towards_compliance)) {
+        *band = first_loss(w, band_left);
+        if (towards_compliance) {
+            find_compliance(w);
+        }
+    }
+}
+
+static void sweep_edges(struct sweeper *w, const struct place *home)
+{
+    struct output_result *r = w->result;
+    edges_beside(w, home, w->from, &r->low, r->is_sink);
+    if (w->status == STATUS_OK) {
+        edges_beside(w, home, w->to, &r->high, !r->is_sink);
+    }
+}
+
+static enum status sweep_output(struct operating_point *home, int index, struct arena *arena,
+                                bool edges_only, struct output_result *r)
+{
+    struct system *s = home->system;
+    const struct output *output = &s->circuit->outputs[index];
+    struct arena *scratch = arena_create();
+    if (scratch == NULL) {
+        return STATUS_MEMORY;
+    }
+    const int branch = system_branch(&s->circuit->instances[output->instance]);
+    const double i = (double)home->refined[branch];
     const int parameter = s->circuit->instances[output->instance].type->value_parameter;
     const double at = s->own[output->instance][parameter]; /* output->at, unless it is swept */
     struct sweeper w = {.point = home,
@@ -534,23 +634,34 @@ enum status analyse_output(struct operating_point *home, int index, struct arena
                         .sign = i <= 0 ? -1 : 1,
                         .nominal = fabs(i),
                         .from = fmin(output->from, at),
-                        .to = fmax(output->to, at)};
+                        .to = fmax(output->to, at),
+                        .edges_only = edges_only};
     w.rhs = arena_new_array(scratch, double, s->n);
-    const bool good =
-        w.rhs != NULL && find_derivatives(home, branch, w.sign, arena, r) && list_held(&w);
+    const bool good = w.rhs != NULL && output_at_point(home, index, arena, r) && list_held(&w);
     struct place start = {.v = at};
     if (good) {
         read_place(&w, &start);
         if (keep_state(&w, &start)) {
-            sweep_both(&w, &start);
-        }
-        system_set(s, output->instance, w.parameter, at);
-        memcpy(home->x, start.x, (size_t)s->n * sizeof *home->x);
-        const enum status back = operating_point_status(operating_point_newton(home));
-        if (w.status == STATUS_OK && back != STATUS_UNSOLVED) {
-            w.status = back;
+            if (edges_only) {
+                sweep_edges(&w, &start);
+            } else {
+                sweep_both(&w, &start);
+            }
+            return_home(&w, &start);
         }
     }
     arena_destroy(scratch);
     return good ? w.status : STATUS_MEMORY;
+}
+
+enum status analyse_output(struct operating_point *home, int index, struct arena *arena,
+                           struct output_result *r)
+{
+    return sweep_output(home, index, arena, false, r);
+}
+
+enum status output_edges(struct operating_point *home, int index, struct arena *arena,
+                         struct output_result *r)
+{
+    return sweep_output(home, index, arena, true, r);
 }

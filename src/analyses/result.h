@@ -98,6 +98,9 @@ struct requirement_result {
     enum judgement judgement;
     double margin;      /* distance to the limit in the quantity's unit, negative when not met */
     const char *remark; /* "held down to the end of the sweep", "..." or NULL */
+    const double *worst_at;           /* SCOPE_EVERYWHERE: where `computed` is, [axis_count of
+                                         result->conditions]; NULL: at the cell's own conditions */
+    const struct yield_result *yield; /* NULL: not sampled */
 };
 
 enum verdict { VERDICT_MET, VERDICT_NOT_MET, VERDICT_NO_REQUIREMENTS, VERDICT_UNSOLVED };
@@ -118,6 +121,13 @@ struct sweep_table {
 };
 
 struct states_result; /* states.h */
+struct yield_result;
+struct conditions_result; /* spread_result.h */
+struct mismatch_result;
+struct explanation;       /* explain.h */
+struct repair_list;       /* repair.h */
+struct size_result;       /* size.h */
+struct sensitivity_table; /* sensitivity.h */
 
 /* Everything one run found. Parts that a command does not make are empty. */
 struct result {
@@ -139,6 +149,14 @@ struct result {
     int sweep_count;
     struct caution_list cautions;
     struct states_result *states; /* of `states`, or of one certified point; NULL: none */
+    struct conditions_result *conditions;
+    struct mismatch_result *mismatch;
+    struct explanation *explanations; /* one a hand line */
+    int explanation_count;
+    struct repair_list *repairs; /* [requirement_count]; NULL: not looked for */
+    struct size_result *size;
+    struct sensitivity_table *sensitivities;
+    int sensitivity_count;
 };
 
 #endif

@@ -6,11 +6,13 @@
 #include <string.h>
 
 #include "analyses/analysis.h"
+#include "analyses/conditions.h"
 #include "analyses/judge.h"
 #include "analyses/measure.h"
 #include "analyses/output.h"
 #include "analyses/remarks.h"
 #include "analyses/states.h"
+#include "analyses/remedies.h"
 #include "analyses/sweep.h"
 
 static unsigned effects_of(enum view view)
@@ -71,6 +73,13 @@ static void close_session(struct session *session)
     system_free(session->system);
 }
 
+/* Whether a text is missing: arenas remember. */
+static bool lost_memory(const struct session *session, const struct result *result)
+{
+    return arena_failed(result->arena) || arena_failed(result->circuit->arena) ||
+           (session->system != NULL && arena_failed(session->system->arena));
+}
+
 /* The operating point, measured into the result. */
 static enum status solve_point(struct circuit *circuit, const struct analysis_options *options,
                                struct session *session, struct result *result)
@@ -114,41 +123,11 @@ static enum status solve_outputs(const struct circuit *circuit,
     return STATUS_OK;
 }
 
-/* What the square law alone gives for the hand lines; a cell that has no such state leaves them
- * empty. */
-static enum status solve_hand_view(struct circuit *circuit, const struct analysis_options *options,
-                                   struct result *result)
-{
-    if (result->hand_count == 0 || options->view == VIEW_HAND) {
-        return STATUS_OK;
-    }
-    struct analysis_options hand = *options;
-    struct session session = {0};
-    struct result *other = new_result(circuit, options, "hand");
-    hand.view = VIEW_HAND;
-    hand.progress = NULL;
-    enum status status =
-        other == NULL ? STATUS_MEMORY : solve_point(circuit, &hand, &session, other);
-    bool outputs = false;
-    for (int k = 0; k < result->hand_count; k++) {
-        outputs |= result->hands[k].hand->probe.kind == PROBE_OUTPUT;
-    }
-    if (status == STATUS_OK && outputs) {
-        status = solve_outputs(circuit, &hand, &session, other);
-    }
-    for (int k = 0; status == STATUS_OK && k < result->hand_count; k++) {
-        result->hands[k].in_hand_view = result_value(other, &result->hands[k].hand->probe);
-    }
-    close_session(&session);
-    result_free(other);
-    return status == STATUS_UNSOLVED ? STATUS_OK : status;
-}
-
 static enum status finish(enum status status, struct session *session, struct result **result)
 {
-    const bool texts_failed = session->system != NULL && arena_failed(session->system->arena);
+    const bool lost = lost_memory(session, *result);
     close_session(session);
-    if (status == STATUS_MEMORY || texts_failed || arena_failed((*result)->arena)) {
+    if (status == STATUS_MEMORY || lost) {
         result_free(*result);
         *result = NULL;
         return STATUS_MEMORY;
@@ -176,6 +155,15 @@ enum status analysis_point(struct circuit *circuit, const struct analysis_option
     return finish(status, &session, result);
 }
 
+static bool wants_conditions(const struct circuit *circuit, const struct analysis_options *options)
+{
+    bool wanted = options->all_conditions;
+    for (int k = 0; k < circuit->requirement_count; k++) {
+        wanted |= circuit->requirements[k].scope == SCOPE_EVERYWHERE;
+    }
+    return wanted;
+}
+
 enum status analysis_review(struct circuit *circuit, const struct analysis_options *options,
                             struct result **result)
 {
@@ -193,8 +181,11 @@ enum status analysis_review(struct circuit *circuit, const struct analysis_optio
             status = STATUS_MEMORY;
         }
     }
-    if (status == STATUS_OK) {
-        status = solve_hand_view(circuit, options, *result);
+    if (status == STATUS_OK && wants_conditions(circuit, options)) {
+        status = analyse_conditions(circuit, &session.point, options, *result);
+    }
+    if (status == STATUS_OK && !options->all_conditions) {
+        status = remedies_add(circuit, options, *result);
     }
     return finish(status, &session, result);
 }

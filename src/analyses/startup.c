@@ -181,7 +181,7 @@ static int off_vote(const struct instance *instance, int t)
     if (type->is_transistor) {
         return t == CONTROL ? type->polarity : t == FOLLOWER ? -type->polarity : 0;
     }
-    return strcmp(type->word, "diode") == 0 ? 1 - 2 * t : 0;
+    return type->typical != NULL && type->terminal_count == 2 ? 1 - 2 * t : 0; /* a diode */
 }
 
 /* The held voltage to which a resistor pulls the probe. */
@@ -191,7 +191,7 @@ static bool pulled_to(const struct states_work *w, double *volts)
     const int *group = w->map.group;
     for (int k = 0; k < c->instance_count; k++) {
         const struct instance *instance = &c->instances[k];
-        for (int t = 0; t < 2 && strcmp(instance->type->word, "resistor") == 0; t++) {
+        for (int t = 0; t < 2 && instance->type->is_resistor; t++) {
             const int node = instance->local[t], other = instance->local[1 - t];
             if (node >= 0 && group[node] == group[w->loop.probe] &&
                 (other < 0 || group[other] < 0)) {

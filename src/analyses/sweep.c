@@ -252,6 +252,13 @@ static enum status advance(struct series_task *t, struct stage *stage, int k)
     return status;
 }
 
+/* Whether a name or a text of the stage is missing: arenas remember. */
+static bool stage_lost_memory(const struct stage *stage)
+{
+    return (stage->own_circuit != NULL && arena_failed(stage->own_circuit->arena)) ||
+           (stage->system != NULL && arena_failed(stage->system->arena));
+}
+
 static enum status run_series(struct series_task *t)
 {
     const struct sweep *sweep = t->sweep;
@@ -271,6 +278,9 @@ static enum status run_series(struct series_task *t)
         status = advance(t, &stage, k);
         if (status == STATUS_OK) {
             status = read_point(&stage, sweep, row);
+        }
+        if (stage_lost_memory(&stage)) {
+            status = STATUS_MEMORY;
         }
         stage.is_solved = status == STATUS_OK;
         if (status == STATUS_UNSOLVED) {

@@ -35,13 +35,19 @@ void system_gather(const struct instance *instance, const double *x, double *loc
     }
 }
 
+static const double *model_values(const struct system *s, int k)
+{
+    const double *values = s->circuit->instances[k].model_values;
+    return values != NULL && values == s->swapped ? s->swapped_in : values;
+}
+
 static void prepare(struct system *s, int k)
 {
     const struct instance *instance = &s->circuit->instances[k];
     struct device_conditions conditions = s->conditions;
     conditions.measured_kelvin =
         instance->model != NULL ? instance->model->measured_kelvin : s->circuit->measured_kelvin;
-    const struct device_values values = {s->own[k], instance->model_values, instance->extra,
+    const struct device_values values = {s->own[k], model_values(s, k), instance->extra,
                                          s->circuit->resistor_factor};
     instance->type->prepare(&values, &conditions, s->prepared + s->block[k]);
 }
@@ -55,10 +61,58 @@ void system_conditions(struct system *s, double kelvin, unsigned effects)
     }
 }
 
+int system_last_part(const struct circuit *c, int k)
+{
+    int last = k;
+    while (last + 1 < c->instance_count && c->instances[last + 1].parent == k) {
+        last++;
+    }
+    return last;
+}
+
+static double scale_of(const struct system *s, int k, const char *name)
+{
+    const struct device_type *type = s->circuit->instances[k].type;
+    const int p = parameter_find(type->parameters, type->parameter_count, name);
+    return p < 0 ? 1 : s->own[k][p];
+}
+
+/* The resistances in the leads follow the model, the area and the number of devices; they stand
+ * behind their device in the order of its table. */
+static void prepare_leads(struct system *s, int k)
+{
+    const struct device_type *type = s->circuit->instances[k].type;
+    const int last = system_last_part(s->circuit, k);
+    int lead = k;
+    for (int row = 0; row < type->series_count && lead < last; row++) {
+        const int p = parameter_find(type->model_parameters, type->model_parameter_count,
+                                     type->series[row].model_parameter);
+        if (s->circuit->instances[k].model_values[p] > 0) {
+            lead++;
+            s->own[lead][0] =
+                model_values(s, k)[p] / (scale_of(s, k, "area") * scale_of(s, k, "m"));
+            prepare(s, lead);
+        }
+    }
+}
+
 void system_set(struct system *s, int k, int parameter, double value)
 {
     s->own[k][parameter] = value;
     prepare(s, k);
+    prepare_leads(s, k);
+}
+
+void system_swap_model(struct system *s, const double *values, const double *in_place)
+{
+    s->swapped = in_place == NULL ? NULL : values;
+    s->swapped_in = in_place;
+    for (int k = 0; k < s->circuit->instance_count; k++) {
+        if (s->circuit->instances[k].model_values == values && values != NULL) {
+            prepare(s, k);
+            prepare_leads(s, k);
+        }
+    }
 }
 
 /* --- embedding ------------------------------------------------------------------------------ */
@@ -294,33 +348,43 @@ static void add_residual(const struct system *s, int k, const long double *x, lo
     }
 }
 
+const double stencil_offset[STENCIL_POINTS] = {-2, -1, 1, 2};
+const double stencil_weight[STENCIL_POINTS] = {1.0 / 12, -8.0 / 12, 8.0 / 12, -1.0 / 12};
+
+double stencil_step(const struct parameter *parameter, double value)
+{
+    /* Relative: the fifth-order term of exponentials and the rounding of prepared values are both
+     * near 1e-11. At zero: a picometre, a microvolt, ..., small in any device. */
+    if (fabs(value) > 0) {
+        return 1e-5 * fabs(value);
+    }
+    return parameter->dimension.metre > 0 ? 1e-12 : 1e-6;
+}
+
 void system_slope(struct system *s, int k, int parameter, const long double *x, long double *slope)
 {
-    /* A relative step of 2e-6 balances the rounding of prepared values with the cubic term of
-     * exponentials: both near 1e-9. */
     const double value = s->own[k][parameter];
-    const double scale = fabs(value) > 0 ? fabs(value) : 1e-3;
-    const double above = value + 2e-6 * scale, below = value - 2e-6 * scale;
+    const double step = stencil_step(&s->circuit->instances[k].type->parameters[parameter], value);
+    const int last = system_last_part(s->circuit, k);
     memset(slope, 0, (size_t)s->n * sizeof *slope);
-    system_set(s, k, parameter, above);
-    add_residual(s, k, x, 1 / ((long double)above - below), slope);
-    system_set(s, k, parameter, below);
-    add_residual(s, k, x, -1 / ((long double)above - below), slope);
+    for (int p = 0; p < STENCIL_POINTS; p++) {
+        system_set(s, k, parameter, value + stencil_offset[p] * step);
+        for (int part = k; part <= last; part++) {
+            add_residual(s, part, x, (long double)stencil_weight[p] / step, slope);
+        }
+    }
     system_set(s, k, parameter, value);
 }
 
 void system_temperature_slope(struct system *s, const long double *x, long double *slope)
 {
-    const double kelvin = s->conditions.kelvin;
-    const double above = kelvin + 1e-3, below = kelvin - 1e-3;
+    const double kelvin = s->conditions.kelvin, step = 5e-3; /* K */
     memset(slope, 0, (size_t)s->n * sizeof *slope);
-    system_conditions(s, above, s->conditions.effects);
-    for (int k = 0; k < s->circuit->instance_count; k++) {
-        add_residual(s, k, x, 1 / ((long double)above - below), slope);
-    }
-    system_conditions(s, below, s->conditions.effects);
-    for (int k = 0; k < s->circuit->instance_count; k++) {
-        add_residual(s, k, x, -1 / ((long double)above - below), slope);
+    for (int p = 0; p < STENCIL_POINTS; p++) {
+        system_conditions(s, kelvin + stencil_offset[p] * step, s->conditions.effects);
+        for (int k = 0; k < s->circuit->instance_count; k++) {
+            add_residual(s, k, x, (long double)stencil_weight[p] / step, slope);
+        }
     }
     system_conditions(s, kelvin, s->conditions.effects);
 }

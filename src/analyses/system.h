@@ -36,6 +36,7 @@ struct system {
     const double *anchor; /* [n] EMBED_CONDUCTANCE */
     int knob_instance, knob_parameter;
     double knob_from, knob_to;
+    const double *swapped, *swapped_in; /* model values and those that stand in for them */
     struct nonlinear_system face;
     struct linear_solver *solver;
     double *work;               /* of the solvers */
@@ -50,8 +51,19 @@ void system_free(struct system *system);
 /* Prepares all devices anew, for other conditions. */
 void system_conditions(struct system *system, double kelvin, unsigned effects);
 
-/* Changes one value and prepares its device. */
+/* Changes one value and prepares its device, with the resistances in its leads. */
 void system_set(struct system *system, int instance, int parameter, double value);
+
+/* The last instance of a device: itself, or the last resistance in one of its leads. */
+int system_last_part(const struct circuit *circuit, int instance);
+
+/*
+ * system_swap_model: puts other values in the place of those of a model.
+ *
+ * values    as instance->model_values of its users
+ * in_place  [model_parameter_count] used until the next call; NULL: the model's own again
+ */
+void system_swap_model(struct system *system, const double *values, const double *in_place);
 
 /* The prepared block of an instance. */
 const void *system_block(const struct system *system, int instance);
@@ -60,13 +72,23 @@ const void *system_block(const struct system *system, int instance);
 int system_branch(const struct instance *instance);
 
 /*
- * system_slope: derivative of the residual in one instance value, at x, by a central difference in
- * long double (relative error about 1e-9); [n] out, zero where the instance is not.
+ * system_slope: derivative of the residual in one instance value, at x, by central differences in
+ * long double (relative error about 1e-10); [n] out, zero where the instance is not.
  */
 void system_slope(struct system *system, int instance, int parameter, const long double *x,
                   long double *slope);
 
-/* The same in the temperature, 1/K. */
+/*
+ * The stencil behind it, for derivatives of anything else: fourth order, at value + offset[k] *
+ * step with weight[k] / step (Abramowitz and Stegun 1964, table 25.2).
+ */
+enum { STENCIL_POINTS = 4 };
+extern const double stencil_offset[STENCIL_POINTS], stencil_weight[STENCIL_POINTS];
+
+/* A step that is small against what the value does and large against its rounding. */
+double stencil_step(const struct parameter *parameter, double value);
+
+/* The same as system_slope in the temperature, 1/K. */
 void system_temperature_slope(struct system *system, const long double *x, long double *slope);
 
 /* Local unknowns of an instance from the whole vector; gnd is 0. */

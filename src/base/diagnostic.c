@@ -29,7 +29,8 @@ void diagnostics_add(struct diagnostics *diagnostics, struct span where, const c
     if (hint != NULL) {
         added.hint = arena_copy(diagnostics->arena, hint, strlen(hint));
     }
-    if (added.text == NULL || (hint != NULL && added.hint == NULL)) {
+    /* A hint that could not be made is NULL: the arena remembers why. */
+    if (added.text == NULL || arena_failed(diagnostics->arena)) {
         diagnostics->out_of_memory = true;
         return;
     }

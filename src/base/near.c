@@ -114,15 +114,17 @@ static bool listed_before(const char *const *names, int index)
 const char *hint_list(struct arena *arena, const char *before, const char *const *names, int count,
                       const char *otherwise)
 {
-    struct buffer list = BUFFER_EMPTY;
+    const char *text = NULL;
     int shown = 0;
     for (int k = 0; k < count && shown < HINT_LIST_LIMIT; k++) {
         if (!listed_before(names, k)) {
-            buffer_format(&list, "%s%s", shown == 0 ? before : ", ", names[k]);
+            text = shown == 0 ? arena_format(arena, "%s%s", before, names[k])
+                              : arena_format(arena, "%s, %s", text, names[k]);
             shown++;
+            if (text == NULL) {
+                return NULL;
+            }
         }
     }
-    const char *hint = list.length == 0 ? otherwise : arena_copy(arena, list.data, list.length);
-    buffer_free(&list);
-    return hint;
+    return shown == 0 ? otherwise : text;
 }

@@ -134,6 +134,7 @@ static size_t place_point(const char *digits, int count, int whole, char *text)
         if (i == whole && i > 0) {
             text[at++] = '.';
         }
+        /* NOLINTNEXTLINE(clang-analyzer-core.uninitialized.Assign): digits holds count of them */
         text[at++] = i < count ? digits[i] : '0';
     }
     text[at] = '\0';

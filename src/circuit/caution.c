@@ -44,8 +44,9 @@ static const struct {
                                "a hand transistor without `slope` is given 1.3, the middle of what "
                                "bulk processes show (Enz and Vittoz 2006, from memory)"},
     [CAUTION_OFF_STATE] = {"off-state", "a self-biased cell also rests where no current flows"},
-    [CAUTION_LOOP] = {"loop", "two transistors, or an amplifier, in positive feedback can hold more "
-                              "than one state (Nielsen and Willson 1980)"},
+    [CAUTION_LOOP] = {"loop",
+                      "two transistors, or an amplifier, in positive feedback can hold more "
+                      "than one state (Nielsen and Willson 1980)"},
     [CAUTION_SWEEP] = {"sweep", NULL},
     [CAUTION_CONDITIONING] = {"conditioning", NULL},
     [CAUTION_FORWARD_JUNCTION] =

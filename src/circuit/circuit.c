@@ -114,7 +114,8 @@ enum status circuit_build(struct cell *cell, const struct circuit_settings *sett
                               .errors_before = before,
                               .thermal_voltage = BOLTZMANN_OVER_CHARGE * 300.15};
     const bool good = start(circuit, cell, settings) && build(&builder);
-    if (!good || arena_failed(arena) || diagnostics->out_of_memory) {
+    if (!good || arena_failed(arena) || arena_failed(diagnostics->arena) ||
+        diagnostics->out_of_memory) {
         circuit_free(circuit);
         return STATUS_MEMORY;
     }

@@ -184,8 +184,10 @@ static bool find_source(struct builder *b, const char *path, const struct statem
             return true;
         }
     }
-    return source_read(cell->arena, &cell->sources, path, statement->text, statement->text_span,
-                       b->diagnostics, file) == STATUS_OK;
+    const enum status status = source_read(cell->arena, &cell->sources, path, statement->text,
+                                           statement->text_span, b->diagnostics, file);
+    b->diagnostics->out_of_memory |= status == STATUS_MEMORY;
+    return status == STATUS_OK;
 }
 
 const struct curve *build_curve(const struct frame *frame, const struct statement *statement)

@@ -85,6 +85,7 @@ static bool find_let(struct builder *b, int index, struct span where, struct qua
 static bool find_in_frame(void *self, const char *name, struct span where, struct quantity *value)
 {
     const struct frame *frame = self;
+    struct builder *b = frame->builder;
     for (const struct frame *f = frame; f != NULL; f = f->outer) {
         for (int k = 0; k < f->value_count; k++) {
             if (strcmp(f->values[k].name, name) == 0) {
@@ -93,7 +94,6 @@ static bool find_in_frame(void *self, const char *name, struct span where, struc
             }
         }
     }
-    struct builder *b = frame->builder;
     const int index = names_find(b->circuit->names, NAME_LET, name);
     return index >= 0 && find_let(b, index, where, value);
 }

@@ -175,10 +175,12 @@ static bool read_range(struct builder *b, const struct knob *knob,
         return false;
     }
     if (*from == *to) {
+        /* NOLINTNEXTLINE(clang-analyzer-core.NullDereference): read_knob refuses NULL */
         diagnostics_add(b->diagnostics, statement->to->span, NULL,
                         "from and to are the same value");
         return false;
     }
+    /* NOLINTNEXTLINE(clang-analyzer-core.NullDereference): the same */
     return in_range(b, knob, *from, statement->from->span) &&
            in_range(b, knob, *to, statement->to->span);
 }
@@ -281,7 +283,12 @@ bool circuit_sweep(const struct circuit *circuit, const struct statement *statem
     for (int k = 0; k < circuit->let_count; k++) {
         b.lets[k].state = LET_DONE;
     }
-    return read_sweep(&b, statement, sweep);
+    const bool good = read_sweep(&b, statement, sweep);
+    if (arena_failed(circuit->arena) || arena_failed(diagnostics->arena)) {
+        diagnostics->out_of_memory = true;
+        return false;
+    }
+    return good;
 }
 
 static bool add_sweep(struct builder *b, const struct statement *statement)

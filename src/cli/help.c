@@ -27,11 +27,11 @@ static void write_wrapped(FILE *out, const char *text, int column)
 
 static void write_option(FILE *out, const struct option_row *row)
 {
-    char form[64];
+    char form[96];
     const char *argument = row->argument_name != NULL ? row->argument_name : "";
-    const char *before = row->argument == ARGUMENT_OPTIONAL ? " ["
-                         : row->argument == ARGUMENT_NEEDED ? " "
-                                                            : "";
+    const char *before = row->argument == ARGUMENT_OPTIONAL                                   ? " ["
+                         : row->argument == ARGUMENT_NEEDED || row->argument == ARGUMENT_MANY ? " "
+                                                                                              : "";
     int width = snprintf(form, sizeof form, "  --%s%s%s%s", row->name, before, argument,
                          row->argument == ARGUMENT_OPTIONAL ? "]" : "");
     if (row->letter != 0) {

@@ -110,13 +110,14 @@ static bool take_option(struct reader *reader, int index, const char *word, cons
     }
     if (value == NULL && reader->next < reader->argc) {
         const char *follower = reader->argv[reader->next];
-        if (row->argument == ARGUMENT_NEEDED ||
+        if (row->argument == ARGUMENT_NEEDED || row->argument == ARGUMENT_MANY ||
             (row->argument == ARGUMENT_OPTIONAL && ends_with_json(follower))) {
             value = follower;
             reader->next++;
         }
     }
-    if (row->argument == ARGUMENT_NEEDED && (value == NULL || *value == '\0')) {
+    bool needs_value = row->argument == ARGUMENT_NEEDED || row->argument == ARGUMENT_MANY;
+    if (needs_value && (value == NULL || *value == '\0')) {
         return usage_error(reader, word, "wants a value: --%s %s", row->name, row->argument_name);
     }
     if (value != NULL && !check_choice(reader, row, value)) {
@@ -129,6 +130,11 @@ static bool take_option(struct reader *reader, int index, const char *word, cons
     options->values[index] = value;
     if (index == OPTION_SET) {
         options->sets[options->set_count++] = value;
+    }
+    while (row->argument == ARGUMENT_MANY && value != NULL) {
+        options->held[options->held_count++] = value;
+        bool goes_on = reader->next < reader->argc && reader->argv[reader->next][0] != '-';
+        value = goes_on ? reader->argv[reader->next++] : NULL;
     }
     return true;
 }
@@ -176,6 +182,12 @@ static bool one_too_many(const struct reader *reader, const char *word)
 
 static bool take_word(struct reader *reader, const char *word)
 {
+    struct options *options = reader->options;
+    int verb = reader->word_count == 0 ? -1 : find_verb(reader->words[0]);
+    options->words[options->word_count++] = word;
+    if (reader->word_count == 2 && verb >= 0 && verb_takes_curves((enum verb)verb)) {
+        return true;
+    }
     if (reader->word_count == 2) {
         return one_too_many(reader, word);
     }
@@ -245,6 +257,9 @@ static bool check_together(const struct reader *reader)
         }
         return usage_error(reader, options->file, "is no verb; `ampstead help` lists them");
     }
+    if (options->file == NULL && options->given[OPTION_LIST]) {
+        return true;
+    }
     if (options->file == NULL) {
         if (reader->word_count == 0) {
             fputs("ampstead: a cell is wanted: ampstead FILE.cell; `ampstead help` tells more\n",
@@ -257,6 +272,36 @@ static bool check_together(const struct reader *reader)
     return true;
 }
 
+/* "ampstead WORD 'WORD WITH BLANKS' ...", for a shell; NULL when memory is short. */
+static char *join_command(int argc, char **argv)
+{
+    static const char plain[] = "ABCDEFGHIJKLMNOPQRSTUVWXYZabcdefghijklmnopqrstuvwxyz0123456789"
+                                "_-./=%+,:@";
+    size_t size = sizeof "ampstead";
+    for (int k = 1; k < argc; k++) {
+        size += 4 * strlen(argv[k]) + 3; /* a quote inside quotes takes four characters */
+    }
+    char *text = calloc(size, 1);
+    if (text == NULL) {
+        return NULL;
+    }
+    strcpy(text, "ampstead");
+    char *at = text + strlen(text);
+    for (int k = 1; k < argc; k++) {
+        bool is_plain = argv[k][0] != '\0' && argv[k][strspn(argv[k], plain)] == '\0';
+        *at++ = ' ';
+        at += is_plain ? sprintf(at, "%s", argv[k]) : sprintf(at, "'");
+        for (const char *c = argv[k]; !is_plain && *c != '\0'; c++) {
+            /* a line end would leave the comment that the command is written in */
+            at += *c == '\''                ? sprintf(at, "'\\''")
+                  : (unsigned char)*c < ' ' ? sprintf(at, " ")
+                                            : sprintf(at, "%c", *c);
+        }
+        at += is_plain ? 0 : sprintf(at, "'");
+    }
+    return text;
+}
+
 bool options_parse(int argc, char **argv, FILE *errors, struct options *options,
                    bool *out_of_memory)
 {
@@ -264,7 +309,11 @@ bool options_parse(int argc, char **argv, FILE *errors, struct options *options,
     *options = (struct options){0};
     *out_of_memory = false;
     options->sets = calloc((size_t)argc + 1, sizeof *options->sets);
-    if (options->sets == NULL) {
+    options->words = calloc((size_t)argc + 1, sizeof *options->words);
+    options->held = calloc((size_t)argc + 1, sizeof *options->held);
+    options->command = join_command(argc, argv);
+    if (options->command == NULL || options->sets == NULL || options->words == NULL ||
+        options->held == NULL) {
         *out_of_memory = true;
         return false;
     }
@@ -288,6 +337,10 @@ bool options_parse(int argc, char **argv, FILE *errors, struct options *options,
 
 void options_free(struct options *options)
 {
+    free(options->command);
+    options->command = NULL;
     free(options->sets);
-    options->sets = NULL;
+    free(options->words);
+    free(options->held);
+    options->sets = options->words = options->held = NULL;
 }

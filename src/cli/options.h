@@ -12,7 +12,12 @@ enum verb {
     VERB_REVIEW,
     VERB_POINT,
     VERB_SWEEP,
+    VERB_EXPLAIN,
+    VERB_SIZE,
+    VERB_SENSITIVITY,
+    VERB_SPREAD,
     VERB_STATES,
+    VERB_CALIBRATE,
     VERB_MODELS,
     VERB_CHECK,
     VERB_FORMAT,
@@ -28,6 +33,12 @@ struct verb_row {
 };
 extern const struct verb_row verb_rows[VERB_COUNT];
 
+/* Takes any number of files of curves, or --list, instead of one cell. */
+static inline bool verb_takes_curves(enum verb verb)
+{
+    return verb == VERB_CALIBRATE;
+}
+
 enum option {
     OPTION_SET,
     OPTION_TEMPERATURE,
@@ -37,6 +48,24 @@ enum option {
     OPTION_CERTIFY,
     OPTION_BOXES,
     OPTION_LEAKAGE,
+    OPTION_SAMPLES,
+    OPTION_SEED,
+    OPTION_JOBS,
+    OPTION_OF,
+    OPTION_GRID,
+    OPTION_WRITE,
+    OPTION_ROUND,
+    OPTION_KIND,
+    OPTION_LENGTHS,
+    OPTION_MODEL,
+    OPTION_LIST,
+    OPTION_HOLD,
+    OPTION_COLUMNS,
+    OPTION_NOISE,
+    OPTION_ACCURACY,
+    OPTION_FORM,
+    OPTION_ROBUST,
+    OPTION_FORCE,
     OPTION_JSON,
     OPTION_CSV,
     OPTION_PLOT,
@@ -48,7 +77,8 @@ enum option {
     OPTION_COUNT
 };
 
-enum argument { ARGUMENT_NONE, ARGUMENT_NEEDED, ARGUMENT_OPTIONAL };
+/* ARGUMENT_MANY: all words up to the next option; they go to `held`. */
+enum argument { ARGUMENT_NONE, ARGUMENT_NEEDED, ARGUMENT_OPTIONAL, ARGUMENT_MANY };
 
 struct option_row {
     const char *name; /* without the dashes */
@@ -76,6 +106,11 @@ struct options {
     const char *values[OPTION_COUNT]; /* last given; NULL: none */
     const char **sets;                /* [set_count], all --set; freed by options_free */
     int set_count;
+    char *command;      /* the words of argv, quoted where needed; freed by options_free */
+    const char **words; /* [word_count] what is no option, the verb included; as sets */
+    int word_count;
+    const char **held; /* [held_count] words of --hold; as sets */
+    int held_count;
 };
 
 /*

@@ -151,3 +151,21 @@ bool output_close(void)
     }
     return error == 0 || complain("standard output", error);
 }
+
+bool output_is_stdout(const char *path)
+{
+    return path == NULL || *path == '\0' || strcmp(path, "-") == 0;
+}
+
+bool output_deliver(const char *path, const char *text)
+{
+    if (text == NULL) {
+        fputs("ampstead: memory is short\n", stderr);
+        return false;
+    }
+    if (output_is_stdout(path)) {
+        output_text(text);
+        return true;
+    }
+    return output_file(path, text, strlen(text));
+}

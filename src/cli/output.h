@@ -20,6 +20,13 @@ bool output_same(const char *path, const char *text);
 /* Writes to standard output; failures show in output_close. */
 void output_text(const char *text);
 
+/* Whether the path of an option means standard output: none, or "-". */
+bool output_is_stdout(const char *path);
+
+/* One text to its file or to standard output; NULL is a failure of memory. False after a message.
+ */
+bool output_deliver(const char *path, const char *text);
+
 /* Flushes and closes standard output. False after a message: not everything arrived. */
 bool output_close(void);
 

@@ -88,7 +88,15 @@ static void write_man(const char *version)
 /* Files that a verb reads, as shell patterns. */
 static const char *file_pattern(const struct verb_row *row)
 {
-    return strcmp(row->argument, "FILE.cell") == 0 ? "cell" : "cell|process";
+    return strncmp(row->argument, "FILE.csv", 8) == 0 ? "csv"
+           : strcmp(row->argument, "FILE.cell") == 0  ? "cell"
+                                                      : "cell|process";
+}
+
+static bool takes_file(const struct option_row *row)
+{
+    return row->argument != ARGUMENT_NONE && (strncmp(row->argument_name, "FILE", 4) == 0 ||
+                                              strstr(row->argument_name, ".csv") != NULL);
 }
 
 static void put_words(unsigned verbs)
@@ -134,8 +142,7 @@ static void write_bash(void)
                 printf("%s%s", c > 0 ? " " : "", row->choices[c]);
             }
             fputs("\" -- \"$cur\"))\n        return\n        ;;\n", stdout);
-        } else if (row->argument == ARGUMENT_NEEDED &&
-                   strncmp(row->argument_name, "FILE", 4) == 0) {
+        } else if (takes_file(row) && row->argument != ARGUMENT_OPTIONAL) {
             printf("    --%s)\n        COMPREPLY=($(compgen -f -- \"$cur\"))\n        return\n"
                    "        ;;\n",
                    row->name);
@@ -203,7 +210,7 @@ static void put_zsh_option(const struct option_row *row)
                 printf("%s%s", c > 0 ? " " : "", row->choices[c]);
             }
             putchar(')');
-        } else if (strncmp(row->argument_name, "FILE", 4) == 0) {
+        } else if (takes_file(row)) {
             fputs("_files", stdout);
         }
     }
@@ -225,7 +232,7 @@ static void write_zsh(void)
         put_zsh_option(&option_rows[k]);
     }
     fputs("        '1:verb or cell:{ _describe verb verbs; _files -g \"*.cell\" }' \\\n"
-          "        '2:file:_files -g \"*.(cell|process)\"'\n}\n_ampstead \"$@\"\n",
+          "        '*:file:_files -g \"*.(cell|process|csv)\"'\n}\n_ampstead \"$@\"\n",
           stdout);
 }
 

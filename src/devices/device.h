@@ -162,6 +162,8 @@ struct device_type {
     int quantity_power;    /* -1 none */
     const struct deviate *deviates;
     int deviate_count;
+    const struct deviate *tolerance; /* the maker's: even between -sigma sqrt(3) and +sigma sqrt(3),
+                                        added to a value that a deviate may move too; NULL: none */
     size_t prepared_size;
 
     /*

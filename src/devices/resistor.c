@@ -70,6 +70,14 @@ static double value_sigma(const struct device_values *values)
 
 static const struct deviate deviates[] = {{"value", OWN_VALUE_SHIFT, value_sigma}};
 
+/* Values anywhere within the tolerance are equally likely: sigma is the half width over sqrt(3). */
+static double tolerance_sigma(const struct device_values *values)
+{
+    return values->own[OWN_TOL] / sqrt(3);
+}
+
+static const struct deviate tolerance = {"tolerance", OWN_VALUE_SHIFT, tolerance_sigma};
+
 const struct device_type device_resistor = {
     .word = "resistor",
     .summary = "resistor",
@@ -87,6 +95,7 @@ const struct device_type device_resistor = {
     .quantity_power = ROW_POWER,
     .deviates = deviates,
     .deviate_count = ROWS(deviates),
+    .tolerance = &tolerance,
     .prepared_size = sizeof(struct linear_prepared),
     .prepare = prepare,
     .evaluate = resistor_evaluate,

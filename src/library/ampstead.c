@@ -6,6 +6,7 @@
 #include <string.h>
 
 #include "analyses/analysis.h"
+#include "analyses/size.h"
 #include "library/edit.h"
 #include "library/place.h"
 #include "library/request.h"
@@ -18,17 +19,22 @@ enum command {
     COMMAND_REVIEW,
     COMMAND_POINT,
     COMMAND_SWEEP,
-    COMMAND_STATES,
     COMMAND_MODELS,
+    COMMAND_EXPLAIN,
+    COMMAND_SIZE,
+    COMMAND_SENSITIVITY,
+    COMMAND_SPREAD,
+    COMMAND_STATES,
     COMMAND_CHECK,
     COMMAND_FORMAT,
     COMMAND_COUNT
 };
 
 static const char *const command_words[COMMAND_COUNT] = {
-    [COMMAND_REVIEW] = "review", [COMMAND_POINT] = "point",   [COMMAND_SWEEP] = "sweep",
-    [COMMAND_STATES] = "states", [COMMAND_MODELS] = "models", [COMMAND_CHECK] = "check",
-    [COMMAND_FORMAT] = "format",
+    [COMMAND_REVIEW] = "review",           [COMMAND_POINT] = "point",     [COMMAND_SWEEP] = "sweep",
+    [COMMAND_MODELS] = "models",           [COMMAND_EXPLAIN] = "explain", [COMMAND_SIZE] = "size",
+    [COMMAND_SENSITIVITY] = "sensitivity", [COMMAND_SPREAD] = "spread",   [COMMAND_STATES] = "states",
+    [COMMAND_CHECK] = "check",             [COMMAND_FORMAT] = "format",
 };
 
 struct ampstead_result {
@@ -39,7 +45,8 @@ struct ampstead_result {
     struct circuit *circuit;
     struct result *found; /* NULL for `models` and after errors */
     struct sweep sweep;   /* the one of the request */
-    struct buffer messages, text, json, csv, plot, page;
+    struct probe wanted;  /* the quantity of the request */
+    struct buffer messages, text, json, csv, plot, page, cell_text;
 };
 
 const char *ampstead_version(void)
@@ -185,6 +192,10 @@ static enum status analyse(const struct ampstead_request *request, struct ampste
         .certify = request->certify != 0,
         .boxes = request->boxes,
         .leakage = 1e-9,
+        .jobs = request->jobs,
+        .samples = request->samples,
+        .seed = request->seed,
+        .grid = 10e-9,
     };
     switch (result->command) {
     case COMMAND_REVIEW:
@@ -210,6 +221,28 @@ static enum status analyse(const struct ampstead_request *request, struct ampste
             }
         }
         return analysis_states(result->circuit, &options, &result->found);
+    case COMMAND_SPREAD:
+        return analysis_spread(result->circuit, &options, &result->found);
+    case COMMAND_EXPLAIN:
+        return analysis_explain(result->circuit, &options, &result->found);
+    case COMMAND_SIZE:
+        if (request->grid != NULL) {
+            enum status status = request_length(result->cell, request->grid, &options.grid);
+            if (status != STATUS_OK) {
+                return status;
+            }
+        }
+        return analysis_size(result->circuit, &options, &result->found);
+    case COMMAND_SENSITIVITY:
+        if (request->of != NULL) {
+            enum status status =
+                request_probe(result->cell, result->circuit, request->of, &result->wanted);
+            if (status != STATUS_OK) {
+                return status;
+            }
+            options.wanted = &result->wanted;
+        }
+        return analysis_sensitivity(result->circuit, &options, &result->found);
     case COMMAND_MODELS:
     case COMMAND_CHECK:
     case COMMAND_FORMAT:
@@ -237,6 +270,9 @@ static const char *check_request(const struct ampstead_request *request, enum co
     }
     if (request->boxes < 0) {
         return "the number of boxes must not be negative";
+    }
+    if (request->samples < 0 || request->samples > AMPSTEAD_SAMPLE_LIMIT) {
+        return "the number of samples must lie between 0 and 10000000";
     }
     *command = COMMAND_REVIEW;
     for (int k = 0; k < COMMAND_COUNT && request->command != NULL; k++) {
@@ -310,6 +346,7 @@ void ampstead_result_free(struct ampstead_result *result)
     buffer_free(&result->csv);
     buffer_free(&result->plot);
     buffer_free(&result->page);
+    buffer_free(&result->cell_text);
     result_free(result->found);
     circuit_free(result->circuit);
     cell_free(result->cell);
@@ -396,8 +433,20 @@ const char *ampstead_result_text(struct ampstead_result *result, unsigned flags,
     case COMMAND_STATES:
         report_states(result->found, &style, &result->text);
         break;
+    case COMMAND_SPREAD:
+        report_spread(result->found, &style, &result->text);
+        break;
     case COMMAND_MODELS:
         report_models(result->circuit, &style, &result->text);
+        break;
+    case COMMAND_EXPLAIN:
+        report_explain(result->found, &style, &result->text);
+        break;
+    case COMMAND_SIZE:
+        report_size(result->found, &style, &result->text);
+        break;
+    case COMMAND_SENSITIVITY:
+        report_sensitivity(result->found, &style, &result->text);
         break;
     case COMMAND_REVIEW:
     case COMMAND_CHECK:
@@ -426,7 +475,8 @@ const char *ampstead_result_json(struct ampstead_result *result)
 const char *ampstead_result_csv(struct ampstead_result *result)
 {
     if (!has_report(result) ||
-        (result->command != COMMAND_REVIEW && result->command != COMMAND_SWEEP)) {
+        (result->command != COMMAND_REVIEW && result->command != COMMAND_SWEEP &&
+         result->command != COMMAND_SPREAD)) {
         return NULL;
     }
     restart(&result->csv);
@@ -464,6 +514,43 @@ const char *ampstead_result_file(const struct ampstead_result *result, int index
     return index == 0                                ? result->cell->path
            : index - 1 < result->cell->process_count ? result->cell->processes[index - 1].path
                                                      : NULL;
+}
+
+/* The values of a rounding by its name, or the exact ones. NULL: there is no such rounding. */
+static const double *chosen_values(const struct size_result *size, const char *rounding,
+                                   struct arena *arena)
+{
+    if (rounding == NULL || strcmp(rounding, "exact") == 0) {
+        double *values = arena_new_array(arena, double, size->count);
+        for (int k = 0; values != NULL && k < size->count; k++) {
+            values[k] = size->list[k].value;
+        }
+        return values;
+    }
+    for (int k = 0; k < size->rounding_count; k++) {
+        if (strcmp(size->roundings[k].name, rounding) == 0) {
+            return size->roundings[k].values;
+        }
+    }
+    return NULL;
+}
+
+const char *ampstead_result_cell(struct ampstead_result *result, const char *rounding)
+{
+    if (result == NULL || result->found == NULL || result->found->size == NULL ||
+        !result->found->size->solved) {
+        return NULL;
+    }
+    struct arena *arena = arena_create();
+    const double *values =
+        arena == NULL ? NULL : chosen_values(result->found->size, rounding, arena);
+    const char *text = values == NULL ? NULL : size_rewrite(result->circuit, values, arena);
+    restart(&result->cell_text);
+    if (text != NULL) {
+        buffer_text(&result->cell_text, text);
+    }
+    arena_destroy(arena);
+    return text == NULL ? NULL : finished(result, &result->cell_text);
 }
 
 int ampstead_result_value(const struct ampstead_result *result, const char *name, double *value)

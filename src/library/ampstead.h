@@ -50,8 +50,8 @@ enum ampstead_view { AMPSTEAD_VIEW_FULL = 0, AMPSTEAD_VIEW_HAND = 1 };
  * and stays the caller's. */
 struct ampstead_request {
     size_t size;             /* sizeof(struct ampstead_request): set by AMPSTEAD_REQUEST */
-    const char *command;     /* "review", "point", "sweep", "states", "models", "check" or
-                                "format"; NULL: review */
+    const char *command;     /* "review", "point", "sweep", "explain", "size", "sensitivity",
+                                "spread", "states", "models", "check" or "format"; NULL: review */
     const char *path;        /* the cell file; "-": standard input. With text: its name. Required */
     const char *text;        /* the cell itself, instead of the file; NULL: read the file */
     size_t text_length;      /* bytes of text */
@@ -65,6 +65,8 @@ struct ampstead_request {
     int model_folder_count;
     const char *sweep; /* for command "sweep": "THING from A to B [points N] show Q, Q"; NULL: the
                           sweeps of the cell */
+    const char *of; /* for command "sensitivity": "tail.resistance"; NULL: every output's current */
+    const char *grid; /* for command "size": lengths are whole multiples of it; NULL: "10 nm" */
     int (*stopped)(void *self); /* asked often during long work; not 0 ends it. NULL: never */
     void *stopped_self;
     void (*progress)(void *self, const char *what, double share); /* share: 0 to 1. NULL: none */
@@ -72,12 +74,17 @@ struct ampstead_request {
     int certify;         /* for command "point": not 0 proves it unique in a small box */
     long boxes;          /* for command "states": boxes of the proof, then it gives up */
     const char *leakage; /* for command "states": "1 nA", a push below it is at risk; NULL: that */
+    int samples; /* for command "spread": mismatch samples, 0 to AMPSTEAD_SAMPLE_LIMIT */
+    unsigned long long seed; /* the same seed gives the same samples, whatever `jobs` is */
+    int jobs;                /* threads, for "spread" and `everywhere`; 0: one a processor */
 };
+
+enum { AMPSTEAD_SAMPLES = 2000, AMPSTEAD_SAMPLE_LIMIT = 10000000 };
 
 #define AMPSTEAD_REQUEST                                                                           \
     {                                                                                              \
         sizeof(struct ampstead_request), 0, 0, 0, 0, AMPSTEAD_VIEW_FULL, 0, 0, 0, 0, 0, 0, 0, 0,   \
-            0, 0, 0, 0, 100000, 0                                                                  \
+            0, 0, 0, 0, 0, 0, 100000, 0, AMPSTEAD_SAMPLES, 1, 0                                    \
     }
 
 struct ampstead_result;
@@ -127,7 +134,8 @@ AMPSTEAD_API const char *ampstead_result_text(struct ampstead_result *result, un
 /* The same as one JSON object. NULL as above. */
 AMPSTEAD_API const char *ampstead_result_json(struct ampstead_result *result);
 
-/* Curves (review) or sweeps (sweep) as CSV. NULL as above, and for the other commands. */
+/* Curves (review), sweeps (sweep) or samples (spread) as CSV. NULL as above, and for the other
+ * commands. */
 AMPSTEAD_API const char *ampstead_result_csv(struct ampstead_result *result);
 
 /* The curves of review or sweep as one SVG document, text as text. NULL as above, and when there is
@@ -141,6 +149,17 @@ AMPSTEAD_API const char *ampstead_result_page(struct ampstead_result *result);
 AMPSTEAD_API const char *ampstead_result_file(const struct ampstead_result *result, int index);
 
 /*
+ * ampstead_result_cell: after "size", the text of the cell with the chosen values in place, its
+ * comments and layout untouched.
+ *
+ * rounding  "exact" (also NULL), "E24", "E96" or "grid": which values
+ *
+ * NULL when there is no solution or no such rounding here, memory is short, or a value has no place
+ * of its own in the text (the messages say so).
+ */
+AMPSTEAD_API const char *ampstead_result_cell(struct ampstead_result *result, const char *rounding);
+
+/*
  * ampstead_result_value: one quantity by its name in the cell language: "tail.current", "M1.vgs",
  * "ref.v", "vbat.power", "all.headroom", "cell.power". For tail.line the value of greatest size
  * over the rails; an unlimited resistance is infinite.
@@ -150,6 +169,62 @@ AMPSTEAD_API const char *ampstead_result_file(const struct ampstead_result *resu
  */
 AMPSTEAD_API int ampstead_result_value(const struct ampstead_result *result, const char *name,
                                        double *value);
+
+/* A file of measured curves. */
+struct ampstead_curves {
+    const char *path;
+    const char *width, *length; /* "7u"; NULL: as request.size_text or the list says */
+    int held;                   /* not 0: predicted and not fitted */
+};
+
+/* What to calibrate; docs/calibrate.md tells what each text may be. Start from
+ * AMPSTEAD_CALIBRATION_REQUEST. Everything is read during ampstead_calibrate only. */
+struct ampstead_calibration_request {
+    size_t size;                         /* set by AMPSTEAD_CALIBRATION_REQUEST */
+    const struct ampstead_curves *files; /* [file_count] */
+    int file_count;
+    const char *list; /* CSV file of files with kinds and sizes; NULL: none */
+    const char *kind; /* "nmos", "pmos", "diode", "resistor", "npn", "pnp"; NULL: of the list */
+    const char *size_text;   /* "7u/8u"; NULL: each file has its own */
+    const char *model;       /* name of the model; NULL: the kind */
+    const char *columns;     /* "vgs=VG, id=-ID uA"; NULL: the usual names */
+    const char *temperature; /* "27 C"; NULL: 25 C, and a remark says so */
+    const char *noise;       /* "2 nA"; NULL: the usual one */
+    const char *accuracy;    /* "1%"; NULL: that */
+    const char *form;        /* "cards", "set" or "both"; NULL: as the number of files asks */
+    int robust;              /* not 0: doubtful readings are left out */
+    const char *target;  /* the process file to be; names the process. A comment at the top of an
+                            existing one is kept. NULL: none */
+    const char *command; /* told in the process file; NULL: not told */
+    int (*stopped)(void *self); /* as in ampstead_request */
+    void *stopped_self;
+    void (*progress)(void *self, const char *what, double share);
+    void *progress_self;
+};
+
+#define AMPSTEAD_CALIBRATION_REQUEST                                                               \
+    {                                                                                              \
+        sizeof(struct ampstead_calibration_request), 0, 0, 0, 0, 0, 0, 0, 0, 0, 0, 0, 0, 0, 0, 0,  \
+            0, 0, 0                                                                                \
+    }
+
+struct ampstead_calibration;
+
+/* Reads curves and fits models. `calibration` is owned by the caller as a result of ampstead_run
+ * is; the status is AMPSTEAD_WELL, _INPUT, _MACHINE or _STOPPED. */
+AMPSTEAD_API enum ampstead_status
+ampstead_calibrate(const struct ampstead_calibration_request *request,
+                   struct ampstead_calibration **calibration);
+AMPSTEAD_API void ampstead_calibration_free(struct ampstead_calibration *calibration);
+
+/* Texts as for a result; those but the messages are NULL unless the status is AMPSTEAD_WELL. */
+AMPSTEAD_API const char *ampstead_calibration_messages(struct ampstead_calibration *calibration,
+                                                       unsigned flags);
+AMPSTEAD_API const char *ampstead_calibration_text(struct ampstead_calibration *calibration,
+                                                   unsigned flags, int columns);
+AMPSTEAD_API const char *ampstead_calibration_json(struct ampstead_calibration *calibration);
+/* The process file. */
+AMPSTEAD_API const char *ampstead_calibration_process(struct ampstead_calibration *calibration);
 
 /* "1.0.0"; lives as long as the program. */
 AMPSTEAD_API const char *ampstead_version(void);

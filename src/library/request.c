@@ -135,3 +135,36 @@ enum status request_sweep(struct cell *cell, const struct circuit *circuit, cons
     return circuit_sweep(circuit, tree.statements[0], &cell->diagnostics, sweep) ? STATUS_OK
                                                                                  : STATUS_INPUT;
 }
+
+enum status request_probe(struct cell *cell, const struct circuit *circuit, const char *text,
+                          struct probe *probe)
+{
+    uint32_t file = 0;
+    enum status status = source_add_text(cell->arena, &cell->sources, "--of", text, strlen(text),
+                                         &cell->diagnostics, &file);
+    if (status != STATUS_OK) {
+        return status;
+    }
+    const struct span where = {file, 0, (uint32_t)strlen(text)};
+    return circuit_probe(circuit, text, where, &cell->diagnostics, probe) ? STATUS_OK
+                                                                          : STATUS_INPUT;
+}
+
+enum status request_length(struct cell *cell, const char *text, double *length)
+{
+    const struct expression *expression = NULL;
+    const struct expression_scope scope = {.find = find_nothing, .thermal_voltage = NAN};
+    enum status status = read_expression(cell, "--grid", text, &expression);
+    if (status != STATUS_OK) {
+        return status;
+    }
+    if (!expression_wanted(expression, &scope, DIMENSION_LENGTH, &cell->diagnostics, length)) {
+        return STATUS_INPUT;
+    }
+    if (!(*length > 0)) {
+        diagnostics_add(&cell->diagnostics, expression->span, "such as 10 nm",
+                        "a grid is above zero");
+        return STATUS_INPUT;
+    }
+    return STATUS_OK;
+}

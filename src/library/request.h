@@ -22,4 +22,11 @@ enum status request_current(struct cell *cell, const char *name, const char *tex
 enum status request_sweep(struct cell *cell, const struct circuit *circuit, const char *text,
                           struct sweep *sweep);
 
+/* "tail.resistance" */
+enum status request_probe(struct cell *cell, const struct circuit *circuit, const char *text,
+                          struct probe *probe);
+
+/* "10 nm", m, above zero */
+enum status request_length(struct cell *cell, const char *text, double *length);
+
 #endif

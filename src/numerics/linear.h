@@ -36,6 +36,10 @@ int linear_structural_rank(const struct linear_solver *solver);
  * a failed growth check). */
 enum linear_status linear_factor(struct linear_solver *solver, const double *values);
 
+/* Drops the factors with their pivots: the next linear_factor chooses them anew, whatever came
+ * before. */
+void linear_forget(struct linear_solver *solver);
+
 /* b: [n] in: right side; out: solution. Needs a factorisation that went well. */
 void linear_solve(struct linear_solver *solver, double *b);
 void linear_solve_transposed(struct linear_solver *solver, double *b);

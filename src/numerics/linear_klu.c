@@ -138,6 +138,11 @@ enum linear_status linear_factor(struct linear_solver *solver, const double *val
     return LINEAR_OK;
 }
 
+void linear_forget(struct linear_solver *solver)
+{
+    klu_free_numeric(&solver->numeric, &solver->common);
+}
+
 void linear_solve(struct linear_solver *solver, double *b)
 {
     if (solver->numeric != NULL) {

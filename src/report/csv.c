@@ -1,8 +1,10 @@
 /* csv.c: curves and sweeps as CSV (RFC 4180), numbers that read back as the same bits. */
-#include "report/report.h"
+#include "report/csv_parts.h"
 
 #include <math.h>
 #include <string.h>
+
+#include "analyses/spread_result.h"
 
 enum { NUMBER_SIZE = 40 };
 
@@ -22,7 +24,7 @@ static void put_field(struct buffer *out, const char *text)
     buffer_text(out, "\"");
 }
 
-static void put_number(struct buffer *out, double value)
+void csv_put_number(struct buffer *out, double value)
 {
     char text[NUMBER_SIZE];
     if (isfinite(value)) {
@@ -39,9 +41,9 @@ static void put_curves(const struct result *result, struct buffer *out)
         for (int p = 0; p < row->curve.count; p++) {
             put_field(out, row->output->name);
             buffer_text(out, ",");
-            put_number(out, row->curve.v[p]);
+            csv_put_number(out, row->curve.v[p]);
             buffer_text(out, ",");
-            put_number(out, row->curve.current[p]);
+            csv_put_number(out, row->curve.current[p]);
             buffer_text(out, "\r\n");
         }
     }
@@ -112,21 +114,26 @@ static double cell_value(const struct sweep *sweep, const struct sweep_series *s
     return NAN;
 }
 
+void csv_heading(struct buffer *out, const char *name, struct dimension dimension)
+{
+    char unit[64];
+    dimension_unit(dimension, unit, sizeof unit);
+    struct buffer field = BUFFER_EMPTY;
+    buffer_text(&field, name);
+    if (unit[0] != '\0') {
+        buffer_format(&field, " [%s]", unit);
+    }
+    put_field(out, field.data == NULL ? "" : field.data);
+    out->failed = out->failed || field.failed;
+    buffer_free(&field);
+}
+
 static void put_header(const struct column *columns, int count, struct buffer *out)
 {
     buffer_text(out, "sweep");
     for (int k = 0; k < count; k++) {
-        char unit[64];
-        dimension_unit(columns[k].dimension, unit, sizeof unit);
-        struct buffer field = BUFFER_EMPTY;
-        buffer_text(&field, columns[k].name);
-        if (unit[0] != '\0') {
-            buffer_format(&field, " [%s]", unit);
-        }
         buffer_text(out, ",");
-        put_field(out, field.data == NULL ? "" : field.data);
-        out->failed = out->failed || field.failed;
-        buffer_free(&field);
+        csv_heading(out, columns[k].name, columns[k].dimension);
     }
     buffer_text(out, "\r\n");
 }
@@ -140,7 +147,7 @@ static void put_sweep(const struct sweep_table *table, int number, const struct 
             buffer_format(out, "%d", number);
             for (int k = 0; k < count; k++) {
                 buffer_text(out, ",");
-                put_number(out, cell_value(table->sweep, series, row, columns[k].name));
+                csv_put_number(out, cell_value(table->sweep, series, row, columns[k].name));
             }
             buffer_text(out, "\r\n");
         }
@@ -149,6 +156,10 @@ static void put_sweep(const struct sweep_table *table, int number, const struct 
 
 void report_csv(const struct result *result, struct buffer *out)
 {
+    if (result->mismatch != NULL && result->mismatch->wanted > 0) {
+        csv_samples(result, out);
+        return;
+    }
     if (result->sweep_count == 0) {
         put_curves(result, out);
         return;

@@ -9,6 +9,7 @@
 
 #include "report/json_parts.h"
 #include "report/json_states.h"
+#include "report/json_remedies.h"
 
 enum { SCHEMA_VERSION = 1, DIGITS = 17 };
 
@@ -139,6 +140,11 @@ static void put_hands(struct writer *writer, json_t *root, const struct result *
         put_number(writer, object, "hand", row->hand->value);
         put_number(writer, object, "computed", row->computed);
         put_number(writer, object, "difference", row->difference);
+        if (k < result->explanation_count && result->explanations[k].trouble == NULL) {
+            const struct explanation *why = &result->explanations[k];
+            put_text(writer, object, "shares_as", why->as_conductance ? "conductance" : NULL);
+            put(writer, object, "shares", json_shares(why));
+        }
     }
 }
 
@@ -157,6 +163,10 @@ static void put_requirements(struct writer *writer, json_t *root, const struct r
             put(writer, object, "judged", json_false());
         } else {
             put(writer, object, "met", json_boolean(row->judgement == JUDGED_MET));
+        }
+        json_put_spread_of(writer, object, result, row);
+        if (result->repairs != NULL && result->repairs[k].looked_for) {
+            put(writer, object, "repairs", json_repairs(&result->repairs[k]));
         }
     }
 }
@@ -198,6 +208,24 @@ static void put_sweeps(struct writer *writer, json_t *root, const struct result 
         for (int s = 0; s < result->sweeps[k].series_count; s++) {
             put_series(writer, series, sweep, &result->sweeps[k].series[s]);
         }
+    }
+}
+
+/* Parts of the commands explain, size and sensitivity. */
+static void put_remedies(struct writer *writer, json_t *root, const struct result *result)
+{
+    if (result->hand_count == 0 && result->explanation_count > 0) {
+        json_t *array = put_array(writer, root, "hand");
+        for (int k = 0; k < result->explanation_count; k++) {
+            append(writer, array, json_hand(&result->explanations[k]));
+        }
+    }
+    if (result->size != NULL) {
+        put(writer, root, "choices", json_choices(result->size));
+    }
+    if (result->sensitivity_count > 0) {
+        put(writer, root, "sensitivities",
+            json_sensitivities(result->sensitivities, result->sensitivity_count));
     }
 }
 
@@ -262,9 +290,13 @@ void report_json(const struct result *result, const char *version, struct buffer
         for (int k = 0; k < result->output_count; k++) {
             put_output(&writer, outputs, result->circuit, &result->outputs[k]);
         }
-        put_hands(&writer, root, result);
+        if (result->explanation_count == 0 || result->hand_count > 0) {
+            put_hands(&writer, root, result);
+        }
         put_requirements(&writer, root, result);
+        json_put_spread(&writer, root, result);
         put_sweeps(&writer, root, result);
+        put_remedies(&writer, root, result);
     }
     json_put_states(&writer, root, result);
     put_cautions(&writer, root, &result->cautions);

@@ -4,6 +4,7 @@
 #include <math.h>
 #include <string.h>
 
+#include "analyses/size.h"
 #include "report/show.h"
 
 /* Commands other than `review` may have nothing to judge; their word is that there is a point. */
@@ -52,6 +53,12 @@ const char *page_verdict_reason(struct layout *layout, const struct result *resu
     }
     if (result->verdict == VERDICT_UNSOLVED) {
         return "no operating point was found, so there are no figures to judge";
+    }
+    if (result->size != NULL) {
+        return result->size->solved
+                   ? "all targets of the `choose` lines are met"
+                   : "the `choose` lines have no solution inside their ranges; what follows is the "
+                     "nearest to it";
     }
     if (result->verdict == VERDICT_NO_REQUIREMENTS) {
         return is_only_solved(result) ? ""
@@ -117,7 +124,9 @@ static void name_failures(struct layout *layout, const struct result *result)
         }
         named++;
         const char *value =
-            row->judgement == JUDGED_UNKNOWN
+            row->requirement->scope == SCOPE_YIELD && row->yield != NULL
+                ? yield_text(layout, row->yield)
+            : row->judgement == JUDGED_UNKNOWN
                 ? "it has no value"
                 : layout_format(layout, "it is %s",
                                 show_probe(layout, &row->requirement->probe, row->computed));

@@ -4,6 +4,7 @@
 #include <math.h>
 #include <string.h>
 
+#include "analyses/spread_result.h"
 #include "report/show.h"
 #include "report/table.h"
 
@@ -42,6 +43,30 @@ static enum tone judgement_tone(enum judgement judgement)
     return TONE_BAD;
 }
 
+/* "98.50 % of 2000 samples" */
+const char *yield_text(struct layout *layout, const struct yield_result *yield)
+{
+    return layout_format(layout, "%.2f %% of %d samples", 100.0 * yield->share, yield->count);
+}
+
+/* Why, where and how sure, after the margin. */
+static const char *remark_text(struct layout *layout, const struct result *result,
+                               const struct requirement_result *row)
+{
+    const bool by_yield = row->requirement->scope == SCOPE_YIELD && row->yield != NULL;
+    const char *first = by_yield                ? yield_text(layout, row->yield)
+                        : row->worst_at != NULL ? page_place(layout, result, row->worst_at)
+                                                : "";
+    if (*first != '\0' && !by_yield) {
+        first = layout_format(layout, "at %s", first);
+    }
+    if (row->remark == NULL) {
+        return first;
+    }
+    return layout_format(layout, "%s%s%s", first, *first != '\0' ? "; " : "",
+                         layout_clean(layout, row->remark));
+}
+
 /* "3.600 nA to spare", "too far by 111.2 mV (44.48 %)" */
 static const char *margin_text(struct layout *layout, const struct requirement_result *row)
 {
@@ -74,12 +99,13 @@ static const char *margin_text(struct layout *layout, const struct requirement_r
                               : layout_format(layout, "too far by %s%s", size, share);
 }
 
-const char *requirement_margin(struct layout *layout, const struct requirement_result *row)
+const char *requirement_margin(struct layout *layout, const struct result *result,
+                               const struct requirement_result *row)
 {
     const char *margin = margin_text(layout, row);
-    if (row->remark != NULL) {
-        margin = layout_format(layout, "%s%s%s", margin, *margin != '\0' ? "; " : "",
-                               layout_clean(layout, row->remark));
+    const char *remark = remark_text(layout, result, row);
+    if (*remark != '\0') {
+        margin = layout_format(layout, "%s%s%s", margin, *margin != '\0' ? "; " : "", remark);
     }
     return margin;
 }
@@ -102,9 +128,10 @@ void page_requirements(struct layout *layout, const struct result *result)
                    row->judgement == JUDGED_UNKNOWN
                        ? "no value"
                        : show_probe(layout, &row->requirement->probe, row->computed));
-        table_cell(&table, 3, requirement_margin(layout, row));
+        table_cell(&table, 3, requirement_margin(layout, result, row));
     }
     table_write(&table);
+    page_repairs(layout, result);
 }
 
 void page_paper(struct layout *layout, const struct result *result)
@@ -131,4 +158,5 @@ void page_paper(struct layout *layout, const struct result *result)
                    isnan(row->in_hand_view) ? "" : show_probe(layout, probe, row->in_hand_view));
     }
     table_write(&table);
+    page_why(layout, result);
 }

@@ -13,6 +13,10 @@ void page_devices(struct layout *layout, const struct result *result);
 void page_requirements(struct layout *layout, const struct result *result);
 /* What the paper says against what was computed. */
 void page_paper(struct layout *layout, const struct result *result);
+/* The effects behind each line of the paper, and what would meet a requirement that is not met;
+ * both continue the part at hand. */
+void page_why(struct layout *layout, const struct result *result);
+void page_repairs(struct layout *layout, const struct result *result);
 void page_cautions(struct layout *layout, const struct result *result);
 /* How the point was found and how good it is. */
 void page_evidence(struct layout *layout, const struct result *result);
@@ -37,6 +41,9 @@ int column_quantity(const struct quantity_column *column, const struct device_ty
 const char *column_head(struct layout *layout, const struct quantity_column *column,
                         const struct device_result *const *shown, int count);
 
+/* Samples, causes and yield. */
+void page_mismatch(struct layout *layout, const struct result *result);
+
 /* Wording shared with the other text reports. */
 void page_unsolved(struct layout *layout, const struct result *result);
 void page_event(struct layout *layout, const struct sweep_event *event, struct dimension unit);
@@ -46,7 +53,12 @@ const char *page_verdict_reason(struct layout *layout, const struct result *resu
 /* "tail.cell, full view, 27 °C, corner slow, n180.process" */
 const char *page_conditions(struct layout *layout, const struct result *result);
 /* What there is to spare, or why it was not judged. */
-const char *requirement_margin(struct layout *layout, const struct requirement_result *row);
+const char *requirement_margin(struct layout *layout, const struct result *result,
+                               const struct requirement_result *row);
+/* "85 °C, vdd 2.7 V, corner slow" */
+const char *page_place(struct layout *layout, const struct result *result, const double *at);
+/* "98.50 % of 2000 samples" */
+const char *yield_text(struct layout *layout, const struct yield_result *yield);
 /* "met", "NOT MET", "not judged" */
 const char *judgement_text(enum judgement judgement);
 /* The line as written, without its first word. */

@@ -35,6 +35,19 @@ void report_sweep(const struct result *result, const struct report_style *style,
 /* Every resting state, the proof, and the start-up verdict. */
 void report_states(const struct result *result, const struct report_style *style,
                    struct buffer *out);
+/* Conditions, mismatch and yield. */
+void report_spread(const struct result *result, const struct report_style *style,
+                   struct buffer *out);
+/* Shares of the effects in what differs from the paper. */
+void report_explain(const struct result *result, const struct report_style *style,
+                    struct buffer *out);
+
+/* The chosen values and the preferred ones beside them. */
+void report_size(const struct result *result, const struct report_style *style, struct buffer *out);
+
+/* Ranked derivatives. */
+void report_sensitivity(const struct result *result, const struct report_style *style,
+                        struct buffer *out);
 
 /* Every model value in force. */
 void report_models(const struct circuit *circuit, const struct report_style *style,
@@ -47,7 +60,8 @@ void report_json_models(const struct circuit *circuit, const char *version, stru
 /*
  * report_csv: curves of the outputs (columns output,v,current; V and A), or, when the result has
  * sweeps, one row a point: the swept thing, the family, and each quantity with its SI unit in the
- * header. RFC 4180: CRLF, quotes where needed. A value that does not apply is empty.
+ * header; of a spread, one row a sample. RFC 4180: CRLF, quotes where needed. A value that does not
+ * apply is empty.
  */
 void report_csv(const struct result *result, struct buffer *out);
 

@@ -87,7 +87,7 @@ void web_requirements(struct layout *layout, const struct result *result)
             row->judgement == JUDGED_UNKNOWN
                 ? "no value"
                 : units_of(layout, show_probe(layout, &row->requirement->probe, row->computed)));
-        web_table_text(&table, units_of(layout, requirement_margin(layout, row)));
+        web_table_text(&table, units_of(layout, requirement_margin(layout, result, row)));
     }
     web_table_end(&table);
 }

@@ -169,7 +169,8 @@ static void test_requirements(void **state)
         JUDGED_MET,     /* within: the bound belongs to it */
         JUDGED_MET,     JUDGED_NOT_MET,
         JUDGED_NOT_MET, JUDGED_UNKNOWN, /* a cell without transistors has no headroom */
-        JUDGED_NOT,     JUDGED_NOT};
+        JUDGED_NOT_MET, /* everywhere, without a `vary` line: at the own conditions */
+        JUDGED_NOT};
     assert_int_equal(run.result->requirement_count, 10);
     for (int k = 0; k < 10; k++) {
         if (run.result->requirements[k].judgement != wanted[k]) {
@@ -188,7 +189,7 @@ static void test_requirements(void **state)
     run_review(&run, "rail vdd 4 V\nresistor R1 vdd -> gnd 1k\n", VIEW_FULL);
     assert_int_equal(run.result->verdict, VERDICT_NO_REQUIREMENTS);
     run_close(&run);
-    run_review(&run, "rail vdd 4 V\nresistor R1 vdd -> gnd 1k\nrequire R1.i above 1 A everywhere\n",
+    run_review(&run, "rail vdd 4 V\nresistor R1 vdd -> gnd 1k\nrequire R1.i above 1 A for 99%\n",
                VIEW_FULL);
     assert_int_equal(run.result->verdict, VERDICT_NO_REQUIREMENTS); /* not judged here */
     run_close(&run);

@@ -418,7 +418,7 @@ static void check_requests(struct check *c)
     for (int k = 0; k < result->requirement_count; k++) {
         const struct requirement_result *r = &result->requirements[k];
         const enum judgement wanted =
-            r->requirement->scope == SCOPE_POINT ? JUDGED_MET : JUDGED_NOT;
+            r->requirement->scope == SCOPE_YIELD ? JUDGED_NOT : JUDGED_MET;
         if (r->judgement != wanted) {
             fail_with(c, "'%s' is judged %d (computed %g)", r->requirement->text, (int)r->judgement,
                       r->computed);

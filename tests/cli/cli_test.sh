@@ -38,7 +38,7 @@ err_empty() { [ ! -s "$work/err" ] || fail "standard error must be empty"; }
 run 0 help && out_has "--temperature T, -t" && err_empty
 run 0 --help && out_has "Verbs:"
 run 0 -h && out_has "Verbs:"
-for verb in review point sweep models check format help; do
+for verb in review point sweep explain size sensitivity spread models check format help; do
     run 0 help $verb && out_has "ampstead $verb" && out_has "all well"
     run 0 $verb --help && out_has "all well"
 done
@@ -212,6 +212,24 @@ if [ $status -ne 0 ]; then # a machine that was done before is no failure
     err_has "stopped"
     out_has "STOPPED"
 fi
+
+# The cell with chosen values in place: written, refused, and the streams kept apart
+run 0 size "$cell" --write "$work/sized.cell" --round E96 && out_has "rounded"
+grep -q "resistor  RB    vdd -> ref   124 kohm" "$work/sized.cell" || fail "the copy lacks its value"
+cp "$source"/models/*.process "$work"
+run 0 "$work/sized.cell" && out_has "RB  resistor"
+run 0 size "$cell" --write - && out_has "choose    RB" && err_empty
+run 2 size "$cell" --write - --round grid && err_has "has no grid values to write"
+run 2 size "$cell" --write - --json && err_begins "ampstead: '--json' and '--write' cannot both"
+run 2 size "$source/netlists/wide_swing_cascode.cell" && err_has "no \`choose\` line"
+printf 'rail v 3 V\nresistor RA v -> m 1k\nresistor RB m -> gnd 1k\nchoose RB from 1k to 2k so m.v = 2.5 V\n' >"$work/tight.cell"
+run 1 size "$work/tight.cell" && out_has "RB is stopped by the upper end of its range, 2 kohm"
+run 1 size "$work/tight.cell" --write "$work/none.cell" && err_has "has no chosen values"
+[ ! -e "$work/none.cell" ] || fail "a copy was written without a solution"
+run 0 sensitivity "$cell" --of M1.vgs && out_has "M1.vgs is 810.5 mV"
+run 2 sensitivity "$cell" --of M1.vgss && err_begins "--of:1:1: " && err_has "vgs"
+run 2 explain "$work/tight.cell" && err_has "no \`hand\` line"
+run 2 size "$cell" --grid 0 && err_begins "--grid:1:1: "
 
 [ $failures -eq 0 ] && echo "all command line tests passed"
 exit $((failures > 0))

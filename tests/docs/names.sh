@@ -37,6 +37,7 @@ rows '\{' src/circuit/probe.c | told docs/language.md quantity
 rows '\[VERB_[A-Z]+\] = *\{' src/cli/tables.c | told README.md verb
 rows '\[OPTION_[A-Z]+\] = *\{' src/cli/tables.c | told README.md option
 rows 'put[a-z_]*\([^;"]*,' src/report/json.c | told docs/data.md key
+rows 'put[a-z_]*\([^;"]*,' src/report/json_spread.c | told docs/data.md key
 
 failures=$(wc -l <"$missing")
 [ "$failures" -eq 0 ] && echo "the pages name everything"

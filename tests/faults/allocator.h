@@ -18,6 +18,11 @@ void allocator_fail(long at, bool onward);
 /* SIGINT arrives at request number `at` (from 1), 0: never. */
 void allocator_interrupt(long at);
 
+/* The same for the blocks that arenas hand out, which are many more than the chunks they ask for.
+ */
+void allocator_fail_block(long at);
+long allocator_blocks(void);
+
 /* Requests since allocator_fail. */
 long allocator_requests(void);
 

@@ -16,10 +16,11 @@ allowed() {
     base) ;;
     numerics | devices | language | interval) echo base ;;
     proof) echo base interval devices ;;
+    calibrate) echo base devices language ;;
     circuit) echo base devices language ;;
     analyses) echo base numerics devices language circuit interval proof ;;
-    report) echo base devices language circuit analyses ;;
-    library) echo base devices language circuit analyses report ;;
+    report) echo base devices language calibrate circuit analyses ;;
+    library) echo base devices language calibrate circuit analyses report ;;
     cli) echo base library ;;
     *) return 1 ;;
     esac
@@ -67,6 +68,7 @@ only() {
     done
 }
 only '^# *include <klu' 'KLU' numerics/linear_klu.c
+only '^# *include <cminpack' 'cminpack' calibrate/least_squares.c
 only '\b(fopen|freopen|fdopen|open|openat|creat|mkstemp)\(' 'opening files' language/source.c cli
 only '\b(printf|puts|putchar|perror)\(|\b(stdout|stderr)\b' 'printing' cli
 only '\b(rand|srand|time|clock|setlocale|getenv)\(' 'clock, locale and environment' cli

@@ -81,6 +81,49 @@ static void set_value(void **state)
     ampstead_result_free(result);
 }
 
+/* 3 V over 10k and RLOW: 1 V wants 5k. */
+static void chosen_cell(void **state)
+{
+    (void)state;
+    static const char lines[] = "let RLOW = 20k # low\nrail vcc 3 V\nresistor RA vcc -> mid 10k\n"
+                                "resistor RB mid -> gnd RLOW\n"
+                                "choose RLOW from 1k to 90k so mid.v = 1 V\n";
+    struct ampstead_request request = request_of("size", lines);
+    struct ampstead_result *result = NULL;
+    assert_int_equal(ampstead_run(&request, &result), AMPSTEAD_WELL);
+    assert_non_null(strstr(ampstead_result_cell(result, NULL), "let RLOW = 5000 # low\n"));
+    assert_null(ampstead_result_cell(result, "grid"));
+    assert_non_null(strstr(ampstead_result_json(result), "\"choices\""));
+    ampstead_result_free(result);
+    request = request_of("point", lines);
+    assert_int_equal(ampstead_run(&request, &result), AMPSTEAD_WELL);
+    assert_null(ampstead_result_cell(result, NULL));
+    ampstead_result_free(result);
+    assert_null(ampstead_result_cell(NULL, NULL));
+}
+
+/* The keys of docs/data.md for why and what to change. */
+static void remedies(void **state)
+{
+    (void)state;
+    static const char *const sets[] = {"RLOW=5k"};
+    static const char *const keys[][2] = {{"review", "\"repairs\": ["},
+                                          {"explain", "\"shares\": ["},
+                                          {"sensitivity", "\"relative\": "}};
+    for (size_t k = 0; k < sizeof keys / sizeof keys[0]; k++) {
+        struct ampstead_request request = request_of(keys[k][0], divider);
+        struct ampstead_result *result = NULL;
+        request.sets = sets;
+        request.set_count = 1;
+        request.of = k == 2 ? "mid.v" : NULL;
+        assert_int_equal(ampstead_run(&request, &result),
+                         k == 0 ? AMPSTEAD_NOT_MET : AMPSTEAD_WELL);
+        assert_non_null(strstr(ampstead_result_json(result), keys[k][1]));
+        assert_non_null(ampstead_result_text(result, 0, 72));
+        ampstead_result_free(result);
+    }
+}
+
 struct wrong_case {
     const char *sets, *temperature, *corner, *sweep;
     const char *message; /* how the messages begin */
@@ -290,10 +333,13 @@ static void version(void **state)
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(values),    cmocka_unit_test(set_value),  cmocka_unit_test(wrong_requests),
-        cmocka_unit_test(wrong_use), cmocka_unit_test(cell_error), cmocka_unit_test(sweep_csv),
-        cmocka_unit_test(stopped),   cmocka_unit_test(same_bytes), cmocka_unit_test(models),
-        cmocka_unit_test(version),   cmocka_unit_test(shows),
+        cmocka_unit_test(values),         cmocka_unit_test(set_value),
+        cmocka_unit_test(chosen_cell),    cmocka_unit_test(remedies),
+        cmocka_unit_test(wrong_requests), cmocka_unit_test(wrong_use),
+        cmocka_unit_test(cell_error),     cmocka_unit_test(sweep_csv),
+        cmocka_unit_test(stopped),        cmocka_unit_test(same_bytes),
+        cmocka_unit_test(models),         cmocka_unit_test(version),
+        cmocka_unit_test(shows),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

@@ -3,6 +3,13 @@
 set -eu
 found=$("$2" -D --defined-only "$1" | awk '{ print $NF }' | grep -v '^_' | sort)
 wanted="ampstead_build
+ampstead_calibrate
+ampstead_calibration_free
+ampstead_calibration_json
+ampstead_calibration_messages
+ampstead_calibration_process
+ampstead_calibration_text
+ampstead_result_cell
 ampstead_result_csv
 ampstead_result_file
 ampstead_result_free

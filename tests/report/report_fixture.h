@@ -148,10 +148,10 @@ static void fixture_requirements(struct fixture *f)
         .where = {0, 21, 30},
     };
     const struct requirement_result results[] = {
-        {&f->requirements[0], 816.4e-9, JUDGED_MET, 3.6e-9, NULL},
-        {&f->requirements[1], 0.1803, JUDGED_NOT_MET, -0.0303, NULL},
-        {&f->requirements[2], 82.41e6, JUDGED_MET, 32.41e6, NULL},
-        {&f->requirements[3], NAN, JUDGED_NOT, NAN, NULL},
+        {&f->requirements[0], 816.4e-9, JUDGED_MET, 3.6e-9, NULL, NULL, NULL},
+        {&f->requirements[1], 0.1803, JUDGED_NOT_MET, -0.0303, NULL, NULL, NULL},
+        {&f->requirements[2], 82.41e6, JUDGED_MET, 32.41e6, NULL, NULL, NULL},
+        {&f->requirements[3], NAN, JUDGED_NOT, NAN, NULL, NULL, NULL},
     };
     memcpy(f->requirement_results, results, sizeof results);
 }

@@ -3,6 +3,7 @@ docs/schema (JSON Schema 2020-12). Ends with 77 where python3-jsonschema is not 
 import copy
 import glob
 import json
+import math
 import os
 import subprocess
 import sys
@@ -48,6 +49,15 @@ for cell in sorted(glob.glob(os.path.join(source, "netlists", "*.cell"))):
         run(verb, cell)
 for name in ("beta_multiplier", "mirror", "bandgap"):
     run("states", os.path.join(source, "netlists", name + ".cell"), "--boxes", "2000")
+everything = os.path.join(source, "tests", "faults", "everything.cell")
+for cell in [everything] + [os.path.join(source, "netlists", name + ".cell")
+                            for name in ("mirror", "bandgap", "widlar_mos")]:
+    data_of = {verb: run(verb, cell, *options) for verb, options in (
+        ("explain", ()), ("sensitivity", ()), ("spread", ("--samples", "40")))}
+    if not data_of["sensitivity"].get("sensitivities") or "samples" not in data_of["spread"]:
+        fail("no sensitivities or no samples: " + cell)
+if not run("size", everything).get("choices"):
+    fail("no choices")
 run("point", os.path.join(source, "netlists", "mirror.cell"), "--certify")
 run("point", os.path.join(source, "netlists", "mirror.cell"), "--view", "hand", "--corner", "slow")
 for process in glob.glob(os.path.join(source, "models", "*.process")):
@@ -59,6 +69,29 @@ with tempfile.TemporaryDirectory() as work:
                    "law L x -> gnd i = 1 nA * (1 + sqrt((x.v / 1 V)^2)) / (1 + sqrt((x.v / 1 V)^2))\n")
     if run("review", never)["verdict"] != "unsolved":
         fail("an unsolved cell")
+
+# measured curves of our own making: a diode of 10 fA, a square law with a smooth foot, a resistor
+with tempfile.TemporaryDirectory() as work:
+    def curves(name, lines):
+        path = os.path.join(work, name)
+        with open(path, "w", encoding="utf-8") as file:
+            file.write("\n".join(lines) + "\n")
+        return path
+
+    def foot(v):
+        return 0.05 * math.log1p(math.exp(v / 0.05))
+
+    diode = curves("diode.csv", ["v,i"] + ["%.10g,%.10g" % (v, 1e-14 * math.expm1(v / 0.0256926))
+                                           for v in (0.3 + 0.01 * k for k in range(40))])
+    square = curves("square.csv", ["vgs,vds,vsb,id"] + [
+        "%.4g,%.4g,0,%.10g" % (g, d, 1e-4 * (foot(g - 0.5) ** 2 - foot(g - 0.5 - d) ** 2))
+        for d in (0.1, 1.8) for g in (0.05 * k for k in range(37))])
+    ohms = curves("ohms.csv", ["v,i"] + ["%.4g,%.10g" % (0.1 * k, 1e-5 * k) for k in range(1, 20)])
+    run("calibrate", diode, "--kind", "diode")
+    run("calibrate", ohms, "--kind", "resistor")
+    fitted = run("calibrate", square, "--kind", "nmos", "--size", "10u/1u")
+    if not fitted["devices"] or not fitted["models"][0]["parameters"]:
+        fail("an empty calibration")
 
 # every verb that the program's own tables give --json has its definition
 listed = set(schema["properties"]["command"]["enum"])
