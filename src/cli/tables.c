@@ -110,11 +110,12 @@ const struct option_row option_rows[OPTION_COUNT] = {
                    "such as tail.resistance or M1.vgs", 1 << VERB_SENSITIVITY},
     [OPTION_GRID] = {"grid", 0, ARGUMENT_NEEDED, "LENGTH", NULL, "10 nm",
                      "lengths and widths are rounded to whole multiples of it", 1 << VERB_SIZE},
-    [OPTION_WRITE] = {"write", 'w', ARGUMENT_NEEDED, "FILE", NULL, "off",
-                      "size: a copy of the cell with the chosen values in place (- is standard output "
-                      "instead of the text); calibrate: the process file, an existing one only with "
-                      "--force",
-                      1 << VERB_SIZE | CALIBRATE},
+    [OPTION_WRITE] =
+        {"write", 'w', ARGUMENT_NEEDED, "FILE", NULL, "off",
+         "size: a copy of the cell with the chosen values in place (- is standard output "
+         "instead of the text); calibrate: the process file, an existing one only with "
+         "--force",
+         1 << VERB_SIZE | CALIBRATE},
     [OPTION_ROUND] = {"round", 0, ARGUMENT_NEEDED, "exact|E24|E96|grid", round_words, "exact",
                       "which values --write puts in place", 1 << VERB_SIZE},
     [OPTION_KIND] = {"kind", 'k', ARGUMENT_NEEDED, "nmos|pmos|diode|resistor|npn|pnp", kind_words,

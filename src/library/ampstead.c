@@ -31,10 +31,17 @@ enum command {
 };
 
 static const char *const command_words[COMMAND_COUNT] = {
-    [COMMAND_REVIEW] = "review",           [COMMAND_POINT] = "point",     [COMMAND_SWEEP] = "sweep",
-    [COMMAND_MODELS] = "models",           [COMMAND_EXPLAIN] = "explain", [COMMAND_SIZE] = "size",
-    [COMMAND_SENSITIVITY] = "sensitivity", [COMMAND_SPREAD] = "spread",   [COMMAND_STATES] = "states",
-    [COMMAND_CHECK] = "check",             [COMMAND_FORMAT] = "format",
+    [COMMAND_REVIEW] = "review",
+    [COMMAND_POINT] = "point",
+    [COMMAND_SWEEP] = "sweep",
+    [COMMAND_MODELS] = "models",
+    [COMMAND_EXPLAIN] = "explain",
+    [COMMAND_SIZE] = "size",
+    [COMMAND_SENSITIVITY] = "sensitivity",
+    [COMMAND_SPREAD] = "spread",
+    [COMMAND_STATES] = "states",
+    [COMMAND_CHECK] = "check",
+    [COMMAND_FORMAT] = "format",
 };
 
 struct ampstead_result {

@@ -74,7 +74,7 @@ struct ampstead_request {
     int certify;         /* for command "point": not 0 proves it unique in a small box */
     long boxes;          /* for command "states": boxes of the proof, then it gives up */
     const char *leakage; /* for command "states": "1 nA", a push below it is at risk; NULL: that */
-    int samples; /* for command "spread": mismatch samples, 0 to AMPSTEAD_SAMPLE_LIMIT */
+    int samples;         /* for command "spread": mismatch samples, 0 to AMPSTEAD_SAMPLE_LIMIT */
     unsigned long long seed; /* the same seed gives the same samples, whatever `jobs` is */
     int jobs;                /* threads, for "spread" and `everywhere`; 0: one a processor */
 };

@@ -69,6 +69,12 @@ with tempfile.TemporaryDirectory() as work:
                    "law L x -> gnd i = 1 nA * (1 + sqrt((x.v / 1 V)^2)) / (1 + sqrt((x.v / 1 V)^2))\n")
     if run("review", never)["verdict"] != "unsolved":
         fail("an unsolved cell")
+    half = os.path.join(work, "half.cell")
+    with open(half, "w", encoding="utf-8") as file:
+        file.write("rail v 3 V\nresistor RA v -> mid 10k\nresistor RB mid -> gnd 5k\n"
+                   "choose RB from 1k to 15k so mid.v = 1.2 V\n")
+    if "E96" not in run("size", half)["choices"]["RB"].get("preferred", {}):
+        fail("no preferred values")
 
 # measured curves of our own making: a diode of 10 fA, a square law with a smooth foot, a resistor
 with tempfile.TemporaryDirectory() as work:
