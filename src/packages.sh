@@ -21,8 +21,9 @@ install_packages() {
 }
 
 # What the program needs, and what the tests need beside it.
-build_packages=(gcc libc6-dev cmake ninja-build libsuitesparse-dev libjansson-dev libcminpack-dev)
-test_packages=(g++ libcmocka-dev)
+build_packages=(gcc libc6-dev cmake ninja-build libsuitesparse-dev libjansson-dev libcminpack-dev
+    pkg-config librsvg2-dev libcairo2-dev)
+test_packages=(g++ libcmocka-dev python3-jsonschema dpkg-dev)
 
 # build_in FOLDER [cmake options...]: configures and builds
 build_in() {

@@ -233,37 +233,80 @@ static int compare(const void *left, const void *right)
     return a < b ? -1 : a > b ? 1 : 0;
 }
 
+/* All diagnostics in order, each once. NULL when memory is short; the caller frees it. */
+static const struct diagnostic **sorted(const struct diagnostics *diagnostics, size_t *count)
+{
+    size_t all = (size_t)diagnostics->count, kept = 0;
+    const struct diagnostic **order = calloc(all, sizeof(const struct diagnostic *));
+    if (order == NULL) {
+        return NULL;
+    }
+    for (size_t i = 0; i < all; i++) {
+        order[i] = &diagnostics->list[i];
+    }
+    qsort(order, all, sizeof *order, compare);
+    for (size_t i = 0; i < all; i++) {
+        if (i == 0 || !same(order[i], order[kept - 1])) {
+            order[kept++] = order[i];
+        }
+    }
+    *count = kept;
+    return order;
+}
+
 void diagnostics_print(const struct diagnostics *diagnostics, const struct source_set *sources,
                        bool color, struct buffer *out)
 {
+    size_t count = 0;
     if (diagnostics->count == 0) {
         return;
     }
-    size_t count = (size_t)diagnostics->count;
-    const struct diagnostic **order = calloc(count, sizeof(const struct diagnostic *));
+    const struct diagnostic **order = sorted(diagnostics, &count);
+    if (order == NULL) {
+        out->failed = true;
+        return;
+    }
+    for (size_t i = 0; i < count && i < DIAGNOSTIC_LIMIT; i++) {
+        print_one(order[i], sources, color, out);
+    }
+    if (count > DIAGNOSTIC_LIMIT) {
+        int more = (int)(count - DIAGNOSTIC_LIMIT);
+        buffer_format(out, "ampstead: %d more error%s not shown\n", more,
+                      more == 1 ? " is" : "s are");
+    }
+    free(order);
+}
+
+void diagnostics_list(const struct diagnostics *diagnostics, const struct source_set *sources,
+                      struct buffer *out)
+{
+    size_t count = 0;
+    if (diagnostics->count == 0) {
+        return;
+    }
+    const struct diagnostic **order = sorted(diagnostics, &count);
     if (order == NULL) {
         out->failed = true;
         return;
     }
     for (size_t i = 0; i < count; i++) {
-        order[i] = &diagnostics->list[i];
-    }
-    qsort(order, count, sizeof *order, compare);
-    int printed = 0, more = 0;
-    for (size_t i = 0; i < count; i++) {
-        if (i > 0 && same(order[i], order[i - 1])) {
-            continue;
+        struct span where = order[i]->where;
+        int line = 1, column = 1;
+        bool has_file = where.file < (uint32_t)sources->count;
+        const struct source_file *file = has_file ? &sources->files[where.file] : NULL;
+        if (file == NULL && sources->count > 0) {
+            file = &sources->files[0]; /* about the whole: its first line */
+        } else if (file != NULL) {
+            source_position(file, where.begin, &line, &column);
         }
-        if (printed < DIAGNOSTIC_LIMIT) {
-            print_one(order[i], sources, color, out);
-            printed++;
-        } else {
-            more++;
+        put_text(out, file != NULL ? file->name : "ampstead");
+        buffer_format(out, ":%d:%d: error: ", line, column);
+        put_text(out, order[i]->text);
+        if (order[i]->hint != NULL) {
+            buffer_text(out, "; ");
+            put_text(out, order[i]->hint);
         }
-    }
-    if (more > 0) {
-        buffer_format(out, "ampstead: %d more error%s not shown\n", more,
-                      more == 1 ? " is" : "s are");
+        buffer_text(out, "\n");
     }
     free(order);
 }

@@ -76,6 +76,10 @@ int source_line(const struct source_set *sources, struct span where);
 void diagnostics_print(const struct diagnostics *diagnostics, const struct source_set *sources,
                        bool color, struct buffer *out);
 
+/* The same, all of them, one a line for editors: "FILE:LINE:COLUMN: error: what is wrong; hint". */
+void diagnostics_list(const struct diagnostics *diagnostics, const struct source_set *sources,
+                      struct buffer *out);
+
 /*
  * near_name: the candidate that a mistyped name most likely meant, or NULL when none is near
  * (Damerau-Levenshtein distance in the restricted form, at most a third of the length, at least 1;

@@ -49,9 +49,10 @@ static void write_option(FILE *out, const struct option_row *row)
 
 static void write_statuses(FILE *out)
 {
-    fputs("\nExit status: 0 all well; 1 a requirement is not met; 2 the input is wrong;\n"
-          "3 no operating point was found; 4 the machine failed (memory, disk); 130 stopped.\n",
-          out);
+    fputs("\nExit status:\n", out);
+    for (const struct status_row *row = status_rows; row->text != NULL; row++) {
+        fprintf(out, "  %-*d%s\n", TEXT_COLUMN - 2, row->status, row->text);
+    }
 }
 
 void help_general(FILE *out)

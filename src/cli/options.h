@@ -19,6 +19,8 @@ enum verb {
     VERB_STATES,
     VERB_CALIBRATE,
     VERB_MODELS,
+    VERB_CHECK,
+    VERB_FORMAT,
     VERB_HELP,
     VERB_COUNT
 };
@@ -66,6 +68,9 @@ enum option {
     OPTION_FORCE,
     OPTION_JSON,
     OPTION_CSV,
+    OPTION_PLOT,
+    OPTION_PAGE,
+    OPTION_WATCH,
     OPTION_COLOR,
     OPTION_HELP,
     OPTION_VERSION,
@@ -86,6 +91,12 @@ struct option_row {
     unsigned verbs;             /* sum of 1 << verb */
 };
 extern const struct option_row option_rows[OPTION_COUNT];
+
+struct status_row {
+    int status;
+    const char *text;
+};
+extern const struct status_row status_rows[]; /* ends with a NULL text */
 
 /* The command line as read. Texts are borrowed from argv. */
 struct options {

@@ -16,29 +16,28 @@ static bool complain(const char *path, int error)
 }
 
 /* 0, or the errno of the failure. */
-static int write_all(int file, const char *text)
+static int write_all(int file, const char *bytes, size_t left)
 {
-    size_t left = strlen(text);
     while (left > 0) {
-        ssize_t written = write(file, text, left);
+        ssize_t written = write(file, bytes, left);
         if (written < 0 && errno != EINTR) {
             return errno;
         }
         if (written > 0) {
-            text += written;
+            bytes += written;
             left -= (size_t)written;
         }
     }
     return 0;
 }
 
-static bool write_directly(const char *path, const char *text)
+static bool write_directly(const char *path, const char *bytes, size_t length)
 {
     int file = open(path, O_WRONLY | O_NOCTTY);
     if (file < 0) {
         return complain(path, errno);
     }
-    int error = write_all(file, text);
+    int error = write_all(file, bytes, length);
     if (close(file) != 0 && error == 0) {
         error = errno;
     }
@@ -71,7 +70,7 @@ static char *temporary_name(const char *path)
 }
 
 /* Writes, synchronises and renames; 0, or the errno of the failure. Nothing is left behind. */
-static int write_renamed(const char *path, const char *text, mode_t mode)
+static int write_renamed(const char *path, const char *bytes, size_t length, mode_t mode)
 {
     char *name = temporary_name(path);
     if (name == NULL) {
@@ -83,7 +82,7 @@ static int write_renamed(const char *path, const char *text, mode_t mode)
         free(name);
         return error;
     }
-    int error = write_all(file, text);
+    int error = write_all(file, bytes, length);
     if (error == 0 && (fchmod(file, mode) != 0 || fsync(file) != 0)) {
         error = errno;
     }
@@ -100,22 +99,36 @@ static int write_renamed(const char *path, const char *text, mode_t mode)
     return error;
 }
 
-bool output_file(const char *path, const char *text)
+bool output_file(const char *path, const char *bytes, size_t length)
 {
     struct stat old;
     bool exists = stat(path, &old) == 0;
     if (exists && !S_ISREG(old.st_mode)) {
-        return write_directly(path, text);
+        return write_directly(path, bytes, length);
     }
     /* a link stays a link: the file behind it is replaced */
     char *target = exists ? realpath(path, NULL) : NULL;
     if (exists && target == NULL) {
         return complain(path, errno);
     }
-    int error =
-        write_renamed(target != NULL ? target : path, text, wanted_mode(exists ? &old : NULL));
+    int error = write_renamed(target != NULL ? target : path, bytes, length,
+                              wanted_mode(exists ? &old : NULL));
     free(target);
     return error == 0 || complain(path, error);
+}
+
+bool output_same(const char *path, const char *text)
+{
+    FILE *file = fopen(path, "rb");
+    bool is_same = file != NULL;
+    for (; is_same && *text != '\0'; text++) {
+        is_same = fgetc(file) == (unsigned char)*text;
+    }
+    is_same = is_same && fgetc(file) == EOF && !ferror(file);
+    if (file != NULL) {
+        (void)fclose(file);
+    }
+    return is_same;
 }
 
 void output_text(const char *text)
@@ -137,4 +150,22 @@ bool output_close(void)
         return false;
     }
     return error == 0 || complain("standard output", error);
+}
+
+bool output_is_stdout(const char *path)
+{
+    return path == NULL || *path == '\0' || strcmp(path, "-") == 0;
+}
+
+bool output_deliver(const char *path, const char *text)
+{
+    if (text == NULL) {
+        fputs("ampstead: memory is short\n", stderr);
+        return false;
+    }
+    if (output_is_stdout(path)) {
+        output_text(text);
+        return true;
+    }
+    return output_file(path, text, strlen(text));
 }

@@ -2,13 +2,14 @@
 #include <stddef.h>
 
 #include "cli/options.h"
+#include "library/ampstead.h"
 
 enum {
     RESULT_VERBS = 1 << VERB_REVIEW | 1 << VERB_POINT | 1 << VERB_SWEEP | 1 << VERB_SIZE |
                    1 << VERB_SENSITIVITY | 1 << VERB_SPREAD | 1 << VERB_STATES,
     CELL_VERBS = RESULT_VERBS | 1 << VERB_EXPLAIN | 1 << VERB_MODELS,
     CALIBRATE = 1 << VERB_CALIBRATE,
-    ALL_VERBS = CELL_VERBS | CALIBRATE | 1 << VERB_HELP
+    ALL_VERBS = CELL_VERBS | CALIBRATE | 1 << VERB_CHECK | 1 << VERB_FORMAT | 1 << VERB_HELP
 };
 
 const struct verb_row verb_rows[VERB_COUNT] = {
@@ -61,6 +62,14 @@ const struct verb_row verb_rows[VERB_COUNT] = {
          "asked for. See docs/calibrate.md."},
     [VERB_MODELS] = {"models", "FILE", "every model value in force, given or default",
                      "FILE is a cell, or a process file by itself."},
+    [VERB_CHECK] =
+        {"check", "FILE", "errors only, one a line, as editors read them",
+         "Reads and checks a cell or a process file and solves nothing. Each error is a\n"
+         "line FILE:LINE:COLUMN: error: TEXT on standard output; the status is 2 then."},
+    [VERB_FORMAT] = {"format", "FILE", "aligns a cell or process file; only blanks change",
+                     "Rewrites FILE in the house layout, or with - standard input to standard\n"
+                     "output. Comments and every number stay as written; a file with errors is\n"
+                     "left alone. Formatting twice is the same as once."},
     [VERB_HELP] = {"help", "[VERB]", "this overview, or what one verb does and takes",
                    "ampstead VERB --help shows the same."},
 };
@@ -73,12 +82,12 @@ static const char *const color_words[] = {"auto", "always", "never", NULL};
 
 const struct option_row option_rows[OPTION_COUNT] = {
     [OPTION_SET] = {"set", 's', ARGUMENT_NEEDED, "NAME=EXPR", NULL, "the value in the cell",
-                    "overrides a `let`; may be given often", CELL_VERBS},
+                    "overrides a `let`; may be given often", CELL_VERBS | 1 << VERB_CHECK},
     [OPTION_TEMPERATURE] = {"temperature", 't', ARGUMENT_NEEDED, "T", NULL, "the cell's, else 27 C",
                             "such as \"60 C\" or \"333 K\"; calibrate: of the curves, else 25 C",
                             CELL_VERBS | CALIBRATE},
     [OPTION_CORNER] = {"corner", 0, ARGUMENT_NEEDED, "NAME", NULL, "typical",
-                       "a corner of the process", CELL_VERBS},
+                       "a corner of the process", CELL_VERBS | 1 << VERB_CHECK},
     [OPTION_VIEW] = {"view", 0, ARGUMENT_NEEDED, "full|hand", view_words, "full",
                      "hand: the assumptions of a paper design (square law, no Early effect)",
                      RESULT_VERBS},
@@ -101,11 +110,12 @@ const struct option_row option_rows[OPTION_COUNT] = {
                    "such as tail.resistance or M1.vgs", 1 << VERB_SENSITIVITY},
     [OPTION_GRID] = {"grid", 0, ARGUMENT_NEEDED, "LENGTH", NULL, "10 nm",
                      "lengths and widths are rounded to whole multiples of it", 1 << VERB_SIZE},
-    [OPTION_WRITE] = {"write", 'w', ARGUMENT_NEEDED, "FILE", NULL, "off",
-                      "size: a copy of the cell with the chosen values in place (- is standard output "
-                      "instead of the text); calibrate: the process file, an existing one only with "
-                      "--force",
-                      1 << VERB_SIZE | CALIBRATE},
+    [OPTION_WRITE] =
+        {"write", 'w', ARGUMENT_NEEDED, "FILE", NULL, "off",
+         "size: a copy of the cell with the chosen values in place (- is standard output "
+         "instead of the text); calibrate: the process file, an existing one only with "
+         "--force",
+         1 << VERB_SIZE | CALIBRATE},
     [OPTION_ROUND] = {"round", 0, ARGUMENT_NEEDED, "exact|E24|E96|grid", round_words, "exact",
                       "which values --write puts in place", 1 << VERB_SIZE},
     [OPTION_KIND] = {"kind", 'k', ARGUMENT_NEEDED, "nmos|pmos|diode|resistor|npn|pnp", kind_words,
@@ -143,9 +153,30 @@ const struct option_row option_rows[OPTION_COUNT] = {
     [OPTION_CSV] = {"csv", 0, ARGUMENT_NEEDED, "FILE", NULL, "off",
                     "writes CSV (SI units) to FILE; - is standard output instead of the text",
                     1 << VERB_REVIEW | 1 << VERB_SWEEP | 1 << VERB_SPREAD},
+    [OPTION_PLOT] = {"plot", 0, ARGUMENT_NEEDED, "FILE", NULL, "off",
+                     "draws the curves to FILE; its ending says how: .svg, .pdf or .png",
+                     1 << VERB_REVIEW | 1 << VERB_SWEEP},
+    [OPTION_PAGE] = {"page", 0, ARGUMENT_NEEDED, "FILE", NULL, "off",
+                     "writes the whole review as one HTML file that needs nothing else",
+                     1 << VERB_REVIEW},
+    [OPTION_WATCH] =
+        {"watch", 0, ARGUMENT_NONE, NULL, NULL, "off",
+         "runs again at every save, until Ctrl-C; errors are shown above the last good "
+         "page, and an open --page reloads itself",
+         RESULT_VERBS},
     [OPTION_COLOR] = {"color", 0, ARGUMENT_NEEDED, "auto|always|never", color_words, "auto",
                       "auto: on a terminal, unless NO_COLOR is set", ALL_VERBS},
     [OPTION_HELP] = {"help", 'h', ARGUMENT_NONE, NULL, NULL, "off", "what a verb does and takes",
                      ALL_VERBS},
     [OPTION_VERSION] = {"version", 0, ARGUMENT_NONE, NULL, NULL, "off", "the version", ALL_VERBS},
+};
+
+const struct status_row status_rows[] = {
+    {AMPSTEAD_WELL, "all well"},
+    {AMPSTEAD_NOT_MET, "a requirement is not met"},
+    {AMPSTEAD_INPUT, "the input is wrong: language, options, files"},
+    {AMPSTEAD_UNSOLVED, "no operating point was found"},
+    {AMPSTEAD_MACHINE, "the machine failed: memory, disk"},
+    {AMPSTEAD_STOPPED, "stopped by the user"},
+    {0, NULL},
 };

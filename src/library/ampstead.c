@@ -7,6 +7,8 @@
 
 #include "analyses/analysis.h"
 #include "analyses/size.h"
+#include "library/edit.h"
+#include "library/place.h"
 #include "library/request.h"
 #include "library/value.h"
 #include "report/report.h"
@@ -23,13 +25,23 @@ enum command {
     COMMAND_SENSITIVITY,
     COMMAND_SPREAD,
     COMMAND_STATES,
+    COMMAND_CHECK,
+    COMMAND_FORMAT,
     COMMAND_COUNT
 };
 
 static const char *const command_words[COMMAND_COUNT] = {
-    [COMMAND_REVIEW] = "review",           [COMMAND_POINT] = "point",     [COMMAND_SWEEP] = "sweep",
-    [COMMAND_MODELS] = "models",           [COMMAND_EXPLAIN] = "explain", [COMMAND_SIZE] = "size",
-    [COMMAND_SENSITIVITY] = "sensitivity", [COMMAND_SPREAD] = "spread",   [COMMAND_STATES] = "states",
+    [COMMAND_REVIEW] = "review",
+    [COMMAND_POINT] = "point",
+    [COMMAND_SWEEP] = "sweep",
+    [COMMAND_MODELS] = "models",
+    [COMMAND_EXPLAIN] = "explain",
+    [COMMAND_SIZE] = "size",
+    [COMMAND_SENSITIVITY] = "sensitivity",
+    [COMMAND_SPREAD] = "spread",
+    [COMMAND_STATES] = "states",
+    [COMMAND_CHECK] = "check",
+    [COMMAND_FORMAT] = "format",
 };
 
 struct ampstead_result {
@@ -41,12 +53,26 @@ struct ampstead_result {
     struct result *found; /* NULL for `models` and after errors */
     struct sweep sweep;   /* the one of the request */
     struct probe wanted;  /* the quantity of the request */
-    struct buffer messages, text, json, csv, cell_text;
+    struct buffer messages, text, json, csv, plot, page, cell_text;
 };
 
 const char *ampstead_version(void)
 {
     return AMPSTEAD_VERSION;
+}
+
+#if defined(__clang__)
+#define COMPILER "clang " __clang_version__
+#elif defined(__GNUC__)
+#define COMPILER "gcc " __VERSION__
+#else
+#define COMPILER "another compiler"
+#endif
+
+const char *ampstead_build(void)
+{
+    static const char text[] = AMPSTEAD_KLU_VERSION ", " COMPILER ", " AMPSTEAD_BUILD_TYPE;
+    return text;
 }
 
 static enum ampstead_status public_status(enum status status)
@@ -88,17 +114,18 @@ static char *process_cell(const char *path)
     return text;
 }
 
-static enum status read_cell(const struct ampstead_request *request, struct ampstead_result *result)
+static enum status read_with(const struct ampstead_request *request, const char *installed,
+                             struct ampstead_result *result)
 {
     const char *folders[3];
     int count = 0;
     if (request->model_folder_count > 0 && request->model_folders != NULL) {
         folders[count++] = request->model_folders[0];
     }
-    folders[count++] = AMPSTEAD_MODEL_FOLDER;
+    folders[count++] = installed;
     folders[count++] = AMPSTEAD_SOURCE_MODELS;
-    if (result->command == COMMAND_MODELS && request->text == NULL &&
-        ends_with(request->path, ".process")) {
+    bool takes_process = result->command == COMMAND_MODELS || result->command == COMMAND_CHECK;
+    if (takes_process && request->text == NULL && ends_with(request->path, ".process")) {
         char *text = process_cell(request->path);
         if (text == NULL) {
             return STATUS_MEMORY;
@@ -110,6 +137,17 @@ static enum status read_cell(const struct ampstead_request *request, struct amps
     }
     return cell_read(request->path, request->text, request->text_length, folders, count,
                      &result->cell);
+}
+
+static enum status read_cell(const struct ampstead_request *request, struct ampstead_result *result)
+{
+    char *installed = place_models();
+    if (installed == NULL) {
+        return STATUS_MEMORY;
+    }
+    enum status status = read_with(request, installed, result);
+    free(installed);
+    return status;
 }
 
 /* Reads the texts of the request, then builds the circuit. Errors of all of them are found. */
@@ -213,6 +251,8 @@ static enum status analyse(const struct ampstead_request *request, struct ampste
         }
         return analysis_sensitivity(result->circuit, &options, &result->found);
     case COMMAND_MODELS:
+    case COMMAND_CHECK:
+    case COMMAND_FORMAT:
     case COMMAND_COUNT:
         break;
     }
@@ -257,16 +297,22 @@ static enum status run(const struct ampstead_request *request, struct ampstead_r
     if (result->trouble != NULL) {
         return STATUS_INPUT;
     }
-    if (result->command != COMMAND_MODELS && ends_with(request->path, ".process")) {
+    if (result->command != COMMAND_MODELS && result->command != COMMAND_CHECK &&
+        result->command != COMMAND_FORMAT && ends_with(request->path, ".process")) {
         result->trouble = "this is a process file: ampstead models FILE shows it";
         return STATUS_INPUT;
+    }
+    if (result->command == COMMAND_FORMAT) {
+        return edit_format(request->path, request->text, request->text_length, &result->cell,
+                           &result->text);
     }
     enum status status = read_cell(request, result);
     /* A cell with errors is built as far as it goes: all that is wrong is told in one run. */
     if (status == STATUS_OK || (status == STATUS_INPUT && result->cell != NULL)) {
         status = build(request, result);
     }
-    if (status == STATUS_OK && result->command != COMMAND_MODELS &&
+    bool is_process = ends_with(request->path, ".process"); /* which `check` and `models` take */
+    if (status == STATUS_OK && result->command != COMMAND_MODELS && !is_process &&
         result->circuit->instance_count == 0) {
         diagnostics_add(&result->cell->diagnostics, SPAN_NONE, NULL, "the cell holds no parts");
         status = STATUS_INPUT;
@@ -305,6 +351,8 @@ void ampstead_result_free(struct ampstead_result *result)
     buffer_free(&result->text);
     buffer_free(&result->json);
     buffer_free(&result->csv);
+    buffer_free(&result->plot);
+    buffer_free(&result->page);
     buffer_free(&result->cell_text);
     result_free(result->found);
     circuit_free(result->circuit);
@@ -364,6 +412,14 @@ static bool has_report(const struct ampstead_result *result)
 
 const char *ampstead_result_text(struct ampstead_result *result, unsigned flags, int columns)
 {
+    if (result != NULL && result->command == COMMAND_FORMAT) {
+        return result->status == AMPSTEAD_WELL ? finished(result, &result->text) : NULL;
+    }
+    if (result != NULL && result->command == COMMAND_CHECK && result->cell != NULL) {
+        restart(&result->text);
+        edit_list_errors(result->cell, &result->text);
+        return finished(result, &result->text);
+    }
     if (!has_report(result)) {
         return NULL;
     }
@@ -400,6 +456,8 @@ const char *ampstead_result_text(struct ampstead_result *result, unsigned flags,
         report_sensitivity(result->found, &style, &result->text);
         break;
     case COMMAND_REVIEW:
+    case COMMAND_CHECK:
+    case COMMAND_FORMAT:
     case COMMAND_COUNT:
         report_page(result->found, &style, &result->text);
         break;
@@ -409,7 +467,7 @@ const char *ampstead_result_text(struct ampstead_result *result, unsigned flags,
 
 const char *ampstead_result_json(struct ampstead_result *result)
 {
-    if (!has_report(result)) {
+    if (!has_report(result) || result->command == COMMAND_CHECK) {
         return NULL;
     }
     restart(&result->json);
@@ -431,6 +489,38 @@ const char *ampstead_result_csv(struct ampstead_result *result)
     restart(&result->csv);
     report_csv(result->found, &result->csv);
     return finished(result, &result->csv);
+}
+
+const char *ampstead_result_plot(struct ampstead_result *result)
+{
+    if (!has_report(result) || result->found == NULL) {
+        return NULL;
+    }
+    restart(&result->plot);
+    report_plot(result->found, &result->plot);
+    return result->plot.length == 0 && !result->plot.failed ? NULL
+                                                            : finished(result, &result->plot);
+}
+
+const char *ampstead_result_page(struct ampstead_result *result)
+{
+    if (!has_report(result) || result->command != COMMAND_REVIEW) {
+        return NULL;
+    }
+    const struct report_style style = {.stopped = result->status == AMPSTEAD_STOPPED};
+    restart(&result->page);
+    report_web(result->found, &style, AMPSTEAD_VERSION, &result->page);
+    return finished(result, &result->page);
+}
+
+const char *ampstead_result_file(const struct ampstead_result *result, int index)
+{
+    if (result == NULL || result->cell == NULL || index < 0) {
+        return NULL;
+    }
+    return index == 0                                ? result->cell->path
+           : index - 1 < result->cell->process_count ? result->cell->processes[index - 1].path
+                                                     : NULL;
 }
 
 /* The values of a rounding by its name, or the exact ones. NULL: there is no such rounding. */

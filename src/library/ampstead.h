@@ -51,7 +51,7 @@ enum ampstead_view { AMPSTEAD_VIEW_FULL = 0, AMPSTEAD_VIEW_HAND = 1 };
 struct ampstead_request {
     size_t size;             /* sizeof(struct ampstead_request): set by AMPSTEAD_REQUEST */
     const char *command;     /* "review", "point", "sweep", "explain", "size", "sensitivity",
-                                "spread", "states" or "models"; NULL: review */
+                                "spread", "states", "models", "check" or "format"; NULL: review */
     const char *path;        /* the cell file; "-": standard input. With text: its name. Required */
     const char *text;        /* the cell itself, instead of the file; NULL: read the file */
     size_t text_length;      /* bytes of text */
@@ -74,7 +74,7 @@ struct ampstead_request {
     int certify;         /* for command "point": not 0 proves it unique in a small box */
     long boxes;          /* for command "states": boxes of the proof, then it gives up */
     const char *leakage; /* for command "states": "1 nA", a push below it is at risk; NULL: that */
-    int samples; /* for command "spread": mismatch samples, 0 to AMPSTEAD_SAMPLE_LIMIT */
+    int samples;         /* for command "spread": mismatch samples, 0 to AMPSTEAD_SAMPLE_LIMIT */
     unsigned long long seed; /* the same seed gives the same samples, whatever `jobs` is */
     int jobs;                /* threads, for "spread" and `everywhere`; 0: one a processor */
 };
@@ -114,8 +114,9 @@ enum {
 };
 
 /*
- * Each of the next four makes a text, kept until the same function is called again for this result
- * or the result is freed. A NULL result gives "out of memory" as messages and NULL elsewhere.
+ * Each of the next functions makes a text, kept until the same function is called again for this
+ * result or the result is freed. A NULL result gives "out of memory" as messages and NULL
+ * elsewhere.
  */
 
 /* What is wrong with the input, one or many messages with line ends; "" when nothing is. Never
@@ -123,7 +124,8 @@ enum {
 AMPSTEAD_API const char *ampstead_result_messages(struct ampstead_result *result, unsigned flags);
 
 /*
- * The report of the command for people; `columns` is the widest line, 72 to 100 (0: 100). NULL
+ * The report of the command for people (for "check" one line an error, "" when there is none; for
+ * "format" the text in the house layout); `columns` is the widest line, 72 to 100 (0: 100). NULL
  * when there is no result (AMPSTEAD_INPUT) or memory is short.
  */
 AMPSTEAD_API const char *ampstead_result_text(struct ampstead_result *result, unsigned flags,
@@ -135,6 +137,16 @@ AMPSTEAD_API const char *ampstead_result_json(struct ampstead_result *result);
 /* Curves (review), sweeps (sweep) or samples (spread) as CSV. NULL as above, and for the other
  * commands. */
 AMPSTEAD_API const char *ampstead_result_csv(struct ampstead_result *result);
+
+/* The curves of review or sweep as one SVG document, text as text. NULL as above, and when there is
+ * no curve. */
+AMPSTEAD_API const char *ampstead_result_plot(struct ampstead_result *result);
+
+/* The review as one self-contained HTML file. NULL as above, and for the other commands. */
+AMPSTEAD_API const char *ampstead_result_page(struct ampstead_result *result);
+
+/* The files that were read, from 0 on: the cell, then those it names; NULL after the last. */
+AMPSTEAD_API const char *ampstead_result_file(const struct ampstead_result *result, int index);
 
 /*
  * ampstead_result_cell: after "size", the text of the cell with the chosen values in place, its
@@ -216,6 +228,9 @@ AMPSTEAD_API const char *ampstead_calibration_process(struct ampstead_calibratio
 
 /* "1.0.0"; lives as long as the program. */
 AMPSTEAD_API const char *ampstead_version(void);
+
+/* What it was built with: "KLU 1.3.9, gcc 12.2.0, Release"; lives as long as the program. */
+AMPSTEAD_API const char *ampstead_build(void);
 
 #ifdef __cplusplus
 }

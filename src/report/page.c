@@ -13,7 +13,7 @@ static bool is_only_solved(const struct result *result)
     return result->verdict == VERDICT_NO_REQUIREMENTS && strcmp(result->command, "review") != 0;
 }
 
-static const char *verdict_word(const struct layout *layout, const struct result *result)
+const char *page_verdict_word(const struct layout *layout, const struct result *result)
 {
     static const char *const words[] = {
         [VERDICT_MET] = "MET",
@@ -44,8 +44,7 @@ static int count_judged(const struct result *result, enum judgement judgement)
     return count;
 }
 
-/* One sentence for what the verdict rests on. */
-static const char *verdict_reason(struct layout *layout, const struct result *result)
+const char *page_verdict_reason(struct layout *layout, const struct result *result)
 {
     int total = result->requirement_count, met = count_judged(result, JUDGED_MET);
     int open = count_judged(result, JUDGED_NOT);
@@ -83,8 +82,7 @@ static const char *verdict_reason(struct layout *layout, const struct result *re
                          judged - met == 1 ? "is not met" : "are not met", rest);
 }
 
-/* "tail.cell, full view, 27 °C, corner slow, process n180.process" */
-static const char *conditions_text(struct layout *layout, const struct result *result)
+const char *page_conditions(struct layout *layout, const struct result *result)
 {
     const struct circuit *circuit = result->circuit;
     const char *text =
@@ -147,7 +145,7 @@ void page_verdict(struct layout *layout, const struct result *result)
     if (*title == '\0') {
         title = layout_clean(layout, result->circuit->cell->path);
     }
-    const char *word = verdict_word(layout, result);
+    const char *word = page_verdict_word(layout, result);
     int room = LAYOUT_MARGIN - text_width(word);
     struct buffer *out = layout->out;
     buffer_text(out, layout_tone(layout, verdict_tone(layout, result->verdict)));
@@ -159,14 +157,14 @@ void page_verdict(struct layout *layout, const struct result *result)
     buffer_text(out, layout_tone(layout, TONE_PLAIN));
     buffer_text(out, "\n");
     layout->has_lines = true;
-    const char *reason = verdict_reason(layout, result);
+    const char *reason = page_verdict_reason(layout, result);
     if (*reason != '\0') {
         layout_paragraph(layout, TONE_PLAIN, 0, reason);
     }
     if (!layout->style.stopped && result->verdict != VERDICT_UNSOLVED) {
         name_failures(layout, result);
     }
-    layout_paragraph(layout, TONE_QUIET, 0, conditions_text(layout, result));
+    layout_paragraph(layout, TONE_QUIET, 0, page_conditions(layout, result));
 }
 
 void page_unsolved(struct layout *layout, const struct result *result)
@@ -202,12 +200,14 @@ void page_event(struct layout *layout, const struct sweep_event *event, struct d
                                    layout_clean(layout, event->text)));
 }
 
+const char page_sign_off[] =
+    "These figures are a model's. Before they are relied on, sign them off "
+    "with the foundry's or the maker's own models and data.";
+
 void page_closing(struct layout *layout)
 {
     layout_part(layout, "sign-off");
-    layout_paragraph(layout, TONE_QUIET, 0,
-                     "These figures are a model's. Before they are relied on, sign them off with "
-                     "the foundry's or the maker's own models and data.");
+    layout_paragraph(layout, TONE_QUIET, 0, page_sign_off);
 }
 
 void report_page(const struct result *result, const struct report_style *style, struct buffer *out)

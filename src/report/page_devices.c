@@ -8,28 +8,20 @@
 #include "report/table.h"
 
 /* More devices than this and only those with the least headroom are shown. */
-enum { DEVICE_LIMIT = 60, COLUMN_NAME_LIMIT = 2, NAME_LIMIT = 24 };
+enum { DEVICE_LIMIT = 60, NAME_LIMIT = 24 };
 
-/* A column shows the first of its quantities that a device has. */
-struct quantity_column {
-    const char *names[COLUMN_NAME_LIMIT];
-    bool may_drop;
-};
-
-static const struct quantity_column transistor_columns[] = {
+const struct quantity_column transistor_columns[TRANSISTOR_COLUMN_COUNT] = {
     {{"id", "ic"}, false},       {{"vgs", "vbe"}, true},        {{"vds", "vce"}, false},
     {{"headroom", NULL}, false}, {{"inversion", "beta"}, true}, {{"gm", NULL}, true},
     {{"ro", NULL}, true},
 };
-static const struct quantity_column other_columns[] = {
+const struct quantity_column part_columns[PART_COLUMN_COUNT] = {
     {{"i", NULL}, false},
     {{"v", NULL}, false},
     {{"power", NULL}, false},
 };
 
-/* Index of the name in the column that this type has, and its quantity; -1 when it has none. */
-static int column_quantity(const struct quantity_column *column, const struct device_type *type,
-                           int *name)
+int column_quantity(const struct quantity_column *column, const struct device_type *type, int *name)
 {
     for (int k = 0; k < COLUMN_NAME_LIMIT && column->names[k] != NULL; k++) {
         int quantity = quantity_find(type, column->names[k]);
@@ -41,9 +33,8 @@ static int column_quantity(const struct quantity_column *column, const struct de
     return -1;
 }
 
-/* "vgs", "vbe" or "vgs, vbe", by what the shown devices have; "" when none has it. */
-static const char *column_head(struct layout *layout, const struct quantity_column *column,
-                               const struct device_result *const *shown, int count)
+const char *column_head(struct layout *layout, const struct quantity_column *column,
+                        const struct device_result *const *shown, int count)
 {
     bool used[COLUMN_NAME_LIMIT] = {false};
     for (int k = 0; k < count; k++) {
@@ -135,11 +126,9 @@ static void device_group(struct layout *layout, const struct result *result, boo
         }
     }
     if (transistors) {
-        device_table(layout, transistor_columns,
-                     (int)(sizeof transistor_columns / sizeof transistor_columns[0]), shown, kept);
+        device_table(layout, transistor_columns, TRANSISTOR_COLUMN_COUNT, shown, kept);
     } else {
-        device_table(layout, other_columns, (int)(sizeof other_columns / sizeof other_columns[0]),
-                     shown, kept);
+        device_table(layout, part_columns, PART_COLUMN_COUNT, shown, kept);
     }
     if (kept < count) {
         layout_line(layout, TONE_QUIET,

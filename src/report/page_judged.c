@@ -99,6 +99,17 @@ static const char *margin_text(struct layout *layout, const struct requirement_r
                               : layout_format(layout, "too far by %s%s", size, share);
 }
 
+const char *requirement_margin(struct layout *layout, const struct result *result,
+                               const struct requirement_result *row)
+{
+    const char *margin = margin_text(layout, row);
+    const char *remark = remark_text(layout, result, row);
+    if (*remark != '\0') {
+        margin = layout_format(layout, "%s%s%s", margin, *margin != '\0' ? "; " : "", remark);
+    }
+    return margin;
+}
+
 void page_requirements(struct layout *layout, const struct result *result)
 {
     struct table table;
@@ -110,11 +121,6 @@ void page_requirements(struct layout *layout, const struct result *result)
     table_column(&table, (struct table_column){.head = "margin", .wraps = true});
     for (int k = 0; k < result->requirement_count; k++) {
         const struct requirement_result *row = &result->requirements[k];
-        const char *margin = margin_text(layout, row);
-        const char *remark = remark_text(layout, result, row);
-        if (*remark != '\0') {
-            margin = layout_format(layout, "%s%s%s", margin, *margin != '\0' ? "; " : "", remark);
-        }
         table_row(&table, judgement_tone(row->judgement));
         table_cell(&table, 0, judgement_text(row->judgement));
         table_cell(&table, 1, requirement_text(layout, row->requirement));
@@ -122,7 +128,7 @@ void page_requirements(struct layout *layout, const struct result *result)
                    row->judgement == JUDGED_UNKNOWN
                        ? "no value"
                        : show_probe(layout, &row->requirement->probe, row->computed));
-        table_cell(&table, 3, margin);
+        table_cell(&table, 3, requirement_margin(layout, result, row));
     }
     table_write(&table);
     page_repairs(layout, result);

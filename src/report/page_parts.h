@@ -24,6 +24,22 @@ void page_evidence(struct layout *layout, const struct result *result);
 void page_certificate(struct layout *layout, const struct result *result);
 /* The last line of every text report. */
 void page_closing(struct layout *layout);
+extern const char page_sign_off[];
+
+/* Columns of the device tables: each shows the first of its quantities that a device has. */
+enum { COLUMN_NAME_LIMIT = 2, TRANSISTOR_COLUMN_COUNT = 7, PART_COLUMN_COUNT = 3 };
+struct quantity_column {
+    const char *names[COLUMN_NAME_LIMIT];
+    bool may_drop;
+};
+extern const struct quantity_column transistor_columns[TRANSISTOR_COLUMN_COUNT];
+extern const struct quantity_column part_columns[PART_COLUMN_COUNT];
+/* Index of the name in the column that this type has, and its quantity; -1 when it has none. */
+int column_quantity(const struct quantity_column *column, const struct device_type *type,
+                    int *name);
+/* "vgs", "vbe" or "vgs, vbe", by what the shown devices have; "" when none has it. */
+const char *column_head(struct layout *layout, const struct quantity_column *column,
+                        const struct device_result *const *shown, int count);
 
 /* Samples, causes and yield. */
 void page_mismatch(struct layout *layout, const struct result *result);
@@ -31,6 +47,14 @@ void page_mismatch(struct layout *layout, const struct result *result);
 /* Wording shared with the other text reports. */
 void page_unsolved(struct layout *layout, const struct result *result);
 void page_event(struct layout *layout, const struct sweep_event *event, struct dimension unit);
+const char *page_verdict_word(const struct layout *layout, const struct result *result);
+/* One sentence for what the verdict rests on. */
+const char *page_verdict_reason(struct layout *layout, const struct result *result);
+/* "tail.cell, full view, 27 °C, corner slow, n180.process" */
+const char *page_conditions(struct layout *layout, const struct result *result);
+/* What there is to spare, or why it was not judged. */
+const char *requirement_margin(struct layout *layout, const struct result *result,
+                               const struct requirement_result *row);
 /* "85 °C, vdd 2.7 V, corner slow" */
 const char *page_place(struct layout *layout, const struct result *result, const double *at);
 /* "98.50 % of 2000 samples" */

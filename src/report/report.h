@@ -65,4 +65,11 @@ void report_json_models(const struct circuit *circuit, const char *version, stru
  */
 void report_csv(const struct result *result, struct buffer *out);
 
+/* The curves as one SVG document; nothing when the result has none. */
+void report_plot(const struct result *result, struct buffer *out);
+
+/* The review as one self-contained HTML file. */
+void report_web(const struct result *result, const struct report_style *style, const char *version,
+                struct buffer *out);
+
 #endif

@@ -9,6 +9,8 @@ work=$(mktemp -d) || exit 1
 trap 'rm -rf "$work"' EXIT
 failures=0
 unset NO_COLOR
+LSAN_OPTIONS=suppressions=$source/tests/support/leaks.txt:print_suppressions=0
+export LSAN_OPTIONS
 
 fail() {
     echo "FAILED: $*"
@@ -36,11 +38,11 @@ err_empty() { [ ! -s "$work/err" ] || fail "standard error must be empty"; }
 run 0 help && out_has "--temperature T, -t" && err_empty
 run 0 --help && out_has "Verbs:"
 run 0 -h && out_has "Verbs:"
-for verb in review point sweep explain size sensitivity spread models help; do
-    run 0 help $verb && out_has "ampstead $verb" && out_has "Exit status: 0 all well"
-    run 0 $verb --help && out_has "Exit status: 0 all well"
+for verb in review point sweep explain size sensitivity spread models check format help; do
+    run 0 help $verb && out_has "ampstead $verb" && out_has "all well"
+    run 0 $verb --help && out_has "all well"
 done
-run 0 --version && out_has "ampstead 1."
+run 0 --version && out_has "ampstead 1." && out_has "KLU "
 
 # Usage errors: the bad word first, the near one, nothing on standard output
 run 2 && err_begins "ampstead: a cell is wanted" && out_empty
@@ -107,6 +109,50 @@ run 0 "$cell" --csv - && out_has "output,v,current"
 "$program" "$cell" --json >"$work/one" 2>&1
 "$program" "$cell" --json >"$work/two" 2>&1
 cmp -s "$work/one" "$work/two" || fail "two runs differ"
+
+# Pictures: the ending says how; the same cell gives the same bytes; the page
+run 0 "$cell" --plot "$work/p.svg" && head -c 4 "$work/p.svg" | grep -q '<svg' || fail "--plot .svg"
+if "$program" "$cell" --plot "$work/p.png" >"$work/out" 2>"$work/err"; then
+    head -c 4 "$work/p.png" | grep -q 'PNG' || fail "--plot .png"
+    run 0 "$cell" --plot "$work/p.PDF" && head -c 5 "$work/p.PDF" | grep -q '%PDF-' || fail "--plot .pdf"
+    run 0 "$cell" --plot "$work/q.pdf" && cmp -s "$work/p.PDF" "$work/q.pdf" || fail "two PDFs differ"
+else
+    err_has "cannot be drawn: this build has no librsvg"
+fi
+run 2 "$cell" --plot "$work/p.gif" && err_has "must end with .svg, .pdf or .png" && out_empty
+[ ! -e "$work/p.gif" ] || fail "--plot .gif wrote"
+run 0 sweep "$cell" --sweep "temperature from 0 C to 60 C show M1.vgs" --plot "$work/s.svg" &&
+    grep -q 'M1.vgs against temperature' "$work/s.svg" || fail "--plot of a sweep"
+run 0 "$cell" --page "$work/p.html" && grep -q '</html>' "$work/p.html" || fail "--page"
+run 2 point "$cell" --page "$work/p.html" && err_has "does not go with"
+
+# check: errors only, one a line in the form editors read, all of them, with true paths
+run 0 check "$cell" && out_empty && err_empty
+run 0 check "$source/models/n180.process" && out_empty && err_empty
+run 2 check "$work/wrong.cell" && err_empty
+grep -qx "$work/wrong.cell:2:23: error: .*" "$work/out" || fail "check: form of an error"
+cp "$source/models/n180.process" "$work/bad.process"
+echo 'model broken what' >>"$work/bad.process"
+echo 'end' >>"$work/bad.process"
+printf 'process "bad.process"\n' >"$work/uses.cell"
+run 2 check "$work/uses.cell" && err_empty
+grep -q "^$work/bad.process:[0-9]*:[0-9]*: error: " "$work/out" || fail "check: path of a process file"
+run 2 check "$work/none.cell" && grep -q ":1:1: error: " "$work/out" || fail "check: a missing file"
+
+# format: in place or through; the answers stay; twice is once; a wrong file is left alone
+cp "$source/netlists/bias_tree.cell" "$work/tree.cell"
+"$program" review "$work/tree.cell" --json 2>&1 | grep -v '"line":' >"$work/one"
+sed 's/^rail  */rail\t/; s/  */ /g' "$work/tree.cell" >"$work/ragged" && cp "$work/ragged" "$work/tree.cell"
+run 0 format "$work/tree.cell" && out_empty && err_empty
+cmp -s "$work/ragged" "$work/tree.cell" && fail "format changed nothing"
+"$program" review "$work/tree.cell" --json 2>&1 | grep -v '"line":' >"$work/two"
+cmp -s "$work/one" "$work/two" || fail "format changed the answers"
+cp "$work/tree.cell" "$work/first.cell"
+run 0 format "$work/tree.cell" && cmp -s "$work/first.cell" "$work/tree.cell" || fail "format twice"
+"$program" format - <"$work/ragged" >"$work/out" && cmp -s "$work/out" "$work/tree.cell" || fail "format -"
+printf 'rail vcc 3 V\nresistor R1 vcc -> \n' >"$work/torn.cell" && cp "$work/torn.cell" "$work/kept.cell"
+run 2 format "$work/torn.cell" && err_begins "$work/torn.cell:2:" && cmp -s "$work/torn.cell" "$work/kept.cell" ||
+    fail "format of a wrong file"
 
 # Colour: only on demand here, where standard output is no terminal; NO_COLOR holds for auto
 escape=$(printf '\033')

@@ -8,7 +8,7 @@
 #   <!-- run: COMMAND -->  the block is what COMMAND prints, standard error included
 #   <!-- run 2: COMMAND -->  the same, and the exit status is 2 (else 0)
 #
-# Commands run in an empty folder that has netlists/ and models/, with the programs in the path.
+# Commands run in an empty folder that has netlists/, models/ and docs/, with the programs in the path.
 # --write puts the true output into the pages. The evidence line of a report and the solver's part of
 # the data, whose last digits are rounding errors of the machine, are not compared.
 set -u
@@ -29,7 +29,7 @@ mkdir "$work/bin" "$work/place"
 for program in $(echo "$programs" | tr : ' '); do
     ln -s "$program" "$work/bin/"
 done
-ln -s "$source/netlists" "$source/models" "$work/place/"
+ln -s "$source/netlists" "$source/models" "$source/docs" "$work/place/"
 PATH=$work/bin:$PATH
 export PATH LC_ALL=C.UTF-8 NO_COLOR=1
 

@@ -284,10 +284,50 @@ static void models(void **state)
     ampstead_result_free(result);
 }
 
+/* Pictures and page of a review; a format and a check of a text given in memory. */
+static void shows(void **state)
+{
+    (void)state;
+    static const char cell[] = "rail vdd 2 V\nresistor R1 vdd->mid 1k\nresistor R2 mid->gnd 1k\n";
+    struct ampstead_request request = AMPSTEAD_REQUEST;
+    struct ampstead_result *result = NULL;
+    request.path = SOURCE_DIR "/netlists/widlar_mos.cell";
+    assert_int_equal(ampstead_run(&request, &result), AMPSTEAD_WELL);
+    assert_non_null(strstr(ampstead_result_plot(result), "</svg>"));
+    assert_non_null(strstr(ampstead_result_page(result), "</html>"));
+    assert_string_equal(ampstead_result_file(result, 0), request.path);
+    assert_non_null(strstr(ampstead_result_file(result, 1), "n180.process"));
+    assert_null(ampstead_result_file(result, 2));
+    assert_null(ampstead_result_file(result, -1));
+    ampstead_result_free(result);
+    request.path = "text.cell";
+    request.text = cell;
+    request.text_length = sizeof cell - 1;
+    assert_int_equal(ampstead_run(&request, &result), AMPSTEAD_WELL);
+    assert_null(ampstead_result_plot(result)); /* no output, no curve */
+    ampstead_result_free(result);
+    request.command = "format";
+    assert_int_equal(ampstead_run(&request, &result), AMPSTEAD_WELL);
+    assert_string_equal(ampstead_result_text(result, 0, 0), "rail      vdd  2 V\n"
+                                                            "resistor  R1   vdd -> mid  1k\n"
+                                                            "resistor  R2   mid -> gnd  1k\n");
+    assert_null(ampstead_result_json(result));
+    ampstead_result_free(result);
+    request.command = "check";
+    request.text_length -= 4; /* without the last value */
+    assert_int_equal(ampstead_run(&request, &result), AMPSTEAD_INPUT);
+    const char *errors = ampstead_result_text(result, 0, 0);
+    assert_int_equal(strncmp(errors, "text.cell:3:", 12), 0);
+    assert_non_null(strstr(errors, ": error: "));
+    assert_null(ampstead_result_page(result));
+    ampstead_result_free(result);
+}
+
 static void version(void **state)
 {
     (void)state;
     assert_string_equal(ampstead_version(), AMPSTEAD_VERSION);
+    assert_int_equal(strncmp(ampstead_build(), "KLU ", 4), 0);
 }
 
 int main(void)
@@ -299,6 +339,7 @@ int main(void)
         cmocka_unit_test(cell_error),     cmocka_unit_test(sweep_csv),
         cmocka_unit_test(stopped),        cmocka_unit_test(same_bytes),
         cmocka_unit_test(models),         cmocka_unit_test(version),
+        cmocka_unit_test(shows),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

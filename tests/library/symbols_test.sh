@@ -2,7 +2,8 @@
 # symbols_test.sh LIBRARY NM: every defined dynamic symbol must be one of the public functions.
 set -eu
 found=$("$2" -D --defined-only "$1" | awk '{ print $NF }' | grep -v '^_' | sort)
-wanted="ampstead_calibrate
+wanted="ampstead_build
+ampstead_calibrate
 ampstead_calibration_free
 ampstead_calibration_json
 ampstead_calibration_messages
@@ -10,9 +11,12 @@ ampstead_calibration_process
 ampstead_calibration_text
 ampstead_result_cell
 ampstead_result_csv
+ampstead_result_file
 ampstead_result_free
 ampstead_result_json
 ampstead_result_messages
+ampstead_result_page
+ampstead_result_plot
 ampstead_result_status
 ampstead_result_text
 ampstead_result_value
