@@ -377,7 +377,7 @@ enum status operating_point_polish(struct operating_point *p)
     p->solver.worst_residual = worst;
     p->solver.worst_name = equation < 0 ? "" : trouble_name(p, equation);
     p->solver.limited_by = NULL;
-    if (p->solver.worst_name == NULL) {
+    if (arena_failed(s->arena)) { /* a name was lost */
         return STATUS_MEMORY;
     }
     if (!p->solver.converged) {

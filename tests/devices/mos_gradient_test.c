@@ -16,12 +16,24 @@ static struct subject measured_set(const char *word, double width, double length
         const char *name;
         double value;
     } values[] = {
-        {"threshold", 0.5087},        {"kprime", 524.6e-6},     {"body_effect", 0.4028},
-        {"phi", 0.7},                 {"slope_factor", 1.32},   {"mobility_bulk", 0.9045},
-        {"mobility_gate", 0.273},     {"early", 3.807},         {"mobility_gate_short", 0.1482},
-        {"critical_field", 6.44e6},   {"dibl", 0.004336},       {"saturation_knee", 0.8811},
-        {"early_exponent", 0.5},      {"early_onset", 0.1},     {"dibl_short", 0.02857},
-        {"dibl_body", 0.5292},        {"halo_body", 0.1399},    {"width_offset", 61.02e-9},
+        {"threshold", 0.5087},
+        {"kprime", 524.6e-6},
+        {"body_effect", 0.4028},
+        {"phi", 0.7},
+        {"slope_factor", 1.32},
+        {"mobility_bulk", 0.9045},
+        {"mobility_gate", 0.273},
+        {"early", 3.807},
+        {"mobility_gate_short", 0.1482},
+        {"critical_field", 6.44e6},
+        {"dibl", 0.004336},
+        {"saturation_knee", 0.8811},
+        {"early_exponent", 0.5},
+        {"early_onset", 0.1},
+        {"dibl_short", 0.02857},
+        {"dibl_body", 0.5292},
+        {"halo_body", 0.1399},
+        {"width_offset", 61.02e-9},
         {"halo_threshold", 86.08e-3},
     };
     struct subject it = subject_of(device_find(word));
