@@ -13,54 +13,12 @@
 #include "analyses/remarks.h"
 #include "analyses/states.h"
 #include "analyses/remedies.h"
+#include "analyses/result_create.h"
 #include "analyses/sweep.h"
 
 static unsigned effects_of(enum view view)
 {
     return view == VIEW_HAND ? EFFECTS_HAND : EFFECTS_FULL;
-}
-
-static struct result *new_result(const struct circuit *circuit,
-                                 const struct analysis_options *options, const char *command)
-{
-    struct arena *arena = arena_create();
-    struct result *result = arena == NULL ? NULL : arena_new(arena, struct result);
-    if (result == NULL) {
-        arena_destroy(arena);
-        return NULL;
-    }
-    result->arena = arena;
-    result->circuit = circuit;
-    result->command = command;
-    result->view = options->view;
-    result->kelvin = circuit->kelvin;
-    result->verdict = VERDICT_UNSOLVED;
-    result->cautions.arena = arena;
-    return result;
-}
-
-void result_free(struct result *result)
-{
-    if (result != NULL) {
-        arena_destroy(result->arena);
-    }
-}
-
-/* Texts of the solver live in the system's arena: the result keeps its own. */
-static const char *keep(struct arena *arena, const char *text)
-{
-    return text == NULL ? NULL : arena_copy(arena, text, strlen(text));
-}
-
-static void keep_solver(struct result *result, const struct solver_result *solver)
-{
-    struct solver_result *s = &result->point.solver;
-    *s = *solver;
-    s->method = keep(result->arena, solver->method);
-    s->worst_name = keep(result->arena, solver->worst_name);
-    s->limited_by = keep(result->arena, solver->limited_by);
-    s->trouble = keep(result->arena, solver->trouble);
-    s->advice = keep(result->arena, solver->advice);
 }
 
 struct session {
@@ -90,7 +48,7 @@ static enum status solve_point(struct circuit *circuit, const struct analysis_op
         return STATUS_MEMORY;
     }
     const enum status status = operating_point_find(&session->point);
-    keep_solver(result, &session->point.solver);
+    result_keep_solver(result, &session->point.solver);
     if (status == STATUS_OK && !measure_point(&session->point, result->arena, &result->point)) {
         return STATUS_MEMORY;
     }
@@ -140,7 +98,7 @@ enum status analysis_point(struct circuit *circuit, const struct analysis_option
                            struct result **result)
 {
     struct session session = {0};
-    *result = new_result(circuit, options, "point");
+    *result = result_create(circuit, options->view, "point");
     if (*result == NULL) {
         return STATUS_MEMORY;
     }
@@ -168,7 +126,7 @@ enum status analysis_review(struct circuit *circuit, const struct analysis_optio
                             struct result **result)
 {
     struct session session = {0};
-    *result = new_result(circuit, options, "review");
+    *result = result_create(circuit, options->view, "review");
     if (*result == NULL) {
         return STATUS_MEMORY;
     }
@@ -194,7 +152,7 @@ enum status analysis_sweep(struct circuit *circuit, const struct analysis_option
                            struct result **result)
 {
     struct session session = {0};
-    *result = new_result(circuit, options, "sweep");
+    *result = result_create(circuit, options->view, "sweep");
     if (*result == NULL) {
         return STATUS_MEMORY;
     }

@@ -9,6 +9,7 @@
 
 #include "analyses/measure.h"
 #include "analyses/remarks.h"
+#include "analyses/result_create.h"
 #include "analyses/states_internal.h"
 
 enum { CURVE_POINTS = 160, GLANCE_POINTS = 24 };
@@ -383,42 +384,6 @@ static enum status work_all(struct operating_point *point, bool has_point,
 /* --- commands -----------------------------------------------------------------------------------
  */
 
-static const char *keep(struct arena *arena, const char *text)
-{
-    return text == NULL ? NULL : arena_copy(arena, text, strlen(text));
-}
-
-/* Texts of the solver live in the system's arena: the result keeps its own. */
-static void keep_solver(struct result *result, const struct solver_result *solver)
-{
-    struct solver_result *s = &result->point.solver;
-    *s = *solver;
-    s->method = keep(result->arena, solver->method);
-    s->worst_name = keep(result->arena, solver->worst_name);
-    s->limited_by = keep(result->arena, solver->limited_by);
-    s->trouble = keep(result->arena, solver->trouble);
-    s->advice = keep(result->arena, solver->advice);
-}
-
-static struct result *new_result(const struct circuit *circuit,
-                                 const struct analysis_options *options)
-{
-    struct arena *arena = arena_create();
-    struct result *result = arena == NULL ? NULL : arena_new(arena, struct result);
-    if (result == NULL) {
-        arena_destroy(arena);
-        return NULL;
-    }
-    result->arena = arena;
-    result->circuit = circuit;
-    result->command = "states";
-    result->view = options->view;
-    result->kelvin = circuit->kelvin;
-    result->verdict = VERDICT_UNSOLVED;
-    result->cautions.arena = arena;
-    return result;
-}
-
 /* The search found what `point` did not: its wanted state becomes the point of the result. */
 static enum status adopt_point(struct operating_point *point, const struct states_result *found)
 {
@@ -432,7 +397,7 @@ static enum status adopt_point(struct operating_point *point, const struct state
 
 static bool put_point(struct operating_point *point, struct result *result)
 {
-    keep_solver(result, &point->solver);
+    result_keep_solver(result, &point->solver);
     result->verdict = VERDICT_NO_REQUIREMENTS;
     return measure_point(point, result->arena, &result->point) && remarks_add(point, result);
 }
@@ -445,7 +410,7 @@ static enum status find_all(struct operating_point *point, const struct analysis
     if (status != STATUS_OK && status != STATUS_UNSOLVED) {
         return status;
     }
-    keep_solver(result, &point->solver);
+    result_keep_solver(result, &point->solver);
     if (has_point && !put_point(point, result)) {
         return STATUS_MEMORY;
     }
@@ -466,7 +431,7 @@ enum status analysis_states(struct circuit *circuit, const struct analysis_optio
     struct operating_point point;
     const unsigned effects = options->view == VIEW_HAND ? EFFECTS_HAND : EFFECTS_FULL;
     struct system *system = system_create(circuit, circuit->kelvin, effects);
-    *result = new_result(circuit, options);
+    *result = result_create(circuit, options->view, "states");
     enum status status = STATUS_MEMORY;
     if (*result != NULL && system != NULL && operating_point_create(&point, system, options)) {
         status = find_all(&point, options, *result);

@@ -5,31 +5,11 @@ set -u
 program=$1
 source=$2
 cell=$source/netlists/mirror.cell
-work=$(mktemp -d) || exit 1
-trap 'rm -rf "$work"' EXIT
-failures=0
+. "$(dirname "$0")/helpers.sh"
 unset NO_COLOR
 LSAN_OPTIONS=suppressions=$source/tests/support/leaks.txt:print_suppressions=0
 export LSAN_OPTIONS
 
-fail() {
-    echo "FAILED: $*"
-    sed 's/^/    out: /' "$work/out" | head -5
-    sed 's/^/    err: /' "$work/err" | head -5
-    failures=$((failures + 1))
-}
-
-# run STATUS ARGUMENTS...: standard output and error go to $work/out and $work/err
-run() {
-    wanted=$1
-    shift
-    "$program" "$@" >"$work/out" 2>"$work/err"
-    status=$?
-    [ $status -eq "$wanted" ] || fail "status $status instead of $wanted: ampstead $*"
-}
-
-out_has() { grep -qF -e "$1" "$work/out" || fail "standard output lacks: $1"; }
-err_has() { grep -qF -e "$1" "$work/err" || fail "standard error lacks: $1"; }
 err_begins() { case $(head -1 "$work/err") in "$1"*) ;; *) fail "standard error must begin: $1" ;; esac; }
 out_empty() { [ ! -s "$work/out" ] || fail "standard output must be empty"; }
 err_empty() { [ ! -s "$work/err" ] || fail "standard error must be empty"; }

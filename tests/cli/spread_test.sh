@@ -3,30 +3,8 @@
 set -u
 program=$1
 source=$2
-work=$(mktemp -d) || exit 1
-trap 'rm -rf "$work"' EXIT
-failures=0
+. "$(dirname "$0")/helpers.sh"
 export LC_ALL=C.UTF-8
-
-fail() {
-    echo "FAILED: $*"
-    sed 's/^/    out: /' "$work/out" | head -5
-    sed 's/^/    err: /' "$work/err" | head -5
-    failures=$((failures + 1))
-}
-
-# run STATUS ARGUMENTS...
-run() {
-    wanted=$1
-    shift
-    "$program" "$@" >"$work/out" 2>"$work/err"
-    status=$?
-    [ $status -eq "$wanted" ] || fail "status $status instead of $wanted: ampstead $*"
-}
-
-out_has() { grep -qF -e "$1" "$work/out" || fail "standard output lacks: $1"; }
-err_has() { grep -qF -e "$1" "$work/err" || fail "standard error lacks: $1"; }
-out_lacks() { ! grep -qF -e "$1" "$work/out" || fail "standard output must not have: $1"; }
 
 # Half of a rail of 2.4 V at most stays below 1.25 V; half of 2.6 V does not.
 cat >"$work/half.cell" <<'END'
