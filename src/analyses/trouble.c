@@ -121,5 +121,5 @@ bool trouble_tell_limit(struct operating_point *p)
     p->solver.limited_by = arena_format(
         s->arena, "rounding at %s: the equations have a condition number of about %.1e",
         p->solver.worst_name, condition);
-    return p->solver.limited_by != NULL && !isnan(condition);
+    return p->solver.limited_by != NULL;
 }

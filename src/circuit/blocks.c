@@ -64,9 +64,7 @@ static bool block_values(struct frame *frame, const struct frame *outer,
         const struct assignment *given = find_assignment(use, standard->key.text);
         const struct expression *e = given != NULL ? given->value : standard->value;
         struct quantity value = {.value = 1, .bare = true};
-        if (e != NULL) {
-            expression_value(e, &scope, b->diagnostics, &value);
-        }
+        expression_value(e, &scope, b->diagnostics, &value);
         if (!keep_value(frame, standard->key.text, value, standard->key.span)) {
             return false;
         }
@@ -74,7 +72,7 @@ static bool block_values(struct frame *frame, const struct frame *outer,
     struct expression_scope inner = frame_scope(frame);
     for (int k = 0; k < block->body_count; k++) {
         const struct statement *let = block->body[k];
-        if (let->kind == STATEMENT_LET && let->value != NULL && let->name.text != NULL) {
+        if (let->kind == STATEMENT_LET) {
             struct quantity value = {.value = 1, .bare = true};
             expression_value(let->value, &inner, b->diagnostics, &value);
             if (!keep_value(frame, let->name.text, value, let->name.span)) {
@@ -97,10 +95,10 @@ static bool block_pins(const struct frame *outer, const struct statement *block,
                             arena_format(b->arena, "add %s=NODE", block->words[k].text),
                             "%s leaves out pin '%s' of block %s", use->name.text,
                             block->words[k].text, block->name.text);
-        } else if (a->value != NULL && a->value->kind != EXPRESSION_NAME) {
+        } else if (a->value->kind != EXPRESSION_NAME) {
             diagnostics_add(b->diagnostics, a->value->span, build_ground_hint(a->value),
                             "pin %s wants the name of a node", a->key.text);
-        } else if (a->value != NULL) {
+        } else {
             nodes[k] = build_node(outer, a->value->name, a->value->span);
             if (nodes[k] < 0) {
                 return false;
@@ -144,9 +142,6 @@ static const struct statement *find_block(struct builder *b, const struct word *
 static bool add_use(const struct frame *outer, const struct statement *use)
 {
     struct builder *b = outer->builder;
-    if (use->name.text == NULL || use->type.text == NULL) {
-        return true;
-    }
     const struct statement *block = find_block(b, &use->type);
     if (block == NULL) {
         return true;
@@ -195,7 +190,7 @@ bool build_blocks(struct builder *b)
 {
     for (int k = 0; k < b->cell->tree.count; k++) {
         const struct statement *statement = b->cell->tree.statements[k];
-        if (statement->kind != STATEMENT_BLOCK || statement->name.text == NULL) {
+        if (statement->kind != STATEMENT_BLOCK) {
             continue;
         }
         if (names_find(b->circuit->names, NAME_BLOCK, statement->name.text) >= 0) {

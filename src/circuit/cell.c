@@ -121,7 +121,7 @@ static enum status read_all(struct cell *cell, const char *text, size_t length)
                                      &cell->diagnostics, &cell->tree);
     for (int k = 0; worst != STATUS_MEMORY && k < cell->tree.count; k++) {
         const struct statement *statement = cell->tree.statements[k];
-        if (statement->kind == STATEMENT_PROCESS && statement->text != NULL) {
+        if (statement->kind == STATEMENT_PROCESS) {
             status = read_process(cell, statement);
             worst = status == STATUS_OK ? worst : status;
         }

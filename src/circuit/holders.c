@@ -12,9 +12,7 @@ static bool add_rail(const struct frame *top, const struct statement *statement)
     const char *name = statement->name.text;
     struct expression_scope scope = frame_scope(top);
     double volts = 1;
-    if (statement->value != NULL) {
-        expression_wanted(statement->value, &scope, DIMENSION_VOLTAGE, b->diagnostics, &volts);
-    }
+    expression_wanted(statement->value, &scope, DIMENSION_VOLTAGE, b->diagnostics, &volts);
     if (strcmp(name, "gnd") == 0 || names_find(c->names, NAME_RAIL, name) >= 0) {
         diagnostics_add(b->diagnostics, statement->name.span, NULL,
                         strcmp(name, "gnd") == 0 ? "gnd is 0 V already and cannot be a rail"
@@ -45,9 +43,6 @@ static bool add_output(const struct frame *top, const struct statement *statemen
     struct expression_scope scope = frame_scope(top);
     struct output out = {
         .name = statement->name.text, .within = 0.01, .where = statement->name.span};
-    if (statement->at == NULL || statement->from == NULL || statement->to == NULL) {
-        return true;
-    }
     /* all three, so that each error is told */
     bool good =
         expression_wanted(statement->at, &scope, DIMENSION_VOLTAGE, b->diagnostics, &out.at);
@@ -102,7 +97,7 @@ static bool add_all(struct builder *b, enum statement_kind kind,
     const struct tree *tree = &b->cell->tree;
     for (int k = 0; k < tree->count; k++) {
         const struct statement *statement = tree->statements[k];
-        if (statement->kind == kind && statement->name.text != NULL && !add(&top, statement)) {
+        if (statement->kind == kind && !add(&top, statement)) {
             return false;
         }
     }

@@ -308,11 +308,10 @@ static struct kind compile(struct compiler *c, const struct expression *e)
     case EXPRESSION_POWER:
         return compile_power(c, e);
     case EXPRESSION_CALL:
-        return compile_call(c, e);
-    case EXPRESSION_NUMBER:
+    case EXPRESSION_NUMBER: /* has no voltage: done above */
         break;
     }
-    return compile_constant(c, e);
+    return compile_call(c, e);
 }
 
 const struct law_program *build_law(const struct frame *frame, const struct expression *expression,

@@ -35,9 +35,6 @@ static bool add_let(struct builder *b, const struct statement *statement)
     list[c->let_count] = (struct let_value){.name = name, .where = statement->name.span};
     entries[c->let_count] =
         (struct let_entry){.expression = statement->value, .written = statement->value};
-    if (statement->value == NULL) {
-        entries[c->let_count].state = LET_WRONG;
-    }
     c->let_count++;
     return true;
 }
@@ -46,8 +43,7 @@ static bool collect(struct builder *b, const struct tree *tree)
 {
     for (int k = 0; k < tree->count; k++) {
         const struct statement *statement = tree->statements[k];
-        if (statement->kind == STATEMENT_LET && statement->name.text != NULL &&
-            !add_let(b, statement)) {
+        if (statement->kind == STATEMENT_LET && !add_let(b, statement)) {
             return false;
         }
     }
@@ -203,7 +199,7 @@ static void find_temperature(struct builder *b, const struct expression_scope *s
     const struct statement *before = NULL;
     for (int k = 0; k < b->cell->tree.count; k++) {
         const struct statement *statement = b->cell->tree.statements[k];
-        if (statement->kind != STATEMENT_TEMPERATURE || statement->value == NULL) {
+        if (statement->kind != STATEMENT_TEMPERATURE) {
             continue;
         }
         if (before != NULL) {

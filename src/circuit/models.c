@@ -72,16 +72,10 @@ static void read_values(struct builder *b, struct model *m, const struct stateme
     const struct device_type *type = m->type;
     for (int k = 0; k < statement->assignment_count; k++) {
         const struct assignment *a = &statement->assignments[k];
-        if (a->value == NULL) {
-            continue;
-        }
         const int p =
             parameter_find(type->model_parameters, type->model_parameter_count, a->key.text);
         if (p < 0) {
             unknown_parameter(b, m, &a->key);
-        } else if (a->operation != '=') {
-            diagnostics_add(b->diagnostics, a->key.span, "write '='",
-                            "a model sets its values; += and *= belong in a corner");
         } else if (m->given[p]) {
             diagnostics_add(b->diagnostics, a->key.span, NULL, "%s is given twice", a->key.text);
         } else {
@@ -174,17 +168,15 @@ static void read_range(struct builder *b, const struct statement *statement,
     double *range = NULL;
     const char *what = statement->name.text;
     if (strcmp(what, "temperature") == 0) {
-        if (statement->from != NULL && statement->to != NULL) {
-            expression_temperature(statement->from, scope, b->diagnostics, &facts->kelvin[0]);
-            expression_temperature(statement->to, scope, b->diagnostics, &facts->kelvin[1]);
-        }
+        expression_temperature(statement->from, scope, b->diagnostics, &facts->kelvin[0]);
+        expression_temperature(statement->to, scope, b->diagnostics, &facts->kelvin[1]);
         return;
     }
     range = strcmp(what, "L") == 0 ? facts->length : strcmp(what, "W") == 0 ? facts->width : NULL;
     if (range == NULL) {
         diagnostics_add(b->diagnostics, statement->name.span, "temperature, L or W",
                         "a valid range of '%s' is not known", what);
-    } else if (statement->from != NULL && statement->to != NULL) {
+    } else {
         expression_wanted(statement->from, scope, DIMENSION_LENGTH, b->diagnostics, &range[0]);
         expression_wanted(statement->to, scope, DIMENSION_LENGTH, b->diagnostics, &range[1]);
     }
@@ -200,9 +192,9 @@ static struct file_facts read_facts(struct builder *b, const struct tree *tree, 
                                .process = process};
     for (int k = 0; k < tree->count; k++) {
         const struct statement *statement = tree->statements[k];
-        if (statement->kind == STATEMENT_MEASURED_AT && statement->value != NULL) {
+        if (statement->kind == STATEMENT_MEASURED_AT) {
             expression_temperature(statement->value, scope, b->diagnostics, &facts.measured_kelvin);
-        } else if (statement->kind == STATEMENT_VALID && statement->name.text != NULL) {
+        } else if (statement->kind == STATEMENT_VALID) {
             read_range(b, statement, scope, &facts);
         }
     }
@@ -219,8 +211,7 @@ static bool models_of(struct builder *b, const struct tree *tree, const char *pr
     }
     for (int k = 0; k < tree->count; k++) {
         const struct statement *statement = tree->statements[k];
-        if (statement->kind == STATEMENT_MODEL && statement->name.text != NULL &&
-            statement->type.text != NULL && !add_model(b, statement, &facts, &scope)) {
+        if (statement->kind == STATEMENT_MODEL && !add_model(b, statement, &facts, &scope)) {
             return false;
         }
     }
@@ -333,7 +324,7 @@ static bool corners_of(struct builder *b, const struct tree *tree, bool apply)
     const char *wanted = b->settings->corner;
     for (int k = 0; k < tree->count; k++) {
         const struct statement *statement = tree->statements[k];
-        if (statement->kind != STATEMENT_CORNER || statement->name.text == NULL) {
+        if (statement->kind != STATEMENT_CORNER) {
             continue;
         }
         if (!note_corner(b, statement)) {
@@ -375,7 +366,7 @@ static bool process_is_missing(const struct cell *cell)
     int named = 0;
     for (int k = 0; k < cell->tree.count; k++) {
         const struct statement *statement = cell->tree.statements[k];
-        named += statement->kind == STATEMENT_PROCESS && statement->text != NULL;
+        named += statement->kind == STATEMENT_PROCESS;
     }
     return named > cell->process_count;
 }

@@ -199,13 +199,7 @@ static bool read_assignments(struct part *part)
         if (p >= 0 && type->parameters[p].when_absent == DEFAULT_HIDDEN) {
             p = -1;
         }
-        if (a->value == NULL) {
-            if (t >= 0) {
-                part->nodes[t] = 0;
-            } else if (p >= 0) {
-                part->wrong[p] = true;
-            }
-        } else if (t >= 0 && (p < 0 || !is_value(part, a->value))) {
+        if (t >= 0 && (p < 0 || !is_value(part, a->value))) {
             if (!set_terminal(part, t, a)) {
                 return false;
             }
@@ -326,8 +320,6 @@ static void default_terminals(struct part *part)
             diagnostics_add(b->diagnostics, part->statement->name.span,
                             arena_format(b->arena, "add %s=NODE (%s)", row->name, row->text),
                             "%s leaves out its terminal %s", part->name, row->name);
-        } else if (row->joined_to != NULL && strcmp(row->joined_to, "gnd") != 0) {
-            part->nodes[t] = part->nodes[find_terminal(type, row->joined_to)];
         } else if (row->joined_to == NULL && type->polarity < 0) {
             const int node = positive_rail(part);
             part->nodes[t] = node < 0 ? 0 : node;
@@ -452,7 +444,7 @@ static bool add_extra(struct part *part, const void **extra, int **inputs, int *
     }
     for (int k = 0; k < statement->assignment_count; k++) {
         const struct assignment *a = &statement->assignments[k];
-        if (strcmp(a->key.text, "i") == 0 && a->value != NULL) {
+        if (strcmp(a->key.text, "i") == 0) {
             const struct law_program *program = build_law(part->frame, a->value, inputs);
             *extra = program;
             *input_count = program == NULL ? 0 : program->input_count;
@@ -530,7 +522,7 @@ bool build_part(const struct frame *frame, const struct statement *statement)
 {
     struct builder *b = frame->builder;
     const struct device_type *type = part_type(b, statement);
-    if (type == NULL || statement->name.text == NULL) {
+    if (type == NULL) {
         return true;
     }
     struct part part = {.frame = frame, .statement = statement, .type = type};

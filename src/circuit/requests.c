@@ -18,9 +18,6 @@ static bool read_as(struct builder *b, const struct expression *e, struct dimens
 {
     const struct frame top = {.builder = b, .prefix = ""};
     struct expression_scope scope = frame_scope(&top);
-    if (e == NULL) {
-        return false;
-    }
     if (is_temperature) {
         return expression_temperature(e, &scope, b->diagnostics, value);
     }
@@ -77,7 +74,7 @@ static bool read_tolerance(struct builder *b, const struct expression *e, struct
     const struct frame top = {.builder = b, .prefix = ""};
     struct expression_scope scope = frame_scope(&top);
     struct quantity found;
-    if (e == NULL || !expression_value(e, &scope, b->diagnostics, &found)) {
+    if (!expression_value(e, &scope, b->diagnostics, &found)) {
         return false;
     }
     if (found.bare && !is_plain(r->probe.dimension)) {
@@ -145,7 +142,7 @@ static bool add_requirement(struct builder *b, const struct statement *statement
 static bool read_knob(struct builder *b, const struct knob *knob, const struct expression *e,
                       double *value)
 {
-    if (e != NULL && knob->kind == KNOB_LET && b->circuit->lets[knob->parameter].value.bare) {
+    if (knob->kind == KNOB_LET && b->circuit->lets[knob->parameter].value.bare) {
         const struct frame top = {.builder = b, .prefix = ""};
         struct expression_scope scope = frame_scope(&top);
         struct quantity found;
@@ -175,12 +172,10 @@ static bool read_range(struct builder *b, const struct knob *knob,
         return false;
     }
     if (*from == *to) {
-        /* NOLINTNEXTLINE(clang-analyzer-core.NullDereference): read_knob refuses NULL */
         diagnostics_add(b->diagnostics, statement->to->span, NULL,
                         "from and to are the same value");
         return false;
     }
-    /* NOLINTNEXTLINE(clang-analyzer-core.NullDereference): the same */
     return in_range(b, knob, *from, statement->from->span) &&
            in_range(b, knob, *to, statement->to->span);
 }
@@ -422,18 +417,17 @@ static bool add_request(struct builder *b, const struct statement *statement)
         b->circuit->title = statement->text;
         return true;
     case STATEMENT_HAND:
-        return statement->quantity.text == NULL || add_hand(b, statement);
+        return add_hand(b, statement);
     case STATEMENT_REQUIRE:
-        return statement->quantity.text == NULL || add_requirement(b, statement);
+        return add_requirement(b, statement);
     case STATEMENT_SWEEP:
-        return statement->name.text == NULL || add_sweep(b, statement);
+        return add_sweep(b, statement);
     case STATEMENT_VARY:
-        return statement->name.text == NULL || add_condition(b, statement);
+        return add_condition(b, statement);
     case STATEMENT_CHOOSE:
-        return statement->name.text == NULL || statement->quantity.text == NULL ||
-               add_choice(b, statement);
+        return add_choice(b, statement);
     case STATEMENT_QUIET:
-        return statement->quantity.text == NULL || add_quiet(b, statement);
+        return add_quiet(b, statement);
     default:
         return true;
     }

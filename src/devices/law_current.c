@@ -114,10 +114,8 @@ static void apply_two(enum law_operation operation, struct element *u, const str
     case LAW_MIN:
         combine(u, a <= b ? a : b, a <= b ? 1 : 0, u, a <= b ? 0 : 1, w, count);
         break;
-    case LAW_MAX:
+    default: /* LAW_MAX */
         combine(u, a >= b ? a : b, a >= b ? 1 : 0, u, a >= b ? 0 : 1, w, count);
-        break;
-    default:
         break;
     }
 }
@@ -147,10 +145,8 @@ static void apply_one(enum law_operation operation, struct element *u, int count
         value = limited_exp(a, &slope);
         combine(u, value, slope, u, 0, u, count);
         break;
-    case LAW_ABS:
+    default: /* LAW_ABS */
         combine(u, fabs(a), a < 0 ? -1 : 1, u, 0, u, count);
-        break;
-    default:
         break;
     }
 }

@@ -132,12 +132,6 @@ static bool past_limits(struct parser *parser, int errors_before)
                         LANGUAGE_ERROR_LIMIT);
         return true;
     }
-    if (parser->statement_count >= LANGUAGE_STATEMENT_LIMIT) {
-        diagnostics_add(parser->diagnostics, where, NULL,
-                        "the file has more than %d statements, the limit",
-                        LANGUAGE_STATEMENT_LIMIT);
-        return true;
-    }
     return false;
 }
 
@@ -153,7 +147,6 @@ static struct statement *create_statement(struct parser *parser, enum statement_
     statement->kind = kind;
     statement->first = (struct word){first->text, parser_span(parser, first)};
     statement->span = (struct span){parser->lexer.file, first->begin, last->end};
-    parser->statement_count++;
     return statement;
 }
 
@@ -245,7 +238,6 @@ static void parse_values(struct parser *parser, struct statement *statement, int
         }
         (void)statement_parse_value_line(parser, statement);
         (void)flush_error(parser);
-        parser->statement_count++;
     }
 }
 

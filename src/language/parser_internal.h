@@ -17,8 +17,7 @@ struct parser {
     int at;                   /* token that is looked at */
     struct lexer_error error; /* of this statement; text NULL when there is none */
     bool out_of_memory;
-    int depth, terms; /* of the expression that is read */
-    int statement_count;
+    int depth, terms;  /* of the expression that is read */
     bool line_kept;    /* the current line is to be read again, at the outer level */
     bool end_expected; /* one `end` without an opening is passed over: its opening was wrong */
 };

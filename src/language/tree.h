@@ -21,7 +21,6 @@ enum {
     LANGUAGE_DEPTH_LIMIT = 64,               /* nested parentheses, calls, signs and powers */
     LANGUAGE_TERM_LIMIT = 10000,             /* operators of one expression */
     LANGUAGE_TOKEN_LIMIT = 100000,           /* words, numbers and signs of one statement */
-    LANGUAGE_STATEMENT_LIMIT = 2000000,      /* statements of one file */
     LANGUAGE_ERROR_LIMIT = 1000              /* errors after which the rest of a file is not read */
 };
 
@@ -56,7 +55,7 @@ struct word {
 /* "key = value" of a part, a block use or a model line. */
 struct assignment {
     struct word key;
-    const struct expression *value; /* NULL after a reported error */
+    const struct expression *value; /* never NULL */
     char operation;                 /* '=' ; in corners 'a' for += and 'm' for *= */
 };
 
@@ -112,6 +111,7 @@ struct statement {
     int body_count;
 };
 
+/* Whole statements only: what was wrong is reported and left out. */
 struct tree {
     struct statement **statements;
     int count;

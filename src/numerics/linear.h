@@ -48,7 +48,7 @@ void linear_solve_transposed(struct linear_solver *solver, double *b);
 int linear_singular_column(const struct linear_solver *solver);
 
 /* Estimate of the condition number in the 1-norm of the last factored values (Hager and Higham);
- * INFINITY when it is not known, NAN when memory is short. */
+ * INFINITY when it is not known. */
 double linear_condition(struct linear_solver *solver, const double *values);
 
 /* Sign of the determinant of the last factored matrix: -1, 1, or 0. */

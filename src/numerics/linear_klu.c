@@ -170,9 +170,7 @@ double linear_condition(struct linear_solver *solver, const double *values)
     if (solver->numeric == NULL ||
         !klu_condest(solver->pattern->start, readable(values), solver->symbolic, solver->numeric,
                      &solver->common)) {
-        return solver->numeric != NULL && solver->common.status == KLU_OUT_OF_MEMORY
-                   ? (double)NAN
-                   : (double)INFINITY;
+        return INFINITY;
     }
     return solver->common.condest;
 }

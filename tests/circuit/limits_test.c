@@ -145,6 +145,59 @@ static void test_files(void **state)
     expect("table T a -> gnd \"/\"\n", NULL, "it is a folder");
 }
 
+/* Names and texts that the reports ask for. */
+static void test_words(void **state)
+{
+    (void)state;
+    static const struct {
+        const char *text, *row;
+    } probes[] = {{"x.v", "v"},     {"vdd.current", "current"},   {"R.i", "i"},
+                  {"y.low", "low"}, {"all.headroom", "headroom"}, {"cell.power", "power"}};
+    struct bench bench;
+    char text[100];
+    bench_open(&bench, "words.cell",
+               "rail vdd 3 V\nresistor R vdd -> x 1k\nresistor S x -> gnd 1k\n"
+               "output y at 1 V from 0 V to 2 V\nresistor T vdd -> y 1k\n",
+               NULL);
+    assert_non_null(bench.circuit);
+    circuit_unknown_name(bench.circuit, CIRCUIT_GROUND, text, sizeof text);
+    assert_string_equal(text, "gnd");
+    circuit_unknown_name(bench.circuit, 999, text, sizeof text);
+    assert_string_equal(text, "unknown 999");
+    for (size_t k = 0; k < sizeof probes / sizeof probes[0]; k++) {
+        struct probe probe;
+        assert_true(circuit_probe(bench.circuit, probes[k].text, SPAN_NONE,
+                                  &bench.cell->diagnostics, &probe));
+        assert_string_equal(probe_row(bench.circuit, &probe)->name, probes[k].row);
+    }
+    for (int k = 0; k < CAUTION_COUNT; k++) {
+        const char *rule = caution_rule((enum caution_code)k); /* NULL: a fact, no rule */
+        assert_true(rule == NULL || strlen(rule) > 10);
+    }
+    bench_close(&bench);
+}
+
+/* A value from outside takes the unit of the let, or must have its dimension. */
+static void test_sets(void **state)
+{
+    (void)state;
+    static const char text[] = "let ITAIL = 1 uA\nlet N = 2\nrail vdd 3 V\n"
+                               "resistor R vdd -> x 1k\ncurrent I x -> gnd N * ITAIL\n";
+    struct set_value set = {
+        .name = "ITAIL", .value = {.value = 3e-6, .bare = true}, .where = SPAN_NONE};
+    const struct circuit_settings settings = {.kelvin = NAN, .sets = &set, .set_count = 1};
+    struct bench bench;
+    bench_open(&bench, "sets.cell", text, &settings);
+    assert_non_null(bench.circuit);
+    const int k = circuit_find_instance(bench.circuit, "I");
+    assert_true(fabs(bench.circuit->instances[k].own[0] / 6e-6 - 1) < 1e-15);
+    bench_close(&bench);
+    set.value = (struct quantity){.value = 2, .dimension = DIMENSION_VOLTAGE};
+    expect(text, &settings, "ITAIL is a current in the cell; this is a voltage");
+    set.name = "NOPE";
+    expect(text, &settings, "no let is called 'NOPE'");
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -152,6 +205,7 @@ int main(void)
         cmocka_unit_test(test_errors),          cmocka_unit_test(test_names_of_a_block),
         cmocka_unit_test(test_models),          cmocka_unit_test(test_processes),
         cmocka_unit_test(test_sweeps),          cmocka_unit_test(test_files),
+        cmocka_unit_test(test_words),           cmocka_unit_test(test_sets),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

@@ -26,8 +26,8 @@ def read_exceptions():
 
 def measure(build, layer):
     report = subprocess.run(
-        ["gcovr", "-r", str(ROOT), "--json", "-f", f"src/{layer}/.*", str(build)],
-        capture_output=True, text=True, check=True, cwd=ROOT).stdout
+        ["gcovr", "-r", str(ROOT), "--json", "-f", f"{ROOT}/src/{layer}/.*", str(build)],
+        capture_output=True, text=True, check=True, cwd=build).stdout
     return json.loads(report)["files"]
 
 
