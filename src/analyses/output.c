@@ -25,6 +25,9 @@ static const double volts_tolerance = 1e-9;
 /* How near to its end a state is followed, V: the promise for a compliance voltage. */
 static const double volts_edge = 1e-5;
 
+/* A difference of currents below this share is their rounding, no slope. */
+static const double rounding_flatness = 1e-13;
+
 struct place {
     double v, i, slope; /* current into the direction of `at`, positive there */
     double *x;
@@ -519,7 +522,8 @@ static void sweep_both(struct sweeper *w, const struct place *home)
     scan_extremes(w, r->is_sink ? r->compliance : NAN, &e);
     w->places = up.places;
     w->count = up.count;
-    r->flatness = (e.most - e.least) / w->nominal;
+    const double flatness = (e.most - e.least) / w->nominal;
+    r->flatness = flatness > rounding_flatness ? flatness : 0;
     if (!make_curve(w, down, down_count)) {
         w->status = STATUS_MEMORY;
     }
