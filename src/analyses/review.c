@@ -156,9 +156,15 @@ enum status analysis_sweep(struct circuit *circuit, const struct analysis_option
     if (*result == NULL) {
         return STATUS_MEMORY;
     }
-    const struct sweep *sweeps =
-        options->extra_sweep != NULL ? options->extra_sweep : circuit->sweeps;
-    const int count = options->extra_sweep != NULL ? 1 : circuit->sweep_count;
+    const struct sweep *sweeps = circuit->sweeps;
+    int count = circuit->sweep_count;
+    if (options->extra_sweep != NULL) {
+        sweeps = options->extra_sweep;
+        count = 1;
+    } else if (count == 0) {
+        sweeps = sweep_loads(circuit, (*result)->arena);
+        count = sweeps != NULL ? circuit->output_count : 0;
+    }
     enum status status = solve_point(circuit, options, &session, *result);
     if (status == STATUS_UNSOLVED) {
         status = STATUS_OK; /* the cell may have a state elsewhere on the sweep */

@@ -397,3 +397,30 @@ enum status analyse_sweep(struct circuit *circuit, const struct sweep *sweep,
     }
     return worst;
 }
+
+/* The load voltage of one output and its current. */
+static bool load_sweep(const struct circuit *circuit, const struct output *output,
+                       struct arena *arena, struct sweep *sweep)
+{
+    struct diagnostics unseen = {.arena = arena};
+    const char *current = arena_format(arena, "%s.current", output->name);
+    *sweep = (struct sweep){.from = output->from,
+                            .to = output->to,
+                            .shown = arena_new(arena, struct probe),
+                            .shown_count = 1,
+                            .where = output->where};
+    return current != NULL && sweep->shown != NULL &&
+           circuit_knob(circuit, output->name, output->where, &unseen, &sweep->knob) &&
+           circuit_probe(circuit, current, output->where, &unseen, sweep->shown);
+}
+
+struct sweep *sweep_loads(const struct circuit *circuit, struct arena *arena)
+{
+    struct sweep *sweeps = arena_new_array(arena, struct sweep, circuit->output_count);
+    for (int k = 0; sweeps != NULL && k < circuit->output_count; k++) {
+        if (!load_sweep(circuit, &circuit->outputs[k], arena, &sweeps[k])) {
+            return NULL;
+        }
+    }
+    return sweeps;
+}

@@ -20,4 +20,10 @@ enum status analyse_sweep(struct circuit *circuit, const struct sweep *sweep,
                           const struct analysis_options *options, struct arena *arena,
                           struct sweep_table *table);
 
+/*
+ * sweep_loads: for a cell that says nothing of its own, the load voltage of each output over its
+ * range, with the current; as many as the circuit has outputs, in the arena. NULL: no memory.
+ */
+struct sweep *sweep_loads(const struct circuit *circuit, struct arena *arena);
+
 #endif

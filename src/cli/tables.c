@@ -25,8 +25,9 @@ const struct verb_row verb_rows[VERB_COUNT] = {
     [VERB_SWEEP] =
         {"sweep", "FILE.cell", "the `sweep` lines of the cell, or one given by --sweep",
          "Moves a rail, let, source, resistor, output or the temperature, and shows what\n"
-         "follows. --csv writes one row a point: number of the sweep, the swept thing, the\n"
-         "family, and each quantity, with SI units in the header."},
+         "follows. Without a `sweep` line, the load voltage of every output. --csv writes one\n"
+         "row a point: number of the sweep, the swept thing, the family, and each quantity,\n"
+         "with SI units in the header."},
     [VERB_EXPLAIN] =
         {"explain", "FILE.cell", "why each `hand` line differs: shares of the effects",
          "Solves the cell under every subset of the effects that lie between the square law and\n"

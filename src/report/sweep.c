@@ -125,9 +125,10 @@ void report_sweep(const struct result *result, const struct report_style *style,
         }
         if (result->sweep_count == 0 && !style->stopped) {
             layout_part(&layout, "sweep");
-            layout_paragraph(&layout, TONE_PLAIN, 0,
-                             "the cell has no `sweep` line; write one, or give --sweep \"THING "
-                             "from A to B show QUANTITY\"");
+            layout_paragraph(
+                &layout, TONE_PLAIN, 0,
+                "the cell has neither a `sweep` line nor an output; write one, or give "
+                "--sweep \"THING from A to B show QUANTITY\"");
         }
     } else if (!style->stopped) {
         page_unsolved(&layout, result);

@@ -116,6 +116,28 @@ static double solved_anew(double width, const char *quantity)
 
 /* A width swept in place, with a family of temperatures and of lets, and quantities of an output.
  */
+/* A cell without a `sweep` line: the load voltages, over the ranges of their outputs. */
+static void test_loads(void **state)
+{
+    (void)state;
+    struct run run;
+    run_open(&run, DIVIDER "output m at 1 V from 0.5 V to 2 V\n", VERB_SWEEP, VIEW_FULL, NAN);
+    assert_int_equal(run.status, STATUS_OK);
+    assert_int_equal(run.result->sweep_count, 2);
+    const struct sweep_table *o = &run.result->sweeps[0], *m = &run.result->sweeps[1];
+    assert_string_equal(o->sweep->knob.name, "o");
+    assert_int_equal(o->series[0].count, 51);
+    for (int k = 0; k < o->series[0].count; k++) {
+        check_near(o->series[0].knob[k], 3.0 * k / 50, 1e-15);
+        assert_true(fabs(o->series[0].values[k] - by_output(o->series[0].knob[k])) <= 1e-12);
+    }
+    assert_string_equal(m->sweep->knob.name, "m");
+    check_near(m->series[0].knob[0], 0.5, 0);
+    check_near(m->series[0].knob[50], 2, 0);
+    check_near(m->series[0].values[50], (4 - 2) / 1e3 - 2 / 3e3, 1e-12);
+    run_close(&run);
+}
+
 static void test_families(void **state)
 {
     (void)state;
@@ -243,11 +265,9 @@ static void test_fold_of_let(void **state)
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(test_everything),
-        cmocka_unit_test(test_families),
-        cmocka_unit_test(test_changing_structure),
-        cmocka_unit_test(test_lost_points),
-        cmocka_unit_test(test_fold),
+        cmocka_unit_test(test_everything),  cmocka_unit_test(test_loads),
+        cmocka_unit_test(test_families),    cmocka_unit_test(test_changing_structure),
+        cmocka_unit_test(test_lost_points), cmocka_unit_test(test_fold),
         cmocka_unit_test(test_fold_of_let),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
