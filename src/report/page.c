@@ -227,6 +227,7 @@ void report_page(const struct result *result, const struct report_style *style, 
         page_unsolved(&layout, result);
     }
     page_cautions(&layout, result);
+    page_elsewhere(&layout, result);
     page_evidence(&layout, result);
     page_closing(&layout);
     layout_end(&layout);

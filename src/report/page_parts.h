@@ -18,6 +18,8 @@ void page_paper(struct layout *layout, const struct result *result);
 void page_why(struct layout *layout, const struct result *result);
 void page_repairs(struct layout *layout, const struct result *result);
 void page_cautions(struct layout *layout, const struct result *result);
+/* Lines of the cell that other verbs answer. */
+void page_elsewhere(struct layout *layout, const struct result *result);
 /* How the point was found and how good it is. */
 void page_evidence(struct layout *layout, const struct result *result);
 /* What `point --certify` proved. */

@@ -57,6 +57,34 @@ void page_cautions(struct layout *layout, const struct result *result)
     }
 }
 
+/* "3 `vary` lines (spread)"; "" for none */
+static const char *unanswered(struct layout *layout, int count, const char *word, const char *verb)
+{
+    return count == 0 ? ""
+                      : layout_format(layout, "%d `%s` line%s (%s)", count, word,
+                                      count == 1 ? "" : "s", verb);
+}
+
+void page_elsewhere(struct layout *layout, const struct result *result)
+{
+    const struct circuit *circuit = result->circuit;
+    const char *lines[] = {
+        unanswered(layout, circuit->sweep_count, "sweep", "`ampstead sweep`"),
+        unanswered(layout, circuit->condition_count, "vary", "`ampstead spread`"),
+        unanswered(layout, circuit->choice_count, "choose", "`ampstead size`"),
+    };
+    const char *text = "";
+    for (size_t k = 0; k < sizeof lines / sizeof lines[0]; k++) {
+        text = layout_format(layout, "%s%s%s", text, *text != '\0' && *lines[k] != '\0' ? ", " : "",
+                             lines[k]);
+    }
+    if (*text != '\0') {
+        layout_part(layout, "elsewhere");
+        layout_paragraph(layout, TONE_PLAIN, 0,
+                         layout_format(layout, "this cell also has %s", text));
+    }
+}
+
 void page_evidence(struct layout *layout, const struct result *result)
 {
     const struct solver_result *solver = &result->point.solver;

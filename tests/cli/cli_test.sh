@@ -49,6 +49,7 @@ run 0 point "-t60 C" "$cell" && out_has "60 "
 
 # Exit statuses
 run 0 "$cell" && out_has "MET " && err_empty
+run 0 "$source/netlists/bandgap.cell" && out_has "1 \`sweep\` line (\`ampstead sweep\`), 2 \`vary\` lines"
 run 1 "$cell" --set "ITAIL=40 uA" && out_has "NOT MET" && err_empty
 run 2 "$work/none.cell" && err_has "none.cell" && out_empty
 run 2 "$cell" --set NOPE=1 && err_begins "--set:1:1: " && out_empty
