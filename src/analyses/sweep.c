@@ -13,13 +13,9 @@
 #include "analyses/judge.h"
 #include "analyses/measure.h"
 #include "analyses/output.h"
+#include "analyses/variant.h"
 
 enum { EVENT_LIMIT = 20 };
-
-struct setting {
-    const struct knob *knob;
-    double value;
-};
 
 /* The circuit and system in force, which may be this sweep's own. */
 struct stage {
@@ -29,7 +25,7 @@ struct stage {
     unsigned effects;
     const struct analysis_options *options;
     bool is_solved;
-    struct knob knob, family;  /* what is turned, in the circuit in force */
+    struct knob knob;          /* what is turned, in the circuit in force */
     const struct probe *shown; /* the same for what is shown */
 };
 
@@ -46,17 +42,14 @@ static bool find_again(struct stage *stage, const struct sweep *sweep)
     const struct circuit *c = stage->circuit;
     struct diagnostics unseen = {.arena = c->arena};
     stage->knob = sweep->knob;
-    stage->family = sweep->family;
     stage->shown = sweep->shown;
     if (stage->own_circuit == NULL) {
         return true;
     }
     struct probe *shown = arena_new_array(c->arena, struct probe, sweep->shown_count);
     stage->shown = shown;
-    bool good = shown != NULL &&
-                circuit_knob(c, sweep->knob.name, SPAN_NONE, &unseen, &stage->knob) &&
-                (!sweep->has_family ||
-                 circuit_knob(c, sweep->family.name, SPAN_NONE, &unseen, &stage->family));
+    bool good =
+        shown != NULL && circuit_knob(c, sweep->knob.name, SPAN_NONE, &unseen, &stage->knob);
     for (int k = 0; good && k < sweep->shown_count; k++) {
         good = circuit_probe(c, sweep->shown[k].text, SPAN_NONE, &unseen, &shown[k]);
     }
@@ -67,54 +60,18 @@ static bool find_again(struct stage *stage, const struct sweep *sweep)
 static enum status stage_open(struct stage *stage, struct circuit *base, const struct sweep *sweep,
                               const struct setting *settings, int count)
 {
-    struct circuit_settings wanted = base->settings;
-    struct set_value *sets =
-        arena_new_array(base->arena, struct set_value, wanted.set_count + count);
-    if (sets == NULL) {
-        return STATUS_MEMORY;
+    enum status status = variant_build(base, settings, count, &stage->own_circuit);
+    if (status != STATUS_OK) {
+        return status;
     }
-    if (wanted.set_count > 0) {
-        memcpy(sets, wanted.sets, (size_t)wanted.set_count * sizeof *sets);
-    }
-    bool anew = false;
-    wanted.sets = sets;
-    for (int k = 0; k < count; k++) {
-        const struct knob *knob = settings[k].knob;
-        if (knob->kind == KNOB_TEMPERATURE) {
-            wanted.kelvin = settings[k].value;
-            anew = true;
-        } else if (knob->kind == KNOB_LET) {
-            struct quantity value = base->lets[knob->parameter].value;
-            value.value = settings[k].value;
-            sets[wanted.set_count++] =
-                (struct set_value){.name = knob->name, .value = value, .where = SPAN_NONE};
-            anew = true;
-        }
-    }
-    stage->circuit = base;
-    if (anew) {
-        struct diagnostics unseen = {.arena = base->arena};
-        const enum status status = circuit_build(base->cell, &wanted, &unseen, &stage->own_circuit);
-        if (status != STATUS_OK) {
-            return status == STATUS_INPUT ? STATUS_UNSOLVED : status;
-        }
-        stage->circuit = stage->own_circuit;
-    }
+    stage->circuit = stage->own_circuit != NULL ? stage->own_circuit : base;
     stage->system = system_create(stage->circuit, stage->circuit->kelvin, stage->effects);
     if (stage->system == NULL ||
         !operating_point_create(&stage->point, stage->system, stage->options)) {
         return STATUS_MEMORY;
     }
-    if (!find_again(stage, sweep)) {
-        return STATUS_UNSOLVED;
-    }
-    for (int k = 0; k < count; k++) {
-        const struct knob *knob = k == 0 ? &stage->knob : &stage->family;
-        if (knob->kind == KNOB_VALUE) {
-            system_set(stage->system, knob->instance, knob->parameter, settings[k].value);
-        }
-    }
-    return STATUS_OK;
+    status = variant_turn(stage->system, base, settings, count);
+    return status == STATUS_OK && !find_again(stage, sweep) ? STATUS_UNSOLVED : status;
 }
 
 /* --- one point -------------------------------------------------------------------------------- */
@@ -298,7 +255,7 @@ static enum status advance(struct series_task *t, struct stage *stage, int k)
             return operating_point_find(&stage->point);
         }
         const enum status status = operating_point_move(
-            &stage->point, sweep->knob.instance, sweep->knob.parameter, t->knob[k - 1], v, &jumped);
+            &stage->point, stage->knob.instance, stage->knob.parameter, t->knob[k - 1], v, &jumped);
         if (status == STATUS_OK && jumped &&
             !add_event(t, stage->point.lost_at, operating_point_lost_text(&stage->point))) {
             return STATUS_MEMORY;

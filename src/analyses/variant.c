@@ -31,40 +31,71 @@ static bool builds_anew(const struct setting *settings, int count)
     return false;
 }
 
-static enum status build_circuit(struct variant *v, const struct circuit *base,
-                                 const struct setting *settings, int count)
+/* The settings that `base` was built with and the new ones; the list of lets lies in the arena. */
+static bool join_settings(const struct circuit *base, const struct setting *settings, int count,
+                          struct arena *arena, struct circuit_settings *joined)
 {
-    struct arena *arena = arena_create();
-    struct circuit_settings wanted = base->settings;
-    struct set_value *sets =
-        arena == NULL ? NULL : arena_new_array(arena, struct set_value, wanted.set_count + count);
+    *joined = base->settings;
+    struct set_value *sets = arena_new_array(arena, struct set_value, joined->set_count + count);
     if (sets == NULL) {
-        arena_destroy(arena);
-        return STATUS_MEMORY;
+        return false;
     }
-    if (wanted.set_count > 0) {
-        memcpy(sets, wanted.sets, (size_t)wanted.set_count * sizeof *sets);
+    if (joined->set_count > 0) {
+        memcpy(sets, joined->sets, (size_t)joined->set_count * sizeof *sets);
     }
-    wanted.sets = sets;
+    joined->sets = sets;
     for (int k = 0; k < count; k++) {
         const struct knob *knob = settings[k].knob;
         if (knob->kind == KNOB_TEMPERATURE) {
-            wanted.kelvin = settings[k].value;
+            joined->kelvin = settings[k].value;
+        } else if (knob->kind == KNOB_PROCESS) {
+            const int corner = (int)settings[k].value;
+            joined->corner = corner < 0 ? NULL : base->corners[corner].name;
         } else if (knob->kind == KNOB_LET) {
             struct quantity value = base->lets[knob->parameter].value;
             value.value = settings[k].value;
-            sets[wanted.set_count++] =
+            sets[joined->set_count++] =
                 (struct set_value){.name = knob->name, .value = value, .where = SPAN_NONE};
         }
     }
-    struct diagnostics unseen = {.arena = arena};
-    enum status status = circuit_build(base->cell, &wanted, &unseen, &v->own_circuit);
-    if (status == STATUS_OK && (v->own_circuit->unknown_count != base->unknown_count ||
-                                v->own_circuit->instance_count != base->instance_count)) {
-        status = STATUS_UNSOLVED;
+    return true;
+}
+
+enum status variant_build(const struct circuit *base, const struct setting *settings, int count,
+                          struct circuit **own)
+{
+    *own = NULL;
+    if (!builds_anew(settings, count)) {
+        return STATUS_OK;
     }
+    struct arena *arena = arena_create();
+    struct circuit_settings joined;
+    if (arena == NULL || !join_settings(base, settings, count, arena, &joined)) {
+        arena_destroy(arena);
+        return STATUS_MEMORY;
+    }
+    struct diagnostics unseen = {.arena = arena};
+    const enum status status = circuit_build(base->cell, &joined, &unseen, own);
     arena_destroy(arena);
     return status == STATUS_INPUT || status == STATUS_FILE ? STATUS_UNSOLVED : status;
+}
+
+enum status variant_turn(struct system *system, const struct circuit *base,
+                         const struct setting *settings, int count)
+{
+    const struct circuit *circuit = system->circuit;
+    for (int k = 0; k < count; k++) {
+        struct knob knob = *settings[k].knob;
+        struct diagnostics unseen = {.arena = system->arena};
+        if (knob.kind != KNOB_VALUE) {
+            continue;
+        }
+        if (circuit != base && !circuit_knob(circuit, knob.name, SPAN_NONE, &unseen, &knob)) {
+            return arena_failed(circuit->arena) ? STATUS_MEMORY : STATUS_UNSOLVED;
+        }
+        system_set(system, knob.instance, knob.parameter, settings[k].value);
+    }
+    return STATUS_OK;
 }
 
 /* Values that differ from those of the base's circuit were turned there; they stay. */
@@ -87,10 +118,14 @@ enum status variant_open(struct variant *v, const struct system *base,
     const struct circuit *circuit = base->circuit;
     double kelvin = base->conditions.kelvin;
     *v = (struct variant){0};
-    if (builds_anew(settings, count)) {
-        const enum status status = build_circuit(v, circuit, settings, count);
-        if (status != STATUS_OK) {
-            return status;
+    const enum status status = variant_build(circuit, settings, count, &v->own_circuit);
+    if (status != STATUS_OK) {
+        return status;
+    }
+    if (v->own_circuit != NULL) {
+        if (v->own_circuit->unknown_count != circuit->unknown_count ||
+            v->own_circuit->instance_count != circuit->instance_count) {
+            return STATUS_UNSOLVED;
         }
         circuit = v->own_circuit;
     }
@@ -102,13 +137,7 @@ enum status variant_open(struct variant *v, const struct system *base,
         return STATUS_MEMORY;
     }
     keep_turned(v->system, base);
-    for (int k = 0; k < count; k++) {
-        const struct knob *knob = settings[k].knob;
-        if (knob->kind == KNOB_VALUE) {
-            system_set(v->system, knob->instance, knob->parameter, settings[k].value);
-        }
-    }
-    return STATUS_OK;
+    return variant_turn(v->system, base->circuit, settings, count);
 }
 
 void variant_close(struct variant *v)

@@ -10,9 +10,29 @@
 #include "analyses/system.h"
 
 struct setting {
-    const struct knob *knob;
-    double value;
+    const struct knob *knob; /* named as in the circuit that is varied */
+    double value;            /* a corner: its index, -1 for none */
 };
+
+/*
+ * variant_build: the circuit with the settings in force.
+ *
+ * base  stays as it is; may be read by many threads at once
+ * own   out: owned by the caller (circuit_free); NULL when no setting needs another circuit
+ *
+ * Returns STATUS_OK, STATUS_UNSOLVED (the cell cannot be built with these values) or STATUS_MEMORY.
+ */
+enum status variant_build(const struct circuit *base, const struct setting *settings, int count,
+                          struct circuit **own);
+
+/*
+ * variant_turn: turns values of parts in a system of `base` or of a circuit built from it, which
+ * may count its parts otherwise: names are looked up in it.
+ *
+ * Returns STATUS_OK, STATUS_UNSOLVED (a part is not there any more) or STATUS_MEMORY.
+ */
+enum status variant_turn(struct system *system, const struct circuit *base,
+                         const struct setting *settings, int count);
 
 struct variant {
     struct circuit *own_circuit; /* NULL: the base's circuit serves */

@@ -187,6 +187,26 @@ static void test_changing_structure(void **state)
     run_close(&run);
 }
 
+/* What is swept stays the same part when the family changes how many parts there are. */
+static void test_changing_family(void **state)
+{
+    (void)state;
+    struct run run;
+    const struct sweep_table *table =
+        run_sweep(&run, "let RS = 0\nmodel q npn\n emitter_resistance = RS\nend\nrail vcc 5 V\n"
+                        "current I1 vcc -> b 1 mA\nnpn Q1 c=vcc b=b e=gnd\n"
+                        "resistor R1 vcc -> gnd 1k\nresistor R2 vcc -> gnd 2k\n"
+                        "sweep R1 from 1k to 4k points 4 show R1.i R2.i for RS = 0 5 0\n");
+    assert_int_equal(table->series_count, 3);
+    for (int f = 0; f < 3; f++) {
+        for (int k = 0; k < 4; k++) {
+            check_near(table->series[f].values[2 * k], 5e-3 / (k + 1), 1e-14);
+            check_near(table->series[f].values[2 * k + 1], 2.5e-3, 1e-14);
+        }
+    }
+    run_close(&run);
+}
+
 /* Values that no part can have are points without a state, in their place in the table. */
 static void test_lost_points(void **state)
 {
@@ -265,9 +285,13 @@ static void test_fold_of_let(void **state)
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(test_everything),  cmocka_unit_test(test_loads),
-        cmocka_unit_test(test_families),    cmocka_unit_test(test_changing_structure),
-        cmocka_unit_test(test_lost_points), cmocka_unit_test(test_fold),
+        cmocka_unit_test(test_everything),
+        cmocka_unit_test(test_loads),
+        cmocka_unit_test(test_families),
+        cmocka_unit_test(test_changing_structure),
+        cmocka_unit_test(test_changing_family),
+        cmocka_unit_test(test_lost_points),
+        cmocka_unit_test(test_fold),
         cmocka_unit_test(test_fold_of_let),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
