@@ -4,7 +4,8 @@
 #ifndef ANALYSES_CONDITIONS_H
 #define ANALYSES_CONDITIONS_H
 
-#include "analyses/operating_point.h"
+#include "analyses/analysis.h"
+#include "solve/operating_point.h"
 #include "analyses/spread_result.h"
 
 enum { CONDITION_POINT_LIMIT = 50000 };

@@ -10,8 +10,8 @@
 #include <math.h>
 #include <string.h>
 
-#include "analyses/measure.h"
-#include "analyses/variant.h"
+#include "solve/measure.h"
+#include "solve/variant.h"
 
 enum { LOCAL = DEVICE_LOCAL_LIMIT };
 

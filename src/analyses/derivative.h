@@ -7,7 +7,7 @@
 #ifndef ANALYSES_DERIVATIVE_H
 #define ANALYSES_DERIVATIVE_H
 
-#include "analyses/operating_point.h"
+#include "solve/operating_point.h"
 
 enum parameter_sort {
     PARAMETER_OWN,   /* a value of a part: RE, M1.W, a rail, an output's voltage, a deviate */

@@ -8,7 +8,7 @@
 #include <string.h>
 
 #include "analyses/derivative.h"
-#include "analyses/measure.h"
+#include "solve/measure.h"
 #include "analyses/output.h"
 #include "analyses/quantity.h"
 
@@ -159,7 +159,7 @@ static enum status lattice_open(struct lattice *l, const struct operating_point 
     *l = (struct lattice){.circuit = c, .options = options, .arena = arena_create()};
     l->system = system_create(c, c->kelvin, EFFECTS_FULL);
     if (l->arena == NULL || l->system == NULL ||
-        !operating_point_create(&l->point, l->system, options)) {
+        !operating_point_create(&l->point, l->system, options->stopped, options->stopped_self)) {
         return STATUS_MEMORY;
     }
     unsigned effects;

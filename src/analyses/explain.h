@@ -5,7 +5,8 @@
 #ifndef ANALYSES_EXPLAIN_H
 #define ANALYSES_EXPLAIN_H
 
-#include "analyses/operating_point.h"
+#include "analyses/analysis.h"
+#include "solve/operating_point.h"
 
 struct effect_share {
     const char *effect;   /* "body effect", ...; or what the paper says beside the square law */

@@ -4,7 +4,8 @@
 #ifndef ANALYSES_JUDGE_H
 #define ANALYSES_JUDGE_H
 
-#include "analyses/operating_point.h"
+#include "analyses/result.h"
+#include "solve/operating_point.h"
 
 /* Value of any quantity from a finished result; NAN when it has none. */
 double result_value(const struct result *result, const struct probe *probe);

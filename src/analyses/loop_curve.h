@@ -5,7 +5,7 @@
 #ifndef ANALYSES_LOOP_CURVE_H
 #define ANALYSES_LOOP_CURVE_H
 
-#include "analyses/operating_point.h"
+#include "solve/operating_point.h"
 
 struct held_loop;
 

@@ -4,7 +4,7 @@
 #ifndef ANALYSES_MISMATCH_H
 #define ANALYSES_MISMATCH_H
 
-#include "analyses/operating_point.h"
+#include "solve/operating_point.h"
 #include "analyses/spread_result.h"
 
 /* One independent deviate that is added to a hidden value: normal, or even (a tolerance). */

@@ -8,7 +8,7 @@
 #ifndef ANALYSES_NETWORK_BUILD_H
 #define ANALYSES_NETWORK_BUILD_H
 
-#include "analyses/system.h"
+#include "solve/system.h"
 #include "proof/network.h"
 
 struct network_map {

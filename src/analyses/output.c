@@ -12,8 +12,8 @@
 #include <stdlib.h>
 #include <string.h>
 
-#include "analyses/linearised.h"
-#include "analyses/measure.h"
+#include "solve/linearised.h"
+#include "solve/measure.h"
 #include "base/root.h"
 
 enum { FIRST_SEGMENTS = 16, DEPTH_LIMIT = 24, EVENT_LIMIT = 20 };

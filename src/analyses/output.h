@@ -5,7 +5,8 @@
 #ifndef ANALYSES_OUTPUT_H
 #define ANALYSES_OUTPUT_H
 
-#include "analyses/operating_point.h"
+#include "analyses/result.h"
+#include "solve/operating_point.h"
 
 /* What the linearised equations give at the operating point: current, resistance, line, tempco,
  * sigma; the rest is NAN. False when memory is short. */

@@ -5,7 +5,7 @@
 #include <string.h>
 
 #include "analyses/derivative.h"
-#include "analyses/variant.h"
+#include "solve/variant.h"
 
 struct parameter_ref derivative_own(const struct system *s, int instance, int index)
 {

@@ -7,8 +7,8 @@
 #include <string.h>
 
 #include "analyses/judge.h"
-#include "analyses/linearised.h"
-#include "analyses/measure.h"
+#include "solve/linearised.h"
+#include "solve/measure.h"
 #include "analyses/output.h"
 #include "analyses/trial.h"
 

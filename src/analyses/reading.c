@@ -7,7 +7,7 @@
 #include <string.h>
 
 #include "analyses/judge.h"
-#include "analyses/measure.h"
+#include "solve/measure.h"
 #include "analyses/output.h"
 
 bool reading_is_of_output(const struct probe *probe)

@@ -5,7 +5,7 @@
 #ifndef ANALYSES_READING_H
 #define ANALYSES_READING_H
 
-#include "analyses/operating_point.h"
+#include "solve/operating_point.h"
 
 /* What is read of one circuit. */
 struct reading_list {

@@ -7,7 +7,7 @@
 #include <math.h>
 #include <string.h>
 
-#include "analyses/measure.h"
+#include "solve/measure.h"
 
 struct remarks {
     const struct operating_point *point;

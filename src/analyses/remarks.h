@@ -4,7 +4,8 @@
 #ifndef ANALYSES_REMARKS_H
 #define ANALYSES_REMARKS_H
 
-#include "analyses/operating_point.h"
+#include "analyses/result.h"
+#include "solve/operating_point.h"
 
 /* Adds all cautions to result->cautions, those of the circuit first. False when memory is short. */
 bool remarks_add(const struct operating_point *point, struct result *result);

@@ -23,7 +23,8 @@ static enum status bench_open(struct bench *bench, struct circuit *circuit,
 {
     const unsigned effects = options->view == VIEW_HAND ? EFFECTS_HAND : EFFECTS_FULL;
     *bench = (struct bench){.system = system_create(circuit, circuit->kelvin, effects)};
-    if (bench->system == NULL || !operating_point_create(&bench->point, bench->system, options)) {
+    if (bench->system == NULL || !operating_point_create(&bench->point, bench->system,
+                                                         options->stopped, options->stopped_self)) {
         return STATUS_MEMORY;
     }
     if (result->point.x != NULL) {

@@ -9,7 +9,7 @@
 #include <string.h>
 
 #include "analyses/judge.h"
-#include "analyses/measure.h"
+#include "solve/measure.h"
 #include "analyses/output.h"
 #include "analyses/quantity.h"
 #include "analyses/trial.h"

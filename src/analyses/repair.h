@@ -4,7 +4,8 @@
 #ifndef ANALYSES_REPAIR_H
 #define ANALYSES_REPAIR_H
 
-#include "analyses/operating_point.h"
+#include "analyses/analysis.h"
+#include "solve/operating_point.h"
 
 enum { REPAIR_LIMIT = 3 };
 

@@ -8,7 +8,7 @@
 #include "analyses/analysis.h"
 #include "analyses/conditions.h"
 #include "analyses/judge.h"
-#include "analyses/measure.h"
+#include "solve/measure.h"
 #include "analyses/output.h"
 #include "analyses/remarks.h"
 #include "analyses/states.h"
@@ -44,7 +44,8 @@ static enum status solve_point(struct circuit *circuit, const struct analysis_op
 {
     session->system = system_create(circuit, circuit->kelvin, effects_of(options->view));
     if (session->system == NULL ||
-        !operating_point_create(&session->point, session->system, options)) {
+        !operating_point_create(&session->point, session->system, options->stopped,
+                                options->stopped_self)) {
         return STATUS_MEMORY;
     }
     const enum status status = operating_point_find(&session->point);

@@ -5,7 +5,7 @@
 
 #include <string.h>
 
-#include "analyses/variant.h"
+#include "solve/variant.h"
 
 /* What differs from the base; the list lies in the setup's arena. NULL: no memory. */
 static struct setting *changes(struct setup *setup, const struct condition_axis *axes, int count,
@@ -41,7 +41,9 @@ enum status setup_open(struct setup *setup, struct circuit *base, const struct c
     setup->circuit = setup->own_circuit != NULL ? setup->own_circuit : base;
     const unsigned effects = options->view == VIEW_HAND ? EFFECTS_HAND : EFFECTS_FULL;
     setup->system = system_create(setup->circuit, setup->circuit->kelvin, effects);
-    if (setup->system == NULL || !operating_point_create(&setup->point, setup->system, options) ||
+    if (setup->system == NULL ||
+        !operating_point_create(&setup->point, setup->system, options->stopped,
+                                options->stopped_self) ||
         !reading_list_make(&setup->list, setup->circuit, scope, setup->arena)) {
         return STATUS_MEMORY;
     }

@@ -4,7 +4,8 @@
 #ifndef ANALYSES_SETUP_H
 #define ANALYSES_SETUP_H
 
-#include "analyses/operating_point.h"
+#include "analyses/analysis.h"
+#include "solve/operating_point.h"
 #include "analyses/reading.h"
 #include "analyses/spread_result.h"
 

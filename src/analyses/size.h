@@ -4,6 +4,7 @@
 #ifndef ANALYSES_SIZE_H
 #define ANALYSES_SIZE_H
 
+#include "analyses/analysis.h"
 #include "analyses/derivative.h"
 
 /* A rounded set of values and what it gives. */

@@ -6,7 +6,7 @@
 #include <math.h>
 #include <string.h>
 
-#include "analyses/measure.h"
+#include "solve/measure.h"
 #include "analyses/states_internal.h"
 #include "numerics/continuation.h"
 

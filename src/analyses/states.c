@@ -7,7 +7,7 @@
 #include <math.h>
 #include <string.h>
 
-#include "analyses/measure.h"
+#include "solve/measure.h"
 #include "analyses/remarks.h"
 #include "analyses/result_create.h"
 #include "analyses/states_internal.h"
@@ -433,7 +433,8 @@ enum status analysis_states(struct circuit *circuit, const struct analysis_optio
     struct system *system = system_create(circuit, circuit->kelvin, effects);
     *result = result_create(circuit, options->view, "states");
     enum status status = STATUS_MEMORY;
-    if (*result != NULL && system != NULL && operating_point_create(&point, system, options)) {
+    if (*result != NULL && system != NULL &&
+        operating_point_create(&point, system, options->stopped, options->stopped_self)) {
         status = find_all(&point, options, *result);
     }
     const bool texts_failed = system != NULL && arena_failed(system->arena);

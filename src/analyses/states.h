@@ -5,7 +5,8 @@
 #ifndef ANALYSES_STATES_H
 #define ANALYSES_STATES_H
 
-#include "analyses/operating_point.h"
+#include "analyses/result.h"
+#include "solve/operating_point.h"
 
 /* The proofs work on full matrices. */
 enum { STATES_NODE_LIMIT = 250, STATES_PART_LIMIT = 2000 };

@@ -5,7 +5,7 @@
 #include <string.h>
 
 #include "analyses/conditions.h"
-#include "analyses/measure.h"
+#include "solve/measure.h"
 #include "analyses/setup.h"
 #include "base/root.h"
 

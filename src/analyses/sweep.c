@@ -11,9 +11,9 @@
 #include <string.h>
 
 #include "analyses/judge.h"
-#include "analyses/measure.h"
+#include "solve/measure.h"
 #include "analyses/output.h"
-#include "analyses/variant.h"
+#include "solve/variant.h"
 
 enum { EVENT_LIMIT = 20 };
 
@@ -67,7 +67,8 @@ static enum status stage_open(struct stage *stage, struct circuit *base, const s
     stage->circuit = stage->own_circuit != NULL ? stage->own_circuit : base;
     stage->system = system_create(stage->circuit, stage->circuit->kelvin, stage->effects);
     if (stage->system == NULL ||
-        !operating_point_create(&stage->point, stage->system, stage->options)) {
+        !operating_point_create(&stage->point, stage->system, stage->options->stopped,
+                                stage->options->stopped_self)) {
         return STATUS_MEMORY;
     }
     status = variant_turn(stage->system, base, settings, count);

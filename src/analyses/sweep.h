@@ -4,7 +4,8 @@
 #ifndef ANALYSES_SWEEP_H
 #define ANALYSES_SWEEP_H
 
-#include "analyses/operating_point.h"
+#include "analyses/analysis.h"
+#include "solve/operating_point.h"
 
 /*
  * analyse_sweep: one sweep, with its family, into the arena.

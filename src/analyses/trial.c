@@ -99,11 +99,9 @@ enum status trial_open(struct trial *trial, const struct operating_point *home, 
                        const struct parameter_ref *parameters, const double *values, int count)
 {
     *trial = (struct trial){0};
-    const struct analysis_options options = {.stopped = home->stopped,
-                                             .stopped_self = home->stopped_self};
     enum status status = build(trial, home->system, parameters, values, count);
-    if (status == STATUS_OK &&
-        !operating_point_create(&trial->point, trial->variant.system, &options)) {
+    if (status == STATUS_OK && !operating_point_create(&trial->point, trial->variant.system,
+                                                       home->stopped, home->stopped_self)) {
         status = STATUS_MEMORY;
     }
     if (status == STATUS_OK) {

@@ -5,7 +5,7 @@
 #define ANALYSES_TRIAL_H
 
 #include "analyses/derivative.h"
-#include "analyses/variant.h"
+#include "solve/variant.h"
 
 /* A cell of its own: the one it was made from is not touched. */
 struct trial {

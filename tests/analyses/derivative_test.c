@@ -9,10 +9,10 @@
 #include <cmocka.h>
 
 #include "analyses/derivative.h"
-#include "analyses/linearised.h"
-#include "analyses/measure.h"
+#include "solve/linearised.h"
+#include "solve/measure.h"
 #include "analyses/solved_cell.h"
-#include "analyses/variant.h"
+#include "solve/variant.h"
 
 /* Every kind of dependence: leads, body effect, modulation, a let, a law, a bipolar, a diode. */
 static const char mixed[] = "process \"n180.process\"\n"
@@ -96,7 +96,7 @@ static double resolved(struct solved_cell *it, const struct parameter_ref *p,
             struct variant variant;
             struct operating_point point;
             assert_int_equal(variant_open(&variant, it->system, &setting, 1), STATUS_OK);
-            assert_true(operating_point_create(&point, variant.system, &plain_options));
+            assert_true(operating_point_create(&point, variant.system, NULL, NULL));
             memcpy(point.x, it->point.x, (size_t)variant.system->n * sizeof *point.x);
             q = value_at(&point, probe, branch);
             variant_close(&variant);

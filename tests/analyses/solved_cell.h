@@ -7,8 +7,9 @@
 #include <math.h>
 #include <string.h>
 
+#include "analyses/analysis.h"
 #include "check.h"
-#include "analyses/operating_point.h"
+#include "solve/operating_point.h"
 
 struct solved_cell {
     struct cell *cell;
@@ -41,7 +42,7 @@ static inline void cell_solve_as(struct solved_cell *it, const char *text, unsig
     cell_open(it, text);
     it->system = system_create(it->circuit, it->circuit->kelvin, effects);
     assert_non_null(it->system);
-    assert_true(operating_point_create(&it->point, it->system, &plain_options));
+    assert_true(operating_point_create(&it->point, it->system, NULL, NULL));
     assert_int_equal(operating_point_find(&it->point), STATUS_OK);
 }
 

@@ -18,9 +18,10 @@ allowed() {
     proof) echo base interval devices ;;
     calibrate) echo base devices language ;;
     circuit) echo base devices language ;;
-    analyses) echo base numerics devices language circuit interval proof ;;
-    report) echo base devices language calibrate circuit analyses ;;
-    library) echo base devices language calibrate circuit analyses report ;;
+    solve) echo base numerics devices circuit ;;
+    analyses) echo base numerics devices language circuit interval proof solve ;;
+    report) echo base devices language calibrate circuit solve analyses ;;
+    library) echo base devices language calibrate circuit solve analyses report ;;
     cli) echo base library ;;
     *) return 1 ;;
     esac

@@ -4,7 +4,7 @@
  * With F(x, p) = 0 and the Jacobian J: dx/dp = -J^-1 dF/dp; for one quantity x[k] and many p the
  * adjoint a = J^-T e_k gives dx[k]/dp = -a . dF/dp with one solve.
  */
-#include "analyses/linearised.h"
+#include "solve/linearised.h"
 
 #include <math.h>
 #include <string.h>

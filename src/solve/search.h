@@ -1,10 +1,10 @@
 /*
  * search.h: what the searches for a state share; for operating_point.c and the files beside it.
  */
-#ifndef ANALYSES_SEARCH_H
-#define ANALYSES_SEARCH_H
+#ifndef SOLVE_SEARCH_H
+#define SOLVE_SEARCH_H
 
-#include "analyses/operating_point.h"
+#include "solve/operating_point.h"
 #include "numerics/continuation.h"
 
 /* Stopped or short of memory: no other search may be tried. */

@@ -4,10 +4,10 @@
  * Values of parts are turned in the system; a let or the temperature changes many values at once,
  * so the circuit is built anew. Values that were turned in the base stay as they are.
  */
-#ifndef ANALYSES_VARIANT_H
-#define ANALYSES_VARIANT_H
+#ifndef SOLVE_VARIANT_H
+#define SOLVE_VARIANT_H
 
-#include "analyses/system.h"
+#include "solve/system.h"
 
 struct setting {
     const struct knob *knob; /* named as in the circuit that is varied */

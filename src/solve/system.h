@@ -4,8 +4,8 @@
  * A system owns a copy of all instance values, so that a sweep or a sample can change them without
  * touching the circuit; each thread has its own system. Not safe to share.
  */
-#ifndef ANALYSES_SYSTEM_H
-#define ANALYSES_SYSTEM_H
+#ifndef SOLVE_SYSTEM_H
+#define SOLVE_SYSTEM_H
 
 #include "circuit/circuit.h"
 #include "numerics/newton.h"

@@ -1,10 +1,10 @@
 /*
  * measure.h: quantities of a solved point.
  */
-#ifndef ANALYSES_MEASURE_H
-#define ANALYSES_MEASURE_H
+#ifndef SOLVE_MEASURE_H
+#define SOLVE_MEASURE_H
 
-#include "analyses/operating_point.h"
+#include "solve/operating_point.h"
 
 /*
  * measure_device: quantities of one instance at a refined point.

@@ -6,7 +6,7 @@
 #include <math.h>
 #include <string.h>
 
-#include "analyses/operating_point.h"
+#include "solve/operating_point.h"
 
 enum { HALVINGS = 18, PASS_LIMIT = 8, CONTROL = 1, SOURCE = 2 };
 

@@ -4,7 +4,7 @@
 #include <math.h>
 #include <string.h>
 
-#include "analyses/search.h"
+#include "solve/search.h"
 #include "numerics/settle.h"
 
 /*

@@ -4,7 +4,7 @@
 #include <math.h>
 #include <string.h>
 
-#include "analyses/search.h"
+#include "solve/search.h"
 
 const char *trouble_name(const struct operating_point *p, int unknown)
 {

@@ -16,7 +16,7 @@
 #include <stdlib.h>
 #include <string.h>
 
-#include "analyses/operating_point.h"
+#include "solve/operating_point.h"
 
 enum { WAVE_LIMIT = 64, ONE_BY_ONE_LIMIT = 1000, HALVINGS = 14, SUSPECT_LIMIT = 16 };
 

@@ -2,11 +2,12 @@
  * operating_point.h: the search for a resting state of a system, and moving along as a value
  * changes.
  */
-#ifndef ANALYSES_OPERATING_POINT_H
-#define ANALYSES_OPERATING_POINT_H
+#ifndef SOLVE_OPERATING_POINT_H
+#define SOLVE_OPERATING_POINT_H
 
-#include "analyses/analysis.h"
-#include "analyses/system.h"
+#include "base/status.h"
+#include "solve/point.h"
+#include "solve/system.h"
 
 struct operating_point {
     struct system *system;
@@ -29,9 +30,10 @@ struct operating_point {
     bool folds;     /* the curve of states turns back there */
 };
 
-/* Workspaces from the system's arena. False when memory is short. */
+/* Workspaces from the system's arena; stopped (NULL: never) is asked often, and true ends the work.
+ * False when memory is short. */
 bool operating_point_create(struct operating_point *point, struct system *system,
-                            const struct analysis_options *options);
+                            bool (*stopped)(void *self), void *stopped_self);
 
 /*
  * operating_point_find: from cold: damped Newton from a guess that turns every diode-like device

@@ -4,7 +4,7 @@
  * Rows: for each node the sum of the currents into the devices there (A); for each branch its own
  * equation (V). Slots are found once, so assembly is an addition per entry.
  */
-#include "analyses/system.h"
+#include "solve/system.h"
 
 #include <math.h>
 #include <stdint.h>

@@ -1,7 +1,7 @@
 /*
  * variant.c: a circuit built again with other named values or another temperature.
  */
-#include "analyses/variant.h"
+#include "solve/variant.h"
 
 #include <math.h>
 #include <string.h>

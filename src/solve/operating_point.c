@@ -1,19 +1,19 @@
 /*
  * operating_point.c: the ladder of searches for a resting state, and the polish.
  */
-#include "analyses/operating_point.h"
+#include "solve/operating_point.h"
 
 #include <math.h>
 #include <string.h>
 
-#include "analyses/search.h"
+#include "solve/search.h"
 
 bool operating_point_create(struct operating_point *p, struct system *system,
-                            const struct analysis_options *options)
+                            bool (*stopped)(void *self), void *stopped_self)
 {
     *p = (struct operating_point){.system = system,
-                                  .stopped = options->stopped,
-                                  .stopped_self = options->stopped_self,
+                                  .stopped = stopped,
+                                  .stopped_self = stopped_self,
                                   .stalled_equation = -1,
                                   .stalled_column = -1,
                                   .best_residual = INFINITY};

@@ -4,7 +4,7 @@
 #include <math.h>
 #include <string.h>
 
-#include "analyses/search.h"
+#include "solve/search.h"
 
 /* A node further than this, V, from where the tangent led: the step is too long, or the state is
  * another. */

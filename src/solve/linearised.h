@@ -2,10 +2,10 @@
  * linearised.h: what small changes do at a polished point: exact derivatives from the linearised
  * equations, solved to extended precision.
  */
-#ifndef ANALYSES_LINEARISED_H
-#define ANALYSES_LINEARISED_H
+#ifndef SOLVE_LINEARISED_H
+#define SOLVE_LINEARISED_H
 
-#include "analyses/operating_point.h"
+#include "solve/operating_point.h"
 
 /*
  * linearised_output: conductance seen into an output, dI/dV with I into the cell, S; relative error

@@ -1,7 +1,7 @@
 /*
  * measure.c: quantities of a solved point.
  */
-#include "analyses/measure.h"
+#include "solve/measure.h"
 
 #include <math.h>
 #include <string.h>
