@@ -502,6 +502,68 @@ static void test_certificate(void **state)
     run_close(&run);
 }
 
+/* --- in a review
+ * ---------------------------------------------------------------------------------- */
+
+static bool has_caution(const struct run *run, const char *code)
+{
+    for (int k = 0; k < run->result->cautions.count; k++) {
+        if (strcmp(run->result->cautions.list[k].code, code) == 0) {
+            return true;
+        }
+    }
+    return false;
+}
+
+/* By itself where there is a loop: the five states of N03, proved. */
+static void test_review_loop(void **state)
+{
+    (void)state;
+    struct run run;
+    run_review(&run, five_states, VIEW_FULL);
+    assert_non_null(run.result->states);
+    check_count(&run, 5);
+    assert_true(run.result->states->is_brief);
+    assert_int_equal(run.result->states->startup, STARTUP_AT_RISK);
+    assert_true(has_caution(&run, "loop"));
+    /* the page shows the state that it found before, and is that one marked */
+    const struct state_result *wanted = &run.result->states->states[run.result->states->wanted];
+    const int node = circuit_find_node(run.circuit, "c1");
+    assert_true(fabs(wanted->x[node - 1] - run.result->point.x[node - 1]) < 1e-9);
+    run_close(&run);
+}
+
+/* Without a loop nothing is looked for. */
+static void test_review_no_loop(void **state)
+{
+    (void)state;
+    struct run run;
+    run_review(&run,
+               "process \"n180.process\"\nrail vdd 1.8 V\nresistor R vdd -> a 50k\n"
+               "nmos M1 d=a g=a s=gnd W=2u L=1u\nnmos M2 d=o g=a s=gnd W=2u L=1u\n"
+               "output o at 1 V from 0 V to 1.8 V\n",
+               VIEW_FULL);
+    assert_null(run.result->states);
+    assert_false(has_caution(&run, "loop"));
+    run_close(&run);
+}
+
+/* The budget of a review is small: of the 81 states of four triggers it says that it did not
+ * finish, and gives those that it has. */
+static void test_review_budget(void **state)
+{
+    (void)state;
+    struct run run;
+    run_review(&run, TRIGGER_MODEL TRIGGER("x") TRIGGER("y") TRIGGER("z") TRIGGER("w"), VIEW_FULL);
+    const struct states_result *found = run.result->states;
+    assert_non_null(found);
+    assert_false(found->is_complete);
+    assert_true(found->boxes <= found->box_limit && found->state_count >= 1);
+    assert_true(found->undecided_boxes > 0);
+    assert_true(has_caution(&run, "loop"));
+    run_close(&run);
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -513,7 +575,8 @@ int main(void)
         cmocka_unit_test(test_no_budget),        cmocka_unit_test(test_multiplier),
         cmocka_unit_test(test_loop_curve),       cmocka_unit_test(test_loops),
         cmocka_unit_test(test_certificate),      cmocka_unit_test(test_no_point_from_cold),
-        cmocka_unit_test(test_no_state),
+        cmocka_unit_test(test_no_state),         cmocka_unit_test(test_review_loop),
+        cmocka_unit_test(test_review_no_loop),   cmocka_unit_test(test_review_budget),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
