@@ -17,6 +17,12 @@ void page_paper(struct layout *layout, const struct result *result);
  * both continue the part at hand. */
 void page_why(struct layout *layout, const struct result *result);
 void page_repairs(struct layout *layout, const struct result *result);
+/* States of a cell with a loop, and whether it starts; nothing where result->states is NULL. */
+void page_states(struct layout *layout, const struct result *result);
+/* "1 state, and no other: proved", "start-up certain": shared with the HTML page. */
+struct states_result;
+const char *states_proof_text(struct layout *layout, const struct states_result *found);
+const char *states_startup_text(const struct states_result *found);
 void page_cautions(struct layout *layout, const struct result *result);
 /* Lines of the cell that other verbs answer. */
 void page_elsewhere(struct layout *layout, const struct result *result);

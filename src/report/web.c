@@ -49,6 +49,7 @@ void report_web(const struct result *result, const struct report_style *style, c
         web_outputs(&layout, result);
         web_paper(&layout, result);
         web_devices(&layout, result);
+        web_states(&layout, result);
     }
     web_cautions(&layout, result);
     web_cell(&layout, result);

@@ -34,6 +34,7 @@ void web_requirements(struct layout *layout, const struct result *result);
 void web_outputs(struct layout *layout, const struct result *result);
 void web_paper(struct layout *layout, const struct result *result);
 void web_devices(struct layout *layout, const struct result *result);
+void web_states(struct layout *layout, const struct result *result);
 void web_cautions(struct layout *layout, const struct result *result);
 void web_cell(struct layout *layout, const struct result *result);
 void web_evidence(struct layout *layout, const struct result *result);

@@ -2,6 +2,7 @@
 #include <math.h>
 #include <string.h>
 
+#include "analyses/states.h"
 #include "report/markup.h"
 #include "report/page_parts.h"
 #include "report/show.h"
@@ -168,6 +169,36 @@ static bool seen_before(const struct caution_list *cautions, int index)
 }
 
 /* Those of one kind stand together, with the rule behind them said once. */
+void web_states(struct layout *layout, const struct result *result)
+{
+    const struct states_result *found = result->states;
+    struct buffer *out = layout->out;
+    if (found == NULL || found->state_count == 0) {
+        return;
+    }
+    web_heading(layout, "states", "States");
+    buffer_text(out, "<p>");
+    web_text(layout, states_proof_text(layout, found));
+    buffer_text(out, "; <b>");
+    web_text(layout, states_startup_text(found));
+    buffer_text(out, "</b>. The loop ");
+    web_text(layout, found->loop_path);
+    buffer_text(out, " could hold more than one.</p>\n<ul>\n");
+    for (int k = 0; k < found->state_count; k++) {
+        const struct state_result *state = &found->states[k];
+        buffer_format(out, "<li>state %d, ", k + 1);
+        web_text(layout, show_value(layout, state->power, DIMENSION_POWER));
+        buffer_format(out, ": %s%s</li>\n", state->can_hold ? "can be held" : "cannot be held",
+                      k == found->wanted ? "; this page shows it" : "");
+    }
+    for (int k = 0; k < found->reason_count; k++) {
+        buffer_text(out, "<li>at risk: ");
+        web_text(layout, found->reasons[k]);
+        buffer_text(out, "</li>\n");
+    }
+    buffer_text(out, "</ul>\n");
+}
+
 void web_cautions(struct layout *layout, const struct result *result)
 {
     const struct caution_list *cautions = &result->cautions;

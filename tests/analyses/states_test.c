@@ -74,6 +74,7 @@ static void test_tunnel_diode(void **state)
                " + 229.62*(a.v/1 V)^3 - 226.31*(a.v/1 V)^4 + 83.72*(a.v/1 V)^5)\n",
                10000);
     check_count(&run, 3);
+    assert_false(run.result->states->is_assumed); /* it carries nothing against its voltage */
     for (int k = 0; k < 3; k++) {
         /* the middle one lies on the falling part, steeper than the load line */
         assert_int_equal(find_state(&run, nodes, &volts[k], 1)->can_hold, k != 1);
@@ -99,6 +100,7 @@ static void test_tunnel_pair(void **state)
                " + 4.56*(b.v/1 V))\n",
                10000);
     check_count(&run, 9);
+    assert_false(run.result->states->is_assumed);
     const int a = circuit_find_node(run.circuit, "a"), b = circuit_find_node(run.circuit, "b");
     for (int k = 0; k < 9; k++) {
         const struct state_result *found = find_state(&run, nodes, &v2[k], 1);
@@ -316,6 +318,9 @@ static void test_piecewise(void **state)
                " - 3/14*(abs(a.v/1 V+1) - abs(a.v/1 V-1)))*1 A\n",
                10000);
     check_count(&run, 3);
+    /* |v|/7 R beyond the bend: (5/7 |v| + 3/7) 1 ohm pushes to 1.5 V and no further */
+    assert_false(run.result->states->is_assumed);
+    assert_true(run.result->states->high >= 1.5 && run.result->states->high < 1.51);
     for (int k = -1; k <= 1; k++) {
         const double volts = 1.5 * k;
         /* slope of the whole at the outer states 1 - 5/7, at the middle one 1 - 8/7 */
@@ -501,6 +506,142 @@ static void test_certificate(void **state)
     run_close(&run);
 }
 
+/* --- where to look ------------------------------------------------------------------------------
+ */
+
+struct range_case {
+    const char *text;
+    double low, high; /* V, closed forms */
+};
+
+/* What a source can push a node to: by Ohm's law, by the diode equation (Shockley), by a
+ * diode-connected transistor. */
+static void test_range(void **state)
+{
+    (void)state;
+    const double thermal = BOLTZMANN_OVER_CHARGE * 300.15;
+    const struct range_case cases[] = {
+        {"rail v 1 V\nresistor R0 v -> gnd 1k\ncurrent I gnd -> a 1 mA\nresistor R a -> gnd 5k\n",
+         0, 5},
+        {"rail v 1 V\nresistor R0 v -> gnd 1k\ncurrent I gnd -> a 1 mA\nresistor R1 a -> b 1k\n"
+         "resistor R2 b -> gnd 2k\n",
+         0, 3},
+        {"rail v 1 V\nresistor R0 v -> gnd 1k\ncurrent I a -> gnd 1 mA\nresistor R a -> v 5k\n", -4,
+         1}, /* pulled down from the rail at 1 V: 1 V - 5 V */
+        {"model d diode\n saturation_current = 1 fA\nend\ncurrent I gnd -> a 1 mA\n"
+         "diode D a -> gnd model=d\n",
+         0, thermal * log(1 + 1e-3 / 1e-15)},
+        {"rail v 1 V\nresistor R0 v -> gnd 1k\ncurrent I v -> a 100 uA\n"
+         "nmos M d=a g=a s=gnd conduction=100u threshold=0.7 V\n",
+         0, NAN}, /* all of it flows through M: the state itself */
+        /* a law within its limits: 1 mA into 3 kohm */
+        {"rail v 1 V\nresistor R0 v -> gnd 1k\nresistor R a -> gnd 3k\n"
+         "law L gnd -> a i = max(min(2 mA - v.v/2 kohm, v.v/1 kohm), -v.v/1 kohm)\n",
+         0, 3},
+    };
+    for (size_t k = 0; k < sizeof cases / sizeof cases[0]; k++) {
+        struct run run;
+        run_states(&run, cases[k].text, 10000);
+        const struct states_result *found = run.result->states;
+        assert_false(found->is_assumed);
+        const double high = isnan(cases[k].high)
+                                ? found->states[0].x[circuit_find_node(run.circuit, "a") - 1]
+                                : cases[k].high;
+        if (!(fabs(found->low - cases[k].low) <= 1e-3 * (1 + fabs(cases[k].low))) ||
+            !(fabs(found->high - high) <= 1e-3 * (1 + fabs(high)))) {
+            print_error("case %zu: %g to %g\n", k, found->low, found->high);
+            fail();
+        }
+        assert_true(found->low <= cases[k].low + 1e-6 && found->high >= high - 1e-6);
+        assert_true(found->is_complete);
+        run_close(&run);
+    }
+}
+
+/* Nothing bounds two laws that drive each other with a gain of two: then the range is a choice, and
+ * is said to be one; nor those of a transistor that carries current uphill
+ * (other slopes forward and backward). */
+static void test_range_unknown(void **state)
+{
+    (void)state;
+    struct run run;
+    run_states(&run,
+               "rail v 1 V\nlaw L1 a -> gnd i = (a.v - 2*b.v)/1 kohm\n"
+               "law L2 b -> gnd i = (b.v - 2*a.v + v.v)/1 kohm\n",
+               10000);
+    assert_true(run.result->states->is_assumed);
+    run_close(&run);
+    run_states(&run,
+               "model q npn\n saturation_current = 1 fA\n beta = 100\n emission = 1.1\nend\n"
+               "rail v 5 V\nresistor R v -> c 1k\nresistor RB v -> b 100k\n"
+               "npn Q c=c b=b e=gnd model=q\n",
+               10000);
+    assert_true(run.result->states->is_assumed);
+    run_close(&run);
+}
+
+/* --- in a review
+ * ---------------------------------------------------------------------------------- */
+
+static bool has_caution(const struct run *run, const char *code)
+{
+    for (int k = 0; k < run->result->cautions.count; k++) {
+        if (strcmp(run->result->cautions.list[k].code, code) == 0) {
+            return true;
+        }
+    }
+    return false;
+}
+
+/* By itself where there is a loop: the five states of N03, proved. */
+static void test_review_loop(void **state)
+{
+    (void)state;
+    struct run run;
+    run_review(&run, five_states, VIEW_FULL);
+    assert_non_null(run.result->states);
+    check_count(&run, 5);
+    assert_true(run.result->states->is_brief);
+    assert_int_equal(run.result->states->startup, STARTUP_AT_RISK);
+    assert_true(has_caution(&run, "loop"));
+    /* the page shows the state that it found before, and is that one marked */
+    const struct state_result *wanted = &run.result->states->states[run.result->states->wanted];
+    const int node = circuit_find_node(run.circuit, "c1");
+    assert_true(fabs(wanted->x[node - 1] - run.result->point.x[node - 1]) < 1e-9);
+    run_close(&run);
+}
+
+/* Without a loop nothing is looked for. */
+static void test_review_no_loop(void **state)
+{
+    (void)state;
+    struct run run;
+    run_review(&run,
+               "process \"n180.process\"\nrail vdd 1.8 V\nresistor R vdd -> a 50k\n"
+               "nmos M1 d=a g=a s=gnd W=2u L=1u\nnmos M2 d=o g=a s=gnd W=2u L=1u\n"
+               "output o at 1 V from 0 V to 1.8 V\n",
+               VIEW_FULL);
+    assert_null(run.result->states);
+    assert_false(has_caution(&run, "loop"));
+    run_close(&run);
+}
+
+/* The budget of a review is small: of the 81 states of four triggers it says that it did not
+ * finish, and gives those that it has. */
+static void test_review_budget(void **state)
+{
+    (void)state;
+    struct run run;
+    run_review(&run, TRIGGER_MODEL TRIGGER("x") TRIGGER("y") TRIGGER("z") TRIGGER("w"), VIEW_FULL);
+    const struct states_result *found = run.result->states;
+    assert_non_null(found);
+    assert_false(found->is_complete);
+    assert_true(found->boxes <= found->box_limit && found->state_count >= 1);
+    assert_true(found->undecided_boxes > 0);
+    assert_true(has_caution(&run, "loop"));
+    run_close(&run);
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -512,7 +653,9 @@ int main(void)
         cmocka_unit_test(test_no_budget),        cmocka_unit_test(test_multiplier),
         cmocka_unit_test(test_loop_curve),       cmocka_unit_test(test_loops),
         cmocka_unit_test(test_certificate),      cmocka_unit_test(test_no_point_from_cold),
-        cmocka_unit_test(test_no_state),
+        cmocka_unit_test(test_no_state),         cmocka_unit_test(test_range),
+        cmocka_unit_test(test_range_unknown),    cmocka_unit_test(test_review_loop),
+        cmocka_unit_test(test_review_no_loop),   cmocka_unit_test(test_review_budget),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
