@@ -17,7 +17,7 @@ static bool deliver_plot(const char *path, struct ampstead_result *result)
 {
     const char *svg = ampstead_result_plot(result);
     if (svg == NULL && ampstead_result_status(result) != AMPSTEAD_MACHINE) {
-        fprintf(stderr, "ampstead: %s: nothing to draw: no output and no sweep has a curve\n",
+        fprintf(stderr, "ampstead: %s: nothing to draw: the result holds no curve and no bars\n",
                 path);
         return true;
     }

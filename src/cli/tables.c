@@ -155,8 +155,9 @@ const struct option_row option_rows[OPTION_COUNT] = {
                     "writes CSV (SI units) to FILE; - is standard output instead of the text",
                     1 << VERB_REVIEW | 1 << VERB_SWEEP | 1 << VERB_SPREAD},
     [OPTION_PLOT] = {"plot", 0, ARGUMENT_NEEDED, "FILE", NULL, "off",
-                     "draws the curves to FILE; its ending says how: .svg, .pdf or .png",
-                     1 << VERB_REVIEW | 1 << VERB_SWEEP},
+                     "draws curves and bars to FILE; its ending says how: .svg, .pdf or .png",
+                     1 << VERB_REVIEW | 1 << VERB_SWEEP | 1 << VERB_STATES | 1 << VERB_SPREAD |
+                         1 << VERB_EXPLAIN | 1 << VERB_SENSITIVITY},
     [OPTION_PAGE] = {"page", 0, ARGUMENT_NEEDED, "FILE", NULL, "off",
                      "writes the whole review as one HTML file that needs nothing else",
                      1 << VERB_REVIEW},

@@ -138,8 +138,8 @@ AMPSTEAD_API const char *ampstead_result_json(struct ampstead_result *result);
  * commands. */
 AMPSTEAD_API const char *ampstead_result_csv(struct ampstead_result *result);
 
-/* The curves of review or sweep as one SVG document, text as text. NULL as above, and when there is
- * no curve. */
+/* The curves and bars of the command as one SVG document, text as text. NULL as above, and when there
+ * is nothing to draw. */
 AMPSTEAD_API const char *ampstead_result_plot(struct ampstead_result *result);
 
 /* The review as one self-contained HTML file. NULL as above, and for the other commands. */

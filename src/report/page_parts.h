@@ -16,6 +16,11 @@ void page_paper(struct layout *layout, const struct result *result);
 /* The effects behind each line of the paper, and what would meet a requirement that is not met;
  * both continue the part at hand. */
 void page_why(struct layout *layout, const struct result *result);
+/* A value or a change of an explanation, as the quantity itself is shown or as a conductance;
+ * whether its share number k is worth a row. */
+const char *why_value(struct layout *layout, const struct explanation *e, double value);
+const char *why_change(struct layout *layout, const struct explanation *e, double value);
+bool why_matters(const struct explanation *e, int k);
 void page_repairs(struct layout *layout, const struct result *result);
 /* States of a cell with a loop, and whether it starts; nothing where result->states is NULL. */
 void page_states(struct layout *layout, const struct result *result);

@@ -65,7 +65,7 @@ void report_json_models(const struct circuit *circuit, const char *version, stru
  */
 void report_csv(const struct result *result, struct buffer *out);
 
-/* The curves as one SVG document; nothing when the result has none. */
+/* Curves and bars as one SVG document; nothing when the result has none. */
 void report_plot(const struct result *result, struct buffer *out);
 
 /* The review as one self-contained HTML file. */
