@@ -6,6 +6,7 @@
  */
 #include "analyses/conditions.h"
 
+#include <assert.h>
 #include <math.h>
 #include <string.h>
 
@@ -251,6 +252,7 @@ static void judge_everywhere(const struct conditions_result *r, int k, int probe
             break;
         }
     }
+    assert(worst != NULL); /* the nominal point is always one of them */
     row->margin = worst->margins[k];
     row->computed = worst->values[probe];
     row->worst_at = worst->at;

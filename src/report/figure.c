@@ -250,14 +250,16 @@ static void put_axis_name(struct drawing *drawing, const char *name, const char 
 static void draw_grid(struct drawing *drawing, bool with_x_numbers)
 {
     const struct scale *x = &drawing->x, *y = &drawing->y;
-    for (double v = scale_first_tick(y); v <= y->high + 1e-6 * y->step; v += y->step) {
+    for (int k = 0; k < scale_tick_count(y); k++) {
+        const double v = scale_first_tick(y) + k * y->step;
         double at = scale_pixel(y, v);
         put_line(drawing, "f-grid", LEFT, at, drawing->right, at);
         begin_text(drawing, "f-tick", "end", LEFT - 8, at + 4.0);
         markup_fixed(drawing->out, fabs(v) < 1e-9 * y->step ? 0.0 : v * y->factor, y->decimals);
         put(drawing, "</text>\n");
     }
-    for (double v = scale_first_tick(x); v <= x->high + 1e-6 * x->step; v += x->step) {
+    for (int k = 0; k < scale_tick_count(x); k++) {
+        const double v = scale_first_tick(x) + k * x->step;
         double at = scale_pixel(x, v);
         put_line(drawing, "f-grid", at, drawing->top, at, drawing->bottom);
         if (with_x_numbers) {
@@ -401,7 +403,7 @@ static void draw_series_labels(struct drawing *drawing)
 {
     const struct figure *figure = drawing->figure;
     int order[LABEL_LIMIT];
-    double at[LABEL_LIMIT];
+    double at[LABEL_LIMIT] = {0};
     int count = 0;
     for (int s = 0; s < figure->series_count; s++) {
         double value = last_value(&figure->series[s]);

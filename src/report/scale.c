@@ -5,6 +5,8 @@
 #include <stdio.h>
 #include <string.h>
 
+enum { TICK_LIMIT = 1000 }; /* more come only of a range without digits */
+
 /* The nearest of 1, 2, 5 times a power of ten at or above a positive size. */
 static double round_step(double size)
 {
@@ -92,4 +94,10 @@ double scale_pixel(const struct scale *scale, double value)
 double scale_first_tick(const struct scale *scale)
 {
     return ceil(scale->low / scale->step - 1e-9) * scale->step;
+}
+
+int scale_tick_count(const struct scale *scale)
+{
+    const double count = floor((scale->high - scale_first_tick(scale)) / scale->step + 1e-6) + 1;
+    return count > 0 && count < TICK_LIMIT ? (int)count : 0;
 }

@@ -28,4 +28,7 @@ struct scale scale_make_share(double low, double high, int ticks);
 double scale_pixel(const struct scale *scale, double value);
 double scale_first_tick(const struct scale *scale);
 
+/* From the first on, each a step above the one before; 0 of a range without digits. */
+int scale_tick_count(const struct scale *scale);
+
 #endif
