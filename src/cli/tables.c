@@ -107,6 +107,9 @@ const struct option_row option_rows[OPTION_COUNT] = {
                      "the same seed gives the same samples, however many jobs", 1 << VERB_SPREAD},
     [OPTION_JOBS] = {"jobs", 'j', ARGUMENT_NEEDED, "N", NULL, "one a processor",
                      "threads for conditions and samples", 1 << VERB_SPREAD | 1 << VERB_REVIEW},
+    [OPTION_TIME_LIMIT] = {"time-limit", 0, ARGUMENT_NEEDED, "SECONDS", NULL, "3600",
+                           "the work stops there and shows what was done; 0: no limit",
+                           RESULT_VERBS | 1 << VERB_EXPLAIN},
     [OPTION_OF] = {"of", 0, ARGUMENT_NEEDED, "QUANTITY", NULL, "the current of every output",
                    "such as tail.resistance or M1.vgs", 1 << VERB_SENSITIVITY},
     [OPTION_GRID] = {"grid", 0, ARGUMENT_NEEDED, "LENGTH", NULL, "10 nm",
@@ -179,6 +182,6 @@ const struct status_row status_rows[] = {
     {AMPSTEAD_INPUT, "the input is wrong: language, options, files"},
     {AMPSTEAD_UNSOLVED, "no operating point was found"},
     {AMPSTEAD_MACHINE, "the machine failed: memory, disk"},
-    {AMPSTEAD_STOPPED, "stopped by the user"},
+    {AMPSTEAD_STOPPED, "stopped by the user or by the time limit"},
     {0, NULL},
 };

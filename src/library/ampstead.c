@@ -2,6 +2,8 @@
 #include "library/ampstead.h"
 
 #include <math.h>
+#include <stdatomic.h>
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -106,11 +108,10 @@ static char *process_cell(const char *path)
     static const char before[] = "process \"", after[] = "\"\n";
     const char *slash = strrchr(path, '/');
     const char *name = slash == NULL ? path : slash + 1;
-    char *text = malloc(sizeof before + strlen(name) + sizeof after);
+    const size_t size = sizeof before + strlen(name) + sizeof after;
+    char *text = malloc(size);
     if (text != NULL) {
-        strcpy(text, before);
-        strcat(text, name);
-        strcat(text, after);
+        snprintf(text, size, "%s%s%s", before, name, after);
     }
     return text;
 }
@@ -180,21 +181,26 @@ static enum status build(const struct ampstead_request *request, struct ampstead
 
 struct hooks {
     const struct ampstead_request *request;
+    atomic_bool was_stopped; /* a yes was given: some of the work was left out */
 };
 
 static bool ask_stopped(void *self)
 {
-    const struct hooks *hooks = self;
-    return hooks->request->stopped(hooks->request->stopped_self) != 0;
+    struct hooks *hooks = self;
+    if (hooks->request->stopped(hooks->request->stopped_self) == 0) {
+        return false;
+    }
+    atomic_store(&hooks->was_stopped, true);
+    return true;
 }
 
-static enum status analyse(const struct ampstead_request *request, struct ampstead_result *result)
+static enum status analyse(const struct ampstead_request *request, struct hooks *hooks,
+                           struct ampstead_result *result)
 {
-    struct hooks hooks = {request};
     struct analysis_options options = {
         .view = request->view == AMPSTEAD_VIEW_HAND ? VIEW_HAND : VIEW_FULL,
         .stopped = request->stopped != NULL ? ask_stopped : NULL,
-        .stopped_self = &hooks,
+        .stopped_self = hooks,
         .progress = request->progress,
         .progress_self = request->progress_self,
         .certify = request->certify != 0,
@@ -292,6 +298,23 @@ static const char *check_request(const struct ampstead_request *request, enum co
     return request->command == NULL ? NULL : "the request has an unknown command";
 }
 
+/*
+ * A search that is stopped may end as one that found nothing, and a part that failed may be left
+ * out: whichever way the work ended after it was told to stop, the result is a stopped one.
+ */
+static enum status analyse_or_stop(const struct ampstead_request *request,
+                                   struct ampstead_result *result)
+{
+    struct hooks hooks = {.request = request};
+    const enum status status = analyse(request, &hooks, result);
+    const bool has_ended = status == STATUS_OK || status == STATUS_UNSOLVED;
+    if (result->found != NULL && has_ended && atomic_load(&hooks.was_stopped)) {
+        result->found->is_stopped = true;
+        return STATUS_STOPPED;
+    }
+    return status;
+}
+
 static enum status run(const struct ampstead_request *request, struct ampstead_result *result)
 {
     result->trouble = check_request(request, &result->command);
@@ -319,7 +342,7 @@ static enum status run(const struct ampstead_request *request, struct ampstead_r
         status = STATUS_INPUT;
     }
     if (status == STATUS_OK) {
-        status = analyse(request, result);
+        status = analyse_or_stop(request, result);
     }
     if (result->cell != NULL && result->cell->diagnostics.out_of_memory) {
         return STATUS_MEMORY;
