@@ -111,8 +111,7 @@ static bool find_groups(struct builder *b, int *count)
     return true;
 }
 
-/* --- rows and arguments
- * --------------------------------------------------------------------------- */
+/* --- rows and arguments ----------------------------------------------------------------------- */
 
 static int row_of(const struct builder *b, int node)
 {

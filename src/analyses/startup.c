@@ -70,8 +70,7 @@ static enum status ramp_rails(struct states_work *w, struct states_result *found
     return STATUS_OK;
 }
 
-/* --- the open loop
- * -------------------------------------------------------------------------------- */
+/* --- the open loop ---------------------------------------------------------------------------- */
 
 /* Rails and gnd: where a probe can lie. */
 static void rail_span(const struct states_work *w, double *low, double *high)
@@ -229,8 +228,7 @@ static double off_end(const struct states_work *w)
     return pulled_to(w, &pulled) ? pulled : v - low > high - v ? low : high;
 }
 
-/* --- the start-up branch
- * -------------------------------------------------------------------------- */
+/* --- the start-up branch ---------------------------------------------------------------------- */
 
 /* The value that makes an instance vanish; -1: it has none. */
 static int vanishing_value(const struct instance *instance, double own, double *value)
@@ -338,8 +336,7 @@ static enum status judge_push(struct states_work *w, struct states_result *found
                                                                         : status;
 }
 
-/* --- the lowest supply
- * ---------------------------------------------------------------------------- */
+/* --- the lowest supply ------------------------------------------------------------------------ */
 
 /* The output that has left its band at x, or NULL. */
 static const struct output *lost_output(const struct states_work *w, const double *x)
@@ -425,8 +422,7 @@ static enum status lower_supplies(struct states_work *w, struct states_result *f
     return status;
 }
 
-/* --- the verdict
- * ------------------------------------------------------------------------------------ */
+/* --- the verdict ------------------------------------------------------------------------------ */
 
 static void give_reason(struct states_result *found, const char *text)
 {
