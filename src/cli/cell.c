@@ -233,6 +233,7 @@ int cell_request(const struct options *options, const volatile sig_atomic_t *sto
     request.sweep = options->values[OPTION_SWEEP];
     request.certify = options->given[OPTION_CERTIFY];
     request.leakage = options->values[OPTION_LEAKAGE];
+    request.whole = options->given[OPTION_PAGE] && !options->given[OPTION_WATCH];
     request.of = options->values[OPTION_OF];
     request.grid = options->values[OPTION_GRID];
     request.stopped = terminal_stopped;
