@@ -110,8 +110,7 @@ static bool find_groups(struct builder *b, int *count)
     return true;
 }
 
-/* --- rows and arguments
- * --------------------------------------------------------------------------- */
+/* --- rows and arguments ----------------------------------------------------------------------- */
 
 static int row_of(const struct builder *b, int node)
 {
@@ -423,8 +422,7 @@ static void add_instance(struct builder *b, int k)
     }
 }
 
-/* --- where to look
- * -------------------------------------------------------------------------------- */
+/* --- where to look ---------------------------------------------------------------------------- */
 
 /*
  * No node of a cell of these devices lies outside the rails, spread by its floating sources: none

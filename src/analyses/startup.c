@@ -70,8 +70,7 @@ static enum status ramp_rails(struct states_work *w, struct states_result *found
     return STATUS_OK;
 }
 
-/* --- the open loop
- * -------------------------------------------------------------------------------- */
+/* --- the open loop ---------------------------------------------------------------------------- */
 
 /* Rails and gnd: where a probe can lie. */
 static void rail_span(const struct states_work *w, double *low, double *high)
@@ -243,8 +242,7 @@ enum status startup_push(struct states_work *w, int points, double *push)
     return least_push(w, w->wanted, off_end(w), points, push, &at, x);
 }
 
-/* --- the start-up branch
- * -------------------------------------------------------------------------- */
+/* --- the start-up branch ---------------------------------------------------------------------- */
 
 /* The value that makes an instance vanish; -1: it has none. */
 static int vanishing_value(const struct instance *instance, double own, double *value)
@@ -351,8 +349,7 @@ static enum status judge_push(struct states_work *w, struct states_result *found
     return status == STATUS_OK && isfinite(found->push) ? find_starters(w, found, x) : status;
 }
 
-/* --- the lowest supply
- * ---------------------------------------------------------------------------- */
+/* --- the lowest supply ------------------------------------------------------------------------ */
 
 /* The output that has left its band at x, or NULL. */
 static const struct output *lost_output(const struct states_work *w, const double *x)
@@ -438,8 +435,7 @@ static enum status lower_supplies(struct states_work *w, struct states_result *f
     return status;
 }
 
-/* --- the verdict
- * ------------------------------------------------------------------------------------ */
+/* --- the verdict ------------------------------------------------------------------------------ */
 
 static void give_reason(struct states_result *found, const char *text)
 {

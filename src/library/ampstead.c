@@ -7,6 +7,7 @@
 
 #include "analyses/analysis.h"
 #include "analyses/size.h"
+#include "library/answer.h"
 #include "library/edit.h"
 #include "library/place.h"
 #include "library/request.h"
@@ -365,40 +366,15 @@ enum ampstead_status ampstead_result_status(const struct ampstead_result *result
     return result == NULL ? AMPSTEAD_MACHINE : result->status;
 }
 
-static void restart(struct buffer *buffer)
-{
-    buffer_free(buffer);
-    *buffer = BUFFER_EMPTY;
-}
-
-/* The finished text, or NULL after a failed allocation, which is then the status too. */
-static const char *finished(struct ampstead_result *result, const struct buffer *buffer)
-{
-    if (buffer->failed) {
-        result->status = AMPSTEAD_MACHINE;
-        return NULL;
-    }
-    return buffer->data == NULL ? "" : buffer->data;
-}
-
 const char *ampstead_result_messages(struct ampstead_result *result, unsigned flags)
 {
-    static const char short_memory[] = "ampstead: memory is short\n";
     if (result == NULL) {
-        return short_memory;
+        return answer_short_memory;
     }
-    restart(&result->messages);
-    if (result->trouble != NULL) {
-        buffer_format(&result->messages, "ampstead: %s\n", result->trouble);
-    } else if (result->cell != NULL) {
-        diagnostics_print(&result->cell->diagnostics, &result->cell->sources,
-                          (flags & AMPSTEAD_COLOR) != 0, &result->messages);
-    }
-    if (result->status == AMPSTEAD_MACHINE) {
-        buffer_text(&result->messages, short_memory);
-    }
-    const char *text = finished(result, &result->messages);
-    return text == NULL ? short_memory : text;
+    return answer_messages(&result->messages, result->trouble,
+                           result->cell == NULL ? NULL : &result->cell->diagnostics,
+                           result->cell == NULL ? NULL : &result->cell->sources, flags,
+                           &result->status);
 }
 
 /* Whether the command came far enough to have something to report. */
@@ -413,12 +389,12 @@ static bool has_report(const struct ampstead_result *result)
 const char *ampstead_result_text(struct ampstead_result *result, unsigned flags, int columns)
 {
     if (result != NULL && result->command == COMMAND_FORMAT) {
-        return result->status == AMPSTEAD_WELL ? finished(result, &result->text) : NULL;
+        return result->status == AMPSTEAD_WELL ? answer_end(&result->text, &result->status) : NULL;
     }
     if (result != NULL && result->command == COMMAND_CHECK && result->cell != NULL) {
-        restart(&result->text);
+        answer_begin(&result->text);
         edit_list_errors(result->cell, &result->text);
-        return finished(result, &result->text);
+        return answer_end(&result->text, &result->status);
     }
     if (!has_report(result)) {
         return NULL;
@@ -429,7 +405,7 @@ const char *ampstead_result_text(struct ampstead_result *result, unsigned flags,
         .stopped = result->status == AMPSTEAD_STOPPED,
         .columns = columns,
     };
-    restart(&result->text);
+    answer_begin(&result->text);
     switch (result->command) {
     case COMMAND_POINT:
         report_point(result->found, &style, &result->text);
@@ -462,7 +438,7 @@ const char *ampstead_result_text(struct ampstead_result *result, unsigned flags,
         report_page(result->found, &style, &result->text);
         break;
     }
-    return finished(result, &result->text);
+    return answer_end(&result->text, &result->status);
 }
 
 const char *ampstead_result_json(struct ampstead_result *result)
@@ -470,13 +446,13 @@ const char *ampstead_result_json(struct ampstead_result *result)
     if (!has_report(result) || result->command == COMMAND_CHECK) {
         return NULL;
     }
-    restart(&result->json);
+    answer_begin(&result->json);
     if (result->command == COMMAND_MODELS) {
         report_json_models(result->circuit, AMPSTEAD_VERSION, &result->json);
     } else {
         report_json(result->found, AMPSTEAD_VERSION, &result->json);
     }
-    return finished(result, &result->json);
+    return answer_end(&result->json, &result->status);
 }
 
 const char *ampstead_result_csv(struct ampstead_result *result)
@@ -486,9 +462,9 @@ const char *ampstead_result_csv(struct ampstead_result *result)
          result->command != COMMAND_SPREAD)) {
         return NULL;
     }
-    restart(&result->csv);
+    answer_begin(&result->csv);
     report_csv(result->found, &result->csv);
-    return finished(result, &result->csv);
+    return answer_end(&result->csv, &result->status);
 }
 
 const char *ampstead_result_plot(struct ampstead_result *result)
@@ -496,10 +472,11 @@ const char *ampstead_result_plot(struct ampstead_result *result)
     if (!has_report(result) || result->found == NULL) {
         return NULL;
     }
-    restart(&result->plot);
+    answer_begin(&result->plot);
     report_plot(result->found, &result->plot);
-    return result->plot.length == 0 && !result->plot.failed ? NULL
-                                                            : finished(result, &result->plot);
+    return result->plot.length == 0 && !result->plot.failed
+               ? NULL
+               : answer_end(&result->plot, &result->status);
 }
 
 const char *ampstead_result_page(struct ampstead_result *result)
@@ -508,9 +485,9 @@ const char *ampstead_result_page(struct ampstead_result *result)
         return NULL;
     }
     const struct report_style style = {.stopped = result->status == AMPSTEAD_STOPPED};
-    restart(&result->page);
+    answer_begin(&result->page);
     report_web(result->found, &style, AMPSTEAD_VERSION, &result->page);
-    return finished(result, &result->page);
+    return answer_end(&result->page, &result->status);
 }
 
 const char *ampstead_result_file(const struct ampstead_result *result, int index)
@@ -552,12 +529,12 @@ const char *ampstead_result_cell(struct ampstead_result *result, const char *rou
     const double *values =
         arena == NULL ? NULL : chosen_values(result->found->size, rounding, arena);
     const char *text = values == NULL ? NULL : size_rewrite(result->circuit, values, arena);
-    restart(&result->cell_text);
+    answer_begin(&result->cell_text);
     if (text != NULL) {
         buffer_text(&result->cell_text, text);
     }
     arena_destroy(arena);
-    return text == NULL ? NULL : finished(result, &result->cell_text);
+    return text == NULL ? NULL : answer_end(&result->cell_text, &result->status);
 }
 
 int ampstead_result_value(const struct ampstead_result *result, const char *name, double *value)

@@ -477,8 +477,7 @@ static void test_loops(void **state)
                          "resistor R1 o -> p 1k\nresistor R2 p -> gnd 3k\n"));
 }
 
-/* --- certificate of one point
- * ---------------------------------------------------------------------- */
+/* --- certificate of one point ----------------------------------------------------------------- */
 
 /* A divider: the box holds the closed form. */
 static void test_certificate(void **state)
