@@ -76,7 +76,7 @@ struct ampstead_request {
     const char *leakage; /* for command "states": "1 nA", a push below it is at risk; NULL: that */
     int samples;         /* for command "spread": mismatch samples, 0 to AMPSTEAD_SAMPLE_LIMIT */
     unsigned long long seed; /* the same seed gives the same samples, whatever `jobs` is */
-    int jobs;                /* threads, for "spread" and `everywhere`; 0: one a processor */
+    int jobs;  /* threads, for "spread", "sweep" and `everywhere`; 0: one a processor */
     int whole; /* for command "review": not 0 also finds what "spread" and "states" do,
                   for the page alone; takes as long as these */
 };
