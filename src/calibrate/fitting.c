@@ -19,6 +19,7 @@ static const struct {
     {NEED_DRAIN, "no drain sweep into saturation"},
     {NEED_LENGTHS, "one length"},
     {NEED_WIDTHS, "one width"},
+    {NEED_SHAPE, "fewer than four lengths"},
     {NEED_SHORT, "no lengths on both sides of 0.3 um"},
     {NEED_BREAKDOWN, "no breakdown in the data"},
     {NEED_COLLECTOR, "one collector voltage"},

@@ -218,8 +218,9 @@ static void values_table(struct layout *layout, const struct fit *fit)
     table_column(&table, (struct table_column){.head = "", .wraps = true});
     for (int k = 0; k < fit->value_count; k++) {
         const struct fitted_value *it = &fit->values[k];
-        bool is_fixed = it->origin == ORIGIN_SHAPE && fabs(it->value) <= 0 &&
-                        fabs(it->parameter->standard) <= 0;
+        bool is_absent = isnan(it->value) && it->parameter->when_absent == DEFAULT_NONE;
+        bool is_fixed = it->origin == ORIGIN_SHAPE &&
+                        (is_absent || (fabs(it->value) <= 0 && fabs(it->parameter->standard) <= 0));
         if ((it->origin == ORIGIN_DEFAULT && it->reason == NULL) || is_fixed) {
             continue;
         }
