@@ -82,7 +82,7 @@ enum status fitting_solve(struct calibration *calibration, struct fitting *fitti
 void fitting_values(const struct fit *fit, double *model);
 
 /* Adds a relative error to a figure; makes it the root mean square at the end. */
-void figure_add(struct figure *figure, double error);
-void figure_finish(struct figure *figure);
+void misfit_add(struct misfit *figure, double error);
+void misfit_finish(struct misfit *figure);
 
 #endif
