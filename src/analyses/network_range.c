@@ -635,13 +635,15 @@ bool network_range(struct arena *arena, const struct system *system, struct netw
     const double chosen = map->is_assumed ? chosen_spread(&r) : 0;
     map->low = r.rail[DOWN];
     map->high = r.rail[UP];
+    const double rounding = slack * (1 + map->high - map->low); /* not shown as a range */
     for (int g = 0; g < r.groups; g++) {
         struct interval at = {r.rail[DOWN] - chosen, r.rail[UP] + chosen};
         if (!map->is_assumed || (!r.is_suspect && interval_inside(r.bound[g], at))) {
             at = r.bound[g];
         }
-        map->low = fmin(map->low, at.lo + r.least[g]);
-        map->high = fmax(map->high, at.hi + r.most[g]);
+        const double least = at.lo + r.least[g], most = at.hi + r.most[g];
+        map->low = least < map->low - rounding ? least : map->low;
+        map->high = most > map->high + rounding ? most : map->high;
         /* a margin for rounding at the ends */
         map->network->start[g] = (struct interval){at.lo - 1e-6, at.hi + 1e-6};
     }

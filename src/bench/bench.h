@@ -46,6 +46,7 @@ struct bench_row {
 
 void bench_point(const struct bench_options *options, struct bench_result *result);
 void bench_iterate(const struct bench_options *options, struct bench_result *result);
+void bench_samples(const struct bench_options *options, struct bench_result *result);
 void bench_grow(const struct bench_options *options, struct bench_result *result);
 void bench_cores(const struct bench_options *options, struct bench_result *result);
 void bench_review(const struct bench_options *options, struct bench_result *result);

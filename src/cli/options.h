@@ -51,6 +51,7 @@ enum option {
     OPTION_SAMPLES,
     OPTION_SEED,
     OPTION_JOBS,
+    OPTION_TIME_LIMIT,
     OPTION_OF,
     OPTION_GRID,
     OPTION_WRITE,

@@ -29,7 +29,7 @@ struct linear_solver {
  * -Wcast-qual useful everywhere else. */
 static double *readable(const double *values)
 {
-    return (double *)(uintptr_t)values;
+    return (double *)(uintptr_t)values; /* NOLINT(performance-no-int-to-ptr) */
 }
 
 struct linear_solver *linear_create(const struct pattern *pattern)
@@ -141,6 +141,18 @@ enum linear_status linear_factor(struct linear_solver *solver, const double *val
 void linear_forget(struct linear_solver *solver)
 {
     klu_free_numeric(&solver->numeric, &solver->common);
+}
+
+bool linear_pivots(const struct linear_solver *solver, int *row, int *column)
+{
+    if (solver->numeric == NULL) {
+        return false;
+    }
+    for (int k = 0; k < solver->pattern->n; k++) {
+        row[k] = solver->numeric->Pnum[k];
+        column[k] = solver->symbolic->Q[k];
+    }
+    return true;
 }
 
 void linear_solve(struct linear_solver *solver, double *b)

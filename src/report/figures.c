@@ -248,7 +248,9 @@ struct figure_list figures_of_curves(struct layout *layout, const struct result 
     struct figure_list figures = {NULL, 0, 0};
     if (result->point.solver.converged) {
         add_outputs(layout, &figures, result);
-        for (int k = 0; k < result->sweep_count; k++) {
+        /* those of a spread stand as its conditions */
+        const bool has_sweeps = strcmp(result->command, "spread") != 0;
+        for (int k = 0; has_sweeps && k < result->sweep_count; k++) {
             add_sweep(layout, &figures, &result->sweeps[k]);
         }
     }

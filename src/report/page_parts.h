@@ -54,6 +54,12 @@ int column_quantity(const struct quantity_column *column, const struct device_ty
 const char *column_head(struct layout *layout, const struct quantity_column *column,
                         const struct device_result *const *shown, int count);
 
+/* "11 random deviates; 2000 samples of seed 1, each a full solve; 0 without an operating point" */
+const char *page_samples(struct layout *layout, const struct mismatch_result *mismatch);
+/* The unit that a drift is counted per: only temperatures and voltages have a usual one; else NULL.
+ */
+const char *drift_unit(const struct knob *knob);
+
 /* Samples, causes and yield. */
 void page_mismatch(struct layout *layout, const struct result *result);
 
