@@ -12,7 +12,6 @@
 #include "cli/picture.h"
 #include "cli/terminal.h"
 
-/* The picture in the form that the ending of the path asks for. */
 static bool deliver_plot(const char *path, struct ampstead_result *result)
 {
     const char *svg = ampstead_result_plot(result);
@@ -21,19 +20,7 @@ static bool deliver_plot(const char *path, struct ampstead_result *result)
                 path);
         return true;
     }
-    if (svg == NULL || picture_form(path) == PICTURE_SVG) {
-        return output_deliver(path, svg);
-    }
-    struct picture picture = {NULL, 0, 0};
-    const char *trouble = picture_make(svg, picture_form(path), &picture);
-    bool is_written = false;
-    if (trouble != NULL) {
-        fprintf(stderr, "ampstead: %s: %s\n", path, trouble);
-    } else {
-        is_written = output_file(path, picture.data, picture.length);
-    }
-    picture_free(&picture);
-    return is_written;
+    return picture_deliver(path, svg);
 }
 
 /* No copy of the cell: there is no solution, this rounding rounds nothing here, or a message says

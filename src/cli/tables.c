@@ -166,7 +166,7 @@ const struct option_row option_rows[OPTION_COUNT] = {
     [OPTION_PLOT] = {"plot", 0, ARGUMENT_NEEDED, "FILE", NULL, "off",
                      "draws curves and bars to FILE; its ending says how: .svg, .pdf or .png",
                      1 << VERB_REVIEW | 1 << VERB_SWEEP | 1 << VERB_STATES | 1 << VERB_SPREAD |
-                         1 << VERB_EXPLAIN | 1 << VERB_SENSITIVITY},
+                         1 << VERB_EXPLAIN | 1 << VERB_SENSITIVITY | CALIBRATE},
     [OPTION_PAGE] = {"page", 0, ARGUMENT_NEEDED, "FILE", NULL, "off",
                      "writes the result as one HTML file that needs nothing else; of a review also "
                      "what spread and states find, unless --watch is given",
