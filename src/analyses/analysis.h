@@ -25,6 +25,7 @@ struct analysis_options {
                             explanations and repairs out */
     int jobs;            /* threads; 0: one a processor */
     int samples;         /* analysis_spread: 0 leaves the sampled part out */
+    int lanes;           /* most samples side by side; 0: as many as the processor takes, 1: one */
     uint64_t seed;
     const struct probe *wanted; /* for analysis_sensitivity; NULL: the currents of all outputs */
     double grid;                /* m, for analysis_size: lengths are whole multiples of it */

@@ -75,8 +75,7 @@ static enum status end(enum status status, struct bench *bench, struct result **
     return status;
 }
 
-/* --- the commands
- * ---------------------------------------------------------------------------------- */
+/* --- the commands ----------------------------------------------------------------------------- */
 
 enum status analysis_explain(struct circuit *circuit, const struct analysis_options *options,
                              struct result **result)
@@ -175,8 +174,7 @@ enum status analysis_sensitivity(struct circuit *circuit, const struct analysis_
     return end(status, &bench, result);
 }
 
-/* --- for review
- * -------------------------------------------------------------------------------------- */
+/* --- for review ------------------------------------------------------------------------------- */
 
 static bool is_failed(const struct result *result)
 {

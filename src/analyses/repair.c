@@ -131,8 +131,7 @@ static enum status predict(struct repairer *r, struct arena *arena)
     return status;
 }
 
-/* --- one candidate
- * -------------------------------------------------------------------------------- */
+/* --- one candidate ---------------------------------------------------------------------------- */
 
 /* Distance of the quantity from the aim with the candidate at exp(x) times its value; NAN where
  * there is none. */
@@ -182,8 +181,7 @@ static double four_digits(double value)
     return round(value * scale) / scale;
 }
 
-/* --- the verdict on a change
- * ---------------------------------------------------------------------- */
+/* --- the verdict on a change ------------------------------------------------------------------ */
 
 static bool needs_curve(const struct circuit *c, int output)
 {
@@ -268,8 +266,7 @@ static bool is_met_at(struct repairer *r, const struct candidate *it, double to,
     return met;
 }
 
-/* --- the search
- * ------------------------------------------------------------------------------------ */
+/* --- the search ------------------------------------------------------------------------------- */
 
 /* Those that break nothing first, then the smaller change. */
 static bool is_before(const struct repair *a, const struct repair *b)

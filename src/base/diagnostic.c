@@ -83,6 +83,34 @@ static int characters(const struct source_file *file, uint32_t begin, uint32_t e
     return count;
 }
 
+enum { LOST_LIMIT = 1000 };
+
+void diagnostics_lose(struct diagnostics *d, const char *name)
+{
+    if (d->lost_count >= LOST_LIMIT) {
+        return;
+    }
+    const char **list =
+        arena_grow(d->arena, d->lost, d->lost_count, &d->lost_capacity, sizeof *list);
+    if (list == NULL) {
+        d->out_of_memory = true;
+        return;
+    }
+    d->lost = list;
+    d->lost[d->lost_count++] = name;
+}
+
+bool diagnostics_has_lost(struct diagnostics *d, const char *name)
+{
+    for (int k = 0; k < d->lost_count; k++) {
+        if (strcmp(d->lost[k], name) == 0) {
+            d->passed_over++;
+            return true;
+        }
+    }
+    return false;
+}
+
 void source_position(const struct source_file *file, uint32_t offset, int *line, int *column)
 {
     uint32_t at = offset < file->length ? offset : file->length;

@@ -50,12 +50,21 @@ struct diagnostics {
     struct diagnostic *list;
     int count, capacity;
     bool out_of_memory; /* a diagnostic was lost: the call must end with STATUS_MEMORY */
+    const char **lost;  /* names that lines with errors would have made */
+    int lost_count, lost_capacity;
+    int passed_over; /* times that one of them was missed */
 };
 
 /* Adds an error at `where`. `hint` (may be NULL) is copied. The same text at the same place is
  * kept once. */
 void diagnostics_add(struct diagnostics *diagnostics, struct span where, const char *hint,
                      const char *format, ...) __attribute__((format(printf, 4, 5)));
+
+/* A line that is wrong would have made something of this name (borrowed); at most 1000 are kept. */
+void diagnostics_lose(struct diagnostics *diagnostics, const char *name);
+
+/* Whether that was told, so that not to find it is no error of its own; counted in passed_over. */
+bool diagnostics_has_lost(struct diagnostics *diagnostics, const char *name);
 
 /* Line and column (both from 1; the column counts characters, not bytes) of a byte offset. */
 void source_position(const struct source_file *file, uint32_t offset, int *line, int *column);

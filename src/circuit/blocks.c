@@ -132,6 +132,9 @@ static const struct statement *find_block(struct builder *b, const struct word *
     if (index >= 0) {
         return b->blocks[index].statement;
     }
+    if (diagnostics_has_lost(b->diagnostics, name->text)) {
+        return NULL;
+    }
     const int count = names_list(b->circuit->names, NAME_BLOCK, b->known, LIST_LIMIT);
     diagnostics_add(b->diagnostics, name->span,
                     hint_near(b->arena, name->text, b->known, count, NULL),

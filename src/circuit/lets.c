@@ -16,6 +16,7 @@ static bool add_let(struct builder *b, const struct statement *statement)
     if (unit_parse(name, strlen(name), &factor, &dimension, &celsius)) {
         diagnostics_add(b->diagnostics, statement->name.span, "give it a longer name",
                         "'%s' is a unit and cannot name a value", name);
+        diagnostics_lose(b->diagnostics, name);
         return true;
     }
     if (names_find(c->names, NAME_LET, name) >= 0) {

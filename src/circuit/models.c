@@ -220,7 +220,7 @@ static bool models_of(struct builder *b, const struct tree *tree, const char *pr
 
 static void unknown_model(struct builder *b, const struct assignment *a, const char *name)
 {
-    if (b->process_missing) {
+    if (b->process_missing || diagnostics_has_lost(b->diagnostics, name)) {
         return;
     }
     const int count = names_list(b->circuit->names, NAME_MODEL, b->known, LIST_LIMIT);
@@ -361,14 +361,14 @@ static void check_corner(struct builder *b)
                     "there is no corner '%s'", wanted);
 }
 
-static bool process_is_missing(const struct cell *cell)
+static bool process_is_missing(struct cell *cell)
 {
     int named = 0;
     for (int k = 0; k < cell->tree.count; k++) {
         const struct statement *statement = cell->tree.statements[k];
         named += statement->kind == STATEMENT_PROCESS;
     }
-    return named > cell->process_count;
+    return named > cell->process_count || diagnostics_has_lost(&cell->diagnostics, "process");
 }
 
 bool build_models(struct builder *b)

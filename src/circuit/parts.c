@@ -46,6 +46,9 @@ static void unknown_word(struct builder *b, const struct statement *statement)
                     hint_near(b->arena, statement->type.text, b->known, count,
                               "docs/language.md lists the statements"),
                     "'%s' is neither a statement nor a device", statement->type.text);
+    if (statement->name.text != NULL) {
+        diagnostics_lose(b->diagnostics, statement->name.text);
+    }
 }
 
 static const struct device_type *part_type(struct builder *b, const struct statement *statement)
@@ -116,8 +119,8 @@ static void set_model(struct part *part, const struct assignment *a)
         return;
     }
     const int m = names_find(c->names, NAME_MODEL, a->value->name);
-    if (m < 0 && b->process_missing) {
-        return; /* reported with the process */
+    if (m < 0 && (b->process_missing || diagnostics_has_lost(b->diagnostics, a->value->name))) {
+        return; /* reported with the process or the model */
     }
     if (m < 0) {
         int count = 0;
@@ -499,13 +502,13 @@ static bool make_instance(struct part *part)
         return true;
     }
     struct instance *instance =
-        build_instance(b, part->name, part->type, part->statement->name.span);
+        build_bare_instance(b, part->name, part->type, part->statement->name.span);
     if (instance == NULL) {
         return false;
     }
     const int index = c->instance_count - 1;
-    memcpy(instance->own, part->own, (size_t)part->type->parameter_count * sizeof *part->own);
-    memcpy(instance->given, part->given, (size_t)part->type->parameter_count);
+    instance->own = part->own;
+    instance->given = part->given;
     instance->model = part->model;
     instance->model_values = model;
     instance->extra = extra;
@@ -529,11 +532,11 @@ bool build_part(const struct frame *frame, const struct statement *statement)
                     ? statement->name.text
                     : arena_format(b->arena, "%s%s", frame->prefix, statement->name.text);
     part.own = arena_new_array(b->arena, double, type->parameter_count);
-    part.given = arena_new_array(b->arena, bool, type->parameter_count);
-    part.wrong = arena_new_array(b->arena, bool, type->parameter_count);
-    if (part.name == NULL || part.own == NULL || part.given == NULL || part.wrong == NULL) {
+    part.given = arena_new_array(b->arena, bool, 2 * type->parameter_count);
+    if (part.name == NULL || part.own == NULL || part.given == NULL) {
         return false;
     }
+    part.wrong = part.given + type->parameter_count;
     for (int p = 0; p < type->parameter_count; p++) {
         const struct parameter *row = &type->parameters[p];
         part.own[p] = row->when_absent == DEFAULT_NONE ? PARAMETER_NONE : row->standard;
@@ -541,7 +544,7 @@ bool build_part(const struct frame *frame, const struct statement *statement)
     for (int t = 0; t < TERMINAL_LIMIT; t++) {
         part.nodes[t] = -1;
     }
-    const int errors = b->diagnostics->count;
+    const int errors = b->diagnostics->count + b->diagnostics->passed_over;
     const bool is_new = build_name_is_new(b, part.name, statement->name.span);
     if (!read_arrow(&part) || !read_assignments(&part)) {
         return false;
@@ -554,7 +557,7 @@ bool build_part(const struct frame *frame, const struct statement *statement)
         return true;
     }
     const int index = b->circuit->instance_count;
-    if (b->diagnostics->count == errors && !make_instance(&part)) {
+    if (b->diagnostics->count + b->diagnostics->passed_over == errors && !make_instance(&part)) {
         return false;
     }
     return names_add(b->circuit->names, NAME_INSTANCE, part.name,

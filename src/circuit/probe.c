@@ -75,6 +75,9 @@ static void unknown_thing(const struct circuit *c, const char *thing, struct spa
     static const enum name_sort sorts[] = {NAME_OUTPUT, NAME_RAIL, NAME_INSTANCE, NAME_NODE};
     const char *list[LIST_LIMIT];
     int count = 0;
+    if (diagnostics_has_lost(diagnostics, thing)) {
+        return;
+    }
     for (size_t k = 0; k < sizeof sorts / sizeof sorts[0]; k++) {
         count += names_list(c->names, sorts[k], list + count, LIST_LIMIT - count);
     }
@@ -88,6 +91,9 @@ static void unknown_quantity(const struct sort *sorts, int count, const char *th
 {
     const char *list[200];
     int known = 0;
+    if (diagnostics_has_lost(diagnostics, thing)) {
+        return; /* what it would have been has more quantities */
+    }
     for (int s = 0; s < count; s++) {
         for (int r = 0; r < sorts[s].row_count && known < 200; r++) {
             list[known++] = sorts[s].rows[r].name;

@@ -391,7 +391,7 @@ static void check_quiet(struct builder *b, const struct statement *statement)
         }
         count += names_list(names, sorts[k], b->known + count, LIST_LIMIT - count);
     }
-    if (name->text != NULL) {
+    if (name->text != NULL && !diagnostics_has_lost(b->diagnostics, name->text)) {
         diagnostics_add(b->diagnostics, name->span,
                         hint_near(b->arena, name->text, b->known, count, NULL),
                         "nothing is called '%s'", name->text);

@@ -17,7 +17,7 @@ static bool deliver_plot(const char *path, struct ampstead_result *result)
 {
     const char *svg = ampstead_result_plot(result);
     if (svg == NULL && ampstead_result_status(result) != AMPSTEAD_MACHINE) {
-        fprintf(stderr, "ampstead: %s: nothing to draw: no output and no sweep has a curve\n",
+        fprintf(stderr, "ampstead: %s: nothing to draw: the result holds no curve and no bars\n",
                 path);
         return true;
     }
@@ -233,6 +233,7 @@ int cell_request(const struct options *options, const volatile sig_atomic_t *sto
     request.sweep = options->values[OPTION_SWEEP];
     request.certify = options->given[OPTION_CERTIFY];
     request.leakage = options->values[OPTION_LEAKAGE];
+    request.whole = options->given[OPTION_PAGE] && !options->given[OPTION_WATCH];
     request.of = options->values[OPTION_OF];
     request.grid = options->values[OPTION_GRID];
     request.stopped = terminal_stopped;

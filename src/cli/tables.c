@@ -12,6 +12,9 @@ enum {
     ALL_VERBS = CELL_VERBS | CALIBRATE | 1 << VERB_CHECK | 1 << VERB_FORMAT | 1 << VERB_HELP
 };
 
+/* Also an option of `review`, for its --page. */
+#define IN_PAGE(verb) (1 << (verb) | 1 << VERB_REVIEW)
+
 const struct verb_row verb_rows[VERB_COUNT] = {
     [VERB_REVIEW] =
         {"review", "FILE.cell", "does the hand design hold? one page (also without a verb)",
@@ -98,15 +101,18 @@ const struct option_row option_rows[OPTION_COUNT] = {
                         "proves that the point is the only one in a box a few pV wide",
                         1 << VERB_POINT},
     [OPTION_BOXES] = {"boxes", 0, ARGUMENT_NEEDED, "N", NULL, "100000",
-                      "boxes that the proof may look at before it gives up", 1 << VERB_STATES},
+                      "boxes that the proof may look at before it gives up", IN_PAGE(VERB_STATES)},
     [OPTION_LEAKAGE] = {"leakage", 0, ARGUMENT_NEEDED, "I", NULL, "1 nA",
                         "a start-up push below this current is at risk", 1 << VERB_STATES},
     [OPTION_SAMPLES] = {"samples", 'n', ARGUMENT_NEEDED, "N", NULL, "2000",
-                        "mismatch samples, each a full solve; 0 leaves them out", 1 << VERB_SPREAD},
+                        "mismatch samples, each a full solve; 0 leaves them out",
+                        IN_PAGE(VERB_SPREAD)},
     [OPTION_SEED] = {"seed", 0, ARGUMENT_NEEDED, "N", NULL, "1",
-                     "the same seed gives the same samples, however many jobs", 1 << VERB_SPREAD},
+                     "the same seed gives the same samples, however many jobs",
+                     IN_PAGE(VERB_SPREAD)},
     [OPTION_JOBS] = {"jobs", 'j', ARGUMENT_NEEDED, "N", NULL, "one a processor",
-                     "threads for conditions and samples", 1 << VERB_SPREAD | 1 << VERB_REVIEW},
+                     "threads for conditions, samples and sweeps",
+                     1 << VERB_SPREAD | 1 << VERB_REVIEW | 1 << VERB_SWEEP},
     [OPTION_TIME_LIMIT] = {"time-limit", 0, ARGUMENT_NEEDED, "SECONDS", NULL, "3600",
                            "the work stops there and shows what was done; 0: no limit",
                            RESULT_VERBS | 1 << VERB_EXPLAIN},
@@ -158,11 +164,13 @@ const struct option_row option_rows[OPTION_COUNT] = {
                     "writes CSV (SI units) to FILE; - is standard output instead of the text",
                     1 << VERB_REVIEW | 1 << VERB_SWEEP | 1 << VERB_SPREAD},
     [OPTION_PLOT] = {"plot", 0, ARGUMENT_NEEDED, "FILE", NULL, "off",
-                     "draws the curves to FILE; its ending says how: .svg, .pdf or .png",
-                     1 << VERB_REVIEW | 1 << VERB_SWEEP},
+                     "draws curves and bars to FILE; its ending says how: .svg, .pdf or .png",
+                     1 << VERB_REVIEW | 1 << VERB_SWEEP | 1 << VERB_STATES | 1 << VERB_SPREAD |
+                         1 << VERB_EXPLAIN | 1 << VERB_SENSITIVITY},
     [OPTION_PAGE] = {"page", 0, ARGUMENT_NEEDED, "FILE", NULL, "off",
-                     "writes the whole review as one HTML file that needs nothing else",
-                     1 << VERB_REVIEW},
+                     "writes the result as one HTML file that needs nothing else; of a review also "
+                     "what spread and states find, unless --watch is given",
+                     1 << VERB_REVIEW | 1 << VERB_SPREAD | 1 << VERB_STATES | 1 << VERB_EXPLAIN},
     [OPTION_WATCH] =
         {"watch", 0, ARGUMENT_NONE, NULL, NULL, "off",
          "runs again at every save, until Ctrl-C; errors are shown above the last good "

@@ -433,8 +433,10 @@ static double gain_sigma(const struct device_values *values)
 }
 
 static const struct deviate deviates[] = {
-    {"threshold", OWN_THRESHOLD_SHIFT, threshold_sigma},
-    {"gain", OWN_GAIN_SHIFT, gain_sigma},
+    [MOS_MOVED_VT] = {"threshold", OWN_THRESHOLD_SHIFT, threshold_sigma, DEVIATE_ADDS,
+                      offsetof(struct mos_prepared, vt)},
+    [MOS_MOVED_BETA] = {"gain", OWN_GAIN_SHIFT, gain_sigma, DEVIATE_SCALES,
+                        offsetof(struct mos_prepared, beta)},
 };
 
 #define MOS_COMMON                                                                                 \

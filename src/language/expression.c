@@ -365,6 +365,9 @@ static bool evaluate_call(const struct evaluation *run, const struct expression 
 void expression_unknown_name(const char *name, struct span where,
                              const struct expression_scope *scope, struct diagnostics *diagnostics)
 {
+    if (diagnostics_has_lost(diagnostics, name)) {
+        return;
+    }
     const char *near = NULL;
     if (scope->list != NULL && diagnostics->count < NEAR_LIMIT) {
         const char *const *names = NULL;
@@ -415,6 +418,9 @@ static bool evaluate_name(const struct evaluation *run, const struct expression 
     }
     if (run->diagnostics->count > before || run->diagnostics->out_of_memory) {
         return false; /* the scope knows the name and said what is wrong with it */
+    }
+    if (diagnostics_has_lost(run->diagnostics, expression->name)) {
+        return false;
     }
     if (find_own(run, expression->name, value)) {
         return true;

@@ -445,7 +445,7 @@ static bool surplus(struct parser *parser)
     }
     if (token->kind == TOKEN_NAME && parser_peek(parser, -1)->kind == TOKEN_NUMBER) {
         const char *unit = unit_near(token->text);
-        if (unit != NULL) {
+        if (unit != NULL && strcmp(unit, token->text) != 0) {
             return parser_error(parser, parser_span(parser, token), parser_hint(parser, unit),
                                 "there is no unit %s", found);
         }

@@ -244,6 +244,35 @@ static void parse_values(struct parser *parser, struct statement *statement, int
 static bool parse_line(struct parser *parser, const struct statement_rule *rule,
                        struct statement *statement);
 
+/* A line that was wrong: what it would have made is not to be missed. Lines that ask for something
+ * make nothing. */
+static void lose_name(struct parser *parser, const struct statement_rule *rule)
+{
+    const enum statement_kind kind = rule != NULL ? rule->kind : STATEMENT_PART;
+    parser->at = 0;
+    const struct token *name = parser_peek(parser, kind == STATEMENT_USE ? 2 : 1);
+    switch (kind) {
+    case STATEMENT_LET:
+    case STATEMENT_MODEL:
+    case STATEMENT_RAIL:
+    case STATEMENT_PART:
+    case STATEMENT_BLOCK:
+    case STATEMENT_USE:
+    case STATEMENT_OUTPUT:
+        if (name->kind == TOKEN_NAME) {
+            diagnostics_lose(parser->diagnostics, name->text);
+        } else if (rule == NULL && name->kind == TOKEN_TEXT) {
+            diagnostics_lose(parser->diagnostics, "process"); /* mistyped */
+        }
+        break;
+    case STATEMENT_PROCESS:
+        diagnostics_lose(parser->diagnostics, "process");
+        break;
+    default:
+        break;
+    }
+}
+
 static void parse_block(struct parser *parser, struct statement *block, int errors_before)
 {
     int line = parser->lexer.first_line, capacity = 0;
@@ -263,6 +292,8 @@ static void parse_block(struct parser *parser, struct statement *block, int erro
         bool read = parse_line(parser, rule, inner);
         if (flush_error(parser) && read) {
             (void)append(parser, &block->body, &block->body_count, &capacity, inner);
+        } else {
+            lose_name(parser, rule);
         }
     }
 }
@@ -387,6 +418,9 @@ static void parse_statement(struct parser *parser, struct tree *tree, int *capac
         parser->at = 0;
         rule = body_rule(parser, rule, statement->first.text);
         statement->kind = rule != NULL ? rule->kind : STATEMENT_PART;
+    }
+    if (!clean || !read) {
+        lose_name(parser, rule);
     }
     if (rule != NULL && rule->body == BODY_VALUES) {
         parse_values(parser, statement, errors_before);

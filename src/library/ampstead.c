@@ -9,6 +9,7 @@
 
 #include "analyses/analysis.h"
 #include "analyses/size.h"
+#include "library/answer.h"
 #include "library/edit.h"
 #include "library/place.h"
 #include "library/request.h"
@@ -52,9 +53,10 @@ struct ampstead_result {
     const char *trouble; /* a wrong request, before any cell was read; NULL otherwise */
     struct cell *cell;
     struct circuit *circuit;
-    struct result *found; /* NULL for `models` and after errors */
-    struct sweep sweep;   /* the one of the request */
-    struct probe wanted;  /* the quantity of the request */
+    struct result *found;           /* NULL for `models` and after errors */
+    struct result *spread, *states; /* beside a review, for its page; NULL: none */
+    struct sweep sweep;             /* the one of the request */
+    struct probe wanted;            /* the quantity of the request */
     struct buffer messages, text, json, csv, plot, page, cell_text;
 };
 
@@ -193,10 +195,10 @@ static bool ask_stopped(void *self)
     return true;
 }
 
-static enum status analyse(const struct ampstead_request *request, struct hooks *hooks,
-                           struct ampstead_result *result)
+static struct analysis_options options_of(const struct ampstead_request *request,
+                                          struct hooks *hooks)
 {
-    struct analysis_options options = {
+    return (struct analysis_options){
         .view = request->view == AMPSTEAD_VIEW_HAND ? VIEW_HAND : VIEW_FULL,
         .stopped = request->stopped != NULL ? ask_stopped : NULL,
         .stopped_self = hooks,
@@ -210,6 +212,26 @@ static enum status analyse(const struct ampstead_request *request, struct hooks 
         .seed = request->seed,
         .grid = 10e-9,
     };
+}
+
+/* What the page of a review shows beside it. That a state was not found there is no failure of the
+ * review. */
+static enum status analyse_more(const struct ampstead_request *request,
+                                struct ampstead_result *result)
+{
+    struct hooks hooks = {.request = request};
+    const struct analysis_options options = options_of(request, &hooks);
+    enum status status = analysis_spread(result->circuit, &options, &result->spread);
+    if (status != STATUS_MEMORY && status != STATUS_STOPPED) {
+        status = analysis_states(result->circuit, &options, &result->states);
+    }
+    return status == STATUS_MEMORY || status == STATUS_STOPPED ? status : STATUS_OK;
+}
+
+static enum status analyse(const struct ampstead_request *request, struct hooks *hooks,
+                           struct ampstead_result *result)
+{
+    struct analysis_options options = options_of(request, hooks);
     switch (result->command) {
     case COMMAND_REVIEW:
         return analysis_review(result->circuit, &options, &result->found);
@@ -343,6 +365,9 @@ static enum status run(const struct ampstead_request *request, struct ampstead_r
     if (status == STATUS_OK) {
         status = analyse_or_stop(request, result);
     }
+    if (status == STATUS_OK && result->command == COMMAND_REVIEW && request->whole != 0) {
+        status = analyse_more(request, result);
+    }
     if (result->cell != NULL && result->cell->diagnostics.out_of_memory) {
         return STATUS_MEMORY;
     }
@@ -378,6 +403,8 @@ void ampstead_result_free(struct ampstead_result *result)
     buffer_free(&result->page);
     buffer_free(&result->cell_text);
     result_free(result->found);
+    result_free(result->spread);
+    result_free(result->states);
     circuit_free(result->circuit);
     cell_free(result->cell);
     free(result);
@@ -388,40 +415,15 @@ enum ampstead_status ampstead_result_status(const struct ampstead_result *result
     return result == NULL ? AMPSTEAD_MACHINE : result->status;
 }
 
-static void restart(struct buffer *buffer)
-{
-    buffer_free(buffer);
-    *buffer = BUFFER_EMPTY;
-}
-
-/* The finished text, or NULL after a failed allocation, which is then the status too. */
-static const char *finished(struct ampstead_result *result, const struct buffer *buffer)
-{
-    if (buffer->failed) {
-        result->status = AMPSTEAD_MACHINE;
-        return NULL;
-    }
-    return buffer->data == NULL ? "" : buffer->data;
-}
-
 const char *ampstead_result_messages(struct ampstead_result *result, unsigned flags)
 {
-    static const char short_memory[] = "ampstead: memory is short\n";
     if (result == NULL) {
-        return short_memory;
+        return answer_short_memory;
     }
-    restart(&result->messages);
-    if (result->trouble != NULL) {
-        buffer_format(&result->messages, "ampstead: %s\n", result->trouble);
-    } else if (result->cell != NULL) {
-        diagnostics_print(&result->cell->diagnostics, &result->cell->sources,
-                          (flags & AMPSTEAD_COLOR) != 0, &result->messages);
-    }
-    if (result->status == AMPSTEAD_MACHINE) {
-        buffer_text(&result->messages, short_memory);
-    }
-    const char *text = finished(result, &result->messages);
-    return text == NULL ? short_memory : text;
+    return answer_messages(&result->messages, result->trouble,
+                           result->cell == NULL ? NULL : &result->cell->diagnostics,
+                           result->cell == NULL ? NULL : &result->cell->sources, flags,
+                           &result->status);
 }
 
 /* Whether the command came far enough to have something to report. */
@@ -436,12 +438,12 @@ static bool has_report(const struct ampstead_result *result)
 const char *ampstead_result_text(struct ampstead_result *result, unsigned flags, int columns)
 {
     if (result != NULL && result->command == COMMAND_FORMAT) {
-        return result->status == AMPSTEAD_WELL ? finished(result, &result->text) : NULL;
+        return result->status == AMPSTEAD_WELL ? answer_end(&result->text, &result->status) : NULL;
     }
     if (result != NULL && result->command == COMMAND_CHECK && result->cell != NULL) {
-        restart(&result->text);
+        answer_begin(&result->text);
         edit_list_errors(result->cell, &result->text);
-        return finished(result, &result->text);
+        return answer_end(&result->text, &result->status);
     }
     if (!has_report(result)) {
         return NULL;
@@ -452,7 +454,7 @@ const char *ampstead_result_text(struct ampstead_result *result, unsigned flags,
         .stopped = result->status == AMPSTEAD_STOPPED,
         .columns = columns,
     };
-    restart(&result->text);
+    answer_begin(&result->text);
     switch (result->command) {
     case COMMAND_POINT:
         report_point(result->found, &style, &result->text);
@@ -485,7 +487,7 @@ const char *ampstead_result_text(struct ampstead_result *result, unsigned flags,
         report_page(result->found, &style, &result->text);
         break;
     }
-    return finished(result, &result->text);
+    return answer_end(&result->text, &result->status);
 }
 
 const char *ampstead_result_json(struct ampstead_result *result)
@@ -493,13 +495,13 @@ const char *ampstead_result_json(struct ampstead_result *result)
     if (!has_report(result) || result->command == COMMAND_CHECK) {
         return NULL;
     }
-    restart(&result->json);
+    answer_begin(&result->json);
     if (result->command == COMMAND_MODELS) {
         report_json_models(result->circuit, AMPSTEAD_VERSION, &result->json);
     } else {
         report_json(result->found, AMPSTEAD_VERSION, &result->json);
     }
-    return finished(result, &result->json);
+    return answer_end(&result->json, &result->status);
 }
 
 const char *ampstead_result_csv(struct ampstead_result *result)
@@ -509,9 +511,9 @@ const char *ampstead_result_csv(struct ampstead_result *result)
          result->command != COMMAND_SPREAD)) {
         return NULL;
     }
-    restart(&result->csv);
+    answer_begin(&result->csv);
     report_csv(result->found, &result->csv);
-    return finished(result, &result->csv);
+    return answer_end(&result->csv, &result->status);
 }
 
 const char *ampstead_result_plot(struct ampstead_result *result)
@@ -519,21 +521,26 @@ const char *ampstead_result_plot(struct ampstead_result *result)
     if (!has_report(result) || result->found == NULL) {
         return NULL;
     }
-    restart(&result->plot);
+    answer_begin(&result->plot);
     report_plot(result->found, &result->plot);
-    return result->plot.length == 0 && !result->plot.failed ? NULL
-                                                            : finished(result, &result->plot);
+    return result->plot.length == 0 && !result->plot.failed
+               ? NULL
+               : answer_end(&result->plot, &result->status);
 }
 
 const char *ampstead_result_page(struct ampstead_result *result)
 {
-    if (!has_report(result) || result->command != COMMAND_REVIEW) {
+    const bool has_page = has_report(result) &&
+                          (result->command == COMMAND_REVIEW || result->command == COMMAND_SPREAD ||
+                           result->command == COMMAND_STATES || result->command == COMMAND_EXPLAIN);
+    if (!has_page) {
         return NULL;
     }
     const struct report_style style = {.stopped = result->status == AMPSTEAD_STOPPED};
-    restart(&result->page);
-    report_web(result->found, &style, AMPSTEAD_VERSION, &result->page);
-    return finished(result, &result->page);
+    const struct web_results results = {result->found, result->spread, result->states};
+    answer_begin(&result->page);
+    report_web(&results, &style, AMPSTEAD_VERSION, &result->page);
+    return answer_end(&result->page, &result->status);
 }
 
 const char *ampstead_result_file(const struct ampstead_result *result, int index)
@@ -575,12 +582,12 @@ const char *ampstead_result_cell(struct ampstead_result *result, const char *rou
     const double *values =
         arena == NULL ? NULL : chosen_values(result->found->size, rounding, arena);
     const char *text = values == NULL ? NULL : size_rewrite(result->circuit, values, arena);
-    restart(&result->cell_text);
+    answer_begin(&result->cell_text);
     if (text != NULL) {
         buffer_text(&result->cell_text, text);
     }
     arena_destroy(arena);
-    return text == NULL ? NULL : finished(result, &result->cell_text);
+    return text == NULL ? NULL : answer_end(&result->cell_text, &result->status);
 }
 
 int ampstead_result_value(const struct ampstead_result *result, const char *name, double *value)

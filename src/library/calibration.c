@@ -5,6 +5,7 @@
 #include <string.h>
 
 #include "language/source.h"
+#include "library/answer.h"
 #include "report/calibration.h"
 
 struct ampstead_calibration {
@@ -187,40 +188,15 @@ void ampstead_calibration_free(struct ampstead_calibration *calibration)
     free(calibration);
 }
 
-/* The finished text, or NULL after a failed allocation, which is then the status too. */
-static const char *finished(struct ampstead_calibration *calibration, const struct buffer *buffer)
-{
-    if (buffer->failed) {
-        calibration->status = AMPSTEAD_MACHINE;
-        return NULL;
-    }
-    return buffer->data == NULL ? "" : buffer->data;
-}
-
-static void restart(struct buffer *buffer)
-{
-    buffer_free(buffer);
-    *buffer = BUFFER_EMPTY;
-}
-
 const char *ampstead_calibration_messages(struct ampstead_calibration *calibration, unsigned flags)
 {
-    static const char short_memory[] = "ampstead: memory is short\n";
     if (calibration == NULL) {
-        return short_memory;
+        return answer_short_memory;
     }
-    restart(&calibration->messages);
-    if (calibration->trouble != NULL) {
-        buffer_format(&calibration->messages, "ampstead: %s\n", calibration->trouble);
-    } else if (calibration->found != NULL) {
-        diagnostics_print(&calibration->found->diagnostics, &calibration->found->sources,
-                          (flags & AMPSTEAD_COLOR) != 0, &calibration->messages);
-    }
-    if (calibration->status == AMPSTEAD_MACHINE) {
-        buffer_text(&calibration->messages, short_memory);
-    }
-    const char *text = finished(calibration, &calibration->messages);
-    return text == NULL ? short_memory : text;
+    return answer_messages(&calibration->messages, calibration->trouble,
+                           calibration->found == NULL ? NULL : &calibration->found->diagnostics,
+                           calibration->found == NULL ? NULL : &calibration->found->sources, flags,
+                           &calibration->status);
 }
 
 static bool has_report(const struct ampstead_calibration *calibration)
@@ -239,9 +215,9 @@ const char *ampstead_calibration_text(struct ampstead_calibration *calibration, 
         .ascii = (flags & AMPSTEAD_ASCII) != 0,
         .columns = columns,
     };
-    restart(&calibration->text);
+    answer_begin(&calibration->text);
     report_calibration(calibration->found, &style, &calibration->text);
-    return finished(calibration, &calibration->text);
+    return answer_end(&calibration->text, &calibration->status);
 }
 
 const char *ampstead_calibration_json(struct ampstead_calibration *calibration)
@@ -249,9 +225,9 @@ const char *ampstead_calibration_json(struct ampstead_calibration *calibration)
     if (!has_report(calibration)) {
         return NULL;
     }
-    restart(&calibration->json);
+    answer_begin(&calibration->json);
     report_json_calibration(calibration->found, AMPSTEAD_VERSION, &calibration->json);
-    return finished(calibration, &calibration->json);
+    return answer_end(&calibration->json, &calibration->status);
 }
 
 const char *ampstead_calibration_process(struct ampstead_calibration *calibration)
@@ -259,9 +235,9 @@ const char *ampstead_calibration_process(struct ampstead_calibration *calibratio
     if (!has_report(calibration)) {
         return NULL;
     }
-    restart(&calibration->process);
+    answer_begin(&calibration->process);
     report_process(calibration->found, calibration->name, calibration->heading,
                    calibration->command[0] == '\0' ? NULL : calibration->command,
                    &calibration->process);
-    return finished(calibration, &calibration->process);
+    return answer_end(&calibration->process, &calibration->status);
 }

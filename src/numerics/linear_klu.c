@@ -143,6 +143,18 @@ void linear_forget(struct linear_solver *solver)
     klu_free_numeric(&solver->numeric, &solver->common);
 }
 
+bool linear_pivots(const struct linear_solver *solver, int *row, int *column)
+{
+    if (solver->numeric == NULL) {
+        return false;
+    }
+    for (int k = 0; k < solver->pattern->n; k++) {
+        row[k] = solver->numeric->Pnum[k];
+        column[k] = solver->symbolic->Q[k];
+    }
+    return true;
+}
+
 void linear_solve(struct linear_solver *solver, double *b)
 {
     if (solver->numeric != NULL) {

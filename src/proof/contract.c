@@ -558,8 +558,7 @@ bool contract_program(struct contractor *c, struct interval *box, bool narrows)
     return true;
 }
 
-/* --- where to cut
- * --------------------------------------------------------------------------------- */
+/* --- where to cut ----------------------------------------------------------------------------- */
 
 static double slope_size(struct interval slope)
 {

@@ -175,8 +175,7 @@ static void test_compliance_beyond(void **state)
     run_close(&run);
 }
 
-/* --- sensitivities against solving again
- * ---------------------------------------------------------- */
+/* --- sensitivities against solving again ------------------------------------------------------ */
 
 #define REFERENCE                                                                                  \
     "process \"n350.process\"\nlet VDD = %.17g\nlet T = thermal_voltage\nrail vdd VDD\n"           \
@@ -242,8 +241,7 @@ static void test_sigma(void **state)
     run_close(&run);
 }
 
-/* --- the curve
- * ------------------------------------------------------------------------------------- */
+/* --- the curve -------------------------------------------------------------------------------- */
 
 static double current_at(const char *form, double at)
 {

@@ -113,8 +113,7 @@ static void compliance(void **state)
     cell_close(&it);
 }
 
-/* --- against the cell solved again
- * ---------------------------------------------------------------- */
+/* --- against the cell solved again ------------------------------------------------------------ */
 
 static const char stiff[] = "process \"n180.process\"\nrail vdd 3 V\n"
                             "current IREF vdd -> ref 5 uA\n"
