@@ -20,8 +20,8 @@ enum { FIRST_SEGMENTS = 16, DEPTH_LIMIT = 24, EVENT_LIMIT = 20 };
 
 /* Promised: 0.1 % of nominal or 1 % of the local value. Aimed at: half of it. */
 static const double share_nominal = 0.5e-3, share_local = 0.5e-2;
-/* Root finding in the load voltage, V. */
-static const double volts_tolerance = 1e-9;
+/* Root finding in the load voltage, V: differences of edges between close cells are taken. */
+static const double volts_tolerance = 1e-12;
 /* How near to its end a state is followed, V: the promise for a compliance voltage. */
 static const double volts_edge = 1e-5;
 

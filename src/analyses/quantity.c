@@ -241,8 +241,8 @@ static enum status edge_slope(struct operating_point *point, const struct probe 
 /* --- derivatives by solving again ---------------------------------------------------------------
  */
 
-/* The fifth-order term at this relative step is near 1e-10, the rounding of the curve's roots near
- * 1e-7. */
+/* The fifth-order term at this relative step is near 1e-10, the rounding of the curve's roots,
+ * found to 1e-12 V, near 1e-9. */
 static double solved_step(const struct parameter_ref *p)
 {
     if (p->sort == PARAMETER_KNOB && p->knob.kind == KNOB_TEMPERATURE) {
