@@ -299,6 +299,7 @@ static enum status run_series(struct series_task *t)
         }
         stage.is_solved = status == STATUS_OK;
         if (status == STATUS_UNSOLVED) {
+            t->series->lost++;
             status =
                 add_event(t, t->knob[k], "no state was found here") ? STATUS_OK : STATUS_MEMORY;
         } else if (status == STATUS_OK) {
