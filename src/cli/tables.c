@@ -20,7 +20,7 @@ const struct verb_row verb_rows[VERB_COUNT] = {
         {"review", "FILE.cell", "does the hand design hold? one page (also without a verb)",
          "Finds the operating point, moves the load of every output over its range, compares\n"
          "the `hand` lines with what was computed, and judges the `require` lines. --csv\n"
-         "writes the curves: columns output,v,current in V and A."},
+         "writes the curves: output, voltage and current, with SI units in the header."},
     [VERB_POINT] =
         {"point", "FILE.cell", "the operating point alone, with every quantity of every device",
          "Finds the operating point and shows all node voltages, rail currents and device\n"
