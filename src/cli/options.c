@@ -185,7 +185,7 @@ static bool take_word(struct reader *reader, const char *word)
     struct options *options = reader->options;
     int verb = reader->word_count == 0 ? -1 : find_verb(reader->words[0]);
     options->words[options->word_count++] = word;
-    if (reader->word_count == 2 && verb >= 0 && verb_takes_curves((enum verb)verb)) {
+    if (reader->word_count == 2 && verb >= 0 && verb_takes_many((enum verb)verb)) {
         return true;
     }
     if (reader->word_count == 2) {
