@@ -6,6 +6,7 @@
  */
 #include "analyses/conditions.h"
 
+#include <assert.h>
 #include <math.h>
 #include <string.h>
 
@@ -251,6 +252,7 @@ static void judge_everywhere(const struct conditions_result *r, int k, int probe
             break;
         }
     }
+    assert(worst != NULL); /* the nominal point is always one of them */
     row->margin = worst->margins[k];
     row->computed = worst->values[probe];
     row->worst_at = worst->at;
@@ -278,7 +280,7 @@ enum status analyse_conditions(struct circuit *circuit, const struct operating_p
     enum status status = make_points(r, circuit, &list, result->arena);
     if (status == STATUS_INPUT) {
         diagnostics_add(&circuit->cell->diagnostics, circuit->conditions[0].where,
-                        "vary fewer things", "the `vary` lines make more than %d combinations",
+                        "vary fewer things", "the `vary` lines make more than %d combinations, the limit",
                         CONDITION_POINT_LIMIT);
     }
     if (status != STATUS_OK) {

@@ -423,7 +423,7 @@ static enum status explain_line(struct lattice *l, struct operating_point *home,
     if (found != STATUS_OK) {
         return found;
     }
-    double most = 0, share[EFFECT_COUNT];
+    double most = 0, share[EFFECT_COUNT] = {0};
     for (int b = 0; b < l->bit_count; b++) {
         share[b] = shapley(l, b, h, e->as_conductance);
         most = fmax(most, fabs(share[b]));

@@ -18,7 +18,7 @@ struct network_map {
     int *node;              /* [network node_count] a node with shift 0 */
     bool *driven;           /* [network node_count] by an amplifier */
     double low, high;       /* V: where states are looked for */
-    bool is_assumed; /* a current source or a law could push a node beyond: the range is a choice */
+    bool is_assumed; /* a node could be pushed beyond any bound known: the range is a choice */
 };
 
 /* In the arena. False when memory is short. */

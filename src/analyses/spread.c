@@ -293,5 +293,6 @@ enum status analysis_spread(struct circuit *circuit, const struct analysis_optio
         *result = NULL;
         return STATUS_MEMORY;
     }
+    r->is_stopped = status == STATUS_STOPPED;
     return status;
 }

@@ -21,6 +21,11 @@ static const struct bench_row rows[] = {
      BENCH_AT_MOST, 1.5, bench_iterate},
     {"samples", "mismatch samples of a mirror of 4 MOS, one at a time over side by side (AVX2: 3)",
      BENCH_AT_LEAST, 6, bench_samples},
+    {"grow", "exponent of the time of one solve from 1e2 to 1e6 devices", BENCH_AT_MOST, 1.1,
+     bench_grow},
+    {"cores", "samples and sweeps, one thread over two, the lesser of both", BENCH_AT_LEAST, 1.9,
+     bench_cores},
+    {"review", "a whole review over a process that does nothing", BENCH_AT_MOST, 5, bench_review},
     {"tiny", "a small system factored and solved over KLU alone, worst of n = 3 to 30",
      BENCH_AT_MOST, 1, bench_tiny},
 };

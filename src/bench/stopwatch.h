@@ -17,7 +17,8 @@ struct contender {
 
 enum clock_kind {
     CLOCK_WORK, /* processor time of this process: of one thread, nearly untouched by others */
-    CLOCK_WALL
+    CLOCK_WALL,
+    CLOCK_CHILDREN /* processor time of the processes that were started and have ended */
 };
 
 /*

@@ -128,7 +128,7 @@ static void evaluate_part(const struct problem *it, const struct part *part, int
         }
         double id = mos_gradient(prepared, row->value[COLUMN_VGS], row->value[COLUMN_VDS],
                                  voltage(row, COLUMN_VSB), gradient);
-        size_t place = (size_t)(part->first + k);
+        size_t place = (size_t)part->first + (size_t)k;
         if (residuals != NULL) {
             residuals[place] = weight * (id - row->value[COLUMN_ID]);
         }
@@ -155,9 +155,9 @@ static void evaluate_pairs(const struct problem *it, const struct part *part, do
         const struct pair *pair = &part->pairs[k];
         double to = pair->weight / part->rows[pair->to].weight;
         double from = pair->weight / part->rows[pair->from].weight;
-        size_t place = (size_t)(part->first + part->row_count + k);
-        size_t place_to = (size_t)(part->first + pair->to);
-        size_t place_from = (size_t)(part->first + pair->from);
+        size_t place = (size_t)part->first + (size_t)part->row_count + (size_t)k;
+        size_t place_to = (size_t)part->first + (size_t)pair->to;
+        size_t place_from = (size_t)part->first + (size_t)pair->from;
         if (residuals != NULL) {
             residuals[place] = to * residuals[place_to] - from * residuals[place_from];
         }

@@ -18,7 +18,7 @@ static bool deliver_plot(const char *path, struct ampstead_result *result)
 {
     const char *svg = ampstead_result_plot(result);
     if (svg == NULL && ampstead_result_status(result) != AMPSTEAD_MACHINE) {
-        fprintf(stderr, "ampstead: %s: nothing to draw: no output and no sweep has a curve\n",
+        fprintf(stderr, "ampstead: %s: nothing to draw: the result holds no curve and no bars\n",
                 path);
         return true;
     }
@@ -144,28 +144,34 @@ static bool read_number(const struct options *options, enum option option, unsig
 }
 
 /* The numbers of the request; false after a message. */
-static bool read_numbers(const struct options *options, struct ampstead_request *request)
+static bool read_numbers(const struct options *options, struct ampstead_request *request,
+                         unsigned *limit)
 {
     enum { JOB_LIMIT = 256 };
+    unsigned long long seconds = TIME_LIMIT;
     unsigned long long boxes = (unsigned long long)request->boxes;
     unsigned long long samples = AMPSTEAD_SAMPLES, jobs = 0, seed = request->seed;
     if (!read_number(options, OPTION_BOXES, LONG_MAX, &boxes) ||
         !read_number(options, OPTION_SAMPLES, AMPSTEAD_SAMPLE_LIMIT, &samples) ||
         !read_number(options, OPTION_SEED, INT64_MAX, &seed) ||
-        !read_number(options, OPTION_JOBS, JOB_LIMIT, &jobs)) {
+        !read_number(options, OPTION_JOBS, JOB_LIMIT, &jobs) ||
+        !read_number(options, OPTION_TIME_LIMIT, TIME_LIMIT_LONGEST, &seconds)) {
         return false;
     }
     request->boxes = (long)boxes;
     request->samples = (int)samples;
     request->seed = seed;
     request->jobs = (int)jobs;
+    *limit = (unsigned)seconds;
     return true;
 }
 
 bool cell_check(const struct options *options)
 {
     struct ampstead_request request = AMPSTEAD_REQUEST;
-    if (!check_streams(options) || !parts_check(options) || !read_numbers(options, &request)) {
+    unsigned limit = 0;
+    if (!check_streams(options) || !parts_check(options) ||
+        !read_numbers(options, &request, &limit)) {
         return false;
     }
     if (options->given[OPTION_PLOT]) {
@@ -215,16 +221,17 @@ int cell_request(const struct options *options, const volatile sig_atomic_t *sto
     struct terminal_run run;
     struct ampstead_request request = AMPSTEAD_REQUEST;
     const char *view = options->values[OPTION_VIEW];
+    unsigned limit = 0;
     struct ampstead_part *parts = NULL;
     int status = AMPSTEAD_WELL;
-    (void)read_numbers(options, &request); /* were checked before */
+    (void)read_numbers(options, &request, &limit); /* were checked before */
     if (options->verb == VERB_MERGE) {
         parts = parts_read(options, &status);
         if (parts == NULL) {
             return status;
         }
     }
-    terminal_begin(&run, stop);
+    terminal_begin(&run, stop, limit);
     request.command = verb_rows[options->verb].word;
     request.path = options->file;
     request.view =
@@ -236,6 +243,7 @@ int cell_request(const struct options *options, const volatile sig_atomic_t *sto
     request.sweep = options->values[OPTION_SWEEP];
     request.certify = options->given[OPTION_CERTIFY];
     request.leakage = options->values[OPTION_LEAKAGE];
+    request.whole = options->given[OPTION_PAGE] && !options->given[OPTION_WATCH];
     request.of = options->values[OPTION_OF];
     request.grid = options->values[OPTION_GRID];
     request.stopped = terminal_stopped;

@@ -81,7 +81,7 @@ static int run_calibration(const struct options *options, struct ampstead_curves
     if (held < 0 || !check_target(options)) {
         return AMPSTEAD_INPUT;
     }
-    terminal_begin(&run, stop);
+    terminal_begin(&run, stop, 0);
     request.files = files;
     request.file_count = fitted + held;
     request.kind = options->values[OPTION_KIND];

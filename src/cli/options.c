@@ -213,7 +213,7 @@ static bool settle_words(struct reader *reader)
     }
     FILE *probe = second == NULL ? fopen(first, "rb") : NULL;
     if (probe != NULL) {
-        fclose(probe);
+        (void)fclose(probe); /* only its being there was asked */
         return true;
     }
     if (second != NULL && strpbrk(first, "./-") != NULL) {
@@ -285,8 +285,7 @@ static char *join_command(int argc, char **argv)
     if (text == NULL) {
         return NULL;
     }
-    strcpy(text, "ampstead");
-    char *at = text + strlen(text);
+    char *at = text + snprintf(text, size, "ampstead");
     for (int k = 1; k < argc; k++) {
         bool is_plain = argv[k][0] != '\0' && argv[k][strspn(argv[k], plain)] == '\0';
         *at++ = ' ';

@@ -60,6 +60,7 @@ enum option {
     OPTION_JOBS,
     OPTION_LANES,
     OPTION_PART,
+    OPTION_TIME_LIMIT,
     OPTION_OF,
     OPTION_GRID,
     OPTION_WRITE,

@@ -13,6 +13,9 @@ enum {
                 1 << VERB_HELP
 };
 
+/* Also an option of `review`, for its --page. */
+#define IN_PAGE(verb) (1 << (verb) | 1 << VERB_REVIEW)
+
 const struct verb_row verb_rows[VERB_COUNT] = {
     [VERB_REVIEW] =
         {"review", "FILE.cell", "does the hand design hold? one page (also without a verb)",
@@ -106,16 +109,21 @@ const struct option_row option_rows[OPTION_COUNT] = {
                         "proves that the point is the only one in a box a few pV wide",
                         1 << VERB_POINT},
     [OPTION_BOXES] = {"boxes", 0, ARGUMENT_NEEDED, "N", NULL, "100000",
-                      "boxes that the proof may look at before it gives up", 1 << VERB_STATES},
+                      "boxes that the proof may look at before it gives up", IN_PAGE(VERB_STATES)},
     [OPTION_LEAKAGE] = {"leakage", 0, ARGUMENT_NEEDED, "I", NULL, "1 nA",
                         "a start-up push below this current is at risk", 1 << VERB_STATES},
     [OPTION_SAMPLES] = {"samples", 'n', ARGUMENT_NEEDED, "N", NULL, "2000",
-                        "mismatch samples, each a full solve; 0 leaves them out", 1 << VERB_SPREAD},
+                        "mismatch samples, each a full solve; 0 leaves them out",
+                        IN_PAGE(VERB_SPREAD)},
     [OPTION_SEED] = {"seed", 0, ARGUMENT_NEEDED, "N", NULL, "1",
-                     "the same seed gives the same samples, however many jobs", 1 << VERB_SPREAD},
+                     "the same seed gives the same samples, however many jobs",
+                     IN_PAGE(VERB_SPREAD)},
     [OPTION_JOBS] = {"jobs", 'j', ARGUMENT_NEEDED, "N", NULL, "one a processor",
-                     "threads for conditions and samples",
-                     1 << VERB_SPREAD | 1 << VERB_MERGE | 1 << VERB_REVIEW},
+                     "threads for conditions, samples and sweeps",
+                     1 << VERB_SPREAD | 1 << VERB_MERGE | 1 << VERB_REVIEW | 1 << VERB_SWEEP},
+    [OPTION_TIME_LIMIT] = {"time-limit", 0, ARGUMENT_NEEDED, "SECONDS", NULL, "3600",
+                           "the work stops there and shows what was done; 0: no limit",
+                           RESULT_VERBS | 1 << VERB_EXPLAIN | 1 << VERB_MERGE},
     [OPTION_LANES] = {"lanes", 0, ARGUMENT_NEEDED, "8|4|1", lanes_words,
                       "as many as the processor can",
                       "most samples solved side by side; results differ by rounding only",
@@ -170,11 +178,13 @@ const struct option_row option_rows[OPTION_COUNT] = {
                     "writes CSV (SI units) to FILE; - is standard output instead of the text",
                     1 << VERB_REVIEW | 1 << VERB_SWEEP | 1 << VERB_SPREAD | 1 << VERB_MERGE},
     [OPTION_PLOT] = {"plot", 0, ARGUMENT_NEEDED, "FILE", NULL, "off",
-                     "draws the curves to FILE; its ending says how: .svg, .pdf or .png",
-                     1 << VERB_REVIEW | 1 << VERB_SWEEP},
+                     "draws curves and bars to FILE; its ending says how: .svg, .pdf or .png",
+                     1 << VERB_REVIEW | 1 << VERB_SWEEP | 1 << VERB_STATES | 1 << VERB_SPREAD |
+                         1 << VERB_EXPLAIN | 1 << VERB_SENSITIVITY},
     [OPTION_PAGE] = {"page", 0, ARGUMENT_NEEDED, "FILE", NULL, "off",
-                     "writes the whole review as one HTML file that needs nothing else",
-                     1 << VERB_REVIEW},
+                     "writes the result as one HTML file that needs nothing else; of a review also "
+                     "what spread and states find, unless --watch is given",
+                     1 << VERB_REVIEW | 1 << VERB_SPREAD | 1 << VERB_STATES | 1 << VERB_EXPLAIN},
     [OPTION_WATCH] =
         {"watch", 0, ARGUMENT_NONE, NULL, NULL, "off",
          "runs again at every save, until Ctrl-C; errors are shown above the last good "
@@ -193,6 +203,6 @@ const struct status_row status_rows[] = {
     {AMPSTEAD_INPUT, "the input is wrong: language, options, files"},
     {AMPSTEAD_UNSOLVED, "no operating point was found"},
     {AMPSTEAD_MACHINE, "the machine failed: memory, disk"},
-    {AMPSTEAD_STOPPED, "stopped by the user"},
+    {AMPSTEAD_STOPPED, "stopped by the user or by the time limit"},
     {0, NULL},
 };

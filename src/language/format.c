@@ -405,6 +405,7 @@ static bool same_token(const struct token *a, const struct token *b)
     bool same_text = (a->text == NULL) == (b->text == NULL) &&
                      (a->text == NULL || strcmp(a->text, b->text) == 0);
     return a->kind == b->kind && a->symbol == b->symbol && same_text &&
+           /* to the bit: NOLINTNEXTLINE(bugprone-suspicious-memory-comparison) */
            memcmp(&a->number.value, &b->number.value, sizeof a->number.value) == 0 &&
            dimension_equal(a->number.dimension, b->number.dimension) &&
            a->number.bare == b->number.bare && a->number.celsius == b->number.celsius;

@@ -2,6 +2,8 @@
 #include "library/ampstead.h"
 
 #include <math.h>
+#include <stdatomic.h>
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -55,11 +57,12 @@ struct ampstead_result {
     const char *trouble; /* a wrong request, before any cell was read; NULL otherwise */
     struct cell *cell;
     struct circuit *circuit;
-    struct result *found; /* NULL for `models` and after errors */
-    struct sweep sweep;   /* the one of the request */
-    struct probe wanted;  /* the quantity of the request */
-    struct part part;     /* of the request: number and parts; parts 0: the whole */
-    struct parts parts;   /* of a merge */
+    struct result *found;           /* NULL for `models` and after errors */
+    struct result *spread, *states; /* beside a review, for its page; NULL: none */
+    struct sweep sweep;             /* the one of the request */
+    struct probe wanted;            /* the quantity of the request */
+    struct part part;               /* of the request: number and parts; parts 0: the whole */
+    struct parts parts;             /* of a merge */
     struct buffer messages, text, json, csv, plot, page, cell_text, part_text;
 };
 
@@ -112,11 +115,10 @@ static char *process_cell(const char *path)
     static const char before[] = "process \"", after[] = "\"\n";
     const char *slash = strrchr(path, '/');
     const char *name = slash == NULL ? path : slash + 1;
-    char *text = malloc(sizeof before + strlen(name) + sizeof after);
+    const size_t size = sizeof before + strlen(name) + sizeof after;
+    char *text = malloc(size);
     if (text != NULL) {
-        strcpy(text, before);
-        strcat(text, name);
-        strcat(text, after);
+        snprintf(text, size, "%s%s%s", before, name, after);
     }
     return text;
 }
@@ -186,21 +188,26 @@ static enum status build(const struct ampstead_request *request, struct ampstead
 
 struct hooks {
     const struct ampstead_request *request;
+    atomic_bool was_stopped; /* a yes was given: some of the work was left out */
 };
 
 static bool ask_stopped(void *self)
 {
-    const struct hooks *hooks = self;
-    return hooks->request->stopped(hooks->request->stopped_self) != 0;
+    struct hooks *hooks = self;
+    if (hooks->request->stopped(hooks->request->stopped_self) == 0) {
+        return false;
+    }
+    atomic_store(&hooks->was_stopped, true);
+    return true;
 }
 
-static enum status analyse(const struct ampstead_request *request, struct ampstead_result *result)
+static struct analysis_options options_of(const struct ampstead_request *request,
+                                          struct hooks *hooks)
 {
-    struct hooks hooks = {request};
-    struct analysis_options options = {
+    return (struct analysis_options){
         .view = request->view == AMPSTEAD_VIEW_HAND ? VIEW_HAND : VIEW_FULL,
         .stopped = request->stopped != NULL ? ask_stopped : NULL,
-        .stopped_self = &hooks,
+        .stopped_self = hooks,
         .progress = request->progress,
         .progress_self = request->progress_self,
         .certify = request->certify != 0,
@@ -212,6 +219,26 @@ static enum status analyse(const struct ampstead_request *request, struct ampste
         .lanes = request->lanes,
         .grid = 10e-9,
     };
+}
+
+/* What the page of a review shows beside it. That a state was not found there is no failure of the
+ * review. */
+static enum status analyse_more(const struct ampstead_request *request,
+                                struct ampstead_result *result)
+{
+    struct hooks hooks = {.request = request};
+    const struct analysis_options options = options_of(request, &hooks);
+    enum status status = analysis_spread(result->circuit, &options, &result->spread);
+    if (status != STATUS_MEMORY && status != STATUS_STOPPED) {
+        status = analysis_states(result->circuit, &options, &result->states);
+    }
+    return status == STATUS_MEMORY || status == STATUS_STOPPED ? status : STATUS_OK;
+}
+
+static enum status analyse(const struct ampstead_request *request, struct hooks *hooks,
+                           struct ampstead_result *result)
+{
+    struct analysis_options options = options_of(request, hooks);
     switch (result->command) {
     case COMMAND_REVIEW:
         return analysis_review(result->circuit, &options, &result->found);
@@ -311,6 +338,23 @@ static const char *check_request(const struct ampstead_request *request, enum co
         }
     }
     return request->command == NULL ? NULL : "the request has an unknown command";
+}
+
+/*
+ * A search that is stopped may end as one that found nothing, and a part that failed may be left
+ * out: whichever way the work ended after it was told to stop, the result is a stopped one.
+ */
+static enum status analyse_or_stop(const struct ampstead_request *request,
+                                   struct ampstead_result *result)
+{
+    struct hooks hooks = {.request = request};
+    const enum status status = analyse(request, &hooks, result);
+    const bool has_ended = status == STATUS_OK || status == STATUS_UNSOLVED;
+    if (result->found != NULL && has_ended && atomic_load(&hooks.was_stopped)) {
+        result->found->is_stopped = true;
+        return STATUS_STOPPED;
+    }
+    return status;
 }
 
 /* What the part says of itself. */
@@ -417,7 +461,10 @@ static enum status run_on_cell(const struct ampstead_request *request,
         status = parts_check(&result->parts, result->cell, result->circuit);
     }
     if (status == STATUS_OK) {
-        status = analyse(request, result);
+        status = analyse_or_stop(request, result);
+    }
+    if (status == STATUS_OK && result->command == COMMAND_REVIEW && request->whole != 0) {
+        status = analyse_more(request, result);
     }
     if (status == STATUS_OK && result->part.parts > 0) {
         status = describe_part(request, result);
@@ -459,6 +506,8 @@ void ampstead_result_free(struct ampstead_result *result)
     buffer_free(&result->part_text);
     parts_free(&result->parts);
     result_free(result->found);
+    result_free(result->spread);
+    result_free(result->states);
     circuit_free(result->circuit);
     cell_free(result->cell);
     free(result);
@@ -593,12 +642,16 @@ const char *ampstead_result_plot(struct ampstead_result *result)
 
 const char *ampstead_result_page(struct ampstead_result *result)
 {
-    if (!has_report(result) || result->command != COMMAND_REVIEW) {
+    const bool has_page = has_report(result) &&
+                          (result->command == COMMAND_REVIEW || result->command == COMMAND_SPREAD ||
+                           result->command == COMMAND_STATES || result->command == COMMAND_EXPLAIN);
+    if (!has_page) {
         return NULL;
     }
     const struct report_style style = {.stopped = result->status == AMPSTEAD_STOPPED};
+    const struct web_results results = {result->found, result->spread, result->states};
     answer_begin(&result->page);
-    report_web(result->found, &style, AMPSTEAD_VERSION, &result->page);
+    report_web(&results, &style, AMPSTEAD_VERSION, &result->page);
     return answer_end(&result->page, &result->status);
 }
 

@@ -65,11 +65,17 @@ void report_json_models(const struct circuit *circuit, const char *version, stru
  */
 void report_csv(const struct result *result, struct buffer *out);
 
-/* The curves as one SVG document; nothing when the result has none. */
+/* Curves and bars as one SVG document; nothing when the result has none. */
 void report_plot(const struct result *result, struct buffer *out);
 
-/* The review as one self-contained HTML file. */
-void report_web(const struct result *result, const struct report_style *style, const char *version,
-                struct buffer *out);
+/* What a page shows: a result, and beside a review what other verbs found of the same cell; NULL:
+ * nothing. */
+struct web_results {
+    const struct result *result, *spread, *states;
+};
+
+/* One self-contained HTML file. */
+void report_web(const struct web_results *results, const struct report_style *style,
+                const char *version, struct buffer *out);
 
 #endif
