@@ -9,7 +9,7 @@
 
 #include "cli/live.h"
 #include "cli/output.h"
-#include "cli/parts.h"
+#include "cli/part_files.h"
 #include "cli/picture.h"
 #include "cli/terminal.h"
 
@@ -170,7 +170,7 @@ bool cell_check(const struct options *options)
 {
     struct ampstead_request request = AMPSTEAD_REQUEST;
     unsigned limit = 0;
-    if (!check_streams(options) || !parts_check(options) ||
+    if (!check_streams(options) || !part_files_check(options) ||
         !read_numbers(options, &request, &limit)) {
         return false;
     }
@@ -226,7 +226,7 @@ int cell_request(const struct options *options, const volatile sig_atomic_t *sto
     int status = AMPSTEAD_WELL;
     (void)read_numbers(options, &request, &limit); /* were checked before */
     if (options->verb == VERB_MERGE) {
-        parts = parts_read(options, &status);
+        parts = part_files_read(options, &status);
         if (parts == NULL) {
             return status;
         }
@@ -256,7 +256,7 @@ int cell_request(const struct options *options, const volatile sig_atomic_t *sto
     request.part_count = options->word_count - 1;
     status = (int)ampstead_run(&request, result);
     terminal_end(&run);
-    parts_free(parts, request.part_count);
+    part_files_free(parts, request.part_count);
     return status;
 }
 
@@ -289,7 +289,7 @@ int cell_run(const struct options *options, const volatile sig_atomic_t *stop)
         fputs("ampstead: stopped\n", stderr);
     }
     if (status == AMPSTEAD_WELL && options->given[OPTION_PART]) {
-        status = parts_deliver(options, result);
+        status = part_files_deliver(options, result);
     } else if (cell_has_results(status) && !options->given[OPTION_PART]) {
         status = cell_deliver(options, result, 0);
     }
