@@ -9,11 +9,10 @@
 
 #include "cli/live.h"
 #include "cli/output.h"
-#include "cli/part_files.h"
+#include "cli/parts.h"
 #include "cli/picture.h"
 #include "cli/terminal.h"
 
-/* The picture in the form that the ending of the path asks for. */
 static bool deliver_plot(const char *path, struct ampstead_result *result)
 {
     const char *svg = ampstead_result_plot(result);
@@ -22,19 +21,7 @@ static bool deliver_plot(const char *path, struct ampstead_result *result)
                 path);
         return true;
     }
-    if (svg == NULL || picture_form(path) == PICTURE_SVG) {
-        return output_deliver(path, svg);
-    }
-    struct picture picture = {NULL, 0, 0};
-    const char *trouble = picture_make(svg, picture_form(path), &picture);
-    bool is_written = false;
-    if (trouble != NULL) {
-        fprintf(stderr, "ampstead: %s: %s\n", path, trouble);
-    } else {
-        is_written = output_file(path, picture.data, picture.length);
-    }
-    picture_free(&picture);
-    return is_written;
+    return picture_deliver(path, svg);
 }
 
 /* No copy of the cell: there is no solution, this rounding rounds nothing here, or a message says
@@ -221,9 +208,9 @@ int cell_request(const struct options *options, const volatile sig_atomic_t *sto
     struct terminal_run run;
     struct ampstead_request request = AMPSTEAD_REQUEST;
     const char *view = options->values[OPTION_VIEW];
-    unsigned limit = 0;
     struct ampstead_part *parts = NULL;
     int status = AMPSTEAD_WELL;
+    unsigned limit = 0;
     (void)read_numbers(options, &request, &limit); /* were checked before */
     if (options->verb == VERB_MERGE) {
         parts = part_files_read(options, &status);
@@ -289,7 +276,7 @@ int cell_run(const struct options *options, const volatile sig_atomic_t *stop)
         fputs("ampstead: stopped\n", stderr);
     }
     if (status == AMPSTEAD_WELL && options->given[OPTION_PART]) {
-        status = part_files_deliver(options, result);
+        status = parts_deliver(options, result);
     } else if (cell_has_results(status) && !options->given[OPTION_PART]) {
         status = cell_deliver(options, result, 0);
     }

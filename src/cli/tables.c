@@ -21,7 +21,7 @@ const struct verb_row verb_rows[VERB_COUNT] = {
         {"review", "FILE.cell", "does the hand design hold? one page (also without a verb)",
          "Finds the operating point, moves the load of every output over its range, compares\n"
          "the `hand` lines with what was computed, and judges the `require` lines. --csv\n"
-         "writes the curves: columns output,v,current in V and A."},
+         "writes the curves: output, voltage and current, with SI units in the header."},
     [VERB_POINT] =
         {"point", "FILE.cell", "the operating point alone, with every quantity of every device",
          "Finds the operating point and shows all node voltages, rail currents and device\n"
@@ -123,7 +123,7 @@ const struct option_row option_rows[OPTION_COUNT] = {
                      1 << VERB_SPREAD | 1 << VERB_MERGE | 1 << VERB_REVIEW | 1 << VERB_SWEEP},
     [OPTION_TIME_LIMIT] = {"time-limit", 0, ARGUMENT_NEEDED, "SECONDS", NULL, "3600",
                            "the work stops there and shows what was done; 0: no limit",
-                           RESULT_VERBS | 1 << VERB_EXPLAIN | 1 << VERB_MERGE},
+                           RESULT_VERBS | 1 << VERB_MERGE | 1 << VERB_EXPLAIN},
     [OPTION_LANES] = {"lanes", 0, ARGUMENT_NEEDED, "8|4|1", lanes_words,
                       "as many as the processor can",
                       "most samples solved side by side; results differ by rounding only",
@@ -180,7 +180,7 @@ const struct option_row option_rows[OPTION_COUNT] = {
     [OPTION_PLOT] = {"plot", 0, ARGUMENT_NEEDED, "FILE", NULL, "off",
                      "draws curves and bars to FILE; its ending says how: .svg, .pdf or .png",
                      1 << VERB_REVIEW | 1 << VERB_SWEEP | 1 << VERB_STATES | 1 << VERB_SPREAD |
-                         1 << VERB_EXPLAIN | 1 << VERB_SENSITIVITY},
+                         1 << VERB_EXPLAIN | 1 << VERB_SENSITIVITY | CALIBRATE},
     [OPTION_PAGE] = {"page", 0, ARGUMENT_NEEDED, "FILE", NULL, "off",
                      "writes the result as one HTML file that needs nothing else; of a review also "
                      "what spread and states find, unless --watch is given",

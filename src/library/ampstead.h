@@ -246,6 +246,7 @@ AMPSTEAD_API const char *ampstead_calibration_text(struct ampstead_calibration *
                                                    unsigned flags, int columns);
 AMPSTEAD_API const char *ampstead_calibration_json(struct ampstead_calibration *calibration);
 /* The process file. */
+AMPSTEAD_API const char *ampstead_calibration_plot(struct ampstead_calibration *calibration);
 AMPSTEAD_API const char *ampstead_calibration_process(struct ampstead_calibration *calibration);
 
 /* "1.0.0"; lives as long as the program. */

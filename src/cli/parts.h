@@ -1,6 +1,6 @@
-/* part_files.h: parts of a sampled run: from files, and to one. */
-#ifndef CLI_PART_FILES_H
-#define CLI_PART_FILES_H
+/* parts.h: parts of a sampled run: from files, and to one. */
+#ifndef CLI_PARTS_H
+#define CLI_PARTS_H
 
 #include "cli/options.h"
 #include "library/ampstead.h"
@@ -13,6 +13,6 @@ void part_files_free(struct ampstead_part *parts, int count);
 bool part_files_check(const struct options *options);
 
 /* The part to where --write says. Returns the exit status. */
-int part_files_deliver(const struct options *options, struct ampstead_result *result);
+int parts_deliver(const struct options *options, struct ampstead_result *result);
 
 #endif

@@ -1,5 +1,5 @@
-/* part_files.c: parts of a sampled run: from files, and to one. */
-#include "cli/part_files.h"
+/* parts.c: parts of a sampled run: from files, and to one. */
+#include "cli/parts.h"
 
 #include <errno.h>
 #include <stdint.h>
@@ -66,8 +66,7 @@ void part_files_free(struct ampstead_part *parts, int count)
 
 bool part_files_check(const struct options *options)
 {
-    static const enum option results[] = {OPTION_JSON, OPTION_CSV, OPTION_PLOT, OPTION_PAGE,
-                                          OPTION_WATCH};
+    static const enum option results[] = {OPTION_JSON, OPTION_CSV, OPTION_WATCH};
     if (options->verb != VERB_SPREAD) {
         return true;
     }
@@ -85,7 +84,7 @@ bool part_files_check(const struct options *options)
     return true;
 }
 
-int part_files_deliver(const struct options *options, struct ampstead_result *result)
+int parts_deliver(const struct options *options, struct ampstead_result *result)
 {
     const char *text = ampstead_result_part(result);
     return output_deliver(options->values[OPTION_WRITE], text) ? AMPSTEAD_WELL : AMPSTEAD_MACHINE;
