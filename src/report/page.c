@@ -250,6 +250,7 @@ void report_page(const struct result *result, const struct report_style *style, 
         page_devices(&layout, result);
         page_requirements(&layout, result);
         page_paper(&layout, result);
+        page_states(&layout, result);
     } else if (!style->stopped) {
         page_unsolved(&layout, result);
     }

@@ -22,6 +22,12 @@ const char *why_value(struct layout *layout, const struct explanation *e, double
 const char *why_change(struct layout *layout, const struct explanation *e, double value);
 bool why_matters(const struct explanation *e, int k);
 void page_repairs(struct layout *layout, const struct result *result);
+/* States of a cell with a loop, and whether it starts; nothing where result->states is NULL. */
+void page_states(struct layout *layout, const struct result *result);
+/* "1 state, and no other: proved", "start-up certain": shared with the HTML page. */
+struct states_result;
+const char *states_proof_text(struct layout *layout, const struct states_result *found);
+const char *states_startup_text(const struct states_result *found);
 void page_cautions(struct layout *layout, const struct result *result);
 /* Lines of the cell that other verbs answer. */
 void page_elsewhere(struct layout *layout, const struct result *result);

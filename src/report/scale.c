@@ -130,9 +130,10 @@ static int signed_ticks(const struct scale *scale, double *ticks)
         ticks[count++] = -scale->linear * pow(factor, k);
     }
     ticks[count++] = 0.0;
-    for (double v = scale->linear * factor;
-         v <= scale->high * (1.0 + 1e-9) && count < SCALE_TICK_LIMIT; v *= factor) {
-        ticks[count++] = v;
+    double above = scale->linear * factor;
+    while (above <= scale->high * (1.0 + 1e-9) && count < SCALE_TICK_LIMIT) {
+        ticks[count++] = above;
+        above *= factor;
     }
     return count;
 }

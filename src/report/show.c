@@ -7,13 +7,19 @@
 
 enum { VALUE_SIZE = 64 };
 
+static void append(char *text, const char *more)
+{
+    const size_t length = strlen(text);
+    snprintf(text + length, VALUE_SIZE - length, "%s", more);
+}
+
 /* Written without a prefix: a plain number and its unit, if any. */
 static void fixed_text(double value, const char *unit, char *text)
 {
     number_show(value, SHOW_DIGITS, "", text, VALUE_SIZE / 2);
     if (unit[0] != '\0') {
-        strcat(text, " ");
-        strcat(text, unit);
+        append(text, " ");
+        append(text, unit);
     }
 }
 
@@ -50,7 +56,7 @@ static void value_text(double value, struct dimension dimension, char *text)
         const char *shown = unit, first[] = {unit[0], '\0'};
         double factor = in_micrometres(&shown);
         number_show(value * factor, SHOW_DIGITS, first, text, VALUE_SIZE / 2);
-        strcat(text, shown + 1); /* "170.0 uA/V^2" */
+        append(text, shown + 1); /* "170.0 uA/V^2" */
     } else if (strpbrk(unit, "/^*") != NULL) {
         fixed_text(value, unit, text); /* "25.10 1/V" */
     } else {

@@ -174,7 +174,7 @@ static void write_line(struct table *table, const int *widths, const char **cell
 
 void table_write(struct table *table)
 {
-    int widths[TABLE_COLUMN_LIMIT];
+    int widths[TABLE_COLUMN_LIMIT] = {0};
     const char *cells[TABLE_COLUMN_LIMIT];
     if (table->row_count == 0 || arena_failed(table->layout->arena)) {
         return;

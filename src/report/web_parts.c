@@ -2,6 +2,7 @@
 #include <math.h>
 #include <string.h>
 
+#include "analyses/states.h"
 #include "report/markup.h"
 #include "report/page_parts.h"
 #include "report/show.h"

@@ -36,7 +36,7 @@ run 2 "$cell" --set && err_begins "ampstead: '--set' wants a value: --set NAME=E
 run 2 "$cell" --view=hnd && err_begins "ampstead: 'hnd' is no value of --view (full|hand); did you mean 'hand'?"
 run 2 "$cell" --color blue && err_begins "ampstead: 'blue' is no value of --color"
 run 2 --help=yes && err_begins "ampstead: '--help=yes' takes no value"
-run 2 point "$cell" --csv x.csv && err_begins "ampstead: '--csv' does not go with \`point\`, only with \`review\` \`sweep\`"
+run 2 point "$cell" --csv x.csv && err_begins "ampstead: '--csv' does not go with \`point\`, only with \`review\`, \`sweep\`"
 run 2 review "$cell" again && err_begins "ampstead: 'again' is one too many: one cell a run"
 run 2 "$cell" y.cell && err_begins "ampstead: 'y.cell' is one too many: one cell a run"
 run 2 "$cell" --json out.txt && err_begins "ampstead: 'out.txt' is one too many; for a file write --json=out.txt"
