@@ -295,8 +295,9 @@ static enum status edge_device(struct operating_point *home, const struct probe 
         return STATUS_OK;
     }
     struct arena *arena = arena_create();
-    enum status status =
-        arena == NULL ? STATUS_MEMORY : output_edges(home, probe->index, arena, &r);
+    enum status status = arena == NULL
+                             ? STATUS_MEMORY
+                             : output_edges(home, probe->index, EDGE_COMPLIANCE, arena, &r);
     if (status == STATUS_OK && r.compliance_device != NULL) {
         *found = circuit_find_instance(home->system->circuit, r.compliance_device);
     }

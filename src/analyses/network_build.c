@@ -4,7 +4,6 @@
 #include <string.h>
 
 #include "analyses/network_law.h"
-#include "analyses/network_range.h"
 #include "devices/bipolar.h"
 #include "devices/curve.h"
 #include "devices/diode.h"
@@ -445,10 +444,7 @@ bool network_build(struct arena *arena, const struct system *system, struct netw
     for (int k = 0; k < circuit->instance_count && !b.failed; k++) {
         add_instance(&b, k);
     }
-    if (b.failed || !network_finish(map->network)) {
-        return false;
-    }
-    return network_range(arena, system, map);
+    return !b.failed && network_finish(map->network);
 }
 
 void network_from_system(const struct network_map *map, const double *x, double *nodes)

@@ -20,6 +20,8 @@ enum { UP, DOWN };
 
 /* Rounding of a bound: far more than a few operations lose. */
 static const double slack = 1e-9;
+/* How near to its least value a bound by a channel is taken, of itself: each try is a range. */
+static const double channel_share = 1e-4;
 /* A bound is worth another round while it still moves by this share of itself. */
 static const double progress_share = 1e-3;
 
@@ -433,7 +435,8 @@ static void cross_channel(struct ranger *r, int way, int k, int moving)
     if (!(good > bad) || !channel_carries(r, way, k, moving, good, last)) {
         return;
     }
-    for (int n = 0; n < HALVINGS && good - bad > 1e-9 + slack * fabs(good); n++) {
+    const double from = bad;
+    for (int n = 0; n < HALVINGS && good - bad > 1e-6 + channel_share * (good - from); n++) {
         const double middle = (good + bad) / 2;
         *(channel_carries(r, way, k, moving, middle, last) ? &good : &bad) = middle;
     }

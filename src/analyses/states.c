@@ -8,6 +8,7 @@
 #include <string.h>
 
 #include "solve/measure.h"
+#include "analyses/network_range.h"
 #include "analyses/remarks.h"
 #include "analyses/result_create.h"
 #include "analyses/states_internal.h"
@@ -371,6 +372,9 @@ static enum status work_on(struct states_work *w, bool has_point, struct result 
                                           .stopped_self = options->stopped_self,
                                           .progress = options->progress,
                                           .progress_self = options->progress_self};
+    if (!network_range(w->arena, w->system, &w->map)) {
+        return STATUS_MEMORY;
+    }
     w->search = search_create(w->map.network, &search);
     if (w->search == NULL) {
         return STATUS_MEMORY;

@@ -18,7 +18,7 @@ struct states_work {
     const struct analysis_options *options;
     struct network_map map;
     bool is_large; /* beyond the limits of states.h: map is empty */
-    bool is_brief;  /* for a review */
+    bool is_brief; /* for a review */
     struct search *search;
     struct loop loop;
     enum status broken;   /* STATUS_MEMORY or STATUS_STOPPED inside a search for states */

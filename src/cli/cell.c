@@ -9,10 +9,10 @@
 
 #include "cli/live.h"
 #include "cli/output.h"
+#include "cli/parts.h"
 #include "cli/picture.h"
 #include "cli/terminal.h"
 
-/* The picture in the form that the ending of the path asks for. */
 static bool deliver_plot(const char *path, struct ampstead_result *result)
 {
     const char *svg = ampstead_result_plot(result);
@@ -21,19 +21,7 @@ static bool deliver_plot(const char *path, struct ampstead_result *result)
                 path);
         return true;
     }
-    if (svg == NULL || picture_form(path) == PICTURE_SVG) {
-        return output_deliver(path, svg);
-    }
-    struct picture picture = {NULL, 0, 0};
-    const char *trouble = picture_make(svg, picture_form(path), &picture);
-    bool is_written = false;
-    if (trouble != NULL) {
-        fprintf(stderr, "ampstead: %s: %s\n", path, trouble);
-    } else {
-        is_written = output_file(path, picture.data, picture.length);
-    }
-    picture_free(&picture);
-    return is_written;
+    return picture_deliver(path, svg);
 }
 
 /* No copy of the cell: there is no solution, this rounding rounds nothing here, or a message says
@@ -169,7 +157,8 @@ bool cell_check(const struct options *options)
 {
     struct ampstead_request request = AMPSTEAD_REQUEST;
     unsigned limit = 0;
-    if (!check_streams(options) || !read_numbers(options, &request, &limit)) {
+    if (!check_streams(options) || !part_files_check(options) ||
+        !read_numbers(options, &request, &limit)) {
         return false;
     }
     if (options->given[OPTION_PLOT]) {
@@ -219,8 +208,16 @@ int cell_request(const struct options *options, const volatile sig_atomic_t *sto
     struct terminal_run run;
     struct ampstead_request request = AMPSTEAD_REQUEST;
     const char *view = options->values[OPTION_VIEW];
+    struct ampstead_part *parts = NULL;
+    int status = AMPSTEAD_WELL;
     unsigned limit = 0;
     (void)read_numbers(options, &request, &limit); /* were checked before */
+    if (options->verb == VERB_MERGE) {
+        parts = part_files_read(options, &status);
+        if (parts == NULL) {
+            return status;
+        }
+    }
     terminal_begin(&run, stop, limit);
     request.command = verb_rows[options->verb].word;
     request.path = options->file;
@@ -240,8 +237,13 @@ int cell_request(const struct options *options, const volatile sig_atomic_t *sto
     request.stopped_self = &run;
     request.progress = terminal_progress;
     request.progress_self = &run;
-    int status = (int)ampstead_run(&request, result);
+    request.part = options->values[OPTION_PART];
+    request.lanes = options->given[OPTION_LANES] ? options->values[OPTION_LANES][0] - '0' : 0;
+    request.parts = parts;
+    request.part_count = options->word_count - 1;
+    status = (int)ampstead_run(&request, result);
     terminal_end(&run);
+    part_files_free(parts, request.part_count);
     return status;
 }
 
@@ -263,15 +265,19 @@ int cell_run(const struct options *options, const volatile sig_atomic_t *stop)
         ampstead_result_free(result);
         return status;
     }
-    fputs(ampstead_result_messages(result,
-                                   terminal_color(options, STDERR_FILENO) ? AMPSTEAD_COLOR : 0),
-          stderr);
+    if (result != NULL || status == AMPSTEAD_MACHINE) {
+        fputs(ampstead_result_messages(result,
+                                       terminal_color(options, STDERR_FILENO) ? AMPSTEAD_COLOR : 0),
+              stderr);
+    }
     if (status == AMPSTEAD_UNSOLVED) {
         fprintf(stderr, "ampstead: %s: no operating point was found\n", options->file);
     } else if (status == AMPSTEAD_STOPPED) {
         fputs("ampstead: stopped\n", stderr);
     }
-    if (cell_has_results(status)) {
+    if (status == AMPSTEAD_WELL && options->given[OPTION_PART]) {
+        status = parts_deliver(options, result);
+    } else if (cell_has_results(status) && !options->given[OPTION_PART]) {
         status = cell_deliver(options, result, 0);
     }
     ampstead_result_free(result);

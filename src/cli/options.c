@@ -185,7 +185,7 @@ static bool take_word(struct reader *reader, const char *word)
     struct options *options = reader->options;
     int verb = reader->word_count == 0 ? -1 : find_verb(reader->words[0]);
     options->words[options->word_count++] = word;
-    if (reader->word_count == 2 && verb >= 0 && verb_takes_curves((enum verb)verb)) {
+    if (reader->word_count == 2 && verb >= 0 && verb_takes_many((enum verb)verb)) {
         return true;
     }
     if (reader->word_count == 2) {
@@ -238,9 +238,11 @@ static bool check_together(const struct reader *reader)
         if (options->given[k] && (option_rows[k].verbs & 1u << options->verb) == 0) {
             fprintf(reader->errors, "ampstead: '--%s' does not go with `%s`, only with",
                     option_rows[k].name, verb_rows[options->verb].word);
+            const char *between = "";
             for (int v = 0; v < VERB_COUNT; v++) {
                 if ((option_rows[k].verbs & 1u << v) != 0) {
-                    fprintf(reader->errors, " `%s`", verb_rows[v].word);
+                    fprintf(reader->errors, "%s `%s`", between, verb_rows[v].word);
+                    between = ",";
                 }
             }
             fputs("\n", reader->errors);

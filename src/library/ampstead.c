@@ -8,9 +8,11 @@
 #include <string.h>
 
 #include "analyses/analysis.h"
+#include "analyses/lanes.h"
 #include "analyses/size.h"
 #include "library/answer.h"
 #include "library/edit.h"
+#include "library/part.h"
 #include "library/place.h"
 #include "library/request.h"
 #include "library/value.h"
@@ -27,6 +29,7 @@ enum command {
     COMMAND_SIZE,
     COMMAND_SENSITIVITY,
     COMMAND_SPREAD,
+    COMMAND_MERGE,
     COMMAND_STATES,
     COMMAND_CHECK,
     COMMAND_FORMAT,
@@ -42,6 +45,7 @@ static const char *const command_words[COMMAND_COUNT] = {
     [COMMAND_SIZE] = "size",
     [COMMAND_SENSITIVITY] = "sensitivity",
     [COMMAND_SPREAD] = "spread",
+    [COMMAND_MERGE] = "merge",
     [COMMAND_STATES] = "states",
     [COMMAND_CHECK] = "check",
     [COMMAND_FORMAT] = "format",
@@ -57,7 +61,9 @@ struct ampstead_result {
     struct result *spread, *states; /* beside a review, for its page; NULL: none */
     struct sweep sweep;             /* the one of the request */
     struct probe wanted;            /* the quantity of the request */
-    struct buffer messages, text, json, csv, plot, page, cell_text;
+    struct part part;               /* of the request: number and parts; parts 0: the whole */
+    struct parts parts;             /* of a merge */
+    struct buffer messages, text, json, csv, plot, page, cell_text, part_text;
 };
 
 const char *ampstead_version(void)
@@ -210,6 +216,7 @@ static struct analysis_options options_of(const struct ampstead_request *request
         .jobs = request->jobs,
         .samples = request->samples,
         .seed = request->seed,
+        .lanes = request->lanes,
         .grid = 10e-9,
     };
 }
@@ -257,6 +264,12 @@ static enum status analyse(const struct ampstead_request *request, struct hooks 
         }
         return analysis_states(result->circuit, &options, &result->found);
     case COMMAND_SPREAD:
+        if (result->part.parts > 0) {
+            part_range(request->samples, result->part.number, result->part.parts, &options.first,
+                       &options.count);
+            return analysis_samples(result->circuit, &options, &result->found);
+        }
+        options.sampled = result->parts.count > 0 ? &result->parts.rows : NULL;
         return analysis_spread(result->circuit, &options, &result->found);
     case COMMAND_EXPLAIN:
         return analysis_explain(result->circuit, &options, &result->found);
@@ -278,6 +291,7 @@ static enum status analyse(const struct ampstead_request *request, struct hooks 
             options.wanted = &result->wanted;
         }
         return analysis_sensitivity(result->circuit, &options, &result->found);
+    case COMMAND_MERGE:
     case COMMAND_MODELS:
     case COMMAND_CHECK:
     case COMMAND_FORMAT:
@@ -293,8 +307,15 @@ static const char *check_request(const struct ampstead_request *request, enum co
     if (request->size != sizeof *request) {
         return "the request was made for another version of the library";
     }
-    if (request->path == NULL) {
+    const bool is_merge = request->command != NULL && strcmp(request->command, "merge") == 0;
+    if (request->path == NULL && !is_merge) {
         return "the request names no cell";
+    }
+    if (is_merge && (request->parts == NULL || request->part_count < 1)) {
+        return "the request names no parts";
+    }
+    if (request->lanes < 0 || request->lanes > LANES_LIMIT) {
+        return "the number of lanes must lie between 0 and 8";
     }
     if (request->set_count > REQUEST_SET_LIMIT) {
         return "more than 1000 values are set";
@@ -336,12 +357,86 @@ static enum status analyse_or_stop(const struct ampstead_request *request,
     return status;
 }
 
+/* What the part says of itself. */
+static enum status describe_part(const struct ampstead_request *request,
+                                 struct ampstead_result *result)
+{
+    const struct mismatch_result *r = result->found->mismatch;
+    const struct lanes_kind *kind = request->lanes == 1 ? NULL : lanes_find(request->lanes);
+    struct part *p = &result->part;
+    if (r->states == NULL) {
+        result->trouble = "the cell has no mismatch to sample";
+        return STATUS_INPUT;
+    }
+    p->version = AMPSTEAD_VERSION;
+    p->cell = result->cell->path;
+    p->view = request->view == AMPSTEAD_VIEW_HAND ? "hand" : "full";
+    p->lanes = kind == NULL ? "single" : kind->name;
+    p->fingerprint = part_fingerprint(result->cell);
+    p->seed = request->seed;
+    p->samples = request->samples;
+    part_range(p->samples, p->number, p->parts, &p->first, &p->count);
+    p->quantity_count = r->quantity_count;
+    p->requirement_count = result->circuit->requirement_count;
+    p->values = r->values;
+    p->states = r->states;
+    p->met = r->met;
+    answer_begin(&result->part_text); /* now: the texts of the request are gone later */
+    p->corner = request->corner;
+    p->temperature = request->temperature;
+    p->sets = request->sets;
+    p->set_count = request->sets == NULL || request->set_count < 0 ? 0 : request->set_count;
+    part_write(p, &result->part_text);
+    return result->part_text.failed ? STATUS_MEMORY : STATUS_OK;
+}
+
+/* What only a merge asks of the cell, or a part of the samples. */
+static enum status check_parts(const struct ampstead_request *request,
+                               struct ampstead_result *result)
+{
+    if (request->part != NULL) {
+        if (result->command != COMMAND_SPREAD ||
+            !part_parse(request->part, &result->part.number, &result->part.parts)) {
+            result->trouble = "a part is written as 3/16, and goes with the command spread";
+            return STATUS_INPUT;
+        }
+    }
+    return STATUS_OK;
+}
+
+static enum status run_on_cell(const struct ampstead_request *request,
+                               struct ampstead_result *result);
+
+static enum status merge(const struct ampstead_request *request, struct ampstead_result *result)
+{
+    struct ampstead_request whole = *request;
+    enum status status = parts_join(request, AMPSTEAD_VERSION, &result->parts, &whole);
+    if (status == STATUS_OK) {
+        result->command = COMMAND_SPREAD;
+        status = run_on_cell(&whole, result);
+    }
+    if (status == STATUS_INPUT && result->parts.trouble.length > 0) {
+        result->trouble = result->parts.trouble.data;
+    }
+    return status;
+}
+
 static enum status run(const struct ampstead_request *request, struct ampstead_result *result)
 {
     result->trouble = check_request(request, &result->command);
     if (result->trouble != NULL) {
         return STATUS_INPUT;
     }
+    const enum status status = check_parts(request, result);
+    if (status != STATUS_OK) {
+        return status;
+    }
+    return result->command == COMMAND_MERGE ? merge(request, result) : run_on_cell(request, result);
+}
+
+static enum status run_on_cell(const struct ampstead_request *request,
+                               struct ampstead_result *result)
+{
     if (result->command != COMMAND_MODELS && result->command != COMMAND_CHECK &&
         result->command != COMMAND_FORMAT && ends_with(request->path, ".process")) {
         result->trouble = "this is a process file: ampstead models FILE shows it";
@@ -362,11 +457,17 @@ static enum status run(const struct ampstead_request *request, struct ampstead_r
         diagnostics_add(&result->cell->diagnostics, SPAN_NONE, NULL, "the cell holds no parts");
         status = STATUS_INPUT;
     }
+    if (status == STATUS_OK && result->parts.count > 0) {
+        status = parts_check(&result->parts, result->cell, result->circuit);
+    }
     if (status == STATUS_OK) {
         status = analyse_or_stop(request, result);
     }
     if (status == STATUS_OK && result->command == COMMAND_REVIEW && request->whole != 0) {
         status = analyse_more(request, result);
+    }
+    if (status == STATUS_OK && result->part.parts > 0) {
+        status = describe_part(request, result);
     }
     if (result->cell != NULL && result->cell->diagnostics.out_of_memory) {
         return STATUS_MEMORY;
@@ -402,6 +503,8 @@ void ampstead_result_free(struct ampstead_result *result)
     buffer_free(&result->plot);
     buffer_free(&result->page);
     buffer_free(&result->cell_text);
+    buffer_free(&result->part_text);
+    parts_free(&result->parts);
     result_free(result->found);
     result_free(result->spread);
     result_free(result->states);
@@ -420,10 +523,10 @@ const char *ampstead_result_messages(struct ampstead_result *result, unsigned fl
     if (result == NULL) {
         return answer_short_memory;
     }
-    return answer_messages(&result->messages, result->trouble,
-                           result->cell == NULL ? NULL : &result->cell->diagnostics,
-                           result->cell == NULL ? NULL : &result->cell->sources, flags,
-                           &result->status);
+    return answer_messages(
+        &result->messages, result->trouble == NULL ? result->parts.note : result->trouble,
+        result->cell == NULL ? NULL : &result->cell->diagnostics,
+        result->cell == NULL ? NULL : &result->cell->sources, flags, &result->status);
 }
 
 /* Whether the command came far enough to have something to report. */
@@ -432,7 +535,7 @@ static bool has_report(const struct ampstead_result *result)
     if (result == NULL || result->circuit == NULL) {
         return false;
     }
-    return result->command == COMMAND_MODELS || result->found != NULL;
+    return result->command == COMMAND_MODELS || (result->found != NULL && result->part.parts == 0);
 }
 
 const char *ampstead_result_text(struct ampstead_result *result, unsigned flags, int columns)
@@ -481,6 +584,7 @@ const char *ampstead_result_text(struct ampstead_result *result, unsigned flags,
         report_sensitivity(result->found, &style, &result->text);
         break;
     case COMMAND_REVIEW:
+    case COMMAND_MERGE:
     case COMMAND_CHECK:
     case COMMAND_FORMAT:
     case COMMAND_COUNT:
@@ -514,6 +618,14 @@ const char *ampstead_result_csv(struct ampstead_result *result)
     answer_begin(&result->csv);
     report_csv(result->found, &result->csv);
     return answer_end(&result->csv, &result->status);
+}
+
+const char *ampstead_result_part(struct ampstead_result *result)
+{
+    if (result == NULL || result->part.parts == 0 || result->part_text.data == NULL) {
+        return NULL;
+    }
+    return answer_end(&result->part_text, &result->status);
 }
 
 const char *ampstead_result_plot(struct ampstead_result *result)

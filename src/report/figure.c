@@ -36,7 +36,8 @@ static const char style_sheet[] =
     ".f-paper{fill:#fff}.f-grid{stroke:#e3e3e3}.f-frame{stroke:#555;fill:none}"
     ".f-band{fill:#eaf2f8}.f-edge{stroke-dasharray:2 3;stroke-width:1.5}"
     ".f-curve{fill:none;stroke-width:2;stroke-linejoin:round}"
-    ".f-mark{fill:#fff;stroke-width:2}.f-halo{stroke:#fff;stroke-width:4;paint-order:stroke;"
+    ".f-mark{fill:#fff;stroke-width:2}.f-dot{stroke-width:1}.f-halo{stroke:#fff;stroke-width:4;"
+    "paint-order:stroke;"
     "stroke-linejoin:round}"
     ".f-bar{fill:#7fb8d8}.f-out{fill:#e9975f}.f-minus{fill:#e9975f}"
     ".f-full{fill:#1a1a1a}.f-rule{stroke:#999}.f-strong{font-weight:bold}"
@@ -124,6 +125,12 @@ static void y_range(const struct figure *figure, double *low, double *high)
                 *low = fmin(*low, y);
                 *high = fmax(*high, y);
             }
+        }
+    }
+    for (int d = 0; d < figure->dots_count; d++) {
+        for (int k = 0; k < figure->dots[d].count; k++) {
+            *low = fmin(*low, isfinite(figure->dots[d].y[k]) ? figure->dots[d].y[k] : *low);
+            *high = fmax(*high, isfinite(figure->dots[d].y[k]) ? figure->dots[d].y[k] : *high);
         }
     }
     for (int k = 0; k < figure->bar_count; k++) {
@@ -246,6 +253,23 @@ static void draw_curve(struct drawing *drawing, int index, bool close)
     ink(drawing, "\"/>\n");
 }
 
+static void draw_dots(struct drawing *drawing, const struct figure_dots *dots)
+{
+    char color[8];
+    series_class(dots->series, color, sizeof color);
+    for (int k = 0; k < dots->count; k++) {
+        if (!isfinite(dots->y[k])) {
+            continue;
+        }
+        buffer_format(drawing->out, "<circle class=\"f-mark f-dot %s\" r=\"2\"", color);
+        const struct ink_piece pieces[] = {{" cx=\"", scale_pixel(&drawing->x, dots->x[k])},
+                                           {"\" cy=\"", scale_pixel(&drawing->y, dots->y[k])},
+                                           {"\"/>\n", INK_NONE},
+                                           {NULL, 0.0}};
+        ink_pieces(drawing, pieces);
+    }
+}
+
 /* Curves, cut off at the panel: an inner <svg> clips without a name, which must be unique in a
  * page. */
 static void draw_curves(struct drawing *drawing, bool close)
@@ -266,6 +290,9 @@ static void draw_curves(struct drawing *drawing, bool close)
         if (!close || isfinite(drawing->figure->series[s].reference)) {
             draw_curve(drawing, s, close);
         }
+    }
+    for (int d = 0; d < drawing->figure->dots_count && !close; d++) {
+        draw_dots(drawing, &drawing->figure->dots[d]);
     }
     ink(drawing, "</svg>\n");
 }

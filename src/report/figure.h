@@ -58,6 +58,12 @@ struct figure_mark {
     bool is_filled;
 };
 
+/* Readings: small dots in the colour of a curve. */
+struct figure_dots {
+    const double *x, *y; /* [count]; a y that is not finite is left out */
+    int count, series;
+};
+
 /* A shaded range of x; at most one. Bars outside of it have another colour. */
 struct figure_band {
     double from, to; /* NAN: none; may be infinite */
@@ -81,6 +87,8 @@ struct figure {
     int edge_count;
     struct figure_mark *marks;
     int mark_count;
+    struct figure_dots *dots;
+    int dots_count;
     struct figure_band band;
     double linear;     /* 0, or the y axis is logarithmic on both sides of zero beyond this */
     bool keeps_zero;   /* the y axis begins at zero */

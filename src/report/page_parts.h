@@ -40,10 +40,10 @@ void page_closing(struct layout *layout);
 extern const char page_sign_off[];
 
 /* Columns of the device tables: each shows the first of its quantities that a device has. */
-enum { COLUMN_NAME_LIMIT = 2, TRANSISTOR_COLUMN_COUNT = 7, PART_COLUMN_COUNT = 3 };
+enum { COLUMN_NAME_LIMIT = 2, TRANSISTOR_COLUMN_COUNT = 8, PART_COLUMN_COUNT = 3 };
 struct quantity_column {
     const char *names[COLUMN_NAME_LIMIT];
-    bool may_drop;
+    int may_drop; /* as in table.h */
 };
 extern const struct quantity_column transistor_columns[TRANSISTOR_COLUMN_COUNT];
 extern const struct quantity_column part_columns[PART_COLUMN_COUNT];

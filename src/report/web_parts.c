@@ -133,7 +133,7 @@ void web_cautions(struct layout *layout, const struct result *result)
 {
     const struct caution_list *cautions = &result->cautions;
     struct buffer *out = layout->out;
-    if (cautions->count == 0) {
+    if (cautions->count == 0 && cautions->silenced_count == 0) {
         return;
     }
     web_heading(layout, "cautions", "Cautions");
@@ -151,6 +151,14 @@ void web_cautions(struct layout *layout, const struct result *result)
             if (strcmp(cautions->list[m].code, first->code) == 0) {
                 one_caution(layout, &cautions->list[m]);
             }
+        }
+        buffer_text(out, "</ul>\n");
+    }
+    if (cautions->silenced_count > 0) {
+        web_paragraph(layout, "quiet", "Silenced by `quiet` lines of the cell:");
+        buffer_text(out, "<ul class=\"cautions quiet\" id=\"silenced\">\n");
+        for (int k = 0; k < cautions->silenced_count; k++) {
+            one_caution(layout, &cautions->silenced[k]);
         }
         buffer_text(out, "</ul>\n");
     }
