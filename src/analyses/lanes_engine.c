@@ -110,8 +110,8 @@ static bool open_parts(struct lanes_engine *e, struct arena *arena)
             return false;
         }
         memcpy(part->block + MOVED_LIMIT, system_block(s, k), size);
-        for (int d = 0; d < type->deviate_count && d < MOVED_LIMIT; d++) {
-            part->block[d] = lanes_of(prepared_value(s, k, type->deviates[d].moved));
+        for (int d = 0; d < type->moved_count; d++) {
+            part->block[d] = lanes_of(prepared_value(s, k, type->moved[d]));
         }
     }
     return e->parts != NULL;
@@ -459,6 +459,7 @@ static void stand_in(const struct lanes_engine *e, int lane)
         memcpy(e->system->prepared + e->system->block[m->instance] + m->place, &value,
                sizeof value);
     }
+    system_blocks_changed(e->system);
 }
 
 static bool is_supported(void)

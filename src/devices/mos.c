@@ -444,8 +444,10 @@ static const struct deviate deviates[] = {
     .terminal_count = MOS_TERMINALS, .value_parameter = -1, .quantities = quantities,              \
     .quantity_count = ROWS(quantities), .quantity_current = ROW_ID,                                \
     .quantity_headroom = ROW_HEADROOM, .quantity_power = ROW_POWER,                                \
-    .prepared_size = sizeof(struct mos_prepared), .evaluate = mos_evaluate,                        \
-    .evaluate_extended = mos_evaluate_extended, .describe = describe,                              \
+    .prepared_size = sizeof(struct mos_prepared), .moved_count = 2,                                \
+    .moved = {[MOS_MOVED_VT] = offsetof(struct mos_prepared, vt),                                  \
+              [MOS_MOVED_BETA] = offsetof(struct mos_prepared, beta)},                             \
+    .evaluate = mos_evaluate, .evaluate_extended = mos_evaluate_extended, .describe = describe,    \
     .longest_step = longest_step, .typical = typical, .pattern = pattern, .paths = paths
 
 #define MOS_WITH_MODEL                                                                             \
