@@ -25,7 +25,7 @@ build_packages=(gcc libc6-dev cmake ninja-build libsuitesparse-dev libjansson-de
     pkg-config librsvg2-dev libcairo2-dev)
 # The peers of ampstead-bench.
 bench_packages=(libsundials-dev libgsl-dev liblapack-dev)
-test_packages=(g++ libcmocka-dev python3-jsonschema dpkg-dev)
+test_packages=(g++ libcmocka-dev python3-jsonschema dpkg-dev parallel)
 
 # build_in FOLDER [cmake options...]: configures and builds
 build_in() {

@@ -153,6 +153,12 @@ static enum status make_points(struct conditions_result *r, const struct circuit
         return STATUS_MEMORY;
     }
     place_points(r, at);
+    for (size_t k = 0; k < count * probes; k++) {
+        values[k] = NAN;
+    }
+    for (size_t k = 0; k < count * requirements; k++) {
+        margins[k] = NAN;
+    }
     for (size_t k = 0; k < count; k++) {
         r->points[k] = (struct condition_point){.at = at + k * (size_t)r->axis_count,
                                                 .values = values + k * probes,
@@ -180,12 +186,6 @@ static enum status solve_point(void *self, struct worker *worker, int index)
     options.stopped = worker_stopped;
     options.stopped_self = worker;
     options.progress = NULL;
-    for (int k = 0; k < t->result->probe_count; k++) {
-        point->values[k] = NAN;
-    }
-    for (int k = 0; k < t->circuit->requirement_count; k++) {
-        point->margins[k] = NAN;
-    }
     struct setup setup;
     enum status status = setup_open(&setup, t->circuit, t->result->axes, t->result->axis_count,
                                     point->at, t->scope, &options);
@@ -197,15 +197,18 @@ static enum status solve_point(void *self, struct worker *worker, int index)
         point->is_solved = status == STATUS_OK;
     }
     setup_close(&setup);
-    return status == STATUS_UNSOLVED ? STATUS_OK : status;
+    status = status == STATUS_UNSOLVED ? STATUS_OK : status;
+    point->is_done = status == STATUS_OK;
+    return status;
 }
 
 /* --- what the points say ---------------------------------------------------------------------- */
 
-static void count_unsolved(struct conditions_result *r)
+static void count_points_done(struct conditions_result *r)
 {
     for (int k = 0; k < r->point_count; k++) {
-        if (!r->points[k].is_solved) {
+        r->done_count += r->points[k].is_done;
+        if (r->points[k].is_done && !r->points[k].is_solved) {
             r->unsolved_at = r->unsolved_count == 0 ? r->points[k].at : r->unsolved_at;
             r->unsolved_count++;
         }
@@ -234,14 +237,20 @@ static bool find_ranges(struct conditions_result *r, struct arena *arena)
     return r->ranges != NULL;
 }
 
-/* The worst point of one requirement; one without a state or a value is worse than any. */
-static void judge_everywhere(const struct conditions_result *r, int k, int probe,
-                             struct requirement_result *row)
+/*
+ * The worst point of one requirement; one without a state or a value is worse than any. Where the
+ * work was stopped, a failure at a point that was done stands, and success is no verdict.
+ */
+static bool judge_everywhere(const struct conditions_result *r, int k, int probe,
+                             struct arena *arena, struct requirement_result *row)
 {
     const struct condition_point *worst = NULL;
     for (int p = 0; p < r->point_count; p++) {
         const struct condition_point *point = &r->points[p];
         const double margin = point->margins[k];
+        if (!point->is_done) {
+            continue;
+        }
         if (worst == NULL || (isnan(margin) && !isnan(worst->margins[k])) ||
             is_less(margin, worst->margins[k])) {
             worst = point;
@@ -250,6 +259,9 @@ static void judge_everywhere(const struct conditions_result *r, int k, int probe
             worst = point;
             break;
         }
+    }
+    if (worst == NULL) {
+        return true;
     }
     row->margin = worst->margins[k];
     row->computed = worst->values[probe];
@@ -264,6 +276,12 @@ static void judge_everywhere(const struct conditions_result *r, int k, int probe
     if (r->axis_count == 0 && row->remark == NULL) {
         row->remark = "the cell has no `vary` line";
     }
+    if (r->done_count < r->point_count && row->judgement == JUDGED_MET) {
+        row->judgement = JUDGED_NOT;
+        row->remark = arena_format(arena, "met at the %d of %d conditions done before the stop",
+                                   r->done_count, r->point_count);
+    }
+    return row->judgement != JUDGED_NOT || row->remark != NULL;
 }
 
 enum status analyse_conditions(struct circuit *circuit, const struct operating_point *home,
@@ -278,7 +296,7 @@ enum status analyse_conditions(struct circuit *circuit, const struct operating_p
     enum status status = make_points(r, circuit, &list, result->arena);
     if (status == STATUS_INPUT) {
         diagnostics_add(&circuit->cell->diagnostics, circuit->conditions[0].where,
-                        "vary fewer things", "the `vary` lines make more than %d combinations",
+                        "vary fewer things", "the `vary` lines make more than %d combinations, the limit",
                         CONDITION_POINT_LIMIT);
     }
     if (status != STATUS_OK) {
@@ -295,21 +313,22 @@ enum status analyse_conditions(struct circuit *circuit, const struct operating_p
                                       .progress_self = options->progress_self,
                                       .what = "conditions"};
     status = workers_run(&work);
-    if (status != STATUS_OK) {
+    if (status != STATUS_OK && status != STATUS_STOPPED) {
         return status;
     }
-    count_unsolved(r);
+    count_points_done(r);
     if (!find_ranges(r, result->arena)) {
         return STATUS_MEMORY;
     }
     for (int k = 0; k < result->requirement_count; k++) {
-        if (result->requirements[k].requirement->scope == SCOPE_EVERYWHERE) {
-            judge_everywhere(r, k, list.probe_of[k], &result->requirements[k]);
+        if (result->requirements[k].requirement->scope == SCOPE_EVERYWHERE &&
+            !judge_everywhere(r, k, list.probe_of[k], result->arena, &result->requirements[k])) {
+            return STATUS_MEMORY;
         }
     }
     judge_verdict(result);
     result->conditions = r;
-    return STATUS_OK;
+    return status;
 }
 
 /* --- drift and fine sweeps -------------------------------------------------------------------- */

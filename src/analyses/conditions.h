@@ -17,8 +17,9 @@ enum { CONDITION_POINT_LIMIT = 50000 };
  * home     the solved own point of the circuit
  * result   review of the circuit; gets `conditions`
  *
- * Returns STATUS_OK, STATUS_STOPPED, STATUS_MEMORY, or STATUS_INPUT after a message in the cell's
- * diagnostics when there are more combinations than CONDITION_POINT_LIMIT.
+ * Returns STATUS_OK, STATUS_STOPPED (`conditions` has the points done until then, and the
+ * requirements are judged by them as far as they can be), STATUS_MEMORY, or STATUS_INPUT after a
+ * message in the cell's diagnostics when there are more combinations than CONDITION_POINT_LIMIT.
  */
 enum status analyse_conditions(struct circuit *circuit, const struct operating_point *home,
                                const struct analysis_options *options, struct result *result);

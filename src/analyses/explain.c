@@ -295,8 +295,9 @@ static enum status edge_device(struct operating_point *home, const struct probe 
         return STATUS_OK;
     }
     struct arena *arena = arena_create();
-    enum status status =
-        arena == NULL ? STATUS_MEMORY : output_edges(home, probe->index, arena, &r);
+    enum status status = arena == NULL
+                             ? STATUS_MEMORY
+                             : output_edges(home, probe->index, EDGE_COMPLIANCE, arena, &r);
     if (status == STATUS_OK && r.compliance_device != NULL) {
         *found = circuit_find_instance(home->system->circuit, r.compliance_device);
     }
@@ -423,7 +424,7 @@ static enum status explain_line(struct lattice *l, struct operating_point *home,
     if (found != STATUS_OK) {
         return found;
     }
-    double most = 0, share[EFFECT_COUNT];
+    double most = 0, share[EFFECT_COUNT] = {0};
     for (int b = 0; b < l->bit_count; b++) {
         share[b] = shapley(l, b, h, e->as_conductance);
         most = fmax(most, fabs(share[b]));

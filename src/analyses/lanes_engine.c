@@ -22,7 +22,7 @@ static const double least_share = 1e-3;
 
 /* An instance as its equations see it. */
 struct part {
-    lanes_evaluate *evaluate; /* NULL: one lane at a time by the type */
+    const struct device_lanes *lanes; /* NULL: one lane at a time by the type */
     const struct device_type *type;
     real *block; /* values that mismatch moves, then the prepared block */
     const int *local, *slots;
@@ -72,11 +72,11 @@ static const void *block_of(const struct part *part)
     return part->block + MOVED_LIMIT;
 }
 
-/* Which of the moved values of its type a deviate is; -1: the type does not say. */
-static int moved_row(const struct device_type *type, const struct deviate *deviate)
+/* Which of the moved values a deviate is; -1: the equations read none such. */
+static int moved_row(const struct part *part, const struct deviate *deviate)
 {
-    for (int d = 0; d < type->deviate_count && d < MOVED_LIMIT; d++) {
-        if (type->deviates[d].own_parameter == deviate->own_parameter) {
+    for (int d = 0; part->lanes != NULL && d < part->lanes->moved_count; d++) {
+        if (part->lanes->moved[d] == deviate->moved) {
             return d;
         }
     }
@@ -110,8 +110,8 @@ static bool open_parts(struct lanes_engine *e, struct arena *arena)
             return false;
         }
         memcpy(part->block + MOVED_LIMIT, system_block(s, k), size);
-        for (int d = 0; d < type->moved_count; d++) {
-            part->block[d] = lanes_of(prepared_value(s, k, type->moved[d]));
+        for (int d = 0; part->lanes != NULL && d < part->lanes->moved_count; d++) {
+            part->block[d] = lanes_of(prepared_value(s, k, part->lanes->moved[d]));
         }
     }
     return e->parts != NULL;
@@ -130,9 +130,9 @@ static bool open_moved(struct lanes_engine *e, const struct mismatch *m, struct 
     for (int k = 0; k < m->count; k++) {
         const struct mismatch_row *row = &m->rows[k];
         const struct instance *instance = &s->circuit->instances[row->instance];
-        const int place = moved_row(instance->type, row->deviate);
+        const int place = moved_row(&e->parts[row->instance], row->deviate);
         const double own = instance->own[row->deviate->own_parameter];
-        if (place < 0 || own < 0 || own > 0 || e->parts[row->instance].evaluate == NULL) {
+        if (place < 0 || own < 0 || own > 0) {
             return false;
         }
         e->moved[k] = (struct moved){.value = &e->parts[row->instance].block[place],
@@ -303,8 +303,8 @@ static void evaluate(struct lanes_engine *e, bool with_scale)
         for (int l = 0; l < count; l++) {
             local[l] = part->local[l] < 0 ? lanes_of(0) : e->x[part->local[l]];
         }
-        if (part->evaluate != NULL) {
-            part->evaluate(block_of(part), local, f, jac);
+        if (part->lanes != NULL) {
+            part->lanes->evaluate(block_of(part), local, f, jac);
         } else {
             evaluate_singly(part, local, f, jac);
         }

@@ -422,57 +422,6 @@ static void add_instance(struct builder *b, int k)
     }
 }
 
-/* --- where to look ---------------------------------------------------------------------------- */
-
-/*
- * No node of a cell of these devices lies outside the rails, spread by its floating sources: none
- * of the devices has voltage gain from the rails on (Willson, Bell System Technical Journal 54
- * (1975) 1479). An amplifier has its limits. Current sources, laws and tables have no such bound:
- * there the range is a choice, and is said to be one.
- */
-static void find_range(struct builder *b)
-{
-    const struct system *s = b->system;
-    struct network_map *map = b->map;
-    double spread = 0, drive = 0, ohms = 0;
-    map->low = map->high = 0;
-    for (int k = 0; k < s->node_count; k++) {
-        if (map->group[k] < 0) {
-            map->low = fmin(map->low, map->shift[k].lo);
-            map->high = fmax(map->high, map->shift[k].hi);
-        }
-    }
-    for (int k = 0; k < s->circuit->instance_count; k++) {
-        const struct instance *instance = &s->circuit->instances[k];
-        const void *block = system_block(s, k);
-        double volts;
-        if (held_voltage(s, k, &volts)) {
-            const int a = row_of(b, instance->local[0]), c = row_of(b, instance->local[1]);
-            spread += a >= 0 || c >= 0 ? fabs(volts) : 0;
-        } else if (instance->type->evaluate == current_evaluate) {
-            drive += fabs(((const struct linear_prepared *)block)->value);
-            map->is_assumed = true;
-        } else if (instance->type->evaluate == resistor_evaluate) {
-            ohms += ((const struct linear_prepared *)block)->value;
-        } else if (instance->type->evaluate == law_evaluate ||
-                   instance->type->evaluate == table_evaluate) {
-            map->is_assumed = true;
-        } else if (instance->type->evaluate == opamp_evaluate) {
-            const struct opamp_prepared *p = block;
-            map->low = p->low_node ? map->low : fmin(map->low, p->low);
-            map->high = p->high_node ? map->high : fmax(map->high, p->high);
-        }
-    }
-    if (map->is_assumed) {
-        spread += 100 + 10 * (map->high - map->low) + fmin(drive * ohms, 1e3);
-    }
-    map->low -= spread;
-    map->high += spread;
-    for (int k = 0; k < map->network->node_count; k++) { /* a margin for rounding at the ends */
-        map->network->start[k] = (struct interval){map->low - 1e-6, map->high + 1e-6};
-    }
-}
-
 bool network_build(struct arena *arena, const struct system *system, struct network_map *map)
 {
     struct builder b = {.arena = arena, .system = system, .map = map};
@@ -495,11 +444,7 @@ bool network_build(struct arena *arena, const struct system *system, struct netw
     for (int k = 0; k < circuit->instance_count && !b.failed; k++) {
         add_instance(&b, k);
     }
-    if (b.failed || !network_finish(map->network)) {
-        return false;
-    }
-    find_range(&b);
-    return true;
+    return !b.failed && network_finish(map->network);
 }
 
 void network_from_system(const struct network_map *map, const double *x, double *nodes)

@@ -17,8 +17,9 @@ struct network_map {
     struct interval *shift; /* [node_count] of the node above its group, or above gnd */
     int *node;              /* [network node_count] a node with shift 0 */
     bool *driven;           /* [network node_count] by an amplifier */
-    double low, high;       /* V: where states are looked for */
-    bool is_assumed; /* a current source or a law could push a node beyond: the range is a choice */
+    /* by network_range: */
+    double low, high; /* V: where states are looked for */
+    bool is_assumed;  /* a node could be pushed beyond any bound known: the range is a choice */
 };
 
 /* In the arena. False when memory is short. */

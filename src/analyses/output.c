@@ -20,8 +20,8 @@ enum { FIRST_SEGMENTS = 16, DEPTH_LIMIT = 24, EVENT_LIMIT = 20 };
 
 /* Promised: 0.1 % of nominal or 1 % of the local value. Aimed at: half of it. */
 static const double share_nominal = 0.5e-3, share_local = 0.5e-2;
-/* Root finding in the load voltage, V. */
-static const double volts_tolerance = 1e-9;
+/* Root finding in the load voltage, V: differences of edges between close cells are taken. */
+static const double volts_tolerance = 1e-12;
 /* How near to its end a state is followed, V: the promise for a compliance voltage. */
 static const double volts_edge = 1e-5;
 
@@ -49,6 +49,7 @@ struct sweeper {
     int *held;           /* transistors saturated at `at` */
     int held_count;
     bool edges_only; /* the curve itself is not wanted */
+    unsigned wanted; /* edges: EDGE_... */
     enum status status;
 };
 
@@ -562,8 +563,8 @@ bool output_at_point(struct operating_point *home, int index, struct arena *aren
 
 /* Outwards in the same steps without filling in, until the band is left and the headroom lost; a
  * step that fails is halved until the end of the state is near. */
-static bool walk_edges(struct sweeper *w, const struct place *home, double end,
-                       bool towards_compliance)
+static bool walk_edges(struct sweeper *w, const struct place *home, double end, bool wants_band,
+                       bool wants_compliance)
 {
     const double first = (w->to - w->from) / FIRST_SEGMENTS;
     const double side = end < home->v ? -1 : 1;
@@ -581,7 +582,8 @@ static bool walk_edges(struct sweeper *w, const struct place *home, double end,
             if (!add_place(w, &next)) {
                 return false;
             }
-            if (band_left(w, &next) < 0 && !(towards_compliance && headroom_left(w, &next) > 0)) {
+            if ((!wants_band || band_left(w, &next) < 0) &&
+                !(wants_compliance && headroom_left(w, &next) > 0)) {
                 return true;
             }
         } else if (w->status != STATUS_OK) {
@@ -593,15 +595,20 @@ static bool walk_edges(struct sweeper *w, const struct place *home, double end,
     return true;
 }
 
-/* The edges on one side of home. */
-static void edges_beside(struct sweeper *w, const struct place *home, double end, double *band,
-                         bool towards_compliance)
+/* The edges on one side of home; nothing is done for those that are not wanted. */
+static void edges_beside(struct sweeper *w, const struct place *home, double end, unsigned band_bit,
+                         double *band, bool towards_compliance)
 {
+    const bool wants_band = (w->wanted & band_bit) != 0;
+    const bool wants_compliance = towards_compliance && (w->wanted & EDGE_COMPLIANCE) != 0;
+    if (!wants_band && !wants_compliance) {
+        return;
+    }
     w->places = NULL;
     w->count = w->capacity = 0;
-    if (walk_edges(w, home, end, towards_compliance)) {
-        *band = first_loss(w, band_left);
-        if (towards_compliance) {
+    if (walk_edges(w, home, end, wants_band, wants_compliance)) {
+        *band = wants_band ? first_loss(w, band_left) : NAN;
+        if (wants_compliance) {
             find_compliance(w);
         }
     }
@@ -610,14 +617,15 @@ static void edges_beside(struct sweeper *w, const struct place *home, double end
 static void sweep_edges(struct sweeper *w, const struct place *home)
 {
     struct output_result *r = w->result;
-    edges_beside(w, home, w->from, &r->low, r->is_sink);
+    edges_beside(w, home, w->from, EDGE_LOW, &r->low, r->is_sink);
     if (w->status == STATUS_OK) {
-        edges_beside(w, home, w->to, &r->high, !r->is_sink);
+        edges_beside(w, home, w->to, EDGE_HIGH, &r->high, !r->is_sink);
     }
 }
 
+/* wanted: edges alone; 0: the whole curve. */
 static enum status sweep_output(struct operating_point *home, int index, struct arena *arena,
-                                bool edges_only, struct output_result *r)
+                                unsigned wanted, struct output_result *r)
 {
     struct system *s = home->system;
     const struct output *output = &s->circuit->outputs[index];
@@ -639,14 +647,15 @@ static enum status sweep_output(struct operating_point *home, int index, struct 
                         .nominal = fabs(i),
                         .from = fmin(output->from, at),
                         .to = fmax(output->to, at),
-                        .edges_only = edges_only};
+                        .edges_only = wanted != 0,
+                        .wanted = wanted};
     w.rhs = arena_new_array(scratch, double, s->n);
     const bool good = w.rhs != NULL && output_at_point(home, index, arena, r) && list_held(&w);
     struct place start = {.v = at};
     if (good) {
         read_place(&w, &start);
         if (keep_state(&w, &start)) {
-            if (edges_only) {
+            if (w.edges_only) {
                 sweep_edges(&w, &start);
             } else {
                 sweep_both(&w, &start);
@@ -661,11 +670,11 @@ static enum status sweep_output(struct operating_point *home, int index, struct 
 enum status analyse_output(struct operating_point *home, int index, struct arena *arena,
                            struct output_result *r)
 {
-    return sweep_output(home, index, arena, false, r);
+    return sweep_output(home, index, arena, 0, r);
 }
 
-enum status output_edges(struct operating_point *home, int index, struct arena *arena,
-                         struct output_result *r)
+enum status output_edges(struct operating_point *home, int index, unsigned wanted,
+                         struct arena *arena, struct output_result *r)
 {
-    return sweep_output(home, index, arena, true, r);
+    return sweep_output(home, index, arena, wanted, r);
 }

@@ -25,11 +25,14 @@ bool output_at_point(struct operating_point *home, int index, struct arena *aren
 enum status analyse_output(struct operating_point *home, int index, struct arena *arena,
                            struct output_result *result);
 
+enum { EDGE_COMPLIANCE = 1, EDGE_LOW = 2, EDGE_HIGH = 4 };
+
 /*
- * output_edges: the same without curve and flatness: compliance, low and high, and what
- * output_at_point gives. A few times faster; nothing is searched for beyond a lost state.
+ * output_edges: the same without curve and flatness: compliance, low and high as far as they are
+ * wanted (a sum of EDGE_..., not 0), and what output_at_point gives. A few times faster; nothing is
+ * searched for beyond a lost state.
  */
-enum status output_edges(struct operating_point *home, int index, struct arena *arena,
-                         struct output_result *result);
+enum status output_edges(struct operating_point *home, int index, unsigned wanted,
+                         struct arena *arena, struct output_result *result);
 
 #endif

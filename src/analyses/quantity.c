@@ -25,6 +25,14 @@ static bool is_small_signal(const struct probe *probe)
             probe->quantity == OUTPUT_TEMPCO || probe->quantity == OUTPUT_SIGMA);
 }
 
+static unsigned edge_of(const struct probe *probe)
+{
+    return probe->quantity == OUTPUT_COMPLIANCE ? EDGE_COMPLIANCE
+           : probe->quantity == OUTPUT_LOW      ? EDGE_LOW
+           : probe->quantity == OUTPUT_HIGH     ? EDGE_HIGH
+                                                : 0;
+}
+
 /* --- values ------------------------------------------------------------------------------------
  */
 
@@ -39,18 +47,21 @@ static enum status read_outputs(struct operating_point *point, const struct prob
     into->output_count = c->output_count;
     for (int o = 0; o < c->output_count; o++) {
         bool wanted = false, swept = false, whole = false;
+        unsigned edges = 0;
         for (int k = 0; k < count; k++) {
             const bool here = is_of_output(&probes[k]) && probes[k].index == o;
             wanted |= here;
             swept |= here && !is_small_signal(&probes[k]);
             whole |= here && probes[k].quantity == OUTPUT_FLATNESS;
+            edges |= here ? edge_of(&probes[k]) : 0;
         }
         if (wanted && !swept && !output_at_point(point, o, into->arena, &into->outputs[o])) {
             return STATUS_MEMORY;
         }
         if (swept) {
-            enum status status = whole ? analyse_output(point, o, into->arena, &into->outputs[o])
-                                       : output_edges(point, o, into->arena, &into->outputs[o]);
+            enum status status =
+                whole ? analyse_output(point, o, into->arena, &into->outputs[o])
+                      : output_edges(point, o, edges, into->arena, &into->outputs[o]);
             status = status == STATUS_OK ? operating_point_polish(point) : status;
             if (status != STATUS_OK) {
                 return status;
@@ -179,7 +190,7 @@ static enum status find_edge(struct operating_point *point, const struct probe *
                                      probe->text};
         edge->factor = 1;
     } else {
-        status = output_edges(point, probe->index, arena, &r);
+        status = output_edges(point, probe->index, EDGE_COMPLIANCE, arena, &r);
         status = status == STATUS_OK ? operating_point_polish(point) : status;
         const int k = status != STATUS_OK || r.compliance_device == NULL
                           ? -1
@@ -241,8 +252,8 @@ static enum status edge_slope(struct operating_point *point, const struct probe 
 /* --- derivatives by solving again ---------------------------------------------------------------
  */
 
-/* The fifth-order term at this relative step is near 1e-10, the rounding of the curve's roots near
- * 1e-7. */
+/* The fifth-order term at this relative step is near 1e-10, the rounding of the curve's roots,
+ * found to 1e-12 V, near 1e-9. */
 static double solved_step(const struct parameter_ref *p)
 {
     if (p->sort == PARAMETER_KNOB && p->knob.kind == KNOB_TEMPERATURE) {

@@ -135,9 +135,11 @@ enum status analysis_review(struct circuit *circuit, const struct analysis_optio
     if (status == STATUS_OK) {
         status = solve_outputs(circuit, options, &session, *result);
         if (status != STATUS_MEMORY &&
-            (!judge_all(*result) || !remarks_add(&session.point, *result) ||
-             !states_glance(&session.point, *result))) {
+            (!judge_all(*result) || !remarks_add(&session.point, *result))) {
             status = STATUS_MEMORY;
+        }
+        if (status == STATUS_OK) {
+            status = states_review(&session.point, options, *result);
         }
     }
     if (status == STATUS_OK && wants_conditions(circuit, options)) {

@@ -22,9 +22,10 @@ struct condition_axis {
     int fine_first, fine_count; /* its fine sweep among the points; fine_count 0: none */
 };
 
-/* One set of conditions that was solved. */
+/* One set of conditions. */
 struct condition_point {
     const double *at; /* [axis_count] */
+    bool is_done;     /* false: the work was stopped before */
     bool is_solved;
     double *values;  /* [probe_count] */
     double *margins; /* [requirement_count] of the circuit; NAN: not asked, or without a value */
@@ -54,6 +55,7 @@ struct conditions_result {
     int axis_count;
     struct condition_point *points; /* combinations first, then the fine sweeps */
     int point_count, combination_count;
+    int done_count; /* less than point_count: the work was stopped */
     int unsolved_count;
     const double *unsolved_at; /* the first of them */
     const struct probe *probes;
@@ -106,7 +108,8 @@ struct mismatch_result {
     struct spread_of_probe *quantities; /* [quantity_count] */
     int quantity_count;
     const double *values;              /* [wanted * quantity_count] row by row */
-    const unsigned char *states;       /* [wanted] enum sample_state */
+    const unsigned char *states;       /* [wanted] enum sample_state; NULL: not sampled */
+    const unsigned char *met;          /* [wanted * requirement_count] of the circuit */
     const struct yield_result *yields; /* [requirement_count] of the circuit; NULL: not sampled */
 };
 

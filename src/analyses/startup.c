@@ -228,20 +228,6 @@ static double off_end(const struct states_work *w)
     return pulled_to(w, &pulled) ? pulled : v - low > high - v ? low : high;
 }
 
-enum status startup_push(struct states_work *w, int points, double *push)
-{
-    double at;
-    double *x = arena_new_array(w->arena, double, w->system->n);
-    *push = NAN;
-    if (x == NULL) {
-        return STATUS_MEMORY;
-    }
-    if (w->loop.probe < 0 || fabs(probe_voltage(w, w->wanted) - off_end(w)) < 1e-3) {
-        return STATUS_OK;
-    }
-    return least_push(w, w->wanted, off_end(w), points, push, &at, x);
-}
-
 /* --- the start-up branch ---------------------------------------------------------------------- */
 
 /* The value that makes an instance vanish; -1: it has none. */
@@ -346,7 +332,8 @@ static enum status judge_push(struct states_work *w, struct states_result *found
     }
     enum status status =
         least_push(w, w->wanted, found->push_off, WAY_POINTS, &found->push, &found->push_at, x);
-    return status == STATUS_OK && isfinite(found->push) ? find_starters(w, found, x) : status;
+    return status == STATUS_OK && isfinite(found->push) && !w->is_brief ? find_starters(w, found, x)
+                                                                        : status;
 }
 
 /* --- the lowest supply ------------------------------------------------------------------------ */
@@ -487,7 +474,7 @@ enum status startup_judge(struct states_work *w, struct states_result *found)
     if (status == STATUS_OK && found->has_loop) {
         status = judge_push(w, found);
     }
-    if (status == STATUS_OK) {
+    if (status == STATUS_OK && !w->is_brief) {
         status = lower_supplies(w, found);
     }
     if (status == STATUS_OK) {

@@ -8,11 +8,15 @@
 #include <string.h>
 
 #include "solve/measure.h"
+#include "analyses/network_range.h"
 #include "analyses/remarks.h"
 #include "analyses/result_create.h"
 #include "analyses/states_internal.h"
 
-enum { CURVE_POINTS = 160, GLANCE_POINTS = 24 };
+enum { CURVE_POINTS = 160, BRIEF_CURVE_POINTS = 40 };
+/* A review looks at so many boxes, fewer where each costs more: the programs grow with the square.
+ */
+enum { BRIEF_BOXES = 400, BRIEF_WORK = 200000 };
 
 /* --- certificates --------------------------------------------------------------------------- */
 
@@ -258,7 +262,8 @@ static bool put_uncertified(struct states_work *w, struct states_result *found)
 static enum status follow_loop(struct states_work *w, struct states_result *found)
 {
     struct loop_curve curve = {0};
-    const enum status status = startup_curve(w, CURVE_POINTS, &curve);
+    const enum status status =
+        startup_curve(w, w->is_brief ? BRIEF_CURVE_POINTS : CURVE_POINTS, &curve);
     found->curve_v = curve.v;
     found->curve_push = curve.push;
     found->curve_count = curve.count;
@@ -336,49 +341,60 @@ static bool put_large(const struct states_work *w, struct states_result *found)
     return found->states != NULL && put_state(w, w->wanted, found->states);
 }
 
-/* has_point: `point` holds a state; else the search is all there is. */
-static enum status work_all(struct operating_point *point, bool has_point,
-                            const struct analysis_options *options, struct result *result)
+/* has_point: the point holds a state; else the search is all there is. */
+static enum status work_on(struct states_work *w, bool has_point, struct result *result)
 {
-    struct states_work w;
+    const struct analysis_options *options = w->options;
     struct states_result *found = arena_new(result->arena, struct states_result);
-    double *wanted = arena_new_array(result->arena, double, point->system->n);
-    if (found == NULL || wanted == NULL || !begin_work(&w, point, result->arena, options)) {
+    double *wanted = arena_new_array(result->arena, double, w->system->n);
+    if (found == NULL || wanted == NULL) {
         return STATUS_MEMORY;
     }
-    memcpy(wanted, point->x, (size_t)point->system->n * sizeof *wanted);
-    w.wanted = has_point ? wanted : NULL;
+    memcpy(wanted, w->point->x, (size_t)w->system->n * sizeof *wanted);
+    w->wanted = has_point ? wanted : NULL;
     found->push = found->push_at = found->push_off = found->ramp_break = NAN;
     found->ramp_state = -1;
     found->probe_unknown = -1;
     found->push_bound = options->leakage;
     found->box_limit = options->boxes;
+    found->is_brief = w->is_brief;
     result->states = found;
-    if (w.is_large && !has_point) {
+    if (w->is_large && !has_point) {
         return STATUS_UNSOLVED;
     }
-    if (w.is_large) {
-        return put_large(&w, found) ? STATUS_OK : STATUS_MEMORY;
+    if (w->is_large) {
+        return put_large(w, found) ? STATUS_OK : STATUS_MEMORY;
     }
     const struct search_options search = {.box_limit = options->boxes,
                                           .refine = refine,
-                                          .refine_self = &w,
+                                          .refine_self = w,
                                           .stopped = options->stopped,
                                           .stopped_self = options->stopped_self,
                                           .progress = options->progress,
                                           .progress_self = options->progress_self};
-    w.search = search_create(w.map.network, &search);
-    if (w.search == NULL) {
+    if (!network_range(w->arena, w->system, &w->map)) {
         return STATUS_MEMORY;
     }
-    found->low = w.map.low;
-    found->high = w.map.high;
-    found->is_assumed = w.map.is_assumed;
-    enum status status = find_states(&w, found);
+    w->search = search_create(w->map.network, &search);
+    if (w->search == NULL) {
+        return STATUS_MEMORY;
+    }
+    found->low = w->map.low;
+    found->high = w->map.high;
+    found->is_assumed = w->map.is_assumed;
+    enum status status = find_states(w, found);
     if (status == STATUS_OK) {
-        status = startup_judge(&w, found);
+        status = startup_judge(w, found);
     }
     return status;
+}
+
+static enum status work_all(struct operating_point *point, bool has_point,
+                            const struct analysis_options *options, struct result *result)
+{
+    struct states_work w;
+    return begin_work(&w, point, result->arena, options) ? work_on(&w, has_point, result)
+                                                         : STATUS_MEMORY;
 }
 
 /* --- commands -----------------------------------------------------------------------------------
@@ -449,56 +465,60 @@ enum status analysis_states(struct circuit *circuit, const struct analysis_optio
     return status;
 }
 
-/* --- a glance for the review -------------------------------------------------------------------
+/* --- for the review ----------------------------------------------------------------------------
  */
 
-static bool remark_loop(const struct states_work *w, const struct loop_curve *curve, double push,
-                        struct result *result)
+/* A caution where the verdict is "at risk", with the first reason. */
+static bool remark_loop(const struct states_result *found, struct result *result)
 {
-    const struct circuit *c = w->system->circuit;
-    char text[24];
-    int count = 0;
-    for (int k = 0; k + 1 < curve->count; k++) {
-        count += (curve->push[k] > 0) != (curve->push[k + 1] > 0);
+    if (found->startup == STARTUP_CERTAIN || found->state_count == 0) {
+        return true;
     }
-    number_show(push, 3, "A", text, sizeof text);
-    const char *probe = w->loop.probe < 0 ? "" : c->nodes[w->loop.probe + 1].name;
-    const char *found =
-        count > 1 ? arena_format(w->arena, "%d states lie on it", count)
-        : isfinite(push)
-            ? arena_format(w->arena, "a glance finds one, pushed out of its off state by %s", text)
-            : "how many was not found at a glance";
-    return found != NULL &&
-           caution_add(
-               c, &result->cautions, CAUTION_LOOP, probe, 0,
-               "the loop %s could hold more than one state; %s; `ampstead states` proves it",
-               w->loop.path, found);
+    return caution_add(result->circuit, &result->cautions, CAUTION_LOOP,
+                       found->probe == NULL ? "" : found->probe, 0,
+                       "the loop %s could hold more than one state, and start-up is at risk: %s",
+                       found->loop_path, found->reason_count > 0 ? found->reasons[0] : "");
 }
 
-bool states_glance(struct operating_point *p, struct result *result)
+static long brief_boxes(const struct network *network)
+{
+    const long each = (long)network->variable_count * network->variable_count;
+    return each * BRIEF_BOXES > BRIEF_WORK ? BRIEF_WORK / each + 1 : BRIEF_BOXES;
+}
+
+enum status states_review(struct operating_point *p, const struct analysis_options *options,
+                          struct result *result)
 {
     struct states_work w;
-    const struct analysis_options options = {0};
-    struct loop_curve curve = {0};
-    double *wanted = arena_new_array(result->arena, double, p->system->n);
-    double push = NAN;
-    if (wanted == NULL || !begin_work(&w, p, result->arena, &options)) {
-        return false;
+    struct analysis_options brief = *options;
+    if (!begin_work(&w, p, result->arena, &brief)) {
+        return STATUS_MEMORY;
     }
-    memcpy(wanted, p->x, (size_t)p->system->n * sizeof *wanted);
-    w.wanted = wanted;
     if (w.is_large) {
-        return true;
+        return STATUS_OK;
     }
     if (!loops_find(w.arena, w.system, &w.map, &w.loop)) {
-        return false;
+        return STATUS_MEMORY;
     }
     if (!w.loop.found) {
-        return true;
+        return STATUS_OK;
     }
-    if (startup_curve(&w, GLANCE_POINTS, &curve) == STATUS_MEMORY ||
-        startup_push(&w, GLANCE_POINTS, &push) == STATUS_MEMORY) {
-        return false;
+    double *home = arena_new_array(result->arena, double, p->system->n);
+    if (home == NULL) {
+        return STATUS_MEMORY;
     }
-    return remark_loop(&w, &curve, push, result);
+    memcpy(home, p->x, (size_t)p->system->n * sizeof *home);
+    brief.boxes = brief_boxes(w.map.network);
+    brief.leakage = options->leakage > 0 ? options->leakage : 1e-9;
+    w.is_brief = true;
+    enum status status = work_on(&w, true, result);
+    if (status == STATUS_OK && !remark_loop(result->states, result)) {
+        status = STATUS_MEMORY;
+    }
+    if (status != STATUS_OK) {
+        result->states = NULL; /* half a search says nothing */
+        return status == STATUS_UNSOLVED ? STATUS_OK : status;
+    }
+    const enum status settled = states_settle(p, home); /* others go on from the point */
+    return settled == STATUS_UNSOLVED ? STATUS_OK : settled;
 }

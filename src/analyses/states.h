@@ -5,7 +5,7 @@
 #ifndef ANALYSES_STATES_H
 #define ANALYSES_STATES_H
 
-#include "analyses/result.h"
+#include "analyses/analysis.h"
 #include "solve/operating_point.h"
 
 /* The proofs work on full matrices. */
@@ -48,6 +48,7 @@ struct states_result {
     struct state_result *states; /* [state_count] rising power */
     int state_count;
     bool is_complete;
+    bool is_brief; /* by states_review: starters and supplies were not looked for */
     bool is_large; /* more than STATES_NODE_LIMIT unknown nodes: nothing was tried */
     long boxes, box_limit;
     double low, high; /* V: where states were looked for */
@@ -86,10 +87,15 @@ struct states_result {
 bool states_certify(struct operating_point *point, struct result *result);
 
 /*
- * states_glance: for `review`: a caution where the cell has a loop that could hold more than one
- * state, with how many lie on its curve and how strongly it is pushed. Milliseconds; moves the
- * point.
+ * states_review: for `review`: result->states where the structure has a loop that could hold more
+ * than one state, by a search of few boxes and without start-up branch and lowest supply; a caution
+ * where start-up is at risk. Nothing where there is no such loop, or the cell is too large.
+ *
+ * point  polished; stays so
+ *
+ * STATUS_OK, STATUS_STOPPED (result->states is NULL then) or STATUS_MEMORY.
  */
-bool states_glance(struct operating_point *point, struct result *result);
+enum status states_review(struct operating_point *point, const struct analysis_options *options,
+                          struct result *result);
 
 #endif

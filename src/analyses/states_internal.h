@@ -18,6 +18,7 @@ struct states_work {
     const struct analysis_options *options;
     struct network_map map;
     bool is_large; /* beyond the limits of states.h: map is empty */
+    bool is_brief; /* for a review */
     struct search *search;
     struct loop loop;
     enum status broken;   /* STATUS_MEMORY or STATUS_STOPPED inside a search for states */
@@ -31,9 +32,6 @@ enum status startup_judge(struct states_work *work, struct states_result *found)
 
 /* The whole curve of the loop at its probe; *curve empty when there is no probe. */
 enum status startup_curve(struct states_work *work, int points, struct loop_curve *curve);
-
-/* The start-up push alone; NAN: there is none. */
-enum status startup_push(struct states_work *work, int points, double *push);
 
 /* Newton and polish from x[n] without any fallback; the point then holds the state. */
 enum status states_settle(struct operating_point *point, const double *x);

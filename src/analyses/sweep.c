@@ -290,6 +290,7 @@ static enum status run_series(struct series_task *t)
         }
         stage.is_solved = status == STATUS_OK;
         if (status == STATUS_UNSOLVED) {
+            t->series->lost++;
             add_event(t, t->knob[k], "no state was found here");
             status = STATUS_OK;
         } else if (status == STATUS_OK) {

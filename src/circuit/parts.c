@@ -409,9 +409,8 @@ static bool add_series(struct builder *b, const struct part *part, const double 
         const struct series_row *row = &type->series[k];
         const int p = parameter_find(type->model_parameters, type->model_parameter_count,
                                      row->model_parameter);
-        /* NOLINTNEXTLINE(clang-analyzer-core.NullDereference): types with series rows have models
-         */
-        if (!(model[p] > 0)) {
+        /* types with series rows have models */
+        if (!(model[p] > 0)) { /* NOLINT(clang-analyzer-core.NullDereference) */
             continue;
         }
         const char *terminal = type->terminals[row->terminal].name;

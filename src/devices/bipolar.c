@@ -280,8 +280,6 @@ static const struct deviate deviates[] = {
     .quantities = quantities, .quantity_count = ROWS(quantities), .quantity_current = ROW_IC,      \
     .quantity_headroom = ROW_HEADROOM, .quantity_power = ROW_POWER, .deviates = deviates,          \
     .deviate_count = ROWS(deviates), .prepared_size = sizeof(struct bipolar_prepared),             \
-    .moved_count = 1,                                                                              \
-    .moved = {[BIPOLAR_SATURATION] = offsetof(struct bipolar_prepared, saturation)},               \
     .evaluate = bipolar_evaluate, .evaluate_extended = bipolar_evaluate_extended,                  \
     .describe = describe, .longest_step = longest_step, .typical = typical, .paths = paths
 

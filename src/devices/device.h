@@ -177,10 +177,6 @@ struct device_type {
     const struct deviate *tolerance; /* the maker's: even between -sigma sqrt(3) and +sigma sqrt(3),
                                         added to a value that a deviate may move too; NULL: none */
     size_t prepared_size;
-    /* Places in the prepared block of the doubles that the equations read through MOVED (real.h), by
-     * its rows: also of a type without deviates. */
-    int moved_count;
-    size_t moved[2];
 
     /*
      * check: rules between parameters that a range cannot say (W at least the offset, ...).

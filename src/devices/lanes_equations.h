@@ -7,6 +7,8 @@
 #ifndef DEVICES_LANES_EQUATIONS_H
 #define DEVICES_LANES_EQUATIONS_H
 
+#include <stddef.h>
+
 typedef void lanes_evaluate(const void *prepared, const real *x, real *f, real *jac);
 
 lanes_evaluate REAL_NAME(mos_evaluate);
@@ -19,9 +21,17 @@ lanes_evaluate REAL_NAME(voltage_evaluate);
 lanes_evaluate REAL_NAME(opamp_evaluate);
 lanes_evaluate REAL_NAME(series_evaluate);
 
-/* The lanes of a device type; NULL: it has none (law, table), and each sample is evaluated by
- * itself. */
+/* The equations of a device type, and which doubles of its prepared block they read through MOVED,
+ * in that order. */
+struct device_lanes {
+    void (*single)(const void *prepared, const double *x, double *f, double *jac);
+    lanes_evaluate *evaluate;
+    int moved_count;
+    size_t moved[MOVED_LIMIT]; /* offsets */
+};
+
+/* NULL: it has none (law, table), and each sample is evaluated by itself. */
 struct device_type;
-lanes_evaluate *REAL_NAME(device)(const struct device_type *type);
+const struct device_lanes *REAL_NAME(device)(const struct device_type *type);
 
 #endif

@@ -73,14 +73,11 @@ static inline real expm1_and_exp(real u, real *exponential)
 
 #endif
 
-#ifdef LANES
-#include "devices/lanes_equations.h"
-#endif
-
-/* A prepared value that deviate number `row` of the device type moves. The lanes of it stand in
- * front of the block. */
+/* A prepared value that mismatch moves, number `row` of lanes_table.c. Its lanes stand in front of
+ * the block. */
 enum { MOVED_LIMIT = 2 };
 #ifdef LANES
+#include "devices/lanes_equations.h"
 #define MOVED(p, row, member) (((const real *)(const void *)(p))[(row)-MOVED_LIMIT])
 #else
 #define MOVED(p, row, member) REAL((p)->member)

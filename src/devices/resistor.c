@@ -101,8 +101,6 @@ const struct device_type device_resistor = {
     .deviate_count = ROWS(deviates),
     .tolerance = &tolerance,
     .prepared_size = sizeof(struct linear_prepared),
-    .moved_count = 1,
-    .moved = {[RESISTOR_VALUE] = offsetof(struct linear_prepared, value)},
     .prepare = prepare,
     .evaluate = resistor_evaluate,
     .evaluate_extended = resistor_evaluate_extended,

@@ -32,7 +32,7 @@ struct linear_solver {
  * -Wcast-qual useful everywhere else. */
 static double *readable(const double *values)
 {
-    return (double *)(uintptr_t)values;
+    return (double *)(uintptr_t)values; /* NOLINT(performance-no-int-to-ptr) */
 }
 
 struct linear_solver *linear_create(const struct pattern *pattern)

@@ -98,6 +98,9 @@ static void put_conditions(struct writer *writer, json_t *root, const struct res
     put_axes(writer, object, result);
     put(writer, object, "combinations", json_integer(r->combination_count));
     put(writer, object, "points", json_integer(r->point_count));
+    if (r->done_count < r->point_count) {
+        put(writer, object, "done", json_integer(r->done_count));
+    }
     put(writer, object, "unsolved", json_integer(r->unsolved_count));
     put_place(writer, object, "unsolved_at", result, r->unsolved_at);
     put_ranges(writer, object, result);

@@ -89,6 +89,9 @@ static void put_startup(struct writer *writer, json_t *root, const struct states
         put_number(writer, push, "from", found->push_off);
         put_number(writer, push, "bound", found->push_bound);
     }
+    if (found->is_brief) {
+        return;
+    }
     json_t *starters = put_object(writer, root, "starters");
     for (int k = 0; k < found->starter_count; k++) {
         json_t *row = put_object(writer, starters, found->starters[k].instance->name);
@@ -125,7 +128,7 @@ void json_put_states(struct writer *writer, json_t *root, const struct result *r
     if (found == NULL || found->states == NULL) {
         return;
     }
-    if (strcmp(result->command, "states") != 0) {
+    if (strcmp(result->command, "point") == 0) {
         put_certificate(writer, root, result->circuit, &found->states[0]);
         return;
     }

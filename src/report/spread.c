@@ -79,6 +79,12 @@ static void conditions_part(struct layout *layout, const struct result *result)
                                    "%d combinations of ends and own values, %d points along the "
                                    "single ranges",
                                    r->combination_count, fine));
+    if (r->done_count < r->point_count) {
+        layout_paragraph(layout, TONE_WARN, 2,
+                         layout_format(layout,
+                                       "! stopped after %d of %d: ranges are over those alone",
+                                       r->done_count, r->point_count));
+    }
     if (r->unsolved_count > 0) {
         layout_paragraph(layout, TONE_WARN, 2,
                          layout_format(layout,
@@ -124,8 +130,7 @@ static void ranges_part(struct layout *layout, const struct result *result)
 
 /* --- drift and supply ------------------------------------------------------------------------- */
 
-/* The unit that a drift is counted per: only temperatures and voltages have a usual one. */
-static const char *drift_unit(const struct knob *knob)
+const char *drift_unit(const struct knob *knob)
 {
     if (knob->kind == KNOB_TEMPERATURE) {
         return "/K";

@@ -61,8 +61,7 @@ static void proof_part(struct layout *layout, const struct states_result *found)
     }
     if (found->is_assumed) {
         layout_paragraph(layout, TONE_QUIET, 0,
-                         "that range is a choice: a current source, law or table could push a "
-                         "node further");
+                         "that range is a choice: nothing was found that bounds all nodes");
     } else {
         layout_paragraph(layout, TONE_QUIET, 0,
                          "no node of a cell of these devices can lie outside that range");

@@ -85,12 +85,12 @@ struct groups *groups_create(struct system *s)
 }
 
 /* The block of an instance without what mismatch moves, into g->masked. */
-static void mask(struct groups *g, int k)
+static void mask(struct groups *g, int k, const size_t *moved, int count)
 {
-    const struct device_type *type = g->system->circuit->instances[k].type;
-    memcpy(g->masked, system_block(g->system, k), type->prepared_size);
-    for (int d = 0; d < type->moved_count; d++) {
-        memset(g->masked + type->moved[d], 0, sizeof(double));
+    memcpy(g->masked, system_block(g->system, k),
+           g->system->circuit->instances[k].type->prepared_size);
+    for (int d = 0; d < count; d++) {
+        memset(g->masked + moved[d], 0, sizeof(double));
     }
 }
 
@@ -117,10 +117,12 @@ static int class_of(struct groups *g, int k, char **room)
 {
     const struct instance *instance = &g->system->circuit->instances[k];
     const struct device_type *type = instance->type;
-    if (!g->kind->knows(type)) {
+    const size_t *moved;
+    const int moved_count = g->kind->moved(type, &moved);
+    if (moved_count < 0) {
         return -1;
     }
-    mask(g, k);
+    mask(g, k, moved, moved_count);
     size_t slot = hash(type, g->masked);
     for (; g->table[slot] > 0; slot = (slot + 1) % TABLE_SIZE) {
         const struct group_class *class = &g->classes[g->table[slot] - 1];
@@ -133,8 +135,12 @@ static int class_of(struct groups *g, int k, char **room)
         return -1;
     }
     struct group_class *class = &g->classes[g->class_count];
-    *class = (struct group_class){
-        .type = type, .block = *room, .local_count = instance->local_count, .open = -1};
+    *class = (struct group_class){.type = type,
+                                  .moved = moved,
+                                  .moved_count = moved_count,
+                                  .block = *room,
+                                  .local_count = instance->local_count,
+                                  .open = -1};
     *room += block_size(g, type->prepared_size);
     memcpy(block_of(g, class), g->masked, type->prepared_size);
     g->table[slot] = ++g->class_count;
@@ -143,11 +149,11 @@ static int class_of(struct groups *g, int k, char **room)
 
 static void copy_moved(struct groups *g, const struct group *group, int lane)
 {
-    const struct device_type *type = g->classes[group->class].type;
+    const struct group_class *class = &g->classes[group->class];
     const char *block = system_block(g->system, group->members[lane]);
     double *moved = g->moved + (group - g->groups) * GROUP_MOVED * g->kind->width;
-    for (int d = 0; d < type->moved_count; d++) {
-        memcpy(&moved[d * g->kind->width + lane], block + type->moved[d], sizeof *moved);
+    for (int d = 0; d < class->moved_count; d++) {
+        memcpy(&moved[d * g->kind->width + lane], block + class->moved[d], sizeof *moved);
     }
 }
 
@@ -219,7 +225,7 @@ void groups_update(struct groups *g, int k)
     while (group->members[lane] != k) {
         lane++;
     }
-    mask(g, k);
+    mask(g, k, class->moved, class->moved_count);
     const bool is_like = memcmp(block_of(g, class), g->masked, class->type->prepared_size) == 0;
     const unsigned bit = 1u << lane;
     g->left_out_count += !is_like - ((group->left_out & bit) != 0);

@@ -16,6 +16,8 @@ enum { GROUP_WIDTH = 8, GROUP_MOVED = 2 };
 /* Devices that are alike. */
 struct group_class {
     const struct device_type *type;
+    const size_t *moved; /* [moved_count] places in the prepared block of what mismatch moves */
+    int moved_count;
     void *block; /* room for GROUP_MOVED vectors, then the prepared block without what moves */
     int local_count, members;
     int open; /* group that still has room, -1: none; used while groups are made */
@@ -32,7 +34,8 @@ struct group {
 struct groups_kind {
     int width;
     bool (*is_supported)(void);
-    bool (*knows)(const struct device_type *type);
+    /* Whether there are lanes for a type, and what they read of each lane; -1: none. */
+    int (*moved)(const struct device_type *type, const size_t **moved);
     /* Adds currents, magnitudes and derivatives of a group. at: [local_count * width] unknowns;
      * moved: [GROUP_MOVED * width]. */
     void (*evaluate)(const struct system *system, const struct group_class *class,

@@ -8,9 +8,11 @@
 
 enum { LOCAL = DEVICE_LOCAL_LIMIT };
 
-static bool knows(const struct device_type *type)
+static int moved_of(const struct device_type *type, const size_t **moved)
 {
-    return REAL_NAME(device)(type) != NULL;
+    const struct device_lanes *lanes = REAL_NAME(device)(type);
+    *moved = lanes == NULL ? NULL : lanes->moved;
+    return lanes == NULL ? -1 : lanes->moved_count;
 }
 
 static bool is_supported(void)
@@ -118,7 +120,7 @@ static void evaluate(const struct system *system, const struct group_class *clas
         block[d] = load(moved + d * LANES);
     }
     gather(at, count, x, local);
-    REAL_NAME(device)(class->type)(block + GROUP_MOVED, local, part, jac);
+    REAL_NAME(device)(class->type)->evaluate(block + GROUP_MOVED, local, part, jac);
     measure(class->type, count, local, part, jac, size);
     struct rows rows = {.group = group, .at = at, .lanes = group->count};
     for (int k = 0; k < group->count; k++) {
@@ -137,4 +139,4 @@ static void evaluate(const struct system *system, const struct group_class *clas
 
 extern const struct groups_kind KIND;
 const struct groups_kind KIND = {
-    .width = LANES, .is_supported = is_supported, .knows = knows, .evaluate = evaluate};
+    .width = LANES, .is_supported = is_supported, .moved = moved_of, .evaluate = evaluate};

@@ -539,6 +539,55 @@ static void stops_with_what_there_is(void **state)
     cell_close(&cell);
 }
 
+struct share_limit {
+    double limit;
+    bool reached;
+};
+
+static bool is_reached(void *self)
+{
+    return ((struct share_limit *)self)->reached;
+}
+
+static void watch_conditions(void *self, const char *what, double share)
+{
+    struct share_limit *it = self;
+    it->reached |= strcmp(what, "conditions") == 0 && share >= it->limit;
+}
+
+/* Of 44 conditions (three supplies, 41 between) about a quarter: a failure among them stands, what
+ * was met so far is no verdict, ranges are over those alone: I = V/R at 0.5, 1 and 2 V. */
+static void stops_among_conditions(void **state)
+{
+    (void)state;
+    struct solved_cell cell;
+    struct result *result = NULL;
+    struct share_limit limit = {.limit = 0.25};
+    struct analysis_options options = options_of(100, 1);
+    options.stopped = is_reached;
+    options.stopped_self = &limit;
+    options.progress = watch_conditions;
+    options.progress_self = &limit;
+    cell_open(&cell, "rail vcc 1 V\nresistor R1 vcc -> gnd 1k\nvary vcc from 2 V to 0.5 V\n"
+                     "require R1.i below 10 mA everywhere\nrequire R1.i below 1.5 mA everywhere\n");
+    assert_int_equal(analysis_spread(cell.circuit, &options, &result), STATUS_STOPPED);
+    assert_true(result->is_stopped);
+    const struct conditions_result *r = result->conditions;
+    assert_non_null(r);
+    assert_int_equal(r->point_count, 44);
+    assert_true(r->done_count >= 3 && r->done_count < 44);
+    assert_int_equal(r->unsolved_count, 0);
+    check_near(r->ranges[0].most, 2e-3, 1e-12);
+    check_near(r->ranges[0].least, 0.5e-3, 1e-12);
+    assert_int_equal(result->requirements[0].judgement, JUDGED_NOT);
+    assert_non_null(
+        strstr(result->requirements[0].remark, "of 44 conditions done before the stop"));
+    assert_int_equal(result->requirements[1].judgement, JUDGED_NOT_MET);
+    check_near(result->requirements[1].computed, 2e-3, 1e-12);
+    result_free(result);
+    cell_close(&cell);
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -557,6 +606,7 @@ int main(void)
         cmocka_unit_test(tolerance_is_even),
         cmocka_unit_test(no_coefficients),
         cmocka_unit_test(stops_with_what_there_is),
+        cmocka_unit_test(stops_among_conditions),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
