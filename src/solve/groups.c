@@ -8,7 +8,7 @@
 
 /* Classes beyond the limit stay single. A device that only multiplies is not worth a vector of two.
  */
-enum { CLASS_LIMIT = 1024, TABLE_SIZE = 4 * CLASS_LIMIT, LINEAR_LEAST = 4, LEAST = 2 };
+enum { CLASS_LIMIT = 1024, LINEAR_LEAST = 4, LEAST = 2 };
 
 #ifdef WITH_LANES
 
@@ -67,7 +67,9 @@ struct groups *groups_create(struct system *s)
     }
     const size_t classes = count < CLASS_LIMIT ? count : CLASS_LIMIT, groups = count / LEAST;
     g->classes = arena_new_array(s->arena, struct group_class, classes);
-    g->table = arena_new_array(s->arena, int, TABLE_SIZE);
+    for (g->table_size = 8; g->table_size < 2 * classes; g->table_size *= 2) {
+    }
+    g->table = arena_new_array(s->arena, int, g->table_size);
     g->masked = arena_array(s->arena, largest + 1, 1);
     g->groups = arena_new_array(s->arena, struct group, groups);
     g->moved = arena_new_array(s->arena, double, groups *GROUP_MOVED *(size_t)kind->width);
@@ -100,7 +102,7 @@ static char *block_of(const struct groups *g, const struct group_class *class)
 }
 
 /* FNV-1a (Fowler, Noll and Vo), over words. */
-static size_t hash(const struct device_type *type, const char *block)
+static uint64_t hash(const struct device_type *type, const char *block)
 {
     uint64_t h = 14695981039346656037u ^ (uint64_t)(uintptr_t)type->evaluate;
     for (size_t k = 0; k + sizeof(uint64_t) <= type->prepared_size; k += sizeof(uint64_t)) {
@@ -109,7 +111,7 @@ static size_t hash(const struct device_type *type, const char *block)
         h = (h ^ word) * 1099511628211u;
         h ^= h >> 29;
     }
-    return (size_t)h % TABLE_SIZE;
+    return h;
 }
 
 /* The class of an instance, made when it is new; -1: none. */
@@ -123,8 +125,8 @@ static int class_of(struct groups *g, int k, char **room)
         return -1;
     }
     mask(g, k, moved, moved_count);
-    size_t slot = hash(type, g->masked);
-    for (; g->table[slot] > 0; slot = (slot + 1) % TABLE_SIZE) {
+    size_t slot = (size_t)hash(type, g->masked) & (g->table_size - 1);
+    for (; g->table[slot] > 0; slot = (slot + 1) & (g->table_size - 1)) {
         const struct group_class *class = &g->classes[g->table[slot] - 1];
         if (class->type == type &&
             memcmp(block_of(g, class), g->masked, type->prepared_size) == 0) {
@@ -194,7 +196,7 @@ void groups_make(struct groups *g)
     const int count = g->system->circuit->instance_count;
     char *room = g->blocks;
     g->class_count = g->group_count = g->single_count = g->left_out_count = 0;
-    memset(g->table, 0, TABLE_SIZE * sizeof *g->table);
+    memset(g->table, 0, g->table_size * sizeof *g->table);
     for (int k = 0; k < count; k++) {
         g->group_of[k] = class_of(g, k, &room);
         if (g->group_of[k] >= 0) {

@@ -48,7 +48,8 @@ struct groups {
     const struct system *system;
     struct group_class *classes; /* [class_count] */
     int class_count;
-    int *table;           /* hash of a class to its number + 1 */
+    int *table;           /* [table_size] hash of a class to its number + 1, half free at least */
+    size_t table_size;    /* a power of two */
     char *blocks;         /* of the classes */
     char *masked;         /* scratch for one block */
     struct group *groups; /* [group_count] */

@@ -10,9 +10,9 @@ enum { LOCAL = DEVICE_LOCAL_LIMIT };
 
 static int moved_of(const struct device_type *type, const size_t **moved)
 {
-    const struct device_lanes *lanes = REAL_NAME(device)(type);
-    *moved = lanes == NULL ? NULL : lanes->moved;
-    return lanes == NULL ? -1 : lanes->moved_count;
+    const struct device_lanes *known = REAL_NAME(device)(type);
+    *moved = known == NULL ? NULL : known->moved;
+    return known == NULL ? -1 : known->moved_count;
 }
 
 static bool is_supported(void)
