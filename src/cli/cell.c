@@ -157,7 +157,7 @@ bool cell_check(const struct options *options)
 {
     struct ampstead_request request = AMPSTEAD_REQUEST;
     unsigned limit = 0;
-    if (!check_streams(options) || !parts_check(options) ||
+    if (!check_streams(options) || !part_files_check(options) ||
         !read_numbers(options, &request, &limit)) {
         return false;
     }
@@ -213,7 +213,7 @@ int cell_request(const struct options *options, const volatile sig_atomic_t *sto
     unsigned limit = 0;
     (void)read_numbers(options, &request, &limit); /* were checked before */
     if (options->verb == VERB_MERGE) {
-        parts = parts_read(options, &status);
+        parts = part_files_read(options, &status);
         if (parts == NULL) {
             return status;
         }
@@ -243,7 +243,7 @@ int cell_request(const struct options *options, const volatile sig_atomic_t *sto
     request.part_count = options->word_count - 1;
     status = (int)ampstead_run(&request, result);
     terminal_end(&run);
-    parts_free(parts, request.part_count);
+    part_files_free(parts, request.part_count);
     return status;
 }
 

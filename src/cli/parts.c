@@ -41,7 +41,7 @@ static int read_file(const char *path, struct ampstead_part *part)
     return part->text == NULL ? AMPSTEAD_MACHINE : AMPSTEAD_WELL;
 }
 
-struct ampstead_part *parts_read(const struct options *options, int *status)
+struct ampstead_part *part_files_read(const struct options *options, int *status)
 {
     const int count = options->word_count - 1;
     struct ampstead_part *parts = calloc((size_t)count + 1, sizeof *parts);
@@ -49,14 +49,14 @@ struct ampstead_part *parts_read(const struct options *options, int *status)
     for (int k = 0; parts != NULL && k < count; k++) {
         *status = read_file(options->words[k + 1], &parts[k]);
         if (*status != AMPSTEAD_WELL) {
-            parts_free(parts, count);
+            part_files_free(parts, count);
             return NULL;
         }
     }
     return parts;
 }
 
-void parts_free(struct ampstead_part *parts, int count)
+void part_files_free(struct ampstead_part *parts, int count)
 {
     for (int k = 0; parts != NULL && k < count; k++) {
         free((void *)(uintptr_t)parts[k].text);
@@ -64,7 +64,7 @@ void parts_free(struct ampstead_part *parts, int count)
     free(parts);
 }
 
-bool parts_check(const struct options *options)
+bool part_files_check(const struct options *options)
 {
     static const enum option results[] = {OPTION_JSON, OPTION_CSV, OPTION_WATCH};
     if (options->verb != VERB_SPREAD) {

@@ -6,11 +6,11 @@
 #include "library/ampstead.h"
 
 /* Reads all files of the command line. NULL after a message; *status is then the exit status. */
-struct ampstead_part *parts_read(const struct options *options, int *status);
-void parts_free(struct ampstead_part *parts, int count);
+struct ampstead_part *part_files_read(const struct options *options, int *status);
+void part_files_free(struct ampstead_part *parts, int count);
 
 /* Whether --part, --write and where results go are of one mind; false after a message. */
-bool parts_check(const struct options *options);
+bool part_files_check(const struct options *options);
 
 /* The part to where --write says. Returns the exit status. */
 int parts_deliver(const struct options *options, struct ampstead_result *result);
