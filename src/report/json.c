@@ -143,6 +143,8 @@ static void put_hands(struct writer *writer, json_t *root, const struct result *
         if (k < result->explanation_count && result->explanations[k].trouble == NULL) {
             const struct explanation *why = &result->explanations[k];
             put_text(writer, object, "shares_as", why->as_conductance ? "conductance" : NULL);
+            put_text(writer, object, "note", why->note);
+            put_text(writer, object, "first_with", why->first_with);
             put(writer, object, "shares", json_shares(why));
         }
     }
