@@ -169,6 +169,8 @@ static void put_requirements(struct writer *writer, json_t *root, const struct r
         json_put_spread_of(writer, object, result, row);
         if (result->repairs != NULL && result->repairs[k].looked_for) {
             put(writer, object, "repairs", json_repairs(&result->repairs[k]));
+        } else if (result->repairs != NULL) {
+            put_text(writer, object, "no_repairs", result->repairs[k].why_not);
         }
     }
 }
