@@ -31,8 +31,8 @@ static const char *why_not(const struct result *result, int k)
         return NULL;
     }
     return row->requirement->scope == SCOPE_YIELD
-               ? "a yield takes all samples anew for each value tried; sharpen a line without "
-                 "`for`, or see `spread`'s shares of the variance"
+               ? "a yield takes all samples anew for each value tried; the shares of the "
+                 "variance above say which device to enlarge"
                : "`ampstead review` does";
 }
 
