@@ -48,16 +48,15 @@ bool why_matters(const struct explanation *e, int k)
 static void heading(struct layout *layout, const struct explanation *e)
 {
     const double difference = e->computed - e->paper;
-    const char *square_law = isnan(e->hand_view) ? "none" : show_part(layout, e, e->hand_view);
+    const char *square_law = isnan(e->hand_view) ? "none" : why_value(layout, e, e->hand_view);
     layout_paragraph(
         layout, TONE_STRONG, 2,
         layout_format(layout, "%s%s: paper %s, square law %s, computed %s: %s%s%s%s",
                       layout_clean(layout, e->hand->probe.text),
                       e->as_conductance ? " (as the conductance 1/R)" : "",
-                      why_value(layout, e, e->paper), square_law,
-                      why_value(layout, e, e->computed), why_change(layout, e, difference),
-                      fabs(e->paper) > 0 ? " (" : "", show_of_paper(layout, e, difference),
-                      fabs(e->paper) > 0 ? ")" : ""));
+                      why_value(layout, e, e->paper), square_law, why_value(layout, e, e->computed),
+                      why_change(layout, e, difference), fabs(e->paper) > 0 ? " (" : "",
+                      show_of_paper(layout, e, difference), fabs(e->paper) > 0 ? ")" : ""));
 }
 
 static void shares_table(struct layout *layout, const struct explanation *e)
