@@ -3,7 +3,7 @@
  */
 #include "devices/curve.h"
 
-#include "devices/types.h"
+#include "devices/two_terminal.h"
 
 /* Three-point slope at the end of the data, from the two secants next to it, kept from turning
  * the curve round. */
@@ -51,21 +51,6 @@ void curve_slopes(const double *v, const double *i, double *slope, int count)
     }
 }
 
-static const struct terminal terminals[] = {
-    {"a", "where the current enters", false, NULL},
-    {"b", "where the current leaves", false, NULL},
-};
-
-enum { ROW_I, ROW_V, ROW_POWER };
-
-static const struct quantity_row quantities[] = {
-    [ROW_I] = {"i", UNIT_AMPERE, "current in the direction of the arrow"},
-    [ROW_V] = {"v", UNIT_VOLT, "voltage along the arrow"},
-    [ROW_POWER] = {"power", UNIT_WATT, "dissipated power"},
-};
-
-static const uint32_t paths[] = {1, 1};
-
 static void prepare(const struct device_values *values, const struct device_conditions *conditions,
                     void *prepared)
 {
@@ -78,29 +63,18 @@ static unsigned describe(const void *prepared, const double *outer, const double
 {
     double f[2], jac[4];
     table_evaluate(prepared, inner, f, jac);
-    q[ROW_I] = f[0];
-    q[ROW_V] = outer[0] - outer[1];
-    q[ROW_POWER] = q[ROW_V] * q[ROW_I];
-    return REGION_NONE;
+    return two_terminal_describe(f[0], outer, q);
 }
 
 const struct device_type device_table = {
+    TWO_TERMINAL_TABLE,
     .word = "table",
     .summary = "measured curve of a two-terminal device",
-    .form = FORM_ARROW,
     .extra_kind = EXTRA_CURVE,
-    .terminals = terminals,
-    .terminal_count = ROWS(terminals),
     .value_parameter = -1,
-    .quantities = quantities,
-    .quantity_count = ROWS(quantities),
-    .quantity_current = ROW_I,
-    .quantity_headroom = -1,
-    .quantity_power = ROW_POWER,
     .prepared_size = sizeof(struct curve),
     .prepare = prepare,
     .evaluate = table_evaluate,
     .evaluate_extended = table_evaluate_extended,
     .describe = describe,
-    .paths = paths,
 };

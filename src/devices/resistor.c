@@ -4,7 +4,7 @@
 #include "devices/resistor.h"
 
 #include "devices/linear.h"
-#include "devices/types.h"
+#include "devices/two_terminal.h"
 
 enum { OWN_RESISTANCE, OWN_TEMPCO, OWN_TEMPCO2, OWN_TOL, OWN_MATCH, OWN_VALUE_SHIFT };
 
@@ -24,21 +24,6 @@ static const struct parameter own_parameters[] = {
                          "relative deviate of the value"},
 };
 
-static const struct terminal terminals[] = {
-    {"a", "where the current enters", false, NULL},
-    {"b", "where the current leaves", false, NULL},
-};
-
-enum { ROW_I, ROW_V, ROW_POWER };
-
-static const struct quantity_row quantities[] = {
-    [ROW_I] = {"i", UNIT_AMPERE, "current in the direction of the arrow"},
-    [ROW_V] = {"v", UNIT_VOLT, "voltage along the arrow"},
-    [ROW_POWER] = {"power", UNIT_WATT, "dissipated power"},
-};
-
-static const uint32_t paths[LINEAR_TERMINALS] = {1, 1};
-
 double resistor_at(const struct device_values *values, const struct device_conditions *conditions)
 {
     const double *own = values->own;
@@ -57,10 +42,7 @@ static void prepare(const struct device_values *values, const struct device_cond
 static unsigned describe(const void *prepared, const double *outer, const double *inner, double *q)
 {
     const struct linear_prepared *p = prepared;
-    q[ROW_I] = (inner[LINEAR_A] - inner[LINEAR_B]) / p->value;
-    q[ROW_V] = outer[LINEAR_A] - outer[LINEAR_B];
-    q[ROW_POWER] = q[ROW_V] * q[ROW_I];
-    return REGION_NONE;
+    return two_terminal_describe((inner[LINEAR_A] - inner[LINEAR_B]) / p->value, outer, q);
 }
 
 static double value_sigma(const struct device_values *values)
@@ -83,20 +65,13 @@ static const struct deviate tolerance = {"tolerance", OWN_VALUE_SHIFT, tolerance
                                          DEVIATE_SCALES, offsetof(struct linear_prepared, value)};
 
 const struct device_type device_resistor = {
+    TWO_TERMINAL_TABLE,
     .word = "resistor",
     .summary = "resistor",
-    .form = FORM_ARROW,
     .is_resistor = true,
-    .terminals = terminals,
-    .terminal_count = LINEAR_TERMINALS,
     .parameters = own_parameters,
     .parameter_count = ROWS(own_parameters),
     .value_parameter = OWN_RESISTANCE,
-    .quantities = quantities,
-    .quantity_count = ROWS(quantities),
-    .quantity_current = ROW_I,
-    .quantity_headroom = -1,
-    .quantity_power = ROW_POWER,
     .deviates = deviates,
     .deviate_count = ROWS(deviates),
     .tolerance = &tolerance,
@@ -105,5 +80,4 @@ const struct device_type device_resistor = {
     .evaluate = resistor_evaluate,
     .evaluate_extended = resistor_evaluate_extended,
     .describe = describe,
-    .paths = paths,
 };

@@ -2,7 +2,7 @@
  * source.c: tables and preparation of the ideal sources.
  */
 #include "devices/linear.h"
-#include "devices/types.h"
+#include "devices/two_terminal.h"
 
 static const struct parameter current_parameters[] = {
     {"current", UNIT_AMPERE, DEFAULT_REQUIRED, 0, -INFINITY, INFINITY, false,
@@ -19,12 +19,10 @@ static const struct terminal terminals[] = {
     {"b", "where the arrow ends", false, NULL},
 };
 
-enum { ROW_I, ROW_V, ROW_POWER };
-
 static const struct quantity_row quantities[] = {
-    [ROW_I] = {"i", UNIT_AMPERE, "current through the source in the direction of the arrow"},
-    [ROW_V] = {"v", UNIT_VOLT, "voltage of the first node above the second"},
-    [ROW_POWER] = {"power", UNIT_WATT, "dissipated power, negative when the source delivers"},
+    [TWO_I] = {"i", UNIT_AMPERE, "current through the source in the direction of the arrow"},
+    [TWO_V] = {"v", UNIT_VOLT, "voltage of the first node above the second"},
+    [TWO_POWER] = {"power", UNIT_WATT, "dissipated power, negative when the source delivers"},
 };
 
 static const uint32_t voltage_paths[LINEAR_TERMINALS] = {1, 1};
@@ -51,20 +49,14 @@ static unsigned describe_current(const void *prepared, const double *outer, cons
 {
     const struct linear_prepared *p = prepared;
     (void)inner;
-    q[ROW_I] = p->value;
-    q[ROW_V] = outer[LINEAR_A] - outer[LINEAR_B];
-    q[ROW_POWER] = q[ROW_V] * q[ROW_I];
-    return REGION_NONE;
+    return two_terminal_describe(p->value, outer, q);
 }
 
 static unsigned describe_voltage(const void *prepared, const double *outer, const double *inner,
                                  double *q)
 {
     (void)prepared;
-    q[ROW_I] = inner[LINEAR_BRANCH];
-    q[ROW_V] = outer[LINEAR_A] - outer[LINEAR_B];
-    q[ROW_POWER] = q[ROW_V] * q[ROW_I];
-    return REGION_NONE;
+    return two_terminal_describe(inner[LINEAR_BRANCH], outer, q);
 }
 
 static void drive_current(const void *prepared, double *f)
@@ -85,7 +77,7 @@ static void drive_voltage(const void *prepared, double *f)
 #define SOURCE_COMMON                                                                              \
     .form = FORM_ARROW, .terminals = terminals, .terminal_count = LINEAR_TERMINALS,                \
     .value_parameter = 0, .quantities = quantities, .quantity_count = ROWS(quantities),            \
-    .quantity_current = ROW_I, .quantity_headroom = -1, .quantity_power = ROW_POWER,               \
+    .quantity_current = TWO_I, .quantity_headroom = -1, .quantity_power = TWO_POWER,               \
     .prepared_size = sizeof(struct linear_prepared), .prepare = prepare
 
 const struct device_type device_current = {
