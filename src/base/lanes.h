@@ -18,7 +18,8 @@
 #if LANES == 8
 typedef double lanes __attribute__((vector_size(64)));
 typedef uint64_t lanes_bits __attribute__((vector_size(64)));
-typedef int64_t lanes_truth __attribute__((vector_size(64))); /* of a comparison: all bits, or none */
+typedef int64_t lanes_truth
+    __attribute__((vector_size(64))); /* of a comparison: all bits, or none */
 #else
 typedef double lanes __attribute__((vector_size(32)));
 typedef uint64_t lanes_bits __attribute__((vector_size(32)));
@@ -107,7 +108,9 @@ static inline lanes lanes_exp(lanes u)
     lanes scale;
     const lanes part = lanes_exp_parts(lanes_within(u), &scale);
     const lanes value = scale + scale * part;
-    return lanes_choose(u > lanes_of(-708), value, lanes_choose(u == u, lanes_of(0), u));
+    return lanes_choose(
+        u > lanes_of(-708), value,
+        lanes_choose(u == u, lanes_of(0), u)); /* NOLINT(misc-redundant-expression): NaN */
 }
 
 /* Both from one evaluation; returns exp(u) - 1. */
@@ -116,7 +119,8 @@ static inline lanes lanes_expm1(lanes u, lanes *exponential)
     lanes scale;
     const lanes part = lanes_exp_parts(lanes_within(u), &scale);
     const lanes value = scale + scale * part;
-    const lanes tiny = lanes_choose(u == u, lanes_of(0), u);
+    const lanes tiny =
+        lanes_choose(u == u, lanes_of(0), u); /* NOLINT(misc-redundant-expression): NaN */
     *exponential = lanes_choose(u > lanes_of(-708), value, tiny);
     return lanes_choose(u > lanes_of(-708), scale * part + (scale - 1), tiny - 1);
 }

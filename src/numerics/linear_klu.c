@@ -147,8 +147,15 @@ enum linear_status linear_factor(struct linear_solver *solver, const double *val
         linear_forget(solver);
         return LINEAR_NOT_FINITE;
     }
-    /* KLU's own factors serve until the next values; without memory for the list they always do */
-    solver->direct = direct_create(solver, p, values);
+    /* KLU's own factors serve until the next values. A list that is refused memory is no matter to
+     * pass over: the answers of KLU alone differ in their last bits. */
+    if (p->n <= DIRECT_LIMIT) {
+        solver->direct = direct_create(solver, p, values);
+        if (solver->direct == NULL) {
+            linear_forget(solver);
+            return LINEAR_MEMORY;
+        }
+    }
     return LINEAR_OK;
 }
 

@@ -79,7 +79,7 @@ static inline lanes random_quantile_lanes(lanes p)
 /* random_normals for streams `first` to first + LANES - 1, one a lane. */
 static inline void random_normals_lanes(uint64_t seed, uint64_t first, int count, lanes *deviates)
 {
-    lanes_bits stream;
+    lanes_bits stream = {0};
     for (int l = 0; l < LANES; l++) {
         stream[l] = first + (uint64_t)l;
     }

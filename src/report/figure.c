@@ -405,7 +405,7 @@ static void draw_series_labels(struct drawing *drawing)
 {
     const struct figure *figure = drawing->figure;
     int order[LABEL_LIMIT];
-    double at[LABEL_LIMIT];
+    double at[LABEL_LIMIT] = {0};
     int count = 0;
     for (int s = 0; s < figure->series_count; s++) {
         double value = last_value(&figure->series[s]);
