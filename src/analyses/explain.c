@@ -1,5 +1,5 @@
 /*
- * explain.c: the lattice of effects, solved, and the Shapley value of each effect.
+ * explain.c: the lattice of effects, solved, and the share of each effect.
  */
 #include "analyses/explain.h"
 
@@ -214,28 +214,78 @@ static double corner_value(const struct lattice *l, int code, int probe, bool as
     return isnan(value) && l->states[code] != NULL ? 0 : 1 / value;
 }
 
-/* Share of effect b: the mean over all orders; a subset of size s comes with weight
- * s! (k - 1 - s)!/k!. */
-static double shapley(const struct lattice *l, int b, int probe, bool as_conductance)
+/*
+ * Orders of switching the effects on, from corner `base` to the full view, of which every corner
+ * has a value. Where all have one, these are all orders, and the shares are the Shapley values.
+ */
+struct orders {
+    double *before, *after; /* [corner_count] of the ways from base to a corner, and on to full */
+    int base;               /* the corner of the fewest effects that leads to full; -1: none */
+    double count, all;      /* from base to full; if there were no gaps */
+};
+
+static int effect_count(int code)
 {
-    double weight[EFFECT_COUNT + 1];
-    const int k = l->bit_count;
-    weight[0] = 1.0 / k;
-    for (int s = 1; s < k; s++) {
-        weight[s] = weight[s - 1] * s / (k - s);
+    int count = 0;
+    for (; code != 0; code &= code - 1) {
+        count++;
     }
+    return count;
+}
+
+/* Ways by neighbours that have one effect less (side 0) or more. */
+static double ways_by(const struct lattice *l, const double *ways, int code, bool more)
+{
+    double sum = 0;
+    for (int b = 0; b < l->bit_count; b++) {
+        sum += ((code & 1 << b) == 0) == more ? ways[code ^ 1 << b] : 0;
+    }
+    return sum;
+}
+
+static bool find_orders(const struct lattice *l, int probe, bool as_conductance, struct orders *o)
+{
+    const int full = l->corner_count - 1;
+    *o = (struct orders){.before = arena_new_array(l->arena, double, l->corner_count),
+                         .after = arena_new_array(l->arena, double, l->corner_count),
+                         .base = -1,
+                         .all = 1};
+    if (o->before == NULL || o->after == NULL) {
+        return false;
+    }
+    for (int code = full; code >= 0; code--) {
+        if (isfinite(corner_value(l, code, probe, as_conductance))) {
+            o->after[code] = code == full ? 1 : ways_by(l, o->after, code, true);
+        }
+        if (o->after[code] > 0 && (o->base < 0 || effect_count(code) <= effect_count(o->base))) {
+            o->base = code;
+        }
+    }
+    for (int code = o->base; code >= 0 && code <= full; code++) {
+        if (o->after[code] > 0) {
+            o->before[code] = code == o->base ? 1 : ways_by(l, o->before, code, false);
+        }
+    }
+    o->count = o->base < 0 ? 0 : o->after[o->base];
+    for (int k = l->bit_count - effect_count(o->base < 0 ? 0 : o->base); k > 1; k--) {
+        o->all *= k;
+    }
+    return true;
+}
+
+/* Share of effect b: the mean over the orders of what it adds. */
+static double mean_share(const struct lattice *l, const struct orders *o, int b, int probe,
+                         bool as_conductance)
+{
     long double sum = 0;
     for (int code = 0; code < l->corner_count; code++) {
-        if ((code & 1 << b) != 0) {
-            continue;
+        const int with = code | 1 << b;
+        const double weight = with == code ? 0 : o->before[code] * o->after[with] / o->count;
+        if (weight > 0) {
+            sum +=
+                (long double)weight * ((long double)corner_value(l, with, probe, as_conductance) -
+                                       corner_value(l, code, probe, as_conductance));
         }
-        int size = 0;
-        for (int other = 0; other < k; other++) {
-            size += (code & 1 << other) != 0;
-        }
-        sum += (long double)weight[size] *
-               ((long double)corner_value(l, code | 1 << b, probe, as_conductance) -
-                corner_value(l, code, probe, as_conductance));
     }
     return (double)sum;
 }
@@ -256,18 +306,42 @@ static int first_gap(const struct lattice *l, int probe, bool as_conductance)
     return -1;
 }
 
-static const char *gap_text(const struct lattice *l, int code, struct arena *arena)
+/* "body effect, leakage"; NULL: none. */
+static const char *effect_list(const struct lattice *l, int code, struct arena *arena)
 {
-    const bool solved = l->states[code] != NULL;
-    const char *what = solved ? "the quantity has no value" : "the cell has no state";
     const char *list = NULL;
     for (int b = 0; b < l->bit_count; b++) {
-        if ((code & 1 << b) == 0) {
+        if ((code & 1 << b) != 0) {
             const char *name = effect_name(l->bits[b]);
             list = list == NULL ? name : arena_format(arena, "%s, %s", list, name);
         }
     }
+    return list;
+}
+
+static const char *gap_text(const struct lattice *l, int code, struct arena *arena)
+{
+    const char *what =
+        l->states[code] != NULL ? "the quantity has no value" : "the cell has no state";
+    const char *list = effect_list(l, ~code, arena);
     return list == NULL ? what : arena_format(arena, "%s without: %s", what, list);
+}
+
+/* Which subset has a gap, and over what the shares are taken then. */
+static const char *gap_note(const struct lattice *l, const struct orders *o, int gap,
+                            const char *first_with, struct arena *arena)
+{
+    const char *which = gap_text(l, gap, arena);
+    if (which != NULL && first_with != NULL) {
+        which = arena_format(arena, "%s; the shares begin with this on: %s", which, first_with);
+    }
+    if (which != NULL && o->count < o->all) {
+        which = arena_format(arena,
+                             "%s; the shares are the mean over the %.0f of %.0f orders of the "
+                             "effects that pass no such subset",
+                             which, o->count, o->all);
+    }
+    return which;
 }
 
 /* --- sentences ----------------------------------------------------------------------------------
@@ -392,33 +466,23 @@ static int by_size(const void *a, const void *b)
 }
 
 /* The paper need not follow the square law; what lies between is a share of its own. */
-static void add_paper(struct explanation *e)
+static bool add_paper(struct explanation *e, double first, struct arena *arena)
 {
-    const double share = e->hand_view - e->paper;
+    const double share = first - e->paper;
+    const char *name =
+        e->first_with == NULL
+            ? "the paper beside its own square law"
+            : arena_format(arena, "the paper beside the square law with %s", e->first_with);
     if (fabs(share) > 0) {
-        e->shares[e->share_count++] =
-            (struct effect_share){.effect = "the paper beside its own square law", .share = share};
+        e->shares[e->share_count++] = (struct effect_share){.effect = name, .share = share};
     }
+    return name != NULL;
 }
 
-static enum status explain_line(struct lattice *l, struct operating_point *home, int h,
-                                struct arena *arena, struct explanation *e)
+static enum status add_shares(struct lattice *l, struct operating_point *home, int h,
+                              const struct orders *o, struct arena *arena, struct explanation *e)
 {
     const struct hand_line *hand = &l->circuit->hands[h];
-    const int full = l->corner_count - 1;
-    e->as_conductance = is_resistance(&hand->probe) && first_gap(l, h, false) >= 0;
-    const int gap = first_gap(l, h, e->as_conductance);
-    e->paper = e->as_conductance ? 1 / hand->value : hand->value;
-    e->hand_view = corner_value(l, 0, h, e->as_conductance);
-    e->computed = corner_value(l, full, h, e->as_conductance);
-    if (gap >= 0) {
-        e->trouble = gap_text(l, gap, arena);
-        return e->trouble == NULL ? STATUS_MEMORY : STATUS_OK;
-    }
-    e->shares = arena_new_array(arena, struct effect_share, l->bit_count + 1);
-    if (e->shares == NULL) {
-        return STATUS_MEMORY;
-    }
     int edge;
     const enum status found = edge_device(home, &hand->probe, &edge);
     if (found != STATUS_OK) {
@@ -426,10 +490,13 @@ static enum status explain_line(struct lattice *l, struct operating_point *home,
     }
     double most = 0, share[EFFECT_COUNT] = {0};
     for (int b = 0; b < l->bit_count; b++) {
-        share[b] = shapley(l, b, h, e->as_conductance);
+        share[b] = mean_share(l, o, b, h, e->as_conductance);
         most = fmax(most, fabs(share[b]));
     }
     for (int b = 0; b < l->bit_count; b++) {
+        if ((o->base & 1 << b) != 0) {
+            continue;
+        }
         struct effect_share *row = &e->shares[e->share_count++];
         *row = (struct effect_share){effect_name(l->bits[b]), share[b], NULL};
         if (fabs(share[b]) > share_that_matters * most) {
@@ -439,7 +506,45 @@ static enum status explain_line(struct lattice *l, struct operating_point *home,
             }
         }
     }
-    add_paper(e);
+    return STATUS_OK;
+}
+
+static enum status explain_line(struct lattice *l, struct operating_point *home, int h,
+                                struct arena *arena, struct explanation *e)
+{
+    const struct hand_line *hand = &l->circuit->hands[h];
+    const int full = l->corner_count - 1;
+    struct orders o;
+    e->as_conductance = is_resistance(&hand->probe) && first_gap(l, h, false) >= 0;
+    const int gap = first_gap(l, h, e->as_conductance);
+    e->paper = e->as_conductance ? 1 / hand->value : hand->value;
+    e->hand_view = corner_value(l, 0, h, e->as_conductance);
+    e->computed = corner_value(l, full, h, e->as_conductance);
+    if (!find_orders(l, h, e->as_conductance, &o)) {
+        return STATUS_MEMORY;
+    }
+    if (gap >= 0 && (o.base < 0 || o.base == full)) {
+        e->trouble = gap_text(l, gap, arena);
+        return e->trouble == NULL ? STATUS_MEMORY : STATUS_OK;
+    }
+    if (gap >= 0) {
+        e->first_with = effect_list(l, o.base, arena);
+        e->note = gap_note(l, &o, gap, e->first_with, arena);
+        if (e->note == NULL || (o.base != 0 && e->first_with == NULL)) {
+            return STATUS_MEMORY;
+        }
+    }
+    e->shares = arena_new_array(arena, struct effect_share, l->bit_count + 1);
+    if (e->shares == NULL) {
+        return STATUS_MEMORY;
+    }
+    const enum status status = add_shares(l, home, h, &o, arena, e);
+    if (status != STATUS_OK) {
+        return status;
+    }
+    if (!add_paper(e, corner_value(l, o.base, h, e->as_conductance), arena)) {
+        return STATUS_MEMORY;
+    }
     qsort(e->shares, (size_t)e->share_count, sizeof *e->shares, by_size);
     return STATUS_OK;
 }

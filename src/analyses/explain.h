@@ -17,19 +17,24 @@ struct effect_share {
 struct explanation {
     const struct hand_line *hand;
     double paper;        /* what the `hand` line says */
-    double hand_view;    /* under the square law alone */
+    double hand_view;    /* under the square law alone; NAN: the cell has no state there */
     double computed;     /* in the full view */
     bool as_conductance; /* a resistance that may be unlimited: paper, hand_view, computed and the
                             shares are 1/R, S */
     struct effect_share *shares; /* [share_count] greatest first */
     int share_count;
-    const char *trouble; /* why there are no shares; NULL otherwise */
+    const char *trouble;    /* why there are no shares; NULL otherwise */
+    const char *note;       /* where a subset of the effects has no state or the quantity no value
+                               there: which, and over which orders the shares are taken; NULL: none */
+    const char *first_with; /* effects that are on from the start, since without them there is no
+                               way to the full view; they have no share. NULL: none */
 };
 
 /*
  * explain_hands: every `hand` line of a circuit, by Shapley value (1953): the mean over all orders
  * of what an effect adds when it is switched on. All 2^k subsets of the k effects that the cell has
- * are solved.
+ * are solved. Where some of them have no state, the mean is over the orders that pass none of
+ * those.
  *
  * home    a polished point in the full view
  * result  gets explanations, one a hand line

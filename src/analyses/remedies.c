@@ -210,7 +210,7 @@ enum status remedies_add(struct circuit *circuit, const struct analysis_options 
         fill_hand_view(result);
     }
     if (status == STATUS_OK && is_failed(result)) {
-        status = repair_find(&bench.point, options, result);
+        status = repair_find(circuit, &bench.point, options, result);
     }
     bench_close(&bench);
     return status == STATUS_UNSOLVED ? STATUS_OK : status;

@@ -145,6 +145,8 @@ static void put_hands(struct writer *writer, json_t *root, const struct result *
         if (k < result->explanation_count && result->explanations[k].trouble == NULL) {
             const struct explanation *why = &result->explanations[k];
             put_text(writer, object, "shares_as", why->as_conductance ? "conductance" : NULL);
+            put_text(writer, object, "note", why->note);
+            put_text(writer, object, "first_with", why->first_with);
             put(writer, object, "shares", json_shares(why));
         }
     }
@@ -184,6 +186,8 @@ static void put_requirements(struct writer *writer, json_t *root, const struct r
         json_put_spread_of(writer, object, result, row);
         if (result->repairs != NULL && result->repairs[k].looked_for) {
             put(writer, object, "repairs", json_repairs(&result->repairs[k]));
+        } else if (result->repairs != NULL) {
+            put_text(writer, object, "no_repairs", result->repairs[k].why_not);
         }
     }
 }

@@ -60,6 +60,8 @@ json_t *json_hand(const struct explanation *e)
     number(&good, object, "computed", e->computed);
     number(&good, object, "difference", e->computed - e->paper);
     text(&good, object, "trouble", e->trouble);
+    text(&good, object, "note", e->note);
+    text(&good, object, "first_with", e->first_with);
     put(&good, object, "shares", json_shares(e));
     return finished(good, object);
 }

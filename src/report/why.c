@@ -48,15 +48,15 @@ bool why_matters(const struct explanation *e, int k)
 static void heading(struct layout *layout, const struct explanation *e)
 {
     const double difference = e->computed - e->paper;
+    const char *square_law = isnan(e->hand_view) ? "none" : why_value(layout, e, e->hand_view);
     layout_paragraph(
         layout, TONE_STRONG, 2,
         layout_format(layout, "%s%s: paper %s, square law %s, computed %s: %s%s%s%s",
                       layout_clean(layout, e->hand->probe.text),
                       e->as_conductance ? " (as the conductance 1/R)" : "",
-                      why_value(layout, e, e->paper), why_value(layout, e, e->hand_view),
-                      why_value(layout, e, e->computed), why_change(layout, e, difference),
-                      fabs(e->paper) > 0 ? " (" : "", show_of_paper(layout, e, difference),
-                      fabs(e->paper) > 0 ? ")" : ""));
+                      why_value(layout, e, e->paper), square_law, why_value(layout, e, e->computed),
+                      why_change(layout, e, difference), fabs(e->paper) > 0 ? " (" : "",
+                      show_of_paper(layout, e, difference), fabs(e->paper) > 0 ? ")" : ""));
 }
 
 static void shares_table(struct layout *layout, const struct explanation *e)
@@ -92,6 +92,9 @@ static void explain_part(struct layout *layout, const struct explanation *e)
         return;
     }
     heading(layout, e);
+    if (e->note != NULL) {
+        layout_paragraph(layout, TONE_WARN, 2, e->note);
+    }
     shares_table(layout, e);
     for (int k = 0; k < e->share_count; k++) {
         if (e->shares[k].sentence != NULL) {
@@ -142,7 +145,10 @@ void page_why(struct layout *layout, const struct result *result)
 {
     for (int k = 0; k < result->explanation_count; k++) {
         const struct explanation *e = &result->explanations[k];
-        const char *text = e->trouble != NULL ? NULL : short_why(layout, e);
+        const char *text = e->trouble != NULL ? e->trouble : short_why(layout, e);
+        if (text != NULL && e->note != NULL) {
+            text = layout_format(layout, "%s (over the orders that have a state)", text);
+        }
         if (text != NULL) {
             layout_paragraph(layout, TONE_PLAIN, 4,
                              layout_format(layout, "%s%s: %s",

@@ -101,6 +101,73 @@ static void unlimited(void **state)
     close_all(cell, circuit, result);
 }
 
+#define FORCED_CELL(current)                                                                       \
+    "model q npn\n  saturation_current = 1 fA\n  beta = 100\n  early = 50 V\nend\n"                \
+    "rail vcc 5 V\nrail vb 0.7 V\nresistor RB vb -> b 1k\ncurrent I vcc -> c " current "\n"        \
+    "npn Q c=c b=b e=gnd model=q\nhand c.v = 0.1 V\n"
+
+static const char early_name[] = "channel-length modulation or Early effect";
+static const char beta_name[] = "finite beta and series resistance";
+
+/* Voltages of the collector of FORCED_CELL: with both effects, IF at VBE = 0.7 V - RB IF/beta, and
+ * I = IF (1 + (V - VBE)/VA); with the Early effect alone the same at VBE = 0.7 V. */
+static double forced_volts(double current, bool has_beta)
+{
+    const double ut = BOLTZMANN_OVER_CHARGE * 300.15;
+    double vbe = 0.7;
+    for (int k = 0; k < 200 && has_beta; k++) {
+        vbe = 0.5 * vbe + 0.5 * (0.7 - 1e3 * 1e-15 * exp(vbe / ut) / 100);
+    }
+    return vbe + 50 * (current / (1e-15 * exp(vbe / ut)) - 1);
+}
+
+/* Finite beta without Early effect cannot carry 0.5 mA, all other subsets can: of the two orders
+ * the one is left where the Early effect comes first. Without any, V = -UT ln(1 - I/IF). */
+static void subset_without_state(void **state)
+{
+    (void)state;
+    struct cell *cell;
+    struct circuit *circuit;
+    struct result *result = explained(&cell, &circuit, FORCED_CELL("0.5 mA"), NULL);
+    const struct explanation *e = &result->explanations[0];
+    const double ut = BOLTZMANN_OVER_CHARGE * 300.15, full = 1e-15 * exp(0.7 / ut);
+    const double none = -ut * log(1 - 0.5e-3 / full), both = forced_volts(0.5e-3, true);
+    double early = none; /* saturated: I = IF (1 - exp(-V/UT)) (1 + (V - VBE)/VA) */
+    for (int k = 0; k < 100; k++) {
+        early = -ut * log(1 - 0.5e-3 / (full * (1 + (early - 0.7) / 50)));
+    }
+    assert_null(e->trouble);
+    assert_null(e->first_with);
+    assert_non_null(strstr(e->note, "no state without: channel-length modulation or Early effect"));
+    assert_non_null(strstr(e->note, "1 of 2 orders"));
+    check_near(e->hand_view, none, 1e-6);
+    check_near(e->computed, both, 1e-6);
+    check_near(share_of(e, early_name), early - none, 1e-5);
+    check_near(share_of(e, beta_name), both - early, 1e-6);
+    close_all(cell, circuit, result);
+}
+
+/* At 0.6 mA not even the square law has a state: it begins with the Early effect. */
+static void square_law_without_state(void **state)
+{
+    (void)state;
+    struct cell *cell;
+    struct circuit *circuit;
+    struct result *result = explained(&cell, &circuit, FORCED_CELL("0.6 mA"), NULL);
+    const struct explanation *e = &result->explanations[0];
+    assert_null(e->trouble);
+    assert_true(isnan(e->hand_view));
+    assert_string_equal(e->first_with, early_name);
+    assert_true(isnan(share_of(e, early_name)));
+    check_near(share_of(e, beta_name), forced_volts(0.6e-3, true) - forced_volts(0.6e-3, false),
+               1e-6);
+    check_near(share_of(e,
+                        "the paper beside the square law with channel-length modulation or Early "
+                        "effect"),
+               forced_volts(0.6e-3, false) - 0.1, 1e-6);
+    close_all(cell, circuit, result);
+}
+
 /* The Widlar source in weak inversion: the sentence has the figures of the transistor itself. */
 static void sentence(void **state)
 {
@@ -181,8 +248,13 @@ static void effects(void **state)
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(two_effects), cmocka_unit_test(unlimited), cmocka_unit_test(sentence),
-        cmocka_unit_test(sums),        cmocka_unit_test(effects),
+        cmocka_unit_test(two_effects),
+        cmocka_unit_test(unlimited),
+        cmocka_unit_test(subset_without_state),
+        cmocka_unit_test(square_law_without_state),
+        cmocka_unit_test(sentence),
+        cmocka_unit_test(sums),
+        cmocka_unit_test(effects),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
