@@ -23,7 +23,9 @@ install_packages() {
 # What the program needs, and what the tests need beside it.
 build_packages=(gcc libc6-dev cmake ninja-build libsuitesparse-dev libjansson-dev libcminpack-dev
     pkg-config librsvg2-dev libcairo2-dev)
-test_packages=(g++ libcmocka-dev python3-jsonschema dpkg-dev)
+# The peers of ampstead-bench.
+bench_packages=(libsundials-dev libgsl-dev liblapack-dev)
+test_packages=(g++ libcmocka-dev python3-jsonschema dpkg-dev parallel)
 
 # build_in FOLDER [cmake options...]: configures and builds
 build_in() {

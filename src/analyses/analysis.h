@@ -9,6 +9,8 @@
 #include "analyses/result.h"
 #include "base/status.h"
 
+struct sample_rows;
+
 struct analysis_options {
     enum view view;
     bool (*stopped)(
@@ -25,7 +27,10 @@ struct analysis_options {
                             explanations and repairs out */
     int jobs;            /* threads; 0: one a processor */
     int samples;         /* analysis_spread: 0 leaves the sampled part out */
+    int lanes;           /* most samples side by side; 0: as many as the processor takes, 1: one */
     uint64_t seed;
+    int first, count;                  /* analysis_samples: which of them */
+    const struct sample_rows *sampled; /* analysis_spread: [samples] solved elsewhere; NULL: none */
     const struct probe *wanted; /* for analysis_sensitivity; NULL: the currents of all outputs */
     double grid;                /* m, for analysis_size: lengths are whole multiples of it */
 };
@@ -48,6 +53,10 @@ enum status analysis_states(struct circuit *circuit, const struct analysis_optio
 /* Review, then conditions, mismatch and yield. */
 enum status analysis_spread(struct circuit *circuit, const struct analysis_options *options,
                             struct result **result);
+/* The point, then the mismatch samples `first` to `first + count - 1` alone: result->mismatch, of
+ * which the quantities stay empty. */
+enum status analysis_samples(struct circuit *circuit, const struct analysis_options *options,
+                             struct result **result);
 /* Shares of the effects in what differs from the paper; docs/explain.md. */
 enum status analysis_explain(struct circuit *circuit, const struct analysis_options *options,
                              struct result **result);

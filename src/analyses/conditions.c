@@ -296,7 +296,7 @@ enum status analyse_conditions(struct circuit *circuit, const struct operating_p
     enum status status = make_points(r, circuit, &list, result->arena);
     if (status == STATUS_INPUT) {
         diagnostics_add(&circuit->cell->diagnostics, circuit->conditions[0].where,
-                        "vary fewer things", "the `vary` lines make more than %d combinations",
+                        "vary fewer things", "the `vary` lines make more than %d combinations, the limit",
                         CONDITION_POINT_LIMIT);
     }
     if (status != STATUS_OK) {

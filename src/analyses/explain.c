@@ -488,7 +488,7 @@ static enum status add_shares(struct lattice *l, struct operating_point *home, i
     if (found != STATUS_OK) {
         return found;
     }
-    double most = 0, share[EFFECT_COUNT];
+    double most = 0, share[EFFECT_COUNT] = {0};
     for (int b = 0; b < l->bit_count; b++) {
         share[b] = mean_share(l, o, b, h, e->as_conductance);
         most = fmax(most, fabs(share[b]));

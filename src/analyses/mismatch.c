@@ -45,11 +45,16 @@ bool mismatch_list(const struct system *s, struct arena *arena, struct mismatch 
     return m->rows != NULL;
 }
 
-/* An even number with the same sigma comes from the normal one by its own distribution: 2 Phi(z) -
- * 1 is even between -1 and 1, whose sigma is 1/sqrt(3). */
+/* It comes from the normal number by its own distribution: 2 Phi(z) - 1 is even between -1 and 1,
+ * whose sigma is 1/sqrt(3). */
+double mismatch_even(double z)
+{
+    return sqrt(3) * erf(z / sqrt(2));
+}
+
 static double shift_of(const struct mismatch_row *row, double z)
 {
-    return row->sigma * (row->is_even ? sqrt(3) * erf(z / sqrt(2)) : z);
+    return row->sigma * (row->is_even ? mismatch_even(z) : z);
 }
 
 void mismatch_apply(struct system *s, const struct mismatch *m, const double *deviates)

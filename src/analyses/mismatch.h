@@ -23,6 +23,9 @@ struct mismatch {
 /* All deviates of a system whose sigma is above 0. False when memory is short. */
 bool mismatch_list(const struct system *system, struct arena *arena, struct mismatch *mismatch);
 
+/* An even number of sigma 1 from a standard normal one. */
+double mismatch_even(double z);
+
 /* Sets the hidden values from standard normal numbers, one a row. */
 void mismatch_apply(struct system *system, const struct mismatch *mismatch, const double *deviates);
 

@@ -403,16 +403,16 @@ static bool (*const device_rules[])(const struct remarks *m, const struct device
 bool remarks_add(const struct operating_point *point, struct result *result)
 {
     const struct remarks m = {point, result->circuit, result};
-    for (int k = 0; k < m.circuit->cautions.count; k++) {
-        const struct caution *c = &m.circuit->cautions.list[k];
-        struct caution *list =
-            arena_grow(result->arena, result->cautions.list, result->cautions.count,
-                       &result->cautions.capacity, sizeof *list);
-        if (list == NULL) {
+    const struct caution_list *built = &m.circuit->cautions;
+    for (int k = 0; k < built->count; k++) {
+        if (!caution_append(&result->cautions, &built->list[k], false)) {
             return false;
         }
-        result->cautions.list = list;
-        list[result->cautions.count++] = *c;
+    }
+    for (int k = 0; k < built->silenced_count; k++) {
+        if (!caution_append(&result->cautions, &built->silenced[k], true)) {
+            return false;
+        }
     }
     const bool leaks = process_leaks(m.circuit);
     bool has_mos = false;

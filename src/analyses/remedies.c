@@ -3,6 +3,7 @@
  */
 #include "analyses/remedies.h"
 
+#include <assert.h>
 #include <math.h>
 #include <string.h>
 
@@ -27,6 +28,7 @@ static enum status bench_open(struct bench *bench, struct circuit *circuit,
                                                          options->stopped, options->stopped_self)) {
         return STATUS_MEMORY;
     }
+    assert(result != NULL); /* what is solved has a result */
     if (result->point.x != NULL) {
         memcpy(bench->point.x, result->point.x, (size_t)bench->system->n * sizeof *bench->point.x);
         const enum newton_status status = operating_point_newton(&bench->point);
@@ -66,6 +68,9 @@ static enum status end(enum status status, struct bench *bench, struct result **
         status = status == STATUS_INPUT ? STATUS_INPUT : STATUS_MEMORY;
         result_free(*result);
         *result = NULL;
+    }
+    if (*result != NULL) {
+        (*result)->is_stopped = status == STATUS_STOPPED;
     }
     return status;
 }

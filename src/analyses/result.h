@@ -77,6 +77,7 @@ struct sweep_series {
     const double *values; /* [count * shown_count] row by row */
     struct sweep_event *events;
     int event_count;
+    int lost; /* points without an operating point: their values are NAN */
 };
 
 struct sweep_table {

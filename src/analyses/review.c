@@ -176,13 +176,9 @@ enum status analysis_sweep(struct circuit *circuit, const struct analysis_option
     if ((*result)->sweeps == NULL) {
         status = STATUS_MEMORY;
     }
-    for (int k = 0; status == STATUS_OK && k < count; k++) {
-        if (options->progress != NULL) {
-            options->progress(options->progress_self, sweeps[k].knob.name, (double)k / count);
-        }
-        status =
-            analyse_sweep(circuit, &sweeps[k], options, (*result)->arena, &(*result)->sweeps[k]);
-        (*result)->sweep_count = k + 1;
+    if (status == STATUS_OK) {
+        status = analyse_sweeps(circuit, sweeps, count, options, (*result)->arena,
+                                (*result)->sweeps, &(*result)->sweep_count);
     }
     if (status == STATUS_OK) {
         (*result)->verdict = VERDICT_NO_REQUIREMENTS;

@@ -1,9 +1,9 @@
 /*
  * sampling.c: samples in blocks over threads.
  *
- * A block goes to an engine, which keeps its system from block to block. The engine here solves one
- * sample after the other; one that solves many at once only has to replace scalar_block, and to
- * hand what fails there to solve_sample.
+ * A block goes to an engine, which keeps its system from block to block. Samples are solved side by
+ * side where the processor can (lanes.h); what fails there, and all of them elsewhere, one after
+ * the other.
  */
 #include "analyses/sampling.h"
 
@@ -11,6 +11,7 @@
 #include <string.h>
 
 #include "analyses/judge.h"
+#include "analyses/lanes.h"
 #include "analyses/setup.h"
 #include "base/workers.h"
 #include "numerics/linear.h"
@@ -25,6 +26,8 @@ struct engine {
     double *deviates;                /* [mismatch->count] */
     double *margins;                 /* [requirement_count] */
     double *home_values;             /* [nonzeros] Jacobian at the own point */
+    const struct lanes_kind *kind;   /* NULL: one sample at a time */
+    struct lanes_engine *lanes;
     int full; /* factorisations when the pivots were chosen at the own point */
     bool is_open;
 };
@@ -53,6 +56,21 @@ static enum status restore_pivots(struct engine *e)
     return status == LINEAR_MEMORY ? STATUS_MEMORY : STATUS_OK;
 }
 
+static enum status open_lanes(struct engine *e, const struct sampling_plan *plan)
+{
+    e->lanes = NULL;
+    e->kind = e->options.lanes == 1 ? NULL : lanes_find(e->options.lanes);
+    if (e->kind == NULL) {
+        return STATUS_OK;
+    }
+    const enum status status = restore_pivots(e);
+    if (status == STATUS_OK) {
+        e->lanes = e->kind->begin(e->setup.system, plan->mismatch, plan->home, e->home_values,
+                                 e->setup.arena);
+    }
+    return arena_failed(e->setup.arena) ? STATUS_MEMORY : status;
+}
+
 static enum status open_engine(struct engine *e, const struct sampling_plan *plan)
 {
     enum status status =
@@ -73,7 +91,27 @@ static enum status open_engine(struct engine *e, const struct sampling_plan *pla
     }
     (void)s->face.evaluate(s, plan->home, f, f + n, e->home_values);
     e->full = -1;
-    return STATUS_OK;
+    return open_lanes(e, plan);
+}
+
+/*
+ * Newton's last step is below 1e-9 and not taken, which leaves an error of that size; taking it
+ * leaves its square, so that a sample is the same to rounding in whatever way it was solved. Not
+ * after a search that ended otherwise (a polish).
+ */
+static void take_last_step(struct operating_point *p)
+{
+    const struct system *s = p->system;
+    const struct newton_options options = newton_default_options();
+    const double *dx = newton_last_step(&s->face, s->work);
+    bool is_tiny = p->report.residual <= options.tolerance;
+    for (int k = 0; k < s->n && is_tiny; k++) {
+        const double w = s->weight[k];
+        is_tiny = fabs(w * dx[k]) <= options.step_tolerance * (1 + fabs(w * p->x[k]));
+    }
+    for (int k = 0; k < s->n && is_tiny; k++) {
+        p->x[k] += dx[k];
+    }
 }
 
 /* Newton from the own point; where it does not get there, the search from cold. */
@@ -88,6 +126,9 @@ static enum status find_state(struct engine *e, const struct sampling_plan *plan
                          : newton == NEWTON_STOPPED ? STATUS_STOPPED
                          : newton == NEWTON_MEMORY  ? STATUS_MEMORY
                                                     : STATUS_UNSOLVED;
+    if (status == STATUS_OK) {
+        take_last_step(p);
+    }
     if (status == STATUS_OK && e->setup.list.needs_outputs) {
         status = operating_point_polish(p);
     }
@@ -98,40 +139,58 @@ static enum status find_state(struct engine *e, const struct sampling_plan *plan
     return status;
 }
 
-static enum status solve_sample(struct engine *e, const struct run *run, int k)
+/* Reads the state in the system's point into row k. */
+static enum status take_row(struct engine *e, const struct run *run, int k, enum sample_state state)
+{
+    const struct reading_list *list = &e->setup.list;
+    const struct circuit *c = run->plan->circuit;
+    double *values = run->rows->values + (size_t)k * (size_t)list->probe_count;
+    unsigned char *met = run->rows->met + (size_t)k * (size_t)c->requirement_count;
+    const enum status status = reading_take(&e->setup.point, list, values, e->margins);
+    if (status != STATUS_OK) {
+        return status;
+    }
+    for (int q = 0; q < c->requirement_count; q++) {
+        met[q] = judge_is_met(&c->requirements[q], e->margins[q]);
+    }
+    run->rows->states[k] = (unsigned char)state;
+    return STATUS_OK;
+}
+
+static void fail_row(const struct engine *e, const struct run *run, int k)
+{
+    const int count = e->setup.list.probe_count;
+    for (int q = 0; q < count; q++) {
+        run->rows->values[(size_t)k * (size_t)count + (size_t)q] = NAN;
+    }
+    run->rows->states[k] = SAMPLE_FAILED;
+}
+
+static void prepare_sample(struct engine *e, const struct run *run, int k)
 {
     const struct sampling_plan *plan = run->plan;
-    const struct reading_list *list = &e->setup.list;
-    const int requirements = plan->circuit->requirement_count;
-    double *values = run->rows->values + (size_t)k * (size_t)list->probe_count;
-    unsigned char *met = run->rows->met + (size_t)k * (size_t)requirements;
+    random_normals(plan->options->seed, (uint64_t)(plan->first + k), plan->mismatch->count,
+                   e->deviates);
+    mismatch_apply(e->setup.system, plan->mismatch, e->deviates);
+}
+
+static enum status solve_sample(struct engine *e, const struct run *run, int k)
+{
     enum sample_state state;
     enum status status = restore_pivots(e);
     if (status != STATUS_OK) {
         return status;
     }
-    random_normals(plan->options->seed, (uint64_t)(plan->first + k), plan->mismatch->count,
-                   e->deviates);
-    mismatch_apply(e->setup.system, plan->mismatch, e->deviates);
-    status = find_state(e, plan, &state);
+    prepare_sample(e, run, k);
+    status = find_state(e, run->plan, &state);
     if (status == STATUS_OK) {
-        status = reading_take(&e->setup.point, list, values, e->margins);
+        status = take_row(e, run, k, state);
     }
     if (status == STATUS_UNSOLVED) {
-        state = SAMPLE_FAILED;
+        fail_row(e, run, k);
         status = STATUS_OK;
     }
-    if (status != STATUS_OK) {
-        return status;
-    }
-    for (int q = 0; state == SAMPLE_FAILED && q < list->probe_count; q++) {
-        values[q] = NAN;
-    }
-    for (int q = 0; state != SAMPLE_FAILED && q < requirements; q++) {
-        met[q] = judge_is_met(&plan->circuit->requirements[q], e->margins[q]);
-    }
-    run->rows->states[k] = (unsigned char)state;
-    return STATUS_OK;
+    return status;
 }
 
 static enum status scalar_block(struct engine *e, const struct run *run, struct worker *worker,
@@ -144,6 +203,48 @@ static enum status scalar_block(struct engine *e, const struct run *run, struct 
         const enum status status = solve_sample(e, run, k);
         if (status != STATUS_OK) {
             return status;
+        }
+    }
+    return STATUS_OK;
+}
+
+/* A sample that was solved in a lane. An output's own analysis moves its system about: it gets all
+ * values, polished; for the rest the prepared blocks do. */
+static enum status take_lane(struct engine *e, const struct run *run, int k, int lane)
+{
+    struct operating_point *p = &e->setup.point;
+    e->kind->read(e->lanes, lane, p->x);
+    if (!e->setup.list.needs_outputs) {
+        e->kind->stand_in(e->lanes, lane);
+        return take_row(e, run, k, SAMPLE_SOLVED);
+    }
+    enum status status = restore_pivots(e);
+    if (status == STATUS_OK) {
+        prepare_sample(e, run, k);
+        status = operating_point_polish(p);
+    }
+    if (status == STATUS_OK) {
+        status = take_row(e, run, k, SAMPLE_SOLVED);
+    }
+    return status == STATUS_UNSOLVED ? solve_sample(e, run, k) : status;
+}
+
+static enum status lanes_block(struct engine *e, const struct run *run, struct worker *worker,
+                               int first, int count)
+{
+    const struct sampling_plan *plan = run->plan;
+    for (int k = first; k < first + count; k += e->kind->width) {
+        if (worker_stopped(worker)) {
+            return STATUS_STOPPED;
+        }
+        const unsigned solved =
+            e->kind->solve(e->lanes, plan->options->seed, (uint64_t)(plan->first + k));
+        for (int lane = 0; lane < e->kind->width && k + lane < first + count; lane++) {
+            const enum status status = (solved >> lane & 1) != 0 ? take_lane(e, run, k + lane, lane)
+                                                                 : solve_sample(e, run, k + lane);
+            if (status != STATUS_OK) {
+                return status;
+            }
         }
     }
     return STATUS_OK;
@@ -171,7 +272,9 @@ static enum status one_block(void *self, struct worker *worker, int index)
     }
     const int first = index * BLOCK;
     const int left = plan->count - first;
-    return scalar_block(e, run, worker, first, left < BLOCK ? left : BLOCK);
+    const int count = left < BLOCK ? left : BLOCK;
+    return e->lanes != NULL ? lanes_block(e, run, worker, first, count)
+                            : scalar_block(e, run, worker, first, count);
 }
 
 enum status sampling_run(const struct sampling_plan *plan, struct sample_rows *rows)

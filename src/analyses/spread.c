@@ -129,37 +129,60 @@ static void judge_yields(struct result *result)
     judge_verdict(result);
 }
 
-static enum status sample(struct circuit *circuit, const struct analysis_options *options,
-                          const struct mismatch *m, struct result *result)
+/* Solves samples first to first + count - 1 into the result. */
+static enum status solve_samples(struct circuit *circuit, const struct analysis_options *options,
+                                 const struct mismatch *m, int first, int count,
+                                 struct result *result)
 {
     struct mismatch_result *r = result->mismatch;
-    const size_t count = (size_t)options->samples;
+    const size_t n = (size_t)count;
     struct sample_rows rows = {
-        .values = arena_new_array(result->arena, double, count *(size_t)r->quantity_count),
-        .met = arena_new_array(result->arena, unsigned char,
-                               count *(size_t)circuit->requirement_count),
-        .states = arena_new_array(result->arena, unsigned char, count)};
-    double *scratch = arena_new_array(result->arena, double, count);
-    if (rows.values == NULL || rows.met == NULL || rows.states == NULL || scratch == NULL) {
+        .values = arena_new_array(result->arena, double, n *(size_t)r->quantity_count),
+        .met = arena_new_array(result->arena, unsigned char, n *(size_t)circuit->requirement_count),
+        .states = arena_new_array(result->arena, unsigned char, n)};
+    if (rows.values == NULL || rows.met == NULL || rows.states == NULL) {
         return STATUS_MEMORY;
     }
     const struct sampling_plan plan = {.circuit = circuit,
                                        .options = options,
                                        .mismatch = m,
                                        .home = result->point.x,
-                                       .count = options->samples};
+                                       .first = first,
+                                       .count = count};
     const enum status status = sampling_run(&plan, &rows);
+    r->wanted = count;
+    r->values = rows.values;
+    r->states = rows.states;
+    r->met = rows.met;
+    count_states(r);
+    return status;
+}
+
+static enum status sample(struct circuit *circuit, const struct analysis_options *options,
+                          const struct mismatch *m, struct result *result)
+{
+    struct mismatch_result *r = result->mismatch;
+    double *scratch = arena_new_array(result->arena, double, options->samples);
+    if (scratch == NULL) {
+        return STATUS_MEMORY;
+    }
+    enum status status = STATUS_OK;
+    if (options->sampled != NULL) {
+        r->wanted = options->samples;
+        r->values = options->sampled->values;
+        r->states = options->sampled->states;
+        r->met = options->sampled->met;
+        count_states(r);
+    } else {
+        status = solve_samples(circuit, options, m, 0, options->samples, result);
+    }
     if (status != STATUS_OK && status != STATUS_STOPPED) {
         return status;
     }
-    r->wanted = options->samples;
-    r->values = rows.values;
-    r->states = rows.states;
-    count_states(r);
     for (int q = 0; q < r->quantity_count; q++) {
         sampled_part(r, q, scratch, &r->quantities[q]);
     }
-    if (!count_yields(r, circuit, rows.met, result->arena)) {
+    if (!count_yields(r, circuit, r->met, result->arena)) {
         return STATUS_MEMORY;
     }
     judge_yields(result);
@@ -205,6 +228,46 @@ static enum status mismatch_part(struct circuit *circuit, const struct analysis_
     return status;
 }
 
+/* The samples of the result of a point. */
+static enum status samples_part(struct circuit *circuit, const struct analysis_options *options,
+                                struct result *result)
+{
+    struct setup setup;
+    struct mismatch m = {0};
+    struct mismatch_result *r = arena_new(result->arena, struct mismatch_result);
+    enum status status = setup_open(&setup, circuit, NULL, 0, NULL, READING_ALL, options);
+    if (r == NULL || (status == STATUS_OK && !mismatch_list(setup.system, result->arena, &m))) {
+        status = STATUS_MEMORY;
+    }
+    if (status == STATUS_OK) {
+        r->deviate_count = m.count;
+        r->seed = options->seed;
+        r->quantity_count = setup.list.probe_count;
+        result->mismatch = r;
+        if (m.count > 0) {
+            status = solve_samples(circuit, options, &m, options->first, options->count, result);
+        }
+    }
+    setup_close(&setup);
+    return status;
+}
+
+enum status analysis_samples(struct circuit *circuit, const struct analysis_options *options,
+                             struct result **result)
+{
+    enum status status = analysis_point(circuit, options, result);
+    if (*result != NULL && status == STATUS_OK) {
+        (*result)->command = "spread";
+        status = samples_part(circuit, options, *result);
+    }
+    if (*result != NULL && (status == STATUS_MEMORY || arena_failed((*result)->arena))) {
+        result_free(*result);
+        *result = NULL;
+        return STATUS_MEMORY;
+    }
+    return status;
+}
+
 enum status analysis_spread(struct circuit *circuit, const struct analysis_options *options,
                             struct result **result)
 {
@@ -230,5 +293,6 @@ enum status analysis_spread(struct circuit *circuit, const struct analysis_optio
         *result = NULL;
         return STATUS_MEMORY;
     }
+    r->is_stopped = status == STATUS_STOPPED;
     return status;
 }

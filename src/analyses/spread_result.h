@@ -108,7 +108,8 @@ struct mismatch_result {
     struct spread_of_probe *quantities; /* [quantity_count] */
     int quantity_count;
     const double *values;              /* [wanted * quantity_count] row by row */
-    const unsigned char *states;       /* [wanted] enum sample_state */
+    const unsigned char *states;       /* [wanted] enum sample_state; NULL: not sampled */
+    const unsigned char *met;          /* [wanted * requirement_count] of the circuit */
     const struct yield_result *yields; /* [requirement_count] of the circuit; NULL: not sampled */
 };
 

@@ -11,6 +11,7 @@
 #include <string.h>
 
 #include "analyses/judge.h"
+#include "base/workers.h"
 #include "solve/measure.h"
 #include "analyses/output.h"
 #include "solve/variant.h"
@@ -146,20 +147,13 @@ struct series_task {
     unsigned effects;
 };
 
-static bool add_event(struct series_task *t, double at, const char *text)
+static void add_event(struct series_task *t, double at, const char *text)
 {
     struct sweep_series *series = t->series;
     if (series->event_count >= EVENT_LIMIT) {
-        return true;
-    }
-    if (series->events == NULL) {
-        series->events = arena_new_array(t->arena, struct sweep_event, EVENT_LIMIT);
-    }
-    if (series->events == NULL) {
-        return false;
+        return;
     }
     series->events[series->event_count++] = (struct sweep_event){at, text};
-    return true;
 }
 
 /* A node that moves further in one step, V, is looked at in smaller steps: it may have jumped. */
@@ -230,14 +224,12 @@ static enum status build_and_follow(struct series_task *t, struct stage *stage, 
         if (status == STATUS_UNSOLVED &&
             depth == 0) { /* none on the way: is there one at the end? */
             status = build_at(t, stage, to, last, n, &follows);
-            if (status == STATUS_OK &&
-                !add_event(t, from, "no state was found on the way to the next value")) {
-                status = STATUS_MEMORY;
+            if (status == STATUS_OK) {
+                add_event(t, from, "no state was found on the way to the next value");
             }
         }
-    } else if (status == STATUS_OK && !follows && n > 0 &&
-               !add_event(t, from, "the state cannot be followed from here: it jumps")) {
-        status = STATUS_MEMORY;
+    } else if (status == STATUS_OK && !follows && n > 0) {
+        add_event(t, from, "the state cannot be followed from here: it jumps");
     }
     arena_destroy(scratch);
     return status;
@@ -257,9 +249,8 @@ static enum status advance(struct series_task *t, struct stage *stage, int k)
         }
         const enum status status = operating_point_move(
             &stage->point, stage->knob.instance, stage->knob.parameter, t->knob[k - 1], v, &jumped);
-        if (status == STATUS_OK && jumped &&
-            !add_event(t, stage->point.lost_at, operating_point_lost_text(&stage->point))) {
-            return STATUS_MEMORY;
+        if (status == STATUS_OK && jumped) {
+            add_event(t, stage->point.lost_at, operating_point_lost_text(&stage->point));
         }
         return status;
     }
@@ -299,8 +290,9 @@ static enum status run_series(struct series_task *t)
         }
         stage.is_solved = status == STATUS_OK;
         if (status == STATUS_UNSOLVED) {
-            status =
-                add_event(t, t->knob[k], "no state was found here") ? STATUS_OK : STATUS_MEMORY;
+            t->series->lost++;
+            add_event(t, t->knob[k], "no state was found here");
+            status = STATUS_OK;
         } else if (status == STATUS_OK) {
             solved++;
         }
@@ -313,47 +305,129 @@ static enum status run_series(struct series_task *t)
     return status == STATUS_OK && solved == 0 ? STATUS_UNSOLVED : status;
 }
 
-enum status analyse_sweep(struct circuit *circuit, const struct sweep *sweep,
-                          const struct analysis_options *options, struct arena *arena,
-                          struct sweep_table *table)
+/* --- many series, over threads ---------------------------------------------------------------- */
+
+/* Room for a series, events included: threads then take nothing from the arena. */
+static bool make_series(struct series_task *t, int points, double family_value)
 {
-    const int points = sweep->points > 0 ? sweep->points : CIRCUIT_POINT_STANDARD;
-    const int families = sweep->has_family ? sweep->family_count : 1;
-    *table = (struct sweep_table){.sweep = sweep};
-    table->series = arena_new_array(arena, struct sweep_series, families);
-    if (table->series == NULL) {
-        return STATUS_MEMORY;
+    const struct sweep *sweep = t->sweep;
+    t->knob = arena_new_array(t->arena, double, points);
+    t->values = arena_new_array(t->arena, double, (size_t)points *(size_t)sweep->shown_count);
+    struct sweep_event *events = arena_new_array(t->arena, struct sweep_event, EVENT_LIMIT);
+    if (t->knob == NULL || t->values == NULL || events == NULL) {
+        return false;
     }
+    for (int k = 0; k < points; k++) {
+        t->knob[k] = k == points - 1 ? sweep->to
+                                     : sweep->from + (sweep->to - sweep->from) * k / (points - 1);
+    }
+    *t->series = (struct sweep_series){.family_value = family_value,
+                                       .count = points,
+                                       .knob = t->knob,
+                                       .values = t->values,
+                                       .events = events};
+    return true;
+}
+
+/* All series of all sweeps, and how each ended. */
+struct sweep_job {
+    struct series_task *tasks;
+    enum status *ended; /* STATUS_STOPPED until it was done */
+    bool *begun;
+};
+
+static enum status do_series(void *self, struct worker *worker, int index)
+{
+    struct sweep_job *job = self;
+    struct series_task task = job->tasks[index];
+    struct analysis_options options = *task.options;
+    options.stopped = worker_stopped;
+    options.stopped_self = worker;
+    task.options = &options;
+    job->begun[index] = true;
+    job->ended[index] = run_series(&task);
+    return job->ended[index] == STATUS_MEMORY ? STATUS_MEMORY : STATUS_OK;
+}
+
+static int series_of(const struct sweep *sweep)
+{
+    return sweep->has_family ? sweep->family_count : 1;
+}
+
+/* Lays out tables and tasks. False when memory is short. */
+static bool make_tasks(struct circuit *circuit, const struct sweep *sweeps, int count,
+                       const struct analysis_options *options, struct arena *arena,
+                       struct sweep_table *tables, struct series_task *tasks)
+{
+    for (int k = 0; k < count; k++) {
+        const struct sweep *sweep = &sweeps[k];
+        const int points = sweep->points > 0 ? sweep->points : CIRCUIT_POINT_STANDARD;
+        tables[k] = (struct sweep_table){.sweep = sweep};
+        tables[k].series = arena_new_array(arena, struct sweep_series, series_of(sweep));
+        for (int f = 0; f < series_of(sweep); f++, tasks++) {
+            *tasks = (struct series_task){.circuit = circuit,
+                                          .sweep = sweep,
+                                          .options = options,
+                                          .arena = arena,
+                                          .series = &tables[k].series[f],
+                                          .effects = options->view == VIEW_HAND ? EFFECTS_HAND
+                                                                                : EFFECTS_FULL};
+            if (tables[k].series == NULL ||
+                !make_series(tasks, points, sweep->has_family ? sweep->family_values[f] : NAN)) {
+                return false;
+            }
+        }
+    }
+    return true;
+}
+
+/* What the tables hold, in their order: up to the first that was not begun, and to the end of the
+ * first sweep that went wrong. */
+static enum status collect(const struct sweep_job *job, struct sweep_table *tables, int count,
+                           int *done)
+{
     enum status worst = STATUS_OK;
-    for (int f = 0; f < families && worst != STATUS_MEMORY && worst != STATUS_STOPPED; f++) {
-        struct sweep_series *series = &table->series[f];
-        struct series_task task = {.circuit = circuit,
-                                   .sweep = sweep,
-                                   .options = options,
-                                   .arena = arena,
-                                   .series = series,
-                                   .effects =
-                                       options->view == VIEW_HAND ? EFFECTS_HAND : EFFECTS_FULL};
-        task.knob = arena_new_array(arena, double, points);
-        task.values = arena_new_array(arena, double, (size_t)points *(size_t)sweep->shown_count);
-        if (task.knob == NULL || task.values == NULL) {
-            return STATUS_MEMORY;
+    int at = 0;
+    for (*done = 0; *done < count && worst == STATUS_OK; ++*done) {
+        struct sweep_table *table = &tables[*done];
+        for (int f = 0; f < series_of(table->sweep); f++, at++) {
+            worst = job->ended[at] == STATUS_OK ? worst : job->ended[at];
+            table->series_count += job->begun[at] && table->series_count == f;
         }
-        for (int k = 0; k < points; k++) {
-            task.knob[k] = k == points - 1
-                               ? sweep->to
-                               : sweep->from + (sweep->to - sweep->from) * k / (points - 1);
-        }
-        *series =
-            (struct sweep_series){.family_value = sweep->has_family ? sweep->family_values[f] : NAN,
-                                  .count = points,
-                                  .knob = task.knob,
-                                  .values = task.values};
-        const enum status status = run_series(&task);
-        table->series_count = f + 1;
-        worst = status == STATUS_OK ? worst : status;
     }
     return worst;
+}
+
+enum status analyse_sweeps(struct circuit *circuit, const struct sweep *sweeps, int count,
+                           const struct analysis_options *options, struct arena *arena,
+                           struct sweep_table *tables, int *done)
+{
+    int total = 0;
+    for (int k = 0; k < count; k++) {
+        total += series_of(&sweeps[k]);
+    }
+    struct sweep_job job = {arena_new_array(arena, struct series_task, total),
+                            arena_new_array(arena, enum status, total),
+                            arena_new_array(arena, bool, total)};
+    *done = 0;
+    if (job.tasks == NULL || job.ended == NULL || job.begun == NULL ||
+        !make_tasks(circuit, sweeps, count, options, arena, tables, job.tasks)) {
+        return STATUS_MEMORY;
+    }
+    for (int k = 0; k < total; k++) {
+        job.ended[k] = STATUS_STOPPED;
+    }
+    const struct workers_task work = {.self = &job,
+                                      .count = total,
+                                      .jobs = workers_jobs(options->jobs, total),
+                                      .piece = do_series,
+                                      .stopped = options->stopped,
+                                      .stopped_self = options->stopped_self,
+                                      .progress = options->progress,
+                                      .progress_self = options->progress_self,
+                                      .what = "sweeps"};
+    const enum status status = workers_run(&work);
+    return status == STATUS_MEMORY ? STATUS_MEMORY : collect(&job, tables, count, done);
 }
 
 /* The load voltage of one output and its current. */

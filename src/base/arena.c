@@ -14,6 +14,7 @@ enum { FIRST_CHUNK = 16 * 1024, LARGEST_CHUNK = 1024 * 1024 };
 struct chunk {
     alignas(max_align_t) struct chunk *next;
     size_t size, used;
+    bool is_own; /* holds one block and takes no other */
 };
 
 struct arena {
@@ -70,6 +71,7 @@ static struct chunk *add_chunk(struct arena *arena, size_t bytes)
         return NULL;
     }
     chunk->size = size;
+    chunk->is_own = own;
     if (own && arena->chunks != NULL) {
         chunk->next = arena->chunks->next;
         arena->chunks->next = chunk;
@@ -167,4 +169,18 @@ void *arena_grow(struct arena *arena, void *list, int count, int *capacity, size
     }
     *capacity = larger;
     return moved;
+}
+
+void arena_give_back(struct arena *arena, void *block)
+{
+    for (struct chunk **link = &arena->chunks; block != NULL && *link != NULL;
+         link = &(*link)->next) {
+        struct chunk *chunk = *link;
+        if ((void *)(chunk + 1) == block && chunk->is_own) {
+            *link = chunk->next;
+            arena->used -= chunk->used;
+            free(chunk);
+            return;
+        }
+    }
 }

@@ -300,17 +300,21 @@ static enum status fit_set(struct run *run, const char *kind)
         return status;
     }
     c->fit_count++;
-    double worst = worst_of(c, fit), offset = 0;
-    for (int k = 0; k < fit->device_count; k++) {
-        offset = fmax(offset, fabs(fit->offsets[k]));
+    double worst = worst_of(c, fit);
+    int odd = 0; /* the device whose threshold is furthest off */
+    for (int k = 1; k < fit->device_count; k++) {
+        odd = fabs(fit->offsets[k]) > fabs(fit->offsets[odd]) ? k : odd;
     }
+    double offset = fabs(fit->offsets[odd]);
     fit->is_written = worst <= set_limit && offset <= offset_limit;
     if (!fit->is_written) {
-        fit->remark = arena_format(c->arena,
-                                   "not written: up to %.0f %% off in saturation, thresholds up to "
-                                   "%.0f mV off; these devices do not follow one set, take the "
-                                   "cards",
-                                   100 * worst, 1e3 * offset);
+        fit->remark = arena_format(
+            c->arena,
+            "not written: up to %.0f %% off in saturation, the threshold of %s %+.0f mV off, where "
+            "a set allows %.0f %% and %.0f mV; these devices differ by more than size (layout "
+            "shifts thresholds), take the cards",
+            100 * worst, c->devices[fit->devices[odd]].data.name, 1e3 * fit->offsets[odd],
+            100 * set_limit, 1e3 * offset_limit);
     }
     return fit->is_written || fit->remark != NULL ? STATUS_OK : STATUS_MEMORY;
 }

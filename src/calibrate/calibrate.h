@@ -76,15 +76,15 @@ struct correlated {
 /* Error of the model on one device, relative; NAN where there is no such reading. */
 enum region_of_figures { FIGURES_SATURATION, FIGURES_TRIODE, FIGURES_WEAK, FIGURES_REGIONS };
 
-struct figure {
+struct misfit {
     double rms, worst; /* worst: with its sign */
     int count;         /* readings or curves */
 };
 
 struct device_figures {
-    struct figure id[FIGURES_REGIONS];
-    struct figure gm, gds;
-    struct figure ib; /* bipolar base current */
+    struct misfit id[FIGURES_REGIONS];
+    struct misfit gm, gds;
+    struct misfit ib; /* bipolar base current */
 };
 
 /* One model over one or more devices. */
@@ -194,6 +194,18 @@ struct calibration {
  * Returns STATUS_OK, STATUS_INPUT, STATUS_MEMORY or STATUS_STOPPED.
  */
 enum status calibration_run(const struct calibration_request *request, struct calibration **result);
+
+/*
+ * calibration_trace: what the model of a comparison says to each reading of its device, in the
+ * column of its current (A).
+ *
+ * values  [rows of the device] out; NAN where the readings give no voltage
+ */
+void calibration_trace(const struct calibration *calibration, const struct comparison *comparison,
+                       double *values);
+
+/* The column of a device's current: id, ic or i. */
+enum column calibration_current(const struct calibrated_device *device);
 
 /* NULL is allowed. */
 void calibration_free(struct calibration *calibration);

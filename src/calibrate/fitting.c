@@ -19,6 +19,7 @@ static const struct {
     {NEED_DRAIN, "no drain sweep into saturation"},
     {NEED_LENGTHS, "one length"},
     {NEED_WIDTHS, "one width"},
+    {NEED_SHAPE, "fewer than four lengths"},
     {NEED_SHORT, "no lengths on both sides of 0.3 um"},
     {NEED_BREAKDOWN, "no breakdown in the data"},
     {NEED_COLLECTOR, "one collector voltage"},
@@ -333,14 +334,14 @@ void fitting_values(const struct fit *fit, double *model)
     }
 }
 
-void figure_add(struct figure *figure, double error)
+void misfit_add(struct misfit *figure, double error)
 {
     figure->rms += error * error;
     figure->worst = fabs(error) > fabs(figure->worst) ? error : figure->worst;
     figure->count++;
 }
 
-void figure_finish(struct figure *figure)
+void misfit_finish(struct misfit *figure)
 {
     if (figure->count == 0) {
         figure->rms = figure->worst = NAN;

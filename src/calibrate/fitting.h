@@ -23,7 +23,8 @@ enum need {
     NEED_COLLECTOR = 1 << 8,    /* more than one collector voltage in normal operation */
     NEED_BASE = 1 << 9,         /* readings of the base current, or with a forced one */
     NEED_SATURATION = 1 << 10,  /* collector voltages below 0.3 V */
-    NEED_VBE = 1 << 11          /* base voltages */
+    NEED_VBE = 1 << 11,         /* base voltages */
+    NEED_SHAPE = 1 << 12        /* four lengths and more: they show the shape of a law in L */
 };
 
 /* A value that a fit may look for. */
@@ -81,7 +82,7 @@ enum status fitting_solve(struct calibration *calibration, struct fitting *fitti
 void fitting_values(const struct fit *fit, double *model);
 
 /* Adds a relative error to a figure; makes it the root mean square at the end. */
-void figure_add(struct figure *figure, double error);
-void figure_finish(struct figure *figure);
+void misfit_add(struct misfit *figure, double error);
+void misfit_finish(struct misfit *figure);
 
 #endif

@@ -9,6 +9,9 @@
 /* A device whose current is off by more is not described. */
 static const double poor_fit = 0.05;
 
+/* Sizes further apart than this factor say little about each other. */
+static const double near_size = 4;
+
 /* Fewer body voltages do not show how the body effect bends. */
 enum { BODIES = 3 };
 
@@ -54,6 +57,34 @@ static bool transistor_remarks(struct calibration *c, int index)
                                       bodies == 1 ? "not measured" : "known as a slope only");
     }
     return is_good;
+}
+
+/* Whether a set knows devices of about that length that are as wide and as narrow. */
+static bool is_within(const struct calibration *c, const struct fit *fit,
+                      const struct measured *data)
+{
+    double least = INFINITY, most = 0;
+    for (int k = 0; k < fit->device_count; k++) {
+        const struct measured *known = &c->devices[fit->devices[k]].data;
+        double ratio = known->length / data->length;
+        if (ratio <= near_size && ratio >= 1 / near_size) {
+            least = fmin(least, known->width);
+            most = fmax(most, known->width);
+        }
+    }
+    return data->width <= near_size * most && data->width >= least / near_size;
+}
+
+static bool prediction_remark(struct calibration *c, const struct comparison *it)
+{
+    const struct fit *fit = &c->fits[it->fit];
+    if (!it->is_held || !fit->is_set || is_within(c, fit, &c->devices[it->device].data)) {
+        return true;
+    }
+    return calibration_remark(c, "beyond", it->device,
+                              "predicted beyond the sizes that %s was fitted to: no device of "
+                              "about this length is about as wide",
+                              fit->name);
 }
 
 static bool comparison_remarks(struct calibration *c, const struct comparison *it)
@@ -104,6 +135,7 @@ bool honesty_remarks(struct calibration *calibration)
     }
     for (int k = 0; k < calibration->comparison_count; k++) {
         is_good &= comparison_remarks(calibration, &calibration->comparisons[k]);
+        is_good &= prediction_remark(calibration, &calibration->comparisons[k]);
     }
     return temperature_remarks(calibration) && is_good;
 }

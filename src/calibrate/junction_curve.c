@@ -1,6 +1,7 @@
 /* junction_curve.c: what a diode or bipolar model says to a row of readings. */
 #include "calibrate/junction_curve.h"
 
+#include <assert.h>
 #include <math.h>
 #include <string.h>
 
@@ -122,7 +123,8 @@ void junction_currents(const struct junction *junction, const struct measured_ro
     long double outer[JUNCTION_TERMINALS], f[JUNCTION_TERMINALS];
     long double jac[JUNCTION_TERMINALS * JUNCTION_TERMINALS];
     long double polarity = polarity_of(junction);
-    int n = junction->type->terminal_count;
+    const int n = junction->type->terminal_count;
+    assert(n >= 2 && n <= JUNCTION_TERMINALS);
     find_outer(junction, row, outer);
     for (int step = 0; step < STEP_LIMIT; step++) {
         long double change[JUNCTION_TERMINALS], size = 0;

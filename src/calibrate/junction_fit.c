@@ -322,16 +322,16 @@ void junction_compare(const struct calibration *calibration, const struct calibr
         junction_begin(&junction, row, inner);
         junction_currents(&junction, row, inner, &main, &base);
         if (fabs(measured) > floor) {
-            figure_add(&figures->id[FIGURES_SATURATION], (double)main / measured - 1);
+            misfit_add(&figures->id[FIGURES_SATURATION], (double)main / measured - 1);
         }
         if (!is_forced && ib > floor) {
-            figure_add(&figures->ib, (double)base / ib - 1);
+            misfit_add(&figures->ib, (double)base / ib - 1);
         }
     }
     for (int k = 0; k < FIGURES_REGIONS; k++) {
-        figure_finish(&figures->id[k]);
+        misfit_finish(&figures->id[k]);
     }
-    figure_finish(&figures->gm);
-    figure_finish(&figures->gds);
-    figure_finish(&figures->ib);
+    misfit_finish(&figures->gm);
+    misfit_finish(&figures->gds);
+    misfit_finish(&figures->ib);
 }

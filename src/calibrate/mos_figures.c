@@ -76,13 +76,13 @@ static void judge_currents(struct judge *judge, struct device_figures *figures)
                                         : row->value[COLUMN_VDS] > saturation_drain
                                             ? FIGURES_SATURATION
                                             : FIGURES_TRIODE;
-        figure_add(&figures->id[region], current(judge, row) / row->value[COLUMN_ID] - 1);
+        misfit_add(&figures->id[region], current(judge, row) / row->value[COLUMN_ID] - 1);
     }
 }
 
 /* Transconductance between the neighbours of a reading, from both the same way. */
 static void judge_gate_sweep(struct judge *judge, const struct measured_sweep *sweep,
-                             struct figure *figure)
+                             struct misfit *figure)
 {
     const struct measured_row *rows = judge->device->data.rows + sweep->first;
     for (int k = 1; k + 1 < sweep->count; k++) {
@@ -93,7 +93,7 @@ static void judge_gate_sweep(struct judge *judge, const struct measured_sweep *s
         double measured = rows[k + 1].value[COLUMN_ID] - rows[k - 1].value[COLUMN_ID];
         double found = current(judge, &rows[k + 1]) - current(judge, &rows[k - 1]);
         if (measured > 0) {
-            figure_add(figure, found / measured - 1);
+            misfit_add(figure, found / measured - 1);
         }
     }
 }
@@ -111,7 +111,7 @@ static bool is_saturated(struct judge *judge, const struct measured_row *row)
 /* Slope of the saturated part of a drain sweep: a straight line through the readings and one
  * through the model at the same voltages. */
 static void judge_drain_sweep(struct judge *judge, const struct measured_sweep *sweep,
-                              struct figure *figure)
+                              struct misfit *figure)
 {
     const struct measured_row *rows = judge->device->data.rows + sweep->first;
     double n = 0, sx = 0, sxx = 0, sy = 0, sxy = 0, syy = 0, sm = 0, sxm = 0;
@@ -139,7 +139,7 @@ static void judge_drain_sweep(struct judge *judge, const struct measured_sweep *
     double rest = fmax(syy - sy * sy / n - slope * slope * spread, 0);
     double error = sqrt(rest / (n - 2) / spread);
     if (slope > 0 && error < slope_error * slope) {
-        figure_add(figure, found / slope - 1);
+        misfit_add(figure, found / slope - 1);
     }
 }
 
@@ -162,11 +162,11 @@ void mos_compare(const struct calibration *calibration, const struct calibrated_
         }
     }
     for (int k = 0; k < FIGURES_REGIONS; k++) {
-        figure_finish(&figures->id[k]);
+        misfit_finish(&figures->id[k]);
     }
-    figure_finish(&figures->gm);
-    figure_finish(&figures->gds);
-    figure_finish(&figures->ib);
+    misfit_finish(&figures->gm);
+    misfit_finish(&figures->gds);
+    misfit_finish(&figures->ib);
 }
 
 /* The gate sweep with the most drain voltage, then the least body voltage; NULL: none. */

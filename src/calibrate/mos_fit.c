@@ -128,7 +128,7 @@ static void evaluate_part(const struct problem *it, const struct part *part, int
         }
         double id = mos_gradient(prepared, row->value[COLUMN_VGS], row->value[COLUMN_VDS],
                                  voltage(row, COLUMN_VSB), gradient);
-        size_t place = (size_t)(part->first + k);
+        size_t place = (size_t)part->first + (size_t)k;
         if (residuals != NULL) {
             residuals[place] = weight * (id - row->value[COLUMN_ID]);
         }
@@ -155,9 +155,9 @@ static void evaluate_pairs(const struct problem *it, const struct part *part, do
         const struct pair *pair = &part->pairs[k];
         double to = pair->weight / part->rows[pair->to].weight;
         double from = pair->weight / part->rows[pair->from].weight;
-        size_t place = (size_t)(part->first + part->row_count + k);
-        size_t place_to = (size_t)(part->first + pair->to);
-        size_t place_from = (size_t)(part->first + pair->from);
+        size_t place = (size_t)part->first + (size_t)part->row_count + (size_t)k;
+        size_t place_to = (size_t)part->first + (size_t)pair->to;
+        size_t place_from = (size_t)part->first + (size_t)pair->from;
         if (residuals != NULL) {
             residuals[place] = to * residuals[place_to] - from * residuals[place_from];
         }
@@ -173,6 +173,34 @@ static double offset_weight(const struct part *part)
     const struct measured *data = &part->device->data;
     double area = data->width * data->length * data->multiplicity;
     return offset_factor / hypot(offset_layout, offset_area / sqrt(area));
+}
+
+/* Residuals of usual values; those of values that are not free are 0. */
+static void evaluate_usual(const struct fitting *fitting, size_t first, double *residuals,
+                           double *jacobian)
+{
+    for (int u = 0; u < mos_usual_count; u++) {
+        const struct usual *usual = &mos_usual[u];
+        size_t place = first + (size_t)u;
+        if (residuals != NULL) {
+            residuals[place] = 0;
+        }
+        for (int j = 0; j < fitting->free_count; j++) {
+            if (strcmp(fitting->sought[fitting->free_rows[j]].name, usual->name) != 0) {
+                continue;
+            }
+            double value = fitting->model[fitting->free_values[j]];
+            double weight = offset_factor / usual->spread;
+            double away = usual->logarithmic ? log(value / usual->value) : value - usual->value;
+            if (residuals != NULL) {
+                residuals[place] = weight * away;
+            }
+            if (jacobian != NULL) {
+                jacobian[place + (size_t)fitting->residual_count * (size_t)j] =
+                    usual->logarithmic ? weight / value : weight;
+            }
+        }
+    }
 }
 
 static void evaluate(struct fitting *fitting, const double *offsets, double *residuals,
@@ -201,6 +229,10 @@ static void evaluate(struct fitting *fitting, const double *offsets, double *res
         if (jacobian != NULL) {
             jacobian[place + m * (size_t)(fitting->free_count + p)] = offset_weight(part);
         }
+    }
+    if (fitting->offset_count > 0) {
+        size_t first = m - (size_t)(fitting->offset_count + mos_usual_count);
+        evaluate_usual(fitting, first, residuals, jacobian);
     }
 }
 
@@ -292,6 +324,22 @@ static bool make_parts(struct calibration *calibration, struct problem *it, cons
     return true;
 }
 
+/* Lengths that differ by a tenth and more. */
+static int count_lengths(const struct calibration *calibration, const int *list, int count)
+{
+    int found = 0;
+    for (int p = 0; p < count; p++) {
+        bool is_known = false;
+        for (int q = 0; q < p; q++) {
+            double ratio = calibration->devices[list[p]].data.length /
+                           calibration->devices[list[q]].data.length;
+            is_known |= ratio > 1 / 1.1 && ratio < 1.1;
+        }
+        found += is_known ? 0 : 1;
+    }
+    return found;
+}
+
 /* What the devices together can tell: sum of enum need. */
 static unsigned find_abilities(const struct calibration *calibration, const struct fit *fit,
                                const int *list, int count)
@@ -314,6 +362,7 @@ static unsigned find_abilities(const struct calibration *calibration, const stru
         found |= facts->has_drain_sweep ? NEED_DRAIN : 0;
     }
     found |= lengths[1] > 1.5 * lengths[0] ? NEED_LENGTHS : 0;
+    found |= count_lengths(calibration, list, count) >= 4 ? NEED_SHAPE : 0;
     found |= widths[1] > 1.5 * widths[0] ? NEED_WIDTHS : 0;
     found |= lengths[0] < 0.3e-6 && lengths[1] > 0.3e-6 ? NEED_SHORT : 0;
     found |= kelvins[1] - kelvins[0] > 10 ? NEED_TEMPERATURES : 0;
@@ -345,7 +394,7 @@ static void set_starts(struct problem *it, const struct fit *fit)
     fitting_start(&it->base, "early", fmin(fmax(exp(early), 0.2), 500));
 }
 
-/* Widths stay positive, and a halo leaves a body effect. */
+/* Widths and slopes stay positive. */
 static void narrow_ranges(struct problem *it)
 {
     for (int k = 0; k < it->base.sought_count; k++) {
@@ -354,8 +403,8 @@ static void narrow_ranges(struct problem *it)
             const struct measured *data = &it->parts[p].device->data;
             if (strcmp(it->base.sought[k].name, "width_offset") == 0) {
                 range->most = fmin(range->most, 0.5 * data->width);
-            } else if (strcmp(it->base.sought[k].name, "halo_body") == 0) {
-                range->most = fmin(range->most, 0.9 / sqrt(1e-6 / data->length));
+            } else if (strcmp(it->base.sought[k].name, "narrow_slope") == 0) {
+                range->least = fmax(range->least, -0.5 * data->width / 1e-6);
             }
         }
     }
@@ -380,7 +429,7 @@ enum status mos_fit(struct calibration *calibration, const struct calibration_re
                        find_abilities(calibration, fit, list, count))) {
         return STATUS_MEMORY;
     }
-    it->base.residual_count += it->base.offset_count;
+    it->base.residual_count += fit->is_set ? count + mos_usual_count : 0;
     if (!fit->is_set) { /* the Early voltage of a card is that of its own length */
         it->base.model[fitting_place(fit->type, "early_exponent")] = 0;
     }

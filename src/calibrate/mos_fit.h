@@ -9,6 +9,16 @@
 extern const struct sought mos_sought[];
 extern const int mos_sought_count;
 
+/* A value of a set that stays near a usual one where the data leave it open. */
+struct usual {
+    const char *name;
+    double value, spread; /* spread of the logarithm where logarithmic */
+    bool logarithmic;
+};
+
+extern const struct usual mos_usual[];
+extern const int mos_usual_count;
+
 /* The facts of one device; false when its readings do not cross the threshold, or memory is
  * short. */
 bool mos_find_facts(struct arena *arena, const struct measured *data,

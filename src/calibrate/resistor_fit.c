@@ -1,6 +1,7 @@
 /* resistor_fit.c: a straight line through the readings of a resistor, and its temperature law. */
 #include "calibrate/junction_fit.h"
 
+#include <assert.h>
 #include <math.h>
 #include <string.h>
 
@@ -32,6 +33,7 @@ static void evaluate(void *self, const double *p, double *residuals, double *jac
         if (row->is_left_out) {
             weight = 0;
         }
+        assert(it->unknowns <= UNKNOWNS);
         if (residuals != NULL) {
             residuals[k] = weight * (found - i);
         }

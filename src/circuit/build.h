@@ -97,6 +97,10 @@ int build_hidden_node(struct builder *builder, const char *part, const char *ter
 struct instance *build_instance(struct builder *builder, const char *name,
                                 const struct device_type *type, struct span where);
 
+/* The same without values: own and given are the caller's to set. */
+struct instance *build_bare_instance(struct builder *builder, const char *name,
+                                     const struct device_type *type, struct span where);
+
 /* Gives an instance its unknowns: nodes at its outer terminals, nodes that it sees itself (behind
  * series resistances), and nodes that a law reads. False when memory is short. */
 bool build_join(struct builder *builder, struct instance *instance, const int *outer,

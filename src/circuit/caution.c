@@ -78,22 +78,30 @@ static bool is_quiet(const struct circuit *circuit, const char *code, const char
     return false;
 }
 
+bool caution_append(struct caution_list *list, const struct caution *caution, bool is_silenced)
+{
+    struct caution **rows = is_silenced ? &list->silenced : &list->list;
+    int *count = is_silenced ? &list->silenced_count : &list->count;
+    int *capacity = is_silenced ? &list->silenced_capacity : &list->capacity;
+    struct caution *grown = arena_grow(list->arena, *rows, *count, capacity, sizeof *grown);
+    if (grown == NULL) {
+        return false;
+    }
+    *rows = grown;
+    grown[(*count)++] = *caution;
+    return true;
+}
+
 bool caution_add(const struct circuit *circuit, struct caution_list *list, enum caution_code code,
                  const char *thing, int line, const char *format, ...)
 {
-    if (is_quiet(circuit, table[code].name, thing)) {
-        return true;
-    }
-    struct caution *grown =
-        arena_grow(list->arena, list->list, list->count, &list->capacity, sizeof *grown);
     va_list arguments;
     va_start(arguments, format);
     const char *text = arena_format_list(list->arena, format, arguments);
     va_end(arguments);
-    if (grown == NULL || text == NULL) {
+    if (text == NULL) {
         return false;
     }
-    list->list = grown;
-    grown[list->count++] = (struct caution){table[code].name, thing, text, table[code].rule, line};
-    return true;
+    const struct caution caution = {table[code].name, thing, text, table[code].rule, line};
+    return caution_append(list, &caution, is_quiet(circuit, table[code].name, thing));
 }

@@ -46,13 +46,17 @@ struct caution_list {
     struct arena *arena;
     struct caution *list;
     int count, capacity;
+    struct caution *silenced; /* by `quiet` lines, on record */
+    int silenced_count, silenced_capacity;
 };
 
 /* The code as written in a cell, and its rule (NULL: none). */
 const char *caution_name(enum caution_code code);
 const char *caution_rule(enum caution_code code);
 
-/* Adds a caution unless a `quiet` line of the circuit silences it. False when memory is short. */
+/* Adds a caution, to the silenced ones where a `quiet` line of the circuit says so. False when
+ * memory is short. */
+bool caution_append(struct caution_list *list, const struct caution *caution, bool is_silenced);
 bool caution_add(const struct circuit *circuit, struct caution_list *list, enum caution_code code,
                  const char *thing, int line, const char *format, ...)
     __attribute__((format(printf, 6, 7)));

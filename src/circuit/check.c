@@ -378,6 +378,7 @@ static bool check_case(struct builder *b)
             return false;
         }
     }
+    arena_give_back(b->arena, list);
     return true;
 }
 
@@ -394,5 +395,7 @@ bool build_checks(struct builder *b)
     check_lonely(b, touches);
     check_paths(b, parent, touches);
     check_loops(b, parent);
+    arena_give_back(b->arena, touches);
+    arena_give_back(b->arena, parent);
     return check_case(b);
 }

@@ -3,7 +3,21 @@
  */
 #include "circuit/build.h"
 
+#include <stdio.h>
 #include <string.h>
+
+/* Room for one more node. */
+static bool grow_nodes(struct builder *b)
+{
+    struct circuit *c = b->circuit;
+    struct node *list =
+        arena_grow(b->arena, c->nodes, c->node_count, &c->node_capacity, sizeof *list);
+    if (list != NULL && list != c->nodes) {
+        arena_give_back(b->arena, c->nodes);
+        c->nodes = list;
+    }
+    return list != NULL;
+}
 
 int build_node(const struct frame *frame, const char *name, struct span where)
 {
@@ -17,39 +31,38 @@ int build_node(const struct frame *frame, const char *name, struct span where)
             return frame->pin_nodes[k];
         }
     }
-    const char *full =
-        frame->prefix[0] == '\0' ? name : arena_format(b->arena, "%s%s", frame->prefix, name);
-    int index = full == NULL ? -1 : names_find(c->names, NAME_NODE, full);
+    char text[256]; /* a node is mentioned more often than made */
+    const char *full = name;
+    if (frame->prefix[0] != '\0') {
+        const int length = snprintf(text, sizeof text, "%s%s", frame->prefix, name);
+        const bool fits = length >= 0 && (size_t)length < sizeof text;
+        full = fits ? text : arena_format(b->arena, "%s%s", frame->prefix, name);
+    }
+    const int index = full == NULL ? -1 : names_find(c->names, NAME_NODE, full);
     if (full == NULL || index >= 0) {
         return index;
     }
-    struct node *list =
-        arena_grow(b->arena, c->nodes, c->node_count, &c->node_capacity, sizeof *list);
-    if (list == NULL || !names_add(c->names, NAME_NODE, full, c->node_count)) {
+    full = full == text ? arena_copy(b->arena, text, strlen(text)) : full;
+    if (full == NULL || !grow_nodes(b) || !names_add(c->names, NAME_NODE, full, c->node_count)) {
         return -1;
     }
-    c->nodes = list;
-    index = c->node_count++;
-    list[index] = (struct node){.name = full, .where = where};
-    return index;
+    c->nodes[c->node_count] = (struct node){.name = full, .where = where};
+    return c->node_count++;
 }
 
 int build_hidden_node(struct builder *b, const char *part, const char *terminal, struct span where)
 {
     struct circuit *c = b->circuit;
-    struct node *list =
-        arena_grow(b->arena, c->nodes, c->node_count, &c->node_capacity, sizeof *list);
     const char *name = arena_format(b->arena, "%s.%s (inner)", part, terminal);
-    if (list == NULL || name == NULL) {
+    if (name == NULL || !grow_nodes(b)) {
         return -1;
     }
-    c->nodes = list;
-    list[c->node_count] = (struct node){.name = name, .where = where, .is_hidden = true};
+    c->nodes[c->node_count] = (struct node){.name = name, .where = where, .is_hidden = true};
     return c->node_count++;
 }
 
-struct instance *build_instance(struct builder *b, const char *name, const struct device_type *type,
-                                struct span where)
+struct instance *build_bare_instance(struct builder *b, const char *name,
+                                     const struct device_type *type, struct span where)
 {
     struct circuit *c = b->circuit;
     struct instance *list =
@@ -57,9 +70,22 @@ struct instance *build_instance(struct builder *b, const char *name, const struc
     if (list == NULL) {
         return NULL;
     }
+    if (list != c->instances) {
+        arena_give_back(b->arena, c->instances);
+    }
     c->instances = list;
     struct instance *instance = &list[c->instance_count++];
     *instance = (struct instance){.name = name, .type = type, .parent = -1, .where = where};
+    return instance;
+}
+
+struct instance *build_instance(struct builder *b, const char *name, const struct device_type *type,
+                                struct span where)
+{
+    struct instance *instance = build_bare_instance(b, name, type, where);
+    if (instance == NULL) {
+        return NULL;
+    }
     instance->own = arena_new_array(b->arena, double, type->parameter_count);
     instance->given = arena_new_array(b->arena, bool, type->parameter_count);
     if (instance->own == NULL || instance->given == NULL) {

@@ -77,6 +77,7 @@ static bool widen(struct names *names)
             *place(slots, size, old->sort, old->name) = *old;
         }
     }
+    arena_give_back(names->arena, names->slots);
     names->slots = slots;
     names->size = size;
     return true;
@@ -92,6 +93,9 @@ bool names_add(struct names *names, enum name_sort sort, const char *name, int i
         arena_grow(names->arena, order->list, order->count, &order->capacity, sizeof *list);
     if (list == NULL) {
         return false;
+    }
+    if (list != order->list) {
+        arena_give_back(names->arena, order->list);
     }
     order->list = list;
     list[order->count++] = name;

@@ -409,9 +409,8 @@ static bool add_series(struct builder *b, const struct part *part, const double 
         const struct series_row *row = &type->series[k];
         const int p = parameter_find(type->model_parameters, type->model_parameter_count,
                                      row->model_parameter);
-        /* NOLINTNEXTLINE(clang-analyzer-core.NullDereference): types with series rows have models
-         */
-        if (!(model[p] > 0)) {
+        /* types with series rows have models */
+        if (!(model[p] > 0)) { /* NOLINT(clang-analyzer-core.NullDereference) */
             continue;
         }
         const char *terminal = type->terminals[row->terminal].name;
@@ -503,13 +502,13 @@ static bool make_instance(struct part *part)
         return true;
     }
     struct instance *instance =
-        build_instance(b, part->name, part->type, part->statement->name.span);
+        build_bare_instance(b, part->name, part->type, part->statement->name.span);
     if (instance == NULL) {
         return false;
     }
     const int index = c->instance_count - 1;
-    memcpy(instance->own, part->own, (size_t)part->type->parameter_count * sizeof *part->own);
-    memcpy(instance->given, part->given, (size_t)part->type->parameter_count);
+    instance->own = part->own;
+    instance->given = part->given;
     instance->model = part->model;
     instance->model_values = model;
     instance->extra = extra;
@@ -533,11 +532,11 @@ bool build_part(const struct frame *frame, const struct statement *statement)
                     ? statement->name.text
                     : arena_format(b->arena, "%s%s", frame->prefix, statement->name.text);
     part.own = arena_new_array(b->arena, double, type->parameter_count);
-    part.given = arena_new_array(b->arena, bool, type->parameter_count);
-    part.wrong = arena_new_array(b->arena, bool, type->parameter_count);
-    if (part.name == NULL || part.own == NULL || part.given == NULL || part.wrong == NULL) {
+    part.given = arena_new_array(b->arena, bool, 2 * type->parameter_count);
+    if (part.name == NULL || part.own == NULL || part.given == NULL) {
         return false;
     }
+    part.wrong = part.given + type->parameter_count;
     for (int p = 0; p < type->parameter_count; p++) {
         const struct parameter *row = &type->parameters[p];
         part.own[p] = row->when_absent == DEFAULT_NONE ? PARAMETER_NONE : row->standard;

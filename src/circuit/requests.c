@@ -3,6 +3,7 @@
  */
 #include "circuit/build.h"
 
+#include <assert.h>
 #include <math.h>
 #include <stdio.h>
 #include <string.h>
@@ -168,6 +169,7 @@ static bool in_range(struct builder *b, const struct knob *knob, double value, s
 static bool read_range(struct builder *b, const struct knob *knob,
                        const struct statement *statement, double *from, double *to)
 {
+    assert(statement->from != NULL && statement->to != NULL); /* only `process` goes without */
     if (!read_knob(b, knob, statement->from, from) || !read_knob(b, knob, statement->to, to)) {
         return false;
     }

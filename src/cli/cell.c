@@ -9,31 +9,19 @@
 
 #include "cli/live.h"
 #include "cli/output.h"
+#include "cli/parts.h"
 #include "cli/picture.h"
 #include "cli/terminal.h"
 
-/* The picture in the form that the ending of the path asks for. */
 static bool deliver_plot(const char *path, struct ampstead_result *result)
 {
     const char *svg = ampstead_result_plot(result);
     if (svg == NULL && ampstead_result_status(result) != AMPSTEAD_MACHINE) {
-        fprintf(stderr, "ampstead: %s: nothing to draw: no output and no sweep has a curve\n",
+        fprintf(stderr, "ampstead: %s: nothing to draw: the result holds no curve and no bars\n",
                 path);
         return true;
     }
-    if (svg == NULL || picture_form(path) == PICTURE_SVG) {
-        return output_deliver(path, svg);
-    }
-    struct picture picture = {NULL, 0, 0};
-    const char *trouble = picture_make(svg, picture_form(path), &picture);
-    bool is_written = false;
-    if (trouble != NULL) {
-        fprintf(stderr, "ampstead: %s: %s\n", path, trouble);
-    } else {
-        is_written = output_file(path, picture.data, picture.length);
-    }
-    picture_free(&picture);
-    return is_written;
+    return picture_deliver(path, svg);
 }
 
 /* No copy of the cell: there is no solution, this rounding rounds nothing here, or a message says
@@ -143,28 +131,34 @@ static bool read_number(const struct options *options, enum option option, unsig
 }
 
 /* The numbers of the request; false after a message. */
-static bool read_numbers(const struct options *options, struct ampstead_request *request)
+static bool read_numbers(const struct options *options, struct ampstead_request *request,
+                         unsigned *limit)
 {
     enum { JOB_LIMIT = 256 };
+    unsigned long long seconds = TIME_LIMIT;
     unsigned long long boxes = (unsigned long long)request->boxes;
     unsigned long long samples = AMPSTEAD_SAMPLES, jobs = 0, seed = request->seed;
     if (!read_number(options, OPTION_BOXES, LONG_MAX, &boxes) ||
         !read_number(options, OPTION_SAMPLES, AMPSTEAD_SAMPLE_LIMIT, &samples) ||
         !read_number(options, OPTION_SEED, INT64_MAX, &seed) ||
-        !read_number(options, OPTION_JOBS, JOB_LIMIT, &jobs)) {
+        !read_number(options, OPTION_JOBS, JOB_LIMIT, &jobs) ||
+        !read_number(options, OPTION_TIME_LIMIT, TIME_LIMIT_LONGEST, &seconds)) {
         return false;
     }
     request->boxes = (long)boxes;
     request->samples = (int)samples;
     request->seed = seed;
     request->jobs = (int)jobs;
+    *limit = (unsigned)seconds;
     return true;
 }
 
 bool cell_check(const struct options *options)
 {
     struct ampstead_request request = AMPSTEAD_REQUEST;
-    if (!check_streams(options) || !read_numbers(options, &request)) {
+    unsigned limit = 0;
+    if (!check_streams(options) || !part_files_check(options) ||
+        !read_numbers(options, &request, &limit)) {
         return false;
     }
     if (options->given[OPTION_PLOT]) {
@@ -214,8 +208,17 @@ int cell_request(const struct options *options, const volatile sig_atomic_t *sto
     struct terminal_run run;
     struct ampstead_request request = AMPSTEAD_REQUEST;
     const char *view = options->values[OPTION_VIEW];
-    (void)read_numbers(options, &request); /* were checked before */
-    terminal_begin(&run, stop);
+    struct ampstead_part *parts = NULL;
+    int status = AMPSTEAD_WELL;
+    unsigned limit = 0;
+    (void)read_numbers(options, &request, &limit); /* were checked before */
+    if (options->verb == VERB_MERGE) {
+        parts = part_files_read(options, &status);
+        if (parts == NULL) {
+            return status;
+        }
+    }
+    terminal_begin(&run, stop, limit);
     request.command = verb_rows[options->verb].word;
     request.path = options->file;
     request.view =
@@ -227,14 +230,20 @@ int cell_request(const struct options *options, const volatile sig_atomic_t *sto
     request.sweep = options->values[OPTION_SWEEP];
     request.certify = options->given[OPTION_CERTIFY];
     request.leakage = options->values[OPTION_LEAKAGE];
+    request.whole = options->given[OPTION_PAGE] && !options->given[OPTION_WATCH];
     request.of = options->values[OPTION_OF];
     request.grid = options->values[OPTION_GRID];
     request.stopped = terminal_stopped;
     request.stopped_self = &run;
     request.progress = terminal_progress;
     request.progress_self = &run;
-    int status = (int)ampstead_run(&request, result);
+    request.part = options->values[OPTION_PART];
+    request.lanes = options->given[OPTION_LANES] ? options->values[OPTION_LANES][0] - '0' : 0;
+    request.parts = parts;
+    request.part_count = options->word_count - 1;
+    status = (int)ampstead_run(&request, result);
     terminal_end(&run);
+    part_files_free(parts, request.part_count);
     return status;
 }
 
@@ -256,15 +265,19 @@ int cell_run(const struct options *options, const volatile sig_atomic_t *stop)
         ampstead_result_free(result);
         return status;
     }
-    fputs(ampstead_result_messages(result,
-                                   terminal_color(options, STDERR_FILENO) ? AMPSTEAD_COLOR : 0),
-          stderr);
+    if (result != NULL || status == AMPSTEAD_MACHINE) {
+        fputs(ampstead_result_messages(result,
+                                       terminal_color(options, STDERR_FILENO) ? AMPSTEAD_COLOR : 0),
+              stderr);
+    }
     if (status == AMPSTEAD_UNSOLVED) {
         fprintf(stderr, "ampstead: %s: no operating point was found\n", options->file);
     } else if (status == AMPSTEAD_STOPPED) {
         fputs("ampstead: stopped\n", stderr);
     }
-    if (cell_has_results(status)) {
+    if (status == AMPSTEAD_WELL && options->given[OPTION_PART]) {
+        status = parts_deliver(options, result);
+    } else if (cell_has_results(status) && !options->given[OPTION_PART]) {
         status = cell_deliver(options, result, 0);
     }
     ampstead_result_free(result);

@@ -9,6 +9,7 @@
 #include <unistd.h>
 
 #include "cli/output.h"
+#include "cli/picture.h"
 #include "cli/terminal.h"
 #include "library/ampstead.h"
 
@@ -35,16 +36,32 @@ static int read_curves(const char *const *words, int count, bool is_held,
     return found;
 }
 
-/* Never overwrites without --force. */
+/* A picture of a known form; nothing is overwritten without --force. */
 static bool check_target(const struct options *options)
 {
     const char *path = options->values[OPTION_WRITE];
+    const char *plot = options->values[OPTION_PLOT];
+    const char *trouble = plot == NULL ? NULL : picture_refused(plot);
+    if (trouble != NULL) {
+        fprintf(stderr, "ampstead: '%s' %s\n", plot, trouble);
+        return false;
+    }
     if (path == NULL || output_is_stdout(path) || options->given[OPTION_FORCE] ||
         access(path, F_OK) != 0) {
         return true;
     }
     fprintf(stderr, "ampstead: '%s' exists; --force replaces it\n", path);
     return false;
+}
+
+static bool deliver_plot(const char *path, struct ampstead_calibration *calibration)
+{
+    const char *svg = ampstead_calibration_plot(calibration);
+    if (svg == NULL && ampstead_calibration_text(calibration, 0, 0) != NULL) {
+        fprintf(stderr, "ampstead: %s: nothing to draw: resistors are told in words\n", path);
+        return true;
+    }
+    return picture_deliver(path, svg);
 }
 
 static bool deliver_calibration(const struct options *options,
@@ -60,6 +77,9 @@ static bool deliver_calibration(const struct options *options,
         const char *path = options->values[OPTION_JSON];
         wants_text = wants_text && !output_is_stdout(path);
         is_written = output_deliver(path, ampstead_calibration_json(calibration)) && is_written;
+    }
+    if (options->given[OPTION_PLOT]) {
+        is_written = deliver_plot(options->values[OPTION_PLOT], calibration) && is_written;
     }
     if (wants_text) {
         const char *text =
@@ -81,7 +101,7 @@ static int run_calibration(const struct options *options, struct ampstead_curves
     if (held < 0 || !check_target(options)) {
         return AMPSTEAD_INPUT;
     }
-    terminal_begin(&run, stop);
+    terminal_begin(&run, stop, 0);
     request.files = files;
     request.file_count = fitted + held;
     request.kind = options->values[OPTION_KIND];

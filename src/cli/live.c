@@ -28,10 +28,10 @@ static const char script[] =
 static char *small_path(const char *path)
 {
     static const char ending[] = ".live.js";
-    char *name = malloc(strlen(path) + sizeof ending);
+    const size_t size = strlen(path) + sizeof ending;
+    char *name = malloc(size);
     if (name != NULL) {
-        strcpy(name, path);
-        strcat(name, ending);
+        snprintf(name, size, "%s%s", path, ending);
     }
     return name;
 }
@@ -47,7 +47,7 @@ static char *with_script(const char *page, int version)
     }
     size_t length = (size_t)(rule - page);
     memcpy(text, page, length);
-    strcpy(text + length, wider);
+    memcpy(text + length, wider, sizeof wider - 1);
     length += sizeof wider - 1;
     rule += sizeof policy - 1;
     memcpy(text + length, rule, (size_t)(end - rule));

@@ -185,7 +185,7 @@ static bool take_word(struct reader *reader, const char *word)
     struct options *options = reader->options;
     int verb = reader->word_count == 0 ? -1 : find_verb(reader->words[0]);
     options->words[options->word_count++] = word;
-    if (reader->word_count == 2 && verb >= 0 && verb_takes_curves((enum verb)verb)) {
+    if (reader->word_count == 2 && verb >= 0 && verb_takes_many((enum verb)verb)) {
         return true;
     }
     if (reader->word_count == 2) {
@@ -213,7 +213,7 @@ static bool settle_words(struct reader *reader)
     }
     FILE *probe = second == NULL ? fopen(first, "rb") : NULL;
     if (probe != NULL) {
-        fclose(probe);
+        (void)fclose(probe); /* only its being there was asked */
         return true;
     }
     if (second != NULL && strpbrk(first, "./-") != NULL) {
@@ -238,9 +238,11 @@ static bool check_together(const struct reader *reader)
         if (options->given[k] && (option_rows[k].verbs & 1u << options->verb) == 0) {
             fprintf(reader->errors, "ampstead: '--%s' does not go with `%s`, only with",
                     option_rows[k].name, verb_rows[options->verb].word);
+            const char *between = "";
             for (int v = 0; v < VERB_COUNT; v++) {
                 if ((option_rows[k].verbs & 1u << v) != 0) {
-                    fprintf(reader->errors, " `%s`", verb_rows[v].word);
+                    fprintf(reader->errors, "%s `%s`", between, verb_rows[v].word);
+                    between = ",";
                 }
             }
             fputs("\n", reader->errors);
@@ -285,8 +287,7 @@ static char *join_command(int argc, char **argv)
     if (text == NULL) {
         return NULL;
     }
-    strcpy(text, "ampstead");
-    char *at = text + strlen(text);
+    char *at = text + snprintf(text, size, "ampstead");
     for (int k = 1; k < argc; k++) {
         bool is_plain = argv[k][0] != '\0' && argv[k][strspn(argv[k], plain)] == '\0';
         *at++ = ' ';

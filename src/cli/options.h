@@ -16,6 +16,7 @@ enum verb {
     VERB_SIZE,
     VERB_SENSITIVITY,
     VERB_SPREAD,
+    VERB_MERGE,
     VERB_STATES,
     VERB_CALIBRATE,
     VERB_MODELS,
@@ -39,6 +40,12 @@ static inline bool verb_takes_curves(enum verb verb)
     return verb == VERB_CALIBRATE;
 }
 
+/* Takes any number of files. */
+static inline bool verb_takes_many(enum verb verb)
+{
+    return verb == VERB_MERGE || verb_takes_curves(verb);
+}
+
 enum option {
     OPTION_SET,
     OPTION_TEMPERATURE,
@@ -51,6 +58,9 @@ enum option {
     OPTION_SAMPLES,
     OPTION_SEED,
     OPTION_JOBS,
+    OPTION_TIME_LIMIT,
+    OPTION_LANES,
+    OPTION_PART,
     OPTION_OF,
     OPTION_GRID,
     OPTION_WRITE,

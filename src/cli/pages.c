@@ -190,13 +190,26 @@ static void put_zsh(const char *text)
     }
 }
 
-static void put_zsh_option(const struct option_row *row)
+/* One line of the list that _arguments reads, under the verbs that take the option. */
+static void put_zsh_option(enum option option)
 {
-    const char *end = row->argument == ARGUMENT_NONE ? "" : "=";
+    const struct option_row *row = &option_rows[option];
+    /* an argument that may be left out must stand in the same word */
+    const char *end = row->argument == ARGUMENT_NONE       ? ""
+                      : row->argument == ARGUMENT_OPTIONAL ? "=-"
+                                                           : "=";
+    fputs("    [[ \"", stdout);
+    for (int v = 0; v < VERB_COUNT; v++) {
+        if ((row->verbs & 1u << v) != 0) {
+            printf(" %s", verb_rows[v].word);
+        }
+    }
+    fputs(" \" == *\" $verb \"* ]] && options+=(", stdout);
+    const char *often = option == OPTION_SET ? "'*'" : "";
     if (row->letter != 0) {
-        printf("        {-%c,--%s%s}'[", row->letter, row->name, end);
+        printf("%s{-%c,--%s%s}'[", often, row->letter, row->name, end);
     } else {
-        printf("        '--%s%s[", row->name, end);
+        printf("'--%s%s[", row->name, end);
     }
     put_zsh(row->text);
     putchar(']');
@@ -214,25 +227,38 @@ static void put_zsh_option(const struct option_row *row)
             fputs("_files", stdout);
         }
     }
-    fputs("' \\\n", stdout);
+    fputs("')\n", stdout);
 }
 
 static void write_zsh(void)
 {
     fputs("#compdef ampstead\n# zsh completion for ampstead, made from the tables of the program\n"
-          "_ampstead() {\n    local -a verbs options\n    verbs=(\n",
+          "_ampstead_first() {\n    _describe verb verbs\n    _files -g '*.cell(-.)'\n}\n"
+          "_ampstead_files() {\n    case $verb in\n    help) _describe verb verbs ;;\n",
+          stdout);
+    for (int v = 0; v < VERB_COUNT; v++) {
+        if (v != VERB_HELP) {
+            printf("    %s) _files -g '*.(%s)(-.)' ;;\n", verb_rows[v].word,
+                   file_pattern(&verb_rows[v]));
+        }
+    }
+    fputs("    esac\n}\n_ampstead() {\n    local -a verbs options\n    local verb=review word\n"
+          "    verbs=(\n",
           stdout);
     for (int v = 0; v < VERB_COUNT; v++) {
         printf("        '%s:", verb_rows[v].word);
         put_zsh(verb_rows[v].summary);
         fputs("'\n", stdout);
     }
-    fputs("    )\n    _arguments -s -S \\\n", stdout);
+    fputs("    )\n    for word in \"${(@)words[2,CURRENT-1]}\"; do\n"
+          "        if (( ${verbs[(I)$word:*]} )); then\n            verb=$word\n"
+          "            break\n        fi\n    done\n",
+          stdout);
     for (int k = 0; k < OPTION_COUNT; k++) {
-        put_zsh_option(&option_rows[k]);
+        put_zsh_option((enum option)k);
     }
-    fputs("        '1:verb or cell:{ _describe verb verbs; _files -g \"*.cell\" }' \\\n"
-          "        '*:file:_files -g \"*.(cell|process|csv)\"'\n}\n_ampstead \"$@\"\n",
+    fputs("    _arguments -S \"${(@)options}\" '1:verb or cell:_ampstead_first' "
+          "'*:file:_ampstead_files'\n}\n_ampstead \"$@\"\n",
           stdout);
 }
 

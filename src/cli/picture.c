@@ -2,9 +2,12 @@
 #include "cli/picture.h"
 
 #include <dlfcn.h>
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 #include <strings.h>
+
+#include "cli/output.h"
 
 enum picture_form picture_form(const char *path)
 {
@@ -36,6 +39,23 @@ void picture_free(struct picture *picture)
 {
     free(picture->data);
     *picture = (struct picture){NULL, 0, 0};
+}
+
+bool picture_deliver(const char *path, const char *svg)
+{
+    if (svg == NULL || picture_form(path) == PICTURE_SVG) {
+        return output_deliver(path, svg);
+    }
+    struct picture picture = {NULL, 0, 0};
+    const char *trouble = picture_make(svg, picture_form(path), &picture);
+    bool is_written = false;
+    if (trouble != NULL) {
+        fprintf(stderr, "ampstead: %s: %s\n", path, trouble);
+    } else {
+        is_written = output_file(path, picture.data, picture.length);
+    }
+    picture_free(&picture);
+    return is_written;
 }
 
 #ifdef AMPSTEAD_PICTURE_MODULE

@@ -2,6 +2,7 @@
 #ifndef CLI_PICTURE_H
 #define CLI_PICTURE_H
 
+#include <stdbool.h>
 #include <stddef.h>
 
 enum picture_form { PICTURE_SVG, PICTURE_PDF, PICTURE_PNG, PICTURE_UNKNOWN };
@@ -25,5 +26,9 @@ picture_converter picture_convert;
 /* Converts; NULL when it went well, else what went wrong. Free the picture in both cases. */
 const char *picture_make(const char *svg, enum picture_form form, struct picture *picture);
 void picture_free(struct picture *picture);
+
+/* Writes an SVG text to a path in the form that its ending asks for; says what went wrong. NULL is
+ * a text that memory was short for. */
+bool picture_deliver(const char *path, const char *svg);
 
 #endif

@@ -9,15 +9,19 @@ enum {
                    1 << VERB_SENSITIVITY | 1 << VERB_SPREAD | 1 << VERB_STATES,
     CELL_VERBS = RESULT_VERBS | 1 << VERB_EXPLAIN | 1 << VERB_MODELS,
     CALIBRATE = 1 << VERB_CALIBRATE,
-    ALL_VERBS = CELL_VERBS | CALIBRATE | 1 << VERB_CHECK | 1 << VERB_FORMAT | 1 << VERB_HELP
+    ALL_VERBS = CELL_VERBS | CALIBRATE | 1 << VERB_MERGE | 1 << VERB_CHECK | 1 << VERB_FORMAT |
+                1 << VERB_HELP
 };
+
+/* Also an option of `review`, for its --page. */
+#define IN_PAGE(verb) (1 << (verb) | 1 << VERB_REVIEW)
 
 const struct verb_row verb_rows[VERB_COUNT] = {
     [VERB_REVIEW] =
         {"review", "FILE.cell", "does the hand design hold? one page (also without a verb)",
          "Finds the operating point, moves the load of every output over its range, compares\n"
          "the `hand` lines with what was computed, and judges the `require` lines. --csv\n"
-         "writes the curves: columns output,v,current in V and A."},
+         "writes the curves: output, voltage and current, with SI units in the header."},
     [VERB_POINT] =
         {"point", "FILE.cell", "the operating point alone, with every quantity of every device",
          "Finds the operating point and shows all node voltages, rail currents and device\n"
@@ -49,6 +53,12 @@ const struct verb_row verb_rows[VERB_COUNT] = {
          "with its causes, and sampled with the yield of each `require` line. Judges\n"
          "`everywhere` and `for P%`. --csv writes one row a sample: number, state, and each\n"
          "quantity, with SI units in the header."},
+    [VERB_MERGE] =
+        {"merge", "PART...", "joins the parts of a sampled run, as if it had been one",
+         "Takes all files that `spread --part K/N --write FILE` wrote of one run, reads the cell\n"
+         "they name again, and shows what `spread` without --part would have shown, to the last\n"
+         "digit. A part that is missing, there twice, or of another run, cell or version is\n"
+         "refused."},
     [VERB_STATES] =
         {"states", "FILE.cell", "every resting state with proof, and whether the cell starts",
          "Finds all DC states and proves that none was missed; says which cannot be held, where\n"
@@ -76,6 +86,7 @@ const struct verb_row verb_rows[VERB_COUNT] = {
 };
 
 static const char *const view_words[] = {"full", "hand", NULL};
+static const char *const lanes_words[] = {"8", "4", "1", NULL};
 static const char *const round_words[] = {"exact", "E24", "E96", "grid", NULL};
 static const char *const kind_words[] = {"nmos", "pmos", "diode", "resistor", "npn", "pnp", NULL};
 static const char *const form_words[] = {"cards", "set", "both", NULL};
@@ -98,15 +109,27 @@ const struct option_row option_rows[OPTION_COUNT] = {
                         "proves that the point is the only one in a box a few pV wide",
                         1 << VERB_POINT},
     [OPTION_BOXES] = {"boxes", 0, ARGUMENT_NEEDED, "N", NULL, "100000",
-                      "boxes that the proof may look at before it gives up", 1 << VERB_STATES},
+                      "boxes that the proof may look at before it gives up", IN_PAGE(VERB_STATES)},
     [OPTION_LEAKAGE] = {"leakage", 0, ARGUMENT_NEEDED, "I", NULL, "1 nA",
                         "a start-up push below this current is at risk", 1 << VERB_STATES},
     [OPTION_SAMPLES] = {"samples", 'n', ARGUMENT_NEEDED, "N", NULL, "2000",
-                        "mismatch samples, each a full solve; 0 leaves them out", 1 << VERB_SPREAD},
+                        "mismatch samples, each a full solve; 0 leaves them out",
+                        IN_PAGE(VERB_SPREAD)},
     [OPTION_SEED] = {"seed", 0, ARGUMENT_NEEDED, "N", NULL, "1",
-                     "the same seed gives the same samples, however many jobs", 1 << VERB_SPREAD},
+                     "the same seed gives the same samples, however many jobs",
+                     IN_PAGE(VERB_SPREAD)},
     [OPTION_JOBS] = {"jobs", 'j', ARGUMENT_NEEDED, "N", NULL, "one a processor",
-                     "threads for conditions and samples", 1 << VERB_SPREAD | 1 << VERB_REVIEW},
+                     "threads for conditions, samples and sweeps",
+                     1 << VERB_SPREAD | 1 << VERB_MERGE | 1 << VERB_REVIEW | 1 << VERB_SWEEP},
+    [OPTION_TIME_LIMIT] = {"time-limit", 0, ARGUMENT_NEEDED, "SECONDS", NULL, "3600",
+                           "the work stops there and shows what was done; 0: no limit",
+                           RESULT_VERBS | 1 << VERB_MERGE | 1 << VERB_EXPLAIN},
+    [OPTION_LANES] = {"lanes", 0, ARGUMENT_NEEDED, "8|4|1", lanes_words,
+                      "as many as the processor can",
+                      "most samples solved side by side; results differ by rounding only",
+                      1 << VERB_SPREAD},
+    [OPTION_PART] = {"part", 0, ARGUMENT_NEEDED, "K/N", NULL, "all samples",
+                     "part K of N of the samples and nothing else, for `merge`", 1 << VERB_SPREAD},
     [OPTION_OF] = {"of", 0, ARGUMENT_NEEDED, "QUANTITY", NULL, "the current of every output",
                    "such as tail.resistance or M1.vgs", 1 << VERB_SENSITIVITY},
     [OPTION_GRID] = {"grid", 0, ARGUMENT_NEEDED, "LENGTH", NULL, "10 nm",
@@ -115,8 +138,8 @@ const struct option_row option_rows[OPTION_COUNT] = {
         {"write", 'w', ARGUMENT_NEEDED, "FILE", NULL, "off",
          "size: a copy of the cell with the chosen values in place (- is standard output "
          "instead of the text); calibrate: the process file, an existing one only with "
-         "--force",
-         1 << VERB_SIZE | CALIBRATE},
+         "--force; spread: the part",
+         1 << VERB_SIZE | 1 << VERB_SPREAD | CALIBRATE},
     [OPTION_ROUND] = {"round", 0, ARGUMENT_NEEDED, "exact|E24|E96|grid", round_words, "exact",
                       "which values --write puts in place", 1 << VERB_SIZE},
     [OPTION_KIND] = {"kind", 'k', ARGUMENT_NEEDED, "nmos|pmos|diode|resistor|npn|pnp", kind_words,
@@ -150,16 +173,18 @@ const struct option_row option_rows[OPTION_COUNT] = {
                      "writes JSON (SI units) to FILE, or without FILE to standard output instead "
                      "of the text; the next word is FILE only if it ends with .json, else "
                      "write --json=FILE",
-                     CELL_VERBS | CALIBRATE},
+                     CELL_VERBS | 1 << VERB_MERGE | CALIBRATE},
     [OPTION_CSV] = {"csv", 0, ARGUMENT_NEEDED, "FILE", NULL, "off",
                     "writes CSV (SI units) to FILE; - is standard output instead of the text",
-                    1 << VERB_REVIEW | 1 << VERB_SWEEP | 1 << VERB_SPREAD},
+                    1 << VERB_REVIEW | 1 << VERB_SWEEP | 1 << VERB_SPREAD | 1 << VERB_MERGE},
     [OPTION_PLOT] = {"plot", 0, ARGUMENT_NEEDED, "FILE", NULL, "off",
-                     "draws the curves to FILE; its ending says how: .svg, .pdf or .png",
-                     1 << VERB_REVIEW | 1 << VERB_SWEEP},
+                     "draws curves and bars to FILE; its ending says how: .svg, .pdf or .png",
+                     1 << VERB_REVIEW | 1 << VERB_SWEEP | 1 << VERB_STATES | 1 << VERB_SPREAD |
+                         1 << VERB_EXPLAIN | 1 << VERB_SENSITIVITY | CALIBRATE},
     [OPTION_PAGE] = {"page", 0, ARGUMENT_NEEDED, "FILE", NULL, "off",
-                     "writes the whole review as one HTML file that needs nothing else",
-                     1 << VERB_REVIEW},
+                     "writes the result as one HTML file that needs nothing else; of a review also "
+                     "what spread and states find, unless --watch is given",
+                     1 << VERB_REVIEW | 1 << VERB_SPREAD | 1 << VERB_STATES | 1 << VERB_EXPLAIN},
     [OPTION_WATCH] =
         {"watch", 0, ARGUMENT_NONE, NULL, NULL, "off",
          "runs again at every save, until Ctrl-C; errors are shown above the last good "
@@ -178,6 +203,6 @@ const struct status_row status_rows[] = {
     {AMPSTEAD_INPUT, "the input is wrong: language, options, files"},
     {AMPSTEAD_UNSOLVED, "no operating point was found"},
     {AMPSTEAD_MACHINE, "the machine failed: memory, disk"},
-    {AMPSTEAD_STOPPED, "stopped by the user"},
+    {AMPSTEAD_STOPPED, "stopped by the user or by the time limit"},
     {0, NULL},
 };

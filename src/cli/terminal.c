@@ -10,16 +10,46 @@
 
 #include "library/ampstead.h"
 
-void terminal_begin(struct terminal_run *run, const volatile sig_atomic_t *stop)
+/* Only what a signal handler may call; files are replaced as a whole, so none is left half. */
+static void end_now(int signal_number)
 {
-    *run = (struct terminal_run){.stop = stop, .shows_progress = isatty(STDERR_FILENO)};
+    static const char text[] = "\nampstead: the time limit is over, and a step that cannot be "
+                               "interrupted goes on; --time-limit sets another\n";
+    (void)signal_number;
+    const ssize_t written = write(STDERR_FILENO, text, sizeof text - 1);
+    (void)written;
+    _exit(AMPSTEAD_STOPPED);
+}
+
+void terminal_begin(struct terminal_run *run, const volatile sig_atomic_t *stop, unsigned limit)
+{
+    *run = (struct terminal_run){
+        .stop = stop, .shows_progress = isatty(STDERR_FILENO), .limit = limit};
     (void)clock_gettime(CLOCK_MONOTONIC, &run->start);
+    if (limit > 0) {
+        (void)signal(SIGALRM, end_now);
+        (void)alarm(limit + TIME_GRACE);
+    }
+}
+
+/* Seconds since the start; a clock that fails stands still. */
+static double seconds_of(const struct terminal_run *run)
+{
+    struct timespec now;
+    if (clock_gettime(CLOCK_MONOTONIC, &now) != 0) {
+        return 0;
+    }
+    return (double)(now.tv_sec - run->start.tv_sec) +
+           1e-9 * (double)(now.tv_nsec - run->start.tv_nsec);
 }
 
 int terminal_stopped(void *self)
 {
-    const struct terminal_run *run = self;
-    return *run->stop != 0;
+    struct terminal_run *run = self;
+    if (run->limit > 0 && !run->is_over) {
+        run->is_over = seconds_of(run) >= (double)run->limit;
+    }
+    return *run->stop != 0 || run->is_over;
 }
 
 void terminal_progress(void *self, const char *what, double share)
@@ -27,12 +57,10 @@ void terminal_progress(void *self, const char *what, double share)
     static const char full[] = "########################################";
     enum { BAR = sizeof full - 1 };
     struct terminal_run *run = self;
-    struct timespec now;
-    if (!run->shows_progress || clock_gettime(CLOCK_MONOTONIC, &now) != 0) {
+    if (!run->shows_progress) {
         return;
     }
-    double seconds = (double)(now.tv_sec - run->start.tv_sec) +
-                     1e-9 * (double)(now.tv_nsec - run->start.tv_nsec);
+    const double seconds = seconds_of(run);
     if (seconds >= 0.5 && seconds >= run->shown + 0.1) {
         int done = share > 0 ? (int)(share * BAR) : 0;
         fprintf(stderr, "\r[%-*.*s] %3.0f %%  %-28.28s", BAR, done, full, 100.0 * share, what);
@@ -45,6 +73,13 @@ void terminal_end(struct terminal_run *run)
 {
     if (run->has_line) {
         fprintf(stderr, "\r%79s\r", "");
+    }
+    if (run->limit > 0) {
+        (void)alarm(0);
+    }
+    if (run->is_over) {
+        fprintf(stderr, "ampstead: the time limit of %u s is over; --time-limit sets another\n",
+                run->limit);
     }
 }
 

@@ -8,23 +8,36 @@
 
 #include "cli/options.h"
 
+enum {
+    TIME_LIMIT = 3600,             /* s of one run, unless the command line says otherwise */
+    TIME_LIMIT_LONGEST = 10000000, /* s */
+    TIME_GRACE = 10                /* s after the limit: work that does not ask ends there */
+};
+
 /* What the callbacks of a run share. */
 struct terminal_run {
     const volatile sig_atomic_t *stop;
     struct timespec start;
+    unsigned limit;      /* s; 0: none */
+    bool is_over;        /* the limit was met */
     bool shows_progress; /* standard error is a terminal */
     bool has_line;       /* a progress line stands there */
     double shown;        /* s after the start, of the last line */
 };
 
-void terminal_begin(struct terminal_run *run, const volatile sig_atomic_t *stop);
+/*
+ * The work is asked to stop after `limit` seconds (0: never). A step that does not ask in time,
+ * such as the factoring of a huge matrix, is ended with the program TIME_GRACE later, with a
+ * message.
+ */
+void terminal_begin(struct terminal_run *run, const volatile sig_atomic_t *stop, unsigned limit);
 
 /* Callbacks of the library; self is the terminal_run. Progress is shown only once the work has
  * taken half a second, and ten times a second. */
 int terminal_stopped(void *self);
 void terminal_progress(void *self, const char *what, double share);
 
-/* Takes the progress line away. */
+/* Takes the progress line away; says so when the limit was met. */
 void terminal_end(struct terminal_run *run);
 
 /* Whether the file descriptor gets color. */

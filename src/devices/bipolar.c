@@ -267,7 +267,8 @@ static double saturation_sigma(const struct device_values *values)
 }
 
 static const struct deviate deviates[] = {
-    {"saturation current", OWN_SATURATION_SHIFT, saturation_sigma},
+    [BIPOLAR_SATURATION] = {"saturation current", OWN_SATURATION_SHIFT, saturation_sigma,
+                            DEVIATE_SCALES, offsetof(struct bipolar_prepared, saturation)},
 };
 
 #define BIPOLAR_COMMON                                                                             \

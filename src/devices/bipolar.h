@@ -6,6 +6,9 @@
 
 enum { BIPOLAR_C, BIPOLAR_B, BIPOLAR_E, BIPOLAR_TERMINALS };
 
+/* Row of the deviate. */
+enum { BIPOLAR_SATURATION };
+
 /* Currents of the whole area. An effect that is off has its coefficient at 0. */
 struct bipolar_prepared {
     double polarity;                                     /* +1 npn, -1 pnp */

@@ -17,21 +17,18 @@ struct pair {
 
 /* Below this 1 - VBC/V_A - VBE/V_B is near to punch-through: q1 = 1/(...) goes on as its tangent
  * (C1, positive and finite), untouched above. */
-#define CHARGE_LEAST ((real)0.05L)
+#define CHARGE_LEAST (REAL(0.05L))
 
 /* q1 = 1/(1 - VBC/V_A - VBE/V_B) */
 static struct pair early_charge(const struct bipolar_prepared *p, real vbe, real vbc)
 {
-    real a = p->per_early, b = p->per_early_reverse;
+    real a = REAL(p->per_early), b = REAL(p->per_early_reverse);
     real width = 1 - vbc * a - vbe * b;
-    real value, slope; /* of 1/width */
-    if (width >= CHARGE_LEAST) {
-        value = 1 / width;
-        slope = -value * value;
-    } else {
-        value = (2 * CHARGE_LEAST - width) / (CHARGE_LEAST * CHARGE_LEAST);
-        slope = -1 / (CHARGE_LEAST * CHARGE_LEAST);
-    }
+    truth within = width >= CHARGE_LEAST;
+    real inverse = 1 / width;
+    real tangent = (2 * CHARGE_LEAST - width) / (CHARGE_LEAST * CHARGE_LEAST);
+    real value = CHOOSE(within, inverse, tangent);
+    real slope = CHOOSE(within, -inverse * inverse, -1 / (CHARGE_LEAST * CHARGE_LEAST));
     return (struct pair){value, -slope * b, -slope * a};
 }
 
@@ -42,45 +39,46 @@ static struct pair base_charge(const struct bipolar_prepared *p, real vbe, real 
     struct pair q1 = early_charge(p, vbe, vbc);
     real slope;
     /* kept positive should a knee lie below the saturation current; 1e-20 off elsewhere */
-    real inside = smooth_positive(1 + 4 * (IF * (real)p->per_knee + IR * (real)p->per_knee_reverse),
-                                  (real)1e-10L, &slope);
+    real inside = smooth_positive(1 + 4 * (IF * REAL(p->per_knee) + IR * REAL(p->per_knee_reverse)),
+                                  REAL(1e-10L), &slope);
     real root = sqrt(inside);
     real share = (1 + root) / 2;
     real by_current = q1.v * slope / root; /* q1/2 times d sqrt(1 + 4 q2)/d q2 */
-    return (struct pair){q1.v * share, q1.be * share + by_current * IF_slope * (real)p->per_knee,
-                         q1.bc * share + by_current * IR_slope * (real)p->per_knee_reverse};
+    return (struct pair){q1.v * share, q1.be * share + by_current * IF_slope * REAL(p->per_knee),
+                         q1.bc * share + by_current * IR_slope * REAL(p->per_knee_reverse)};
 }
 
 /* coefficient (exp(v/thermal) - 1) */
-static real junction(double coefficient, double thermal, real v, real *conductance)
+static real junction(real coefficient, double thermal, real v, real *conductance)
 {
     real slope;
-    real value = (real)coefficient * limited_expm1(v / (real)thermal, &slope);
-    *conductance = (real)coefficient * slope / (real)thermal;
+    real value = coefficient * limited_expm1(v / REAL(thermal), &slope);
+    *conductance = coefficient * slope / REAL(thermal);
     return value;
 }
 
 void REAL_NAME(bipolar_evaluate)(const void *prepared, const real *x, real *f, real *jac)
 {
     const struct bipolar_prepared *p = prepared;
-    real polarity = p->polarity;
+    real polarity = REAL(p->polarity);
     real vbe = polarity * (x[BIPOLAR_B] - x[BIPOLAR_E]);
     real vbc = polarity * (x[BIPOLAR_B] - x[BIPOLAR_C]);
     real IF_slope, IR_slope, leak_e_slope, leak_c_slope;
-    real IF = junction(p->saturation, p->thermal_f, vbe, &IF_slope);
-    real IR = junction(p->saturation, p->thermal_r, vbc, &IR_slope);
-    real leak_e = junction(p->leak_emitter, p->leak_emitter_thermal, vbe, &leak_e_slope);
-    real leak_c = junction(p->leak_collector, p->leak_collector_thermal, vbc, &leak_c_slope);
+    real saturation = MOVED(p, BIPOLAR_SATURATION, saturation);
+    real IF = junction(saturation, p->thermal_f, vbe, &IF_slope);
+    real IR = junction(saturation, p->thermal_r, vbc, &IR_slope);
+    real leak_e = junction(REAL(p->leak_emitter), p->leak_emitter_thermal, vbe, &leak_e_slope);
+    real leak_c = junction(REAL(p->leak_collector), p->leak_collector_thermal, vbc, &leak_c_slope);
     struct pair qb = base_charge(p, vbe, vbc, IF, IF_slope, IR, IR_slope);
 
     real transport = (IF - IR) / qb.v;
-    real collector_base = IR * (real)p->per_beta_reverse + leak_c;
-    real collector_base_slope = IR_slope * (real)p->per_beta_reverse + leak_c_slope;
+    real collector_base = IR * REAL(p->per_beta_reverse) + leak_c;
+    real collector_base_slope = IR_slope * REAL(p->per_beta_reverse) + leak_c_slope;
     real IC = transport - collector_base;
     real IC_be = (IF_slope - transport * qb.be) / qb.v;
     real IC_bc = (-IR_slope - transport * qb.bc) / qb.v - collector_base_slope;
-    real IB = IF * (real)p->per_beta + leak_e + collector_base;
-    real IB_be = IF_slope * (real)p->per_beta + leak_e_slope;
+    real IB = IF * REAL(p->per_beta) + leak_e + collector_base;
+    real IB_be = IF_slope * REAL(p->per_beta) + leak_e_slope;
     real IB_bc = collector_base_slope;
 
     f[BIPOLAR_C] = polarity * IC;

@@ -125,11 +125,21 @@ enum region {
     REGION_BREAKDOWN = 1 << 8
 };
 
+/* How a shift of a hidden parameter shows in the prepared block. */
+enum deviate_rule {
+    DEVIATE_ADDS,  /* value + shift */
+    DEVIATE_SCALES /* value (1 + shift), and some floor where 1 + shift is below 1e-3 */
+};
+
 /* What a mismatch deviate does: adds sigma * normal to a hidden instance parameter. */
 struct deviate {
     const char *cause; /* "threshold", "gain", "saturation current", "value" */
     int own_parameter; /* index of the hidden instance parameter */
     double (*sigma)(const struct device_values *values);
+    /* The one double of the prepared block that follows it, so that many samples are prepared
+     * without calling prepare; the equations read it through MOVED (real.h). */
+    enum deviate_rule rule;
+    size_t moved;
 };
 
 /* What `extra` points to. */

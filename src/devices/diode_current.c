@@ -15,12 +15,12 @@ void REAL_NAME(diode_evaluate)(const void *prepared, const real *x, real *f, rea
     const struct diode_prepared *p = prepared;
     real v = x[DIODE_A] - x[DIODE_K];
     real slope;
-    real current = (real)p->saturation * limited_expm1(v / (real)p->thermal, &slope);
-    real conductance = (real)p->saturation * slope / (real)p->thermal;
+    real current = REAL(p->saturation) * limited_expm1(v / REAL(p->thermal), &slope);
+    real conductance = REAL(p->saturation) * slope / REAL(p->thermal);
     if (p->breakdown > 0) {
-        real beyond = -((real)p->breakdown_voltage + v) / (real)p->breakdown_thermal;
-        current -= (real)p->breakdown * limited_exp(beyond, &slope);
-        conductance += (real)p->breakdown * slope / (real)p->breakdown_thermal;
+        real beyond = -(REAL(p->breakdown_voltage) + v) / REAL(p->breakdown_thermal);
+        current -= REAL(p->breakdown) * limited_exp(beyond, &slope);
+        conductance += REAL(p->breakdown) * slope / REAL(p->breakdown_thermal);
     }
     f[DIODE_A] = current;
     f[DIODE_K] = -current;

@@ -5,6 +5,7 @@
  */
 #include "devices/law.h"
 
+#include <assert.h>
 #include <stdbool.h>
 
 #include "devices/smooth.h"
@@ -179,9 +180,11 @@ static void run(const struct law_program *program, const real *inputs, struct el
         case LAW_LOG10:
         case LAW_EXP:
         case LAW_ABS:
+            assert(depth >= 1);
             apply_one(step->operation, &stack[depth - 1], count);
             break;
         default:
+            assert(depth >= 2);
             depth--;
             apply_two(step->operation, &stack[depth - 1], &stack[depth], count);
             break;

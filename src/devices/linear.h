@@ -5,6 +5,9 @@
 #ifndef DEVICES_LINEAR_H
 #define DEVICES_LINEAR_H
 
+/* Row of the deviate of a resistor. */
+enum { RESISTOR_VALUE };
+
 /* Terminals of an arrow a -> b, then the branch current of a voltage source. */
 enum { LINEAR_A, LINEAR_B, LINEAR_TERMINALS, LINEAR_BRANCH = LINEAR_TERMINALS };
 

@@ -8,9 +8,10 @@
 void REAL_NAME(resistor_evaluate)(const void *prepared, const real *x, real *f, real *jac)
 {
     const struct linear_prepared *p = prepared;
-    f[LINEAR_A] = (x[LINEAR_A] - x[LINEAR_B]) / (real)p->value;
+    real value = MOVED(p, RESISTOR_VALUE, value);
+    f[LINEAR_A] = (x[LINEAR_A] - x[LINEAR_B]) / value;
     f[LINEAR_B] = -f[LINEAR_A];
-    jac[0] = jac[3] = 1 / (real)p->value;
+    jac[0] = jac[3] = 1 / value;
     jac[1] = jac[2] = -jac[0];
 }
 
@@ -19,10 +20,10 @@ void REAL_NAME(current_evaluate)(const void *prepared, const real *x, real *f, r
 {
     const struct linear_prepared *p = prepared;
     (void)x;
-    f[LINEAR_A] = p->value;
+    f[LINEAR_A] = REAL(p->value);
     f[LINEAR_B] = -f[LINEAR_A];
     for (int k = 0; k < LINEAR_TERMINALS * LINEAR_TERMINALS; k++) {
-        jac[k] = 0;
+        jac[k] = REAL(0);
     }
 }
 
@@ -32,13 +33,13 @@ void REAL_NAME(voltage_evaluate)(const void *prepared, const real *x, real *f, r
     const struct linear_prepared *p = prepared;
     enum { N = LINEAR_TERMINALS + 1 };
     for (int k = 0; k < N * N; k++) {
-        jac[k] = 0;
+        jac[k] = REAL(0);
     }
     f[LINEAR_A] = x[LINEAR_BRANCH];
     f[LINEAR_B] = -x[LINEAR_BRANCH];
-    f[LINEAR_BRANCH] = (x[LINEAR_A] - x[LINEAR_B]) - (real)p->value;
-    jac[N * LINEAR_A + LINEAR_BRANCH] = 1;
-    jac[N * LINEAR_B + LINEAR_BRANCH] = -1;
-    jac[N * LINEAR_BRANCH + LINEAR_A] = 1;
-    jac[N * LINEAR_BRANCH + LINEAR_B] = -1;
+    f[LINEAR_BRANCH] = (x[LINEAR_A] - x[LINEAR_B]) - REAL(p->value);
+    jac[N * LINEAR_A + LINEAR_BRANCH] = REAL(1);
+    jac[N * LINEAR_B + LINEAR_BRANCH] = REAL(-1);
+    jac[N * LINEAR_BRANCH + LINEAR_A] = REAL(1);
+    jac[N * LINEAR_BRANCH + LINEAR_B] = REAL(-1);
 }

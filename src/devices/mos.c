@@ -69,7 +69,11 @@ enum {
     MODEL_WIDTH_OFFSET,
     MODEL_HALO_THRESHOLD,
     MODEL_HALO_BODY,
+    MODEL_HALO_LENGTH,
     MODEL_NARROW_THRESHOLD,
+    MODEL_NARROW_BODY,
+    MODEL_NARROW_SLOPE,
+    MODEL_NARROW_SLOPE_LENGTH,
     MODEL_THRESHOLD_TEMPCO,
     MODEL_MOBILITY_EXPONENT,
     MODEL_JUNCTION_LEAK,
@@ -122,8 +126,16 @@ static const struct parameter model_parameters[] = {
                               false, "threshold rise at 1 um, falls as 1/sqrt(L)"},
     [MODEL_HALO_BODY] = {"halo_body", UNIT_NONE, DEFAULT_VALUE, 0, -INFINITY, INFINITY, false,
                          "relative fall of body effect at 1 um, falls as 1/sqrt(L)"},
+    [MODEL_HALO_LENGTH] = {"halo_length", UNIT_METRE, DEFAULT_NONE, 0, 0, INFINITY, true,
+                           "length beyond which the halo terms fall as 1/L"},
     [MODEL_NARROW_THRESHOLD] = {"narrow_threshold", UNIT_VOLT, DEFAULT_VALUE, 0, -INFINITY,
                                 INFINITY, false, "threshold rise at W = 1 um, falls as 1/W"},
+    [MODEL_NARROW_BODY] = {"narrow_body", UNIT_NONE, DEFAULT_VALUE, 0, -INFINITY, INFINITY, false,
+                           "relative fall of body effect at W = 1 um, falls as 1/W"},
+    [MODEL_NARROW_SLOPE] = {"narrow_slope", UNIT_NONE, DEFAULT_VALUE, 0, -INFINITY, INFINITY, false,
+                            "relative rise of slope_factor at W = 1 um, falls as 1/W"},
+    [MODEL_NARROW_SLOPE_LENGTH] = {"narrow_slope_length", UNIT_METRE, DEFAULT_VALUE, 0, 0, INFINITY,
+                                   false, "length below which narrow_slope fades"},
     [MODEL_THRESHOLD_TEMPCO] = {"threshold_tempco", UNIT_VOLT_PER_KELVIN, DEFAULT_VALUE, -1e-3,
                                 -INFINITY, INFINITY, false, "threshold change per kelvin"},
     [MODEL_MOBILITY_EXPONENT] = {"mobility_exponent", UNIT_NONE, DEFAULT_VALUE, 1.5, -INFINITY,
@@ -192,17 +204,49 @@ static const uint32_t paths[MOS_TERMINALS] = {1, 0, 1, 0};
 struct geometry {
     double length, width; /* m */
     double h;             /* sqrt(1 um/length) */
+    double halo;          /* how halo terms go with length; 0 where they are off */
+    double narrow;        /* 1 um/width; 0 where narrow terms are off */
+    double narrow_slope;  /* how narrow_slope goes with both */
 };
+
+/*
+ * Doping that piles up at both ends of the channel weighs more the shorter it is: as sqrt(1 + P/L)
+ * - 1 (Cheng and others, IEEE Trans. Electron Devices 44 (1997) 277), here over sqrt(P/1 um), so
+ * that without P it is sqrt(1 um/L), which it comes to where L is far below P.
+ */
+static double halo_shape(double length, double pile)
+{
+    double h = sqrt(1e-6 / length);
+    /* (sqrt(1 + P/L) - 1)/sqrt(P/1 um) without cancellation */
+    return isnan(pile) ? h : h / (sqrt(1 + length / pile) + sqrt(length / pile));
+}
 
 static struct geometry geometry_of(const struct device_values *values, bool with_offsets)
 {
-    struct geometry it = {values->own[OWN_L], values->own[OWN_W], 0};
+    const double *model = values->model;
+    struct geometry it = {values->own[OWN_L], values->own[OWN_W], 0, 0, 0, 0};
     if (with_offsets) {
-        it.length -= values->model[MODEL_LENGTH_OFFSET];
-        it.width -= values->model[MODEL_WIDTH_OFFSET];
+        it.length -= model[MODEL_LENGTH_OFFSET];
+        it.width -= model[MODEL_WIDTH_OFFSET];
     }
     it.h = sqrt(1e-6 / it.length);
+    if (with_offsets) {
+        it.halo = halo_shape(it.length, model[MODEL_HALO_LENGTH]);
+        it.narrow = 1e-6 / it.width;
+        it.narrow_slope = it.narrow / (1 + model[MODEL_NARROW_SLOPE_LENGTH] / it.length);
+    }
     return it;
+}
+
+/* What body_effect and slope_factor are multiplied with. */
+static double body_share(const double *model, const struct geometry *it)
+{
+    return 1 - model[MODEL_HALO_BODY] * it->halo - model[MODEL_NARROW_BODY] * it->narrow;
+}
+
+static double slope_share(const double *model, const struct geometry *it)
+{
+    return 1 + model[MODEL_NARROW_SLOPE] * it->narrow_slope;
 }
 
 static const char *check(const struct device_values *values)
@@ -214,8 +258,15 @@ static const char *check(const struct device_values *values)
     if (!(it.width > 0)) {
         return "W must be larger than the width_offset of the model";
     }
-    if (!(values->model[MODEL_HALO_BODY] * it.h <= 1)) {
+    if (!(values->model[MODEL_HALO_BODY] * it.halo <= 1)) {
         return "at this L the halo_body of the model makes its body effect negative";
+    }
+    if (!(body_share(values->model, &it) >= 0)) {
+        return "at this W and L halo_body and narrow_body of the model make its body effect "
+               "negative";
+    }
+    if (!(slope_share(values->model, &it) > 0)) {
+        return "at this W and L the narrow_slope of the model makes its slope_factor negative";
     }
     return NULL;
 }
@@ -226,16 +277,12 @@ static void prepare_threshold(const struct device_values *values, unsigned effec
 {
     const double *model = values->model;
     p->vt = model[MODEL_THRESHOLD] + model[MODEL_THRESHOLD_TEMPCO] * (kelvin - measured) +
-            values->own[OWN_THRESHOLD_SHIFT];
-    if ((effects & EFFECT_GEOMETRY) != 0) {
-        p->vt += model[MODEL_HALO_THRESHOLD] * it->h +
-                 model[MODEL_NARROW_THRESHOLD] * (1e-6 / it->width);
-    }
+            values->own[OWN_THRESHOLD_SHIFT] + model[MODEL_HALO_THRESHOLD] * it->halo +
+            model[MODEL_NARROW_THRESHOLD] * it->narrow;
     p->phi = model[MODEL_PHI];
     p->root_phi = sqrt(p->phi);
     if ((effects & EFFECT_BODY) != 0) {
-        double halo = (effects & EFFECT_GEOMETRY) != 0 ? model[MODEL_HALO_BODY] * it->h : 0;
-        p->g = model[MODEL_BODY_EFFECT] * (1 - halo);
+        p->g = model[MODEL_BODY_EFFECT] * body_share(model, it);
     }
     if ((effects & EFFECT_BARRIER) != 0) {
         p->sigma = model[MODEL_DIBL] * it->h +
@@ -281,7 +328,7 @@ static void prepare(const struct device_values *values, const struct device_cond
     double thermal = BOLTZMANN_OVER_CHARGE * kelvin;
     struct geometry it = geometry_of(values, (effects & EFFECT_GEOMETRY) != 0);
     p->polarity = polarity;
-    p->U = values->model[MODEL_SLOPE_FACTOR] * thermal;
+    p->U = values->model[MODEL_SLOPE_FACTOR] * slope_share(values->model, &it) * thermal;
     p->four_ut = 4 * thermal;
     p->w = (effects & EFFECT_INVERSION) != 0 ? 1 - conditions->inversion_cut : 0;
     prepare_threshold(values, effects, &it, kelvin, measured, p);
@@ -433,8 +480,10 @@ static double gain_sigma(const struct device_values *values)
 }
 
 static const struct deviate deviates[] = {
-    {"threshold", OWN_THRESHOLD_SHIFT, threshold_sigma},
-    {"gain", OWN_GAIN_SHIFT, gain_sigma},
+    [MOS_MOVED_VT] = {"threshold", OWN_THRESHOLD_SHIFT, threshold_sigma, DEVIATE_ADDS,
+                      offsetof(struct mos_prepared, vt)},
+    [MOS_MOVED_BETA] = {"gain", OWN_GAIN_SHIFT, gain_sigma, DEVIATE_SCALES,
+                        offsetof(struct mos_prepared, beta)},
 };
 
 #define MOS_COMMON                                                                                 \

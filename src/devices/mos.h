@@ -6,6 +6,9 @@
 
 enum { MOS_D, MOS_G, MOS_S, MOS_B, MOS_TERMINALS };
 
+/* Rows of the deviates. */
+enum { MOS_MOVED_VT, MOS_MOVED_BETA };
+
 /* Constants of one transistor at one temperature under one set of effects. An effect that is off
  * has the value that removes its term. */
 struct mos_prepared {

@@ -68,7 +68,10 @@ static double value_sigma(const struct device_values *values)
     return values->own[OWN_MATCH];
 }
 
-static const struct deviate deviates[] = {{"value", OWN_VALUE_SHIFT, value_sigma}};
+static const struct deviate deviates[] = {
+    [RESISTOR_VALUE] = {"value", OWN_VALUE_SHIFT, value_sigma, DEVIATE_SCALES,
+                        offsetof(struct linear_prepared, value)},
+};
 
 /* Values anywhere within the tolerance are equally likely: sigma is the half width over sqrt(3). */
 static double tolerance_sigma(const struct device_values *values)
@@ -76,7 +79,8 @@ static double tolerance_sigma(const struct device_values *values)
     return values->own[OWN_TOL] / sqrt(3);
 }
 
-static const struct deviate tolerance = {"tolerance", OWN_VALUE_SHIFT, tolerance_sigma};
+static const struct deviate tolerance = {"tolerance", OWN_VALUE_SHIFT, tolerance_sigma,
+                                         DEVIATE_SCALES, offsetof(struct linear_prepared, value)};
 
 const struct device_type device_resistor = {
     .word = "resistor",

@@ -41,7 +41,7 @@ static void describe(const struct quantity *value, char *text, size_t size)
 {
     dimension_describe(value->dimension, text, size);
     if (is_ratio(value) && !value->bare && size > sizeof "a ratio") {
-        strcpy(text, "a ratio");
+        (void)snprintf(text, size, "a ratio");
     }
 }
 

@@ -179,7 +179,7 @@ static bool begins_segment(const struct lexer *lexer, enum shape shape, int k, i
     const struct token *tokens = lexer->tokens;
     /* what stood together stays together: the code of `quiet mirror-length` */
     bool is_glued = k > 0 && tokens[k].begin == tokens[k - 1].end && !is_assign(&tokens[k]);
-    if (inside > 0 || is_glued || shape == SHAPE_LINE) {
+    if (inside > 0 || is_glued) {
         return false;
     }
     switch (shape) {
@@ -194,10 +194,9 @@ static bool begins_segment(const struct lexer *lexer, enum shape shape, int k, i
     case SHAPE_PART:
         return k <= 2 || (tokens[k].kind == TOKEN_NAME && is_assign(&tokens[k + 1])) ||
                (k >= 2 && is_symbol(&tokens[k - 2], '>'));
-    case SHAPE_LINE:
-        break;
+    default: /* SHAPE_LINE */
+        return false;
     }
-    return false;
 }
 
 /* Spaces between two tokens of one segment: none, one, or what was there (at most one). */
@@ -405,6 +404,7 @@ static bool same_token(const struct token *a, const struct token *b)
     bool same_text = (a->text == NULL) == (b->text == NULL) &&
                      (a->text == NULL || strcmp(a->text, b->text) == 0);
     return a->kind == b->kind && a->symbol == b->symbol && same_text &&
+           /* to the bit: NOLINTNEXTLINE(bugprone-suspicious-memory-comparison) */
            memcmp(&a->number.value, &b->number.value, sizeof a->number.value) == 0 &&
            dimension_equal(a->number.dimension, b->number.dimension) &&
            a->number.bare == b->number.bare && a->number.celsius == b->number.celsius;
@@ -425,16 +425,12 @@ static bool reads_the_same(struct formatter *f, const char *left, const char *ri
     struct source_file left_file, right_file;
     start_on(&a, f->arena, &left_file, left);
     start_on(&b, f->arena, &right_file, right);
-    bool has_both = lexer_next_line(&a) && lexer_next_line(&b);
-    if (!has_both || a.count != b.count || a.error.text != NULL || b.error.text != NULL) {
-        return false;
+    bool same = lexer_next_line(&a) && lexer_next_line(&b) && a.count == b.count &&
+                a.error.text == NULL && b.error.text == NULL;
+    for (int k = 0; same && k < a.count; k++) {
+        same = same_token(&a.tokens[k], &b.tokens[k]);
     }
-    for (int k = 0; k < a.count; k++) {
-        if (!same_token(&a.tokens[k], &b.tokens[k])) {
-            return false;
-        }
-    }
-    return !lexer_next_line(&b);
+    return same && !lexer_next_line(&b);
 }
 
 /* Makes the text of every statement final, and lines up the comments behind a run of them. */
@@ -452,11 +448,9 @@ static void settle(struct formatter *f)
         const char *text = line.failed ? NULL : arena_copy(f->arena, line.data, line.length);
         buffer_free(&line);
         f->failed = f->failed || text == NULL;
-        if (text != NULL && reads_the_same(f, item->raw, text)) {
-            item->raw = text;
-        } else if (text != NULL) {
-            item->is_broken = true; /* stays as it was */
-        }
+        const bool same = text != NULL && reads_the_same(f, item->raw, text);
+        item->raw = same ? text : item->raw; /* else it stays as it was */
+        item->is_broken = item->is_broken || !same;
     }
     for (int k = 0; k < f->count && !f->failed;) {
         int end = k, widest = 0;

@@ -4,6 +4,7 @@
  * A step reads one phrase ("from A to B") into the statement. To add a statement, add its kind to
  * tree.h and a row to the table.
  */
+#include <stdio.h>
 #include <string.h>
 
 #include "language/parser.h"
@@ -36,12 +37,11 @@ static bool want(struct parser *parser, const char *wanted, const char *word)
 
 static bool expect_word(struct parser *parser, const char *word)
 {
-    char wanted[32] = "'";
+    char wanted[32];
     if (parser_accept_word(parser, word)) {
         return true;
     }
-    strncat(wanted, word, sizeof wanted - 3);
-    strcat(wanted, "'");
+    snprintf(wanted, sizeof wanted, "'%s'", word);
     return want(parser, wanted, word);
 }
 

@@ -2,13 +2,17 @@
 #include "library/ampstead.h"
 
 #include <math.h>
+#include <stdatomic.h>
+#include <stdio.h>
 #include <stdlib.h>
 #include <string.h>
 
 #include "analyses/analysis.h"
+#include "analyses/lanes.h"
 #include "analyses/size.h"
 #include "library/answer.h"
 #include "library/edit.h"
+#include "library/part.h"
 #include "library/place.h"
 #include "library/request.h"
 #include "library/value.h"
@@ -25,6 +29,7 @@ enum command {
     COMMAND_SIZE,
     COMMAND_SENSITIVITY,
     COMMAND_SPREAD,
+    COMMAND_MERGE,
     COMMAND_STATES,
     COMMAND_CHECK,
     COMMAND_FORMAT,
@@ -40,6 +45,7 @@ static const char *const command_words[COMMAND_COUNT] = {
     [COMMAND_SIZE] = "size",
     [COMMAND_SENSITIVITY] = "sensitivity",
     [COMMAND_SPREAD] = "spread",
+    [COMMAND_MERGE] = "merge",
     [COMMAND_STATES] = "states",
     [COMMAND_CHECK] = "check",
     [COMMAND_FORMAT] = "format",
@@ -51,10 +57,13 @@ struct ampstead_result {
     const char *trouble; /* a wrong request, before any cell was read; NULL otherwise */
     struct cell *cell;
     struct circuit *circuit;
-    struct result *found; /* NULL for `models` and after errors */
-    struct sweep sweep;   /* the one of the request */
-    struct probe wanted;  /* the quantity of the request */
-    struct buffer messages, text, json, csv, plot, page, cell_text;
+    struct result *found;           /* NULL for `models` and after errors */
+    struct result *spread, *states; /* beside a review, for its page; NULL: none */
+    struct sweep sweep;             /* the one of the request */
+    struct probe wanted;            /* the quantity of the request */
+    struct part part;               /* of the request: number and parts; parts 0: the whole */
+    struct parts parts;             /* of a merge */
+    struct buffer messages, text, json, csv, plot, page, cell_text, part_text;
 };
 
 const char *ampstead_version(void)
@@ -106,11 +115,10 @@ static char *process_cell(const char *path)
     static const char before[] = "process \"", after[] = "\"\n";
     const char *slash = strrchr(path, '/');
     const char *name = slash == NULL ? path : slash + 1;
-    char *text = malloc(sizeof before + strlen(name) + sizeof after);
+    const size_t size = sizeof before + strlen(name) + sizeof after;
+    char *text = malloc(size);
     if (text != NULL) {
-        strcpy(text, before);
-        strcat(text, name);
-        strcat(text, after);
+        snprintf(text, size, "%s%s%s", before, name, after);
     }
     return text;
 }
@@ -180,21 +188,26 @@ static enum status build(const struct ampstead_request *request, struct ampstead
 
 struct hooks {
     const struct ampstead_request *request;
+    atomic_bool was_stopped; /* a yes was given: some of the work was left out */
 };
 
 static bool ask_stopped(void *self)
 {
-    const struct hooks *hooks = self;
-    return hooks->request->stopped(hooks->request->stopped_self) != 0;
+    struct hooks *hooks = self;
+    if (hooks->request->stopped(hooks->request->stopped_self) == 0) {
+        return false;
+    }
+    atomic_store(&hooks->was_stopped, true);
+    return true;
 }
 
-static enum status analyse(const struct ampstead_request *request, struct ampstead_result *result)
+static struct analysis_options options_of(const struct ampstead_request *request,
+                                          struct hooks *hooks)
 {
-    struct hooks hooks = {request};
-    struct analysis_options options = {
+    return (struct analysis_options){
         .view = request->view == AMPSTEAD_VIEW_HAND ? VIEW_HAND : VIEW_FULL,
         .stopped = request->stopped != NULL ? ask_stopped : NULL,
-        .stopped_self = &hooks,
+        .stopped_self = hooks,
         .progress = request->progress,
         .progress_self = request->progress_self,
         .certify = request->certify != 0,
@@ -203,8 +216,29 @@ static enum status analyse(const struct ampstead_request *request, struct ampste
         .jobs = request->jobs,
         .samples = request->samples,
         .seed = request->seed,
+        .lanes = request->lanes,
         .grid = 10e-9,
     };
+}
+
+/* What the page of a review shows beside it. That a state was not found there is no failure of the
+ * review. */
+static enum status analyse_more(const struct ampstead_request *request,
+                                struct ampstead_result *result)
+{
+    struct hooks hooks = {.request = request};
+    const struct analysis_options options = options_of(request, &hooks);
+    enum status status = analysis_spread(result->circuit, &options, &result->spread);
+    if (status != STATUS_MEMORY && status != STATUS_STOPPED) {
+        status = analysis_states(result->circuit, &options, &result->states);
+    }
+    return status == STATUS_MEMORY || status == STATUS_STOPPED ? status : STATUS_OK;
+}
+
+static enum status analyse(const struct ampstead_request *request, struct hooks *hooks,
+                           struct ampstead_result *result)
+{
+    struct analysis_options options = options_of(request, hooks);
     switch (result->command) {
     case COMMAND_REVIEW:
         return analysis_review(result->circuit, &options, &result->found);
@@ -230,6 +264,12 @@ static enum status analyse(const struct ampstead_request *request, struct ampste
         }
         return analysis_states(result->circuit, &options, &result->found);
     case COMMAND_SPREAD:
+        if (result->part.parts > 0) {
+            part_range(request->samples, result->part.number, result->part.parts, &options.first,
+                       &options.count);
+            return analysis_samples(result->circuit, &options, &result->found);
+        }
+        options.sampled = result->parts.count > 0 ? &result->parts.rows : NULL;
         return analysis_spread(result->circuit, &options, &result->found);
     case COMMAND_EXPLAIN:
         return analysis_explain(result->circuit, &options, &result->found);
@@ -251,6 +291,7 @@ static enum status analyse(const struct ampstead_request *request, struct ampste
             options.wanted = &result->wanted;
         }
         return analysis_sensitivity(result->circuit, &options, &result->found);
+    case COMMAND_MERGE:
     case COMMAND_MODELS:
     case COMMAND_CHECK:
     case COMMAND_FORMAT:
@@ -266,8 +307,15 @@ static const char *check_request(const struct ampstead_request *request, enum co
     if (request->size != sizeof *request) {
         return "the request was made for another version of the library";
     }
-    if (request->path == NULL) {
+    const bool is_merge = request->command != NULL && strcmp(request->command, "merge") == 0;
+    if (request->path == NULL && !is_merge) {
         return "the request names no cell";
+    }
+    if (is_merge && (request->parts == NULL || request->part_count < 1)) {
+        return "the request names no parts";
+    }
+    if (request->lanes < 0 || request->lanes > LANES_LIMIT) {
+        return "the number of lanes must lie between 0 and 8";
     }
     if (request->set_count > REQUEST_SET_LIMIT) {
         return "more than 1000 values are set";
@@ -292,12 +340,103 @@ static const char *check_request(const struct ampstead_request *request, enum co
     return request->command == NULL ? NULL : "the request has an unknown command";
 }
 
+/*
+ * A search that is stopped may end as one that found nothing, and a part that failed may be left
+ * out: whichever way the work ended after it was told to stop, the result is a stopped one.
+ */
+static enum status analyse_or_stop(const struct ampstead_request *request,
+                                   struct ampstead_result *result)
+{
+    struct hooks hooks = {.request = request};
+    const enum status status = analyse(request, &hooks, result);
+    const bool has_ended = status == STATUS_OK || status == STATUS_UNSOLVED;
+    if (result->found != NULL && has_ended && atomic_load(&hooks.was_stopped)) {
+        result->found->is_stopped = true;
+        return STATUS_STOPPED;
+    }
+    return status;
+}
+
+/* What the part says of itself. */
+static enum status describe_part(const struct ampstead_request *request,
+                                 struct ampstead_result *result)
+{
+    const struct mismatch_result *r = result->found->mismatch;
+    const struct lanes_kind *kind = request->lanes == 1 ? NULL : lanes_find(request->lanes);
+    struct part *p = &result->part;
+    if (r->states == NULL) {
+        result->trouble = "the cell has no mismatch to sample";
+        return STATUS_INPUT;
+    }
+    p->version = AMPSTEAD_VERSION;
+    p->cell = result->cell->path;
+    p->view = request->view == AMPSTEAD_VIEW_HAND ? "hand" : "full";
+    p->lanes = kind == NULL ? "single" : kind->name;
+    p->fingerprint = part_fingerprint(result->cell);
+    p->seed = request->seed;
+    p->samples = request->samples;
+    part_range(p->samples, p->number, p->parts, &p->first, &p->count);
+    p->quantity_count = r->quantity_count;
+    p->requirement_count = result->circuit->requirement_count;
+    p->values = r->values;
+    p->states = r->states;
+    p->met = r->met;
+    answer_begin(&result->part_text); /* now: the texts of the request are gone later */
+    p->corner = request->corner;
+    p->temperature = request->temperature;
+    p->sets = request->sets;
+    p->set_count = request->sets == NULL || request->set_count < 0 ? 0 : request->set_count;
+    part_write(p, &result->part_text);
+    return result->part_text.failed ? STATUS_MEMORY : STATUS_OK;
+}
+
+/* What only a merge asks of the cell, or a part of the samples. */
+static enum status check_parts(const struct ampstead_request *request,
+                               struct ampstead_result *result)
+{
+    if (request->part != NULL) {
+        if (result->command != COMMAND_SPREAD ||
+            !part_parse(request->part, &result->part.number, &result->part.parts)) {
+            result->trouble = "a part is written as 3/16, and goes with the command spread";
+            return STATUS_INPUT;
+        }
+    }
+    return STATUS_OK;
+}
+
+static enum status run_on_cell(const struct ampstead_request *request,
+                               struct ampstead_result *result);
+
+static enum status merge(const struct ampstead_request *request, struct ampstead_result *result)
+{
+    struct ampstead_request whole = *request;
+    enum status status = parts_join(request, AMPSTEAD_VERSION, &result->parts, &whole);
+    if (status == STATUS_OK) {
+        result->command = COMMAND_SPREAD;
+        status = run_on_cell(&whole, result);
+    }
+    if (status == STATUS_INPUT && result->parts.trouble.length > 0) {
+        result->trouble = result->parts.trouble.data;
+    }
+    return status;
+}
+
 static enum status run(const struct ampstead_request *request, struct ampstead_result *result)
 {
     result->trouble = check_request(request, &result->command);
     if (result->trouble != NULL) {
         return STATUS_INPUT;
     }
+    const enum status status = check_parts(request, result);
+    if (status != STATUS_OK) {
+        return status;
+    }
+    return result->command == COMMAND_MERGE ? merge(request, result) : run_on_cell(request, result);
+}
+
+static enum status run_on_cell(const struct ampstead_request *request,
+                               struct ampstead_result *result)
+{
     if (result->command != COMMAND_MODELS && result->command != COMMAND_CHECK &&
         result->command != COMMAND_FORMAT && ends_with(request->path, ".process")) {
         result->trouble = "this is a process file: ampstead models FILE shows it";
@@ -318,8 +457,17 @@ static enum status run(const struct ampstead_request *request, struct ampstead_r
         diagnostics_add(&result->cell->diagnostics, SPAN_NONE, NULL, "the cell holds no parts");
         status = STATUS_INPUT;
     }
+    if (status == STATUS_OK && result->parts.count > 0) {
+        status = parts_check(&result->parts, result->cell, result->circuit);
+    }
     if (status == STATUS_OK) {
-        status = analyse(request, result);
+        status = analyse_or_stop(request, result);
+    }
+    if (status == STATUS_OK && result->command == COMMAND_REVIEW && request->whole != 0) {
+        status = analyse_more(request, result);
+    }
+    if (status == STATUS_OK && result->part.parts > 0) {
+        status = describe_part(request, result);
     }
     if (result->cell != NULL && result->cell->diagnostics.out_of_memory) {
         return STATUS_MEMORY;
@@ -355,7 +503,11 @@ void ampstead_result_free(struct ampstead_result *result)
     buffer_free(&result->plot);
     buffer_free(&result->page);
     buffer_free(&result->cell_text);
+    buffer_free(&result->part_text);
+    parts_free(&result->parts);
     result_free(result->found);
+    result_free(result->spread);
+    result_free(result->states);
     circuit_free(result->circuit);
     cell_free(result->cell);
     free(result);
@@ -371,10 +523,10 @@ const char *ampstead_result_messages(struct ampstead_result *result, unsigned fl
     if (result == NULL) {
         return answer_short_memory;
     }
-    return answer_messages(&result->messages, result->trouble,
-                           result->cell == NULL ? NULL : &result->cell->diagnostics,
-                           result->cell == NULL ? NULL : &result->cell->sources, flags,
-                           &result->status);
+    return answer_messages(
+        &result->messages, result->trouble == NULL ? result->parts.note : result->trouble,
+        result->cell == NULL ? NULL : &result->cell->diagnostics,
+        result->cell == NULL ? NULL : &result->cell->sources, flags, &result->status);
 }
 
 /* Whether the command came far enough to have something to report. */
@@ -383,7 +535,7 @@ static bool has_report(const struct ampstead_result *result)
     if (result == NULL || result->circuit == NULL) {
         return false;
     }
-    return result->command == COMMAND_MODELS || result->found != NULL;
+    return result->command == COMMAND_MODELS || (result->found != NULL && result->part.parts == 0);
 }
 
 const char *ampstead_result_text(struct ampstead_result *result, unsigned flags, int columns)
@@ -432,6 +584,7 @@ const char *ampstead_result_text(struct ampstead_result *result, unsigned flags,
         report_sensitivity(result->found, &style, &result->text);
         break;
     case COMMAND_REVIEW:
+    case COMMAND_MERGE:
     case COMMAND_CHECK:
     case COMMAND_FORMAT:
     case COMMAND_COUNT:
@@ -467,6 +620,14 @@ const char *ampstead_result_csv(struct ampstead_result *result)
     return answer_end(&result->csv, &result->status);
 }
 
+const char *ampstead_result_part(struct ampstead_result *result)
+{
+    if (result == NULL || result->part.parts == 0 || result->part_text.data == NULL) {
+        return NULL;
+    }
+    return answer_end(&result->part_text, &result->status);
+}
+
 const char *ampstead_result_plot(struct ampstead_result *result)
 {
     if (!has_report(result) || result->found == NULL) {
@@ -481,12 +642,16 @@ const char *ampstead_result_plot(struct ampstead_result *result)
 
 const char *ampstead_result_page(struct ampstead_result *result)
 {
-    if (!has_report(result) || result->command != COMMAND_REVIEW) {
+    const bool has_page = has_report(result) &&
+                          (result->command == COMMAND_REVIEW || result->command == COMMAND_SPREAD ||
+                           result->command == COMMAND_STATES || result->command == COMMAND_EXPLAIN);
+    if (!has_page) {
         return NULL;
     }
     const struct report_style style = {.stopped = result->status == AMPSTEAD_STOPPED};
+    const struct web_results results = {result->found, result->spread, result->states};
     answer_begin(&result->page);
-    report_web(result->found, &style, AMPSTEAD_VERSION, &result->page);
+    report_web(&results, &style, AMPSTEAD_VERSION, &result->page);
     return answer_end(&result->page, &result->status);
 }
 

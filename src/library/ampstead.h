@@ -51,8 +51,10 @@ enum ampstead_view { AMPSTEAD_VIEW_FULL = 0, AMPSTEAD_VIEW_HAND = 1 };
 struct ampstead_request {
     size_t size;             /* sizeof(struct ampstead_request): set by AMPSTEAD_REQUEST */
     const char *command;     /* "review", "point", "sweep", "explain", "size", "sensitivity",
-                                "spread", "states", "models", "check" or "format"; NULL: review */
-    const char *path;        /* the cell file; "-": standard input. With text: its name. Required */
+                                "spread", "merge", "states", "models", "check" or "format"; NULL:
+                                review */
+    const char *path;        /* the cell file; "-": standard input. With text: its name. Required,
+                                but for "merge", where the parts say it */
     const char *text;        /* the cell itself, instead of the file; NULL: read the file */
     size_t text_length;      /* bytes of text */
     enum ampstead_view view; /* which effects are in force */
@@ -76,7 +78,22 @@ struct ampstead_request {
     const char *leakage; /* for command "states": "1 nA", a push below it is at risk; NULL: that */
     int samples;         /* for command "spread": mismatch samples, 0 to AMPSTEAD_SAMPLE_LIMIT */
     unsigned long long seed; /* the same seed gives the same samples, whatever `jobs` is */
-    int jobs;                /* threads, for "spread" and `everywhere`; 0: one a processor */
+    int jobs;  /* threads, for "spread", "sweep" and `everywhere`; 0: one a processor */
+    int whole; /* for command "review": not 0 also finds what "spread" and "states" do,
+                  for the page alone; takes as long as these */
+    int lanes; /* for command "spread": most samples that are solved side by side, 8, 4 or 1; 0: as
+                  many as the processor can. Results differ by rounding only */
+    const char *part; /* for command "spread": "3/16": the third of 16 parts of the samples and
+                         nothing else, for ampstead_result_part. NULL: all */
+    const struct ampstead_part *parts; /* [part_count] for command "merge": texts of all parts */
+    int part_count;
+};
+
+/* What ampstead_result_part gave, read from a file. */
+struct ampstead_part {
+    const char *name; /* of the file, for messages */
+    const char *text; /* [length] */
+    size_t length;
 };
 
 enum { AMPSTEAD_SAMPLES = 2000, AMPSTEAD_SAMPLE_LIMIT = 10000000 };
@@ -84,7 +101,7 @@ enum { AMPSTEAD_SAMPLES = 2000, AMPSTEAD_SAMPLE_LIMIT = 10000000 };
 #define AMPSTEAD_REQUEST                                                                           \
     {                                                                                              \
         sizeof(struct ampstead_request), 0, 0, 0, 0, AMPSTEAD_VIEW_FULL, 0, 0, 0, 0, 0, 0, 0, 0,   \
-            0, 0, 0, 0, 0, 0, 100000, 0, AMPSTEAD_SAMPLES, 1, 0                                    \
+            0, 0, 0, 0, 0, 0, 100000, 0, AMPSTEAD_SAMPLES, 1, 0, 0, 0, 0, 0, 0                     \
     }
 
 struct ampstead_result;
@@ -138,11 +155,16 @@ AMPSTEAD_API const char *ampstead_result_json(struct ampstead_result *result);
  * commands. */
 AMPSTEAD_API const char *ampstead_result_csv(struct ampstead_result *result);
 
-/* The curves of review or sweep as one SVG document, text as text. NULL as above, and when there is
- * no curve. */
+/* The part of the samples that a "spread" with request.part has solved, for "merge". NULL as above,
+ * and without request.part. */
+AMPSTEAD_API const char *ampstead_result_part(struct ampstead_result *result);
+
+/* The curves and bars of the command as one SVG document, text as text. NULL as above, and when
+ * there is nothing to draw. */
 AMPSTEAD_API const char *ampstead_result_plot(struct ampstead_result *result);
 
-/* The review as one self-contained HTML file. NULL as above, and for the other commands. */
+/* Of review, spread, states or explain: one self-contained HTML file. NULL as above, and for the
+ * other commands. */
 AMPSTEAD_API const char *ampstead_result_page(struct ampstead_result *result);
 
 /* The files that were read, from 0 on: the cell, then those it names; NULL after the last. */
@@ -224,6 +246,7 @@ AMPSTEAD_API const char *ampstead_calibration_text(struct ampstead_calibration *
                                                    unsigned flags, int columns);
 AMPSTEAD_API const char *ampstead_calibration_json(struct ampstead_calibration *calibration);
 /* The process file. */
+AMPSTEAD_API const char *ampstead_calibration_plot(struct ampstead_calibration *calibration);
 AMPSTEAD_API const char *ampstead_calibration_process(struct ampstead_calibration *calibration);
 
 /* "1.0.0"; lives as long as the program. */

@@ -13,7 +13,7 @@ struct ampstead_calibration {
     const char *trouble; /* a wrong request; NULL */
     struct calibration *found;
     char *name, *heading, *command; /* of the process file */
-    struct buffer messages, text, json, process;
+    struct buffer messages, text, json, plot, process;
 };
 
 static const char *const form_words[] = {
@@ -180,6 +180,7 @@ void ampstead_calibration_free(struct ampstead_calibration *calibration)
     buffer_free(&calibration->messages);
     buffer_free(&calibration->text);
     buffer_free(&calibration->json);
+    buffer_free(&calibration->plot);
     buffer_free(&calibration->process);
     free(calibration->name);
     free(calibration->heading);
@@ -228,6 +229,17 @@ const char *ampstead_calibration_json(struct ampstead_calibration *calibration)
     answer_begin(&calibration->json);
     report_json_calibration(calibration->found, AMPSTEAD_VERSION, &calibration->json);
     return answer_end(&calibration->json, &calibration->status);
+}
+
+const char *ampstead_calibration_plot(struct ampstead_calibration *calibration)
+{
+    if (!has_report(calibration)) {
+        return NULL;
+    }
+    answer_begin(&calibration->plot);
+    report_plot_calibration(calibration->found, &calibration->plot);
+    const char *svg = answer_end(&calibration->plot, &calibration->status);
+    return svg == NULL || *svg == '\0' ? NULL : svg;
 }
 
 const char *ampstead_calibration_process(struct ampstead_calibration *calibration)

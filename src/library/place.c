@@ -22,7 +22,7 @@ char *place_models(void)
     char *path = malloc(length + strlen(rest) + 1);
     if (path != NULL) {
         memcpy(path, slash == NULL ? "" : info.dli_fname, length);
-        strcpy(path + length, rest);
+        memcpy(path + length, rest, strlen(rest) + 1);
     }
     return path;
 }

@@ -40,6 +40,10 @@ enum linear_status linear_factor(struct linear_solver *solver, const double *val
  * before. */
 void linear_forget(struct linear_solver *solver);
 
+/* linear_pivots: pivot k of the factors in hand is the entry of row[k] and column[k], [n] out each.
+ * False when nothing is factored. */
+bool linear_pivots(const struct linear_solver *solver, int *row, int *column);
+
 /* b: [n] in: right side; out: solution. Needs a factorisation that went well. */
 void linear_solve(struct linear_solver *solver, double *b);
 void linear_solve_transposed(struct linear_solver *solver, double *b);

@@ -13,6 +13,8 @@
 
 #include <klu.h>
 
+#include "numerics/direct.h"
+
 enum { SCALE_BY_ROW_MAXIMUM = 2 }; /* KLU's code for it */
 
 struct linear_solver {
@@ -20,6 +22,7 @@ struct linear_solver {
     klu_common common;
     klu_symbolic *symbolic; /* NULL only when n is 0: KLU refuses an empty matrix */
     klu_numeric *numeric;   /* NULL: nothing is factored */
+    struct direct *direct;  /* the same pivots for a small system; NULL: KLU alone */
     int *mark;              /* [n] workspace of parity */
     int singular_column;    /* -1: none */
     int full, again;        /* factorisations with and without a new choice of pivots */
@@ -29,7 +32,7 @@ struct linear_solver {
  * -Wcast-qual useful everywhere else. */
 static double *readable(const double *values)
 {
-    return (double *)(uintptr_t)values;
+    return (double *)(uintptr_t)values; /* NOLINT(performance-no-int-to-ptr) */
 }
 
 struct linear_solver *linear_create(const struct pattern *pattern)
@@ -63,7 +66,7 @@ void linear_destroy(struct linear_solver *solver)
     if (solver == NULL) {
         return;
     }
-    klu_free_numeric(&solver->numeric, &solver->common);
+    linear_forget(solver);
     klu_free_symbolic(&solver->symbolic, &solver->common);
     free(solver->mark);
     free(solver);
@@ -74,14 +77,20 @@ int linear_structural_rank(const struct linear_solver *solver)
     return solver->symbolic != NULL ? solver->symbolic->structural_rank : 0;
 }
 
+/* Nothing is NaN or infinite: then every product with 0 is 0. */
 static bool all_finite(const double *values, int count)
 {
-    for (int i = 0; i < count; i++) {
-        if (!isfinite(values[i])) {
-            return false;
+    double sum[4] = {0, 0, 0, 0};
+    int i = 0;
+    for (; i + 4 <= count; i += 4) {
+        for (int k = 0; k < 4; k++) {
+            sum[k] += values[i + k] * 0;
         }
     }
-    return true;
+    for (; i < count; i++) {
+        sum[0] += values[i] * 0;
+    }
+    return sum[0] + sum[1] + sum[2] + sum[3] == 0;
 }
 
 /* No pivot overflowed. KLU compares pivots with zero only, and its growth figure skips NaN. */
@@ -93,6 +102,9 @@ static bool pivots_finite(const struct linear_solver *solver)
 /* Factors with the pivots of last time. False: they are no longer good. */
 static bool factor_again(struct linear_solver *solver, const double *values)
 {
+    if (solver->direct != NULL) {
+        return direct_factor(solver->direct, values);
+    }
     struct pattern p = *solver->pattern;
     klu_common *common = &solver->common;
     double *a = readable(values);
@@ -111,7 +123,7 @@ enum linear_status linear_factor(struct linear_solver *solver, const double *val
         return LINEAR_OK;
     }
     if (!all_finite(values, p->start[p->n])) {
-        klu_free_numeric(&solver->numeric, common);
+        linear_forget(solver);
         return LINEAR_NOT_FINITE;
     }
     if (solver->numeric != NULL) {
@@ -119,7 +131,7 @@ enum linear_status linear_factor(struct linear_solver *solver, const double *val
             solver->again++;
             return LINEAR_OK;
         }
-        klu_free_numeric(&solver->numeric, common);
+        linear_forget(solver);
     }
     /* A singular matrix gives NULL here with a positive status, which is no success. */
     solver->numeric = klu_factor(p->start, p->row, readable(values), solver->symbolic, common);
@@ -132,27 +144,47 @@ enum linear_status linear_factor(struct linear_solver *solver, const double *val
         return LINEAR_SINGULAR;
     }
     if (!pivots_finite(solver)) {
-        klu_free_numeric(&solver->numeric, common);
+        linear_forget(solver);
         return LINEAR_NOT_FINITE;
     }
+    /* KLU's own factors serve until the next values; without memory for the list they always do */
+    solver->direct = direct_create(solver, p, values);
     return LINEAR_OK;
 }
 
 void linear_forget(struct linear_solver *solver)
 {
     klu_free_numeric(&solver->numeric, &solver->common);
+    direct_destroy(solver->direct);
+    solver->direct = NULL;
+}
+
+bool linear_pivots(const struct linear_solver *solver, int *row, int *column)
+{
+    if (solver->numeric == NULL) {
+        return false;
+    }
+    for (int k = 0; k < solver->pattern->n; k++) {
+        row[k] = solver->numeric->Pnum[k];
+        column[k] = solver->symbolic->Q[k];
+    }
+    return true;
 }
 
 void linear_solve(struct linear_solver *solver, double *b)
 {
-    if (solver->numeric != NULL) {
+    if (direct_is_factored(solver->direct)) {
+        direct_solve(solver->direct, b);
+    } else if (solver->numeric != NULL) {
         klu_solve(solver->symbolic, solver->numeric, solver->pattern->n, 1, b, &solver->common);
     }
 }
 
 void linear_solve_transposed(struct linear_solver *solver, double *b)
 {
-    if (solver->numeric != NULL) {
+    if (direct_is_factored(solver->direct)) {
+        direct_solve_transposed(solver->direct, b);
+    } else if (solver->numeric != NULL) {
         klu_tsolve(solver->symbolic, solver->numeric, solver->pattern->n, 1, b, &solver->common);
     }
 }
@@ -167,7 +199,11 @@ double linear_condition(struct linear_solver *solver, const double *values)
     if (solver->pattern->n == 0) {
         return 1;
     }
+    struct pattern p = *solver->pattern;
     if (solver->numeric == NULL ||
+        (direct_is_factored(solver->direct) &&
+         !klu_refactor(p.start, p.row, readable(values), solver->symbolic, solver->numeric,
+                       &solver->common)) ||
         !klu_condest(solver->pattern->start, readable(values), solver->symbolic, solver->numeric,
                      &solver->common)) {
         return INFINITY;
@@ -208,6 +244,9 @@ int linear_determinant_sign(const struct linear_solver *solver)
     }
     bool negative = is_odd(solver->numeric->Pnum, n, solver->mark, 1) !=
                     is_odd(solver->symbolic->Q, n, solver->mark, 2);
+    if (direct_is_factored(solver->direct)) {
+        return negative != (direct_negative_pivots(solver->direct) % 2 != 0) ? -1 : 1;
+    }
     for (int k = 0; k < n; k++) {
         negative = negative != (pivots[k] < 0);
     }

@@ -76,6 +76,11 @@ size_t newton_work_size(const struct nonlinear_system *system)
     return 6 * (size_t)system->n + (size_t)system->pattern->start[system->n];
 }
 
+const double *newton_last_step(const struct nonlinear_system *system, const double *work)
+{
+    return work + 2 * system->n;
+}
+
 static double weight_of(const struct nonlinear_system *system, int k)
 {
     return system->weight != NULL ? system->weight[k] : 1;

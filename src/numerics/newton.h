@@ -58,6 +58,10 @@ enum newton_status newton_solve(const struct nonlinear_system *system, struct li
                                 const struct newton_options *options, double *x, double *work,
                                 struct newton_report *report);
 
+/* The last Newton step of newton_solve, [n] in its work array: after NEWTON_CONVERGED the one below
+ * the step tolerance, which has not been taken. */
+const double *newton_last_step(const struct nonlinear_system *system, const double *work);
+
 /* Length of the work array of long doubles of newton_polish. */
 size_t newton_polish_work_size(const struct nonlinear_system *system);
 

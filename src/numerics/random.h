@@ -26,4 +26,12 @@ void random_normals(uint64_t seed, uint64_t stream, int count, double *deviates)
  */
 double normal_quantile(double p);
 
+/* Its coefficients, rising powers: near the middle, in the tails, and far out. */
+struct normal_coefficients {
+    double middle_over[8], middle_under[8];
+    double tail_over[8], tail_under[8];
+    double far_over[8], far_under[8];
+};
+extern const struct normal_coefficients normal_coefficients;
+
 #endif

@@ -1,6 +1,7 @@
 /* contract.c: hull consistency and linear programs. */
 #include "proof/contract.h"
 
+#include <assert.h>
 #include <float.h>
 #include <string.h>
 
@@ -273,6 +274,7 @@ static void corner_planes(struct contractor *c, int index, const struct interval
     struct interval at[ELEMENT_ARGUMENT_LIMIT], unused[ELEMENT_ARGUMENT_LIMIT], value;
     double corner[ELEMENT_ARGUMENT_LIMIT], above[ELEMENT_ARGUMENT_LIMIT],
         below[ELEMENT_ARGUMENT_LIMIT];
+    assert(e->argument_count <= ELEMENT_ARGUMENT_LIMIT);
     for (int k = 0; k < e->argument_count; k++) {
         corner[k] = high ? arguments[k].hi : arguments[k].lo;
         at[k] = e->arguments[k].variable < 0 ? arguments[k] : interval_point(corner[k]);

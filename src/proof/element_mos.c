@@ -94,6 +94,13 @@ static struct interval charge_range(const struct mos_prepared *p, struct interva
     return (struct interval){fmax(v.lo, 0) / 2, fmax(v.hi, 0) / 2};
 }
 
+/* q/(1 + 2q) of one charge */
+static struct interval charge_share(double q)
+{
+    const struct interval at = interval_point(q);
+    return interval_div(at, interval_add(interval_point(1), interval_scale(2, at)));
+}
+
 /* dq/dv = q/(1 + 2q), rising. */
 static struct interval charge_slope(const struct mos_prepared *p, struct interval v,
                                     struct interval q)
@@ -101,18 +108,7 @@ static struct interval charge_slope(const struct mos_prepared *p, struct interva
     if (!(p->w > 0)) {
         return (struct interval){v.lo >= 0 ? 0.5 : 0, v.hi > 0 ? 0.5 : 0};
     }
-    struct interval out;
-    for (int k = 0; k < 2; k++) {
-        const struct interval at = interval_point(k == 0 ? q.lo : q.hi);
-        const struct interval s =
-            interval_div(at, interval_add(interval_point(1), interval_scale(2, at)));
-        if (k == 0) {
-            out.lo = fmax(s.lo, 0);
-        } else {
-            out.hi = fmin(s.hi, 0.5);
-        }
-    }
-    return out;
+    return (struct interval){fmax(charge_share(q.lo).lo, 0), fmin(charge_share(q.hi).hi, 0.5)};
 }
 
 /* (qs + qd + w)(qs - qd) as F(qs) - F(qd), F(q) = q^2 + w q */

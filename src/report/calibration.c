@@ -15,12 +15,12 @@ enum { CHART_LIMIT = 3 /* devices whose error curve is drawn */, BAR_CELLS = 20,
 static const double bar_full = 0.2;
 
 /* "1.64", "-": in per cent */
-static const char *rms_text(struct layout *layout, const struct figure *figure)
+static const char *rms_text(struct layout *layout, const struct misfit *figure)
 {
     return figure->count == 0 ? "-" : layout_format(layout, "%.2f", 100 * figure->rms);
 }
 
-static const char *worst_text(struct layout *layout, const struct figure *figure)
+static const char *worst_text(struct layout *layout, const struct misfit *figure)
 {
     return figure->count == 0 ? "" : layout_format(layout, "%+.1f", 100 * figure->worst);
 }
@@ -146,7 +146,7 @@ static void overview(struct layout *layout, const struct calibration *c)
     table_column(&table, (struct table_column){.head = ""});
     for (int k = 0; k < c->comparison_count; k++) {
         const struct comparison *it = &c->comparisons[k];
-        const struct figure *figure = &it->figures.id[FIGURES_SATURATION];
+        const struct misfit *figure = &it->figures.id[FIGURES_SATURATION];
         int cells = (int)fmin(round(BAR_CELLS * figure->rms / bar_full), BAR_CELLS);
         const char *bar = "";
         for (int n = 0; figure->count > 0 && n < (cells < 1 ? 1 : cells); n++) {
@@ -218,8 +218,9 @@ static void values_table(struct layout *layout, const struct fit *fit)
     table_column(&table, (struct table_column){.head = "", .wraps = true});
     for (int k = 0; k < fit->value_count; k++) {
         const struct fitted_value *it = &fit->values[k];
-        bool is_fixed = it->origin == ORIGIN_SHAPE && fabs(it->value) <= 0 &&
-                        fabs(it->parameter->standard) <= 0;
+        bool is_absent = isnan(it->value) && it->parameter->when_absent == DEFAULT_NONE;
+        bool is_fixed = it->origin == ORIGIN_SHAPE &&
+                        (is_absent || (fabs(it->value) <= 0 && fabs(it->parameter->standard) <= 0));
         if ((it->origin == ORIGIN_DEFAULT && it->reason == NULL) || is_fixed) {
             continue;
         }

@@ -21,6 +21,10 @@ void report_calibration(const struct calibration *calibration, const struct repo
 void report_json_calibration(const struct calibration *calibration, const char *version,
                              struct buffer *out);
 
+/* Pictures as one SVG document: readings against the model, and the errors; empty when there is
+ * nothing to draw. */
+void report_plot_calibration(const struct calibration *calibration, struct buffer *out);
+
 /*
  * The process file.
  *

@@ -35,7 +35,7 @@ void csv_put_number(struct buffer *out, double value)
 
 static void put_curves(const struct result *result, struct buffer *out)
 {
-    buffer_text(out, "output,v,current\r\n");
+    buffer_text(out, "output,v [V],current [A]\r\n");
     for (int k = 0; k < result->output_count; k++) {
         const struct output_result *row = &result->outputs[k];
         for (int p = 0; p < row->curve.count; p++) {

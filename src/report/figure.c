@@ -12,16 +12,12 @@
 #include <stdio.h>
 #include <string.h>
 
+#include "report/figure_ink.h"
 #include "report/markup.h"
-#include "report/scale.h"
 
 enum {
     COLOR_COUNT = 7,
     LABEL_LIMIT = 24, /* more curves than this are not labelled */
-    LEFT = 78,
-    RIGHT = 24,
-    HEAD = 30,
-    NOTE_LINE = 17,
     PANEL = 270,
     CLOSE_PANEL = 120,
     CLOSE_GAP = 40, /* holds the caption of the close-up */
@@ -29,9 +25,6 @@ enum {
     LABEL_STEP = 15,
     EDGE_STEP = 15
 };
-
-/* The widths that text takes are estimated: glyphs of the common sans-serif faces average this. */
-static const double glyph_width = 6.4;
 
 /* A curve counts as flat when its greatest deviation is smaller than this share. */
 static const double flat_share = 0.1;
@@ -43,20 +36,14 @@ static const char style_sheet[] =
     ".f-paper{fill:#fff}.f-grid{stroke:#e3e3e3}.f-frame{stroke:#555;fill:none}"
     ".f-band{fill:#eaf2f8}.f-edge{stroke-dasharray:2 3;stroke-width:1.5}"
     ".f-curve{fill:none;stroke-width:2;stroke-linejoin:round}"
-    ".f-mark{fill:#fff;stroke-width:2}.f-halo{stroke:#fff;stroke-width:4;paint-order:stroke;"
+    ".f-mark{fill:#fff;stroke-width:2}.f-dot{stroke-width:1}.f-halo{stroke:#fff;stroke-width:4;"
+    "paint-order:stroke;"
     "stroke-linejoin:round}"
+    ".f-bar{fill:#7fb8d8}.f-out{fill:#e9975f}.f-minus{fill:#e9975f}"
+    ".f-full{fill:#1a1a1a}.f-rule{stroke:#999}.f-strong{font-weight:bold}"
     ".c0{stroke:#0072b2}.c1{stroke:#d55e00}.c2{stroke:#009e73}.c3{stroke:#cc79a7}"
     ".c4{stroke:#000}.c5{stroke:#e69f00}.c6{stroke:#56b4e9}"
     "</style>\n";
-
-/* What the parts of one drawing share. */
-struct drawing {
-    const struct figure *figure;
-    struct buffer *out;
-    struct scale x, y;
-    double top, bottom; /* of the panel being drawn */
-    double right;
-};
 
 static bool is_labelled(const struct figure *figure)
 {
@@ -71,17 +58,20 @@ static double label_room(const struct figure *figure)
         size_t length = strlen(figure->series[s].name);
         longest = length > longest ? length : longest;
     }
-    return is_labelled(figure) ? 30.0 + 1.1 * glyph_width * (double)longest : RIGHT;
+    return is_labelled(figure) ? 30.0 + 1.1 * INK_GLYPH * (double)longest : FIGURE_RIGHT;
 }
 
-static double panel_top(const struct figure *figure)
+double figure_panel_top(const struct figure *figure)
 {
-    return HEAD + NOTE_LINE * figure->note_count + 12;
+    return FIGURE_HEAD + FIGURE_NOTE_LINE * figure->note_count + 12;
 }
 
 int figure_height(const struct figure *figure)
 {
-    int height = (int)panel_top(figure) + PANEL + FOOT;
+    if (figure->row_count > 0) {
+        return figure_rows_height(figure);
+    }
+    int height = (int)figure_panel_top(figure) + PANEL + FOOT;
     return figure->has_close_up ? height + CLOSE_GAP + CLOSE_PANEL : height;
 }
 
@@ -117,78 +107,6 @@ void figure_choose_close_up(struct figure *figure)
     figure->has_close_up = close_range(figure, &low, &high) && high - low < flat_share;
 }
 
-static void put(struct drawing *drawing, const char *text)
-{
-    buffer_text(drawing->out, text);
-}
-
-/* A piece of markup and the number behind it (NAN: none); a list ends with a NULL text. */
-struct piece {
-    const char *text;
-    double number;
-};
-
-static void put_pieces(struct drawing *drawing, const struct piece *pieces)
-{
-    for (; pieces->text != NULL; pieces++) {
-        put(drawing, pieces->text);
-        if (!isnan(pieces->number)) {
-            markup_fixed(drawing->out, pieces->number, 2);
-        }
-    }
-}
-
-static void put_line(struct drawing *drawing, const char *classes, double x1, double y1, double x2,
-                     double y2)
-{
-    const struct piece pieces[] = {{"<line class=\"", (double)NAN},
-                                   {classes, (double)NAN},
-                                   {"\" x1=\"", x1},
-                                   {"\" y1=\"", y1},
-                                   {"\" x2=\"", x2},
-                                   {"\" y2=\"", y2},
-                                   {"\"/>\n", (double)NAN},
-                                   {NULL, 0.0}};
-    put_pieces(drawing, pieces);
-}
-
-static void put_rect(struct drawing *drawing, const char *classes, double x, double y, double width,
-                     double height)
-{
-    const struct piece pieces[] = {{"<rect class=\"", (double)NAN},
-                                   {classes, (double)NAN},
-                                   {"\" x=\"", x},
-                                   {"\" y=\"", y},
-                                   {"\" width=\"", width},
-                                   {"\" height=\"", height},
-                                   {"\"/>\n", (double)NAN},
-                                   {NULL, 0.0}};
-    put_pieces(drawing, pieces);
-}
-
-/* anchor: "start", "middle" or "end" */
-static void begin_text(struct drawing *drawing, const char *classes, const char *anchor, double x,
-                       double y)
-{
-    const struct piece pieces[] = {{"<text class=\"", (double)NAN},
-                                   {classes, (double)NAN},
-                                   {"\" text-anchor=\"", (double)NAN},
-                                   {anchor, (double)NAN},
-                                   {"\" x=\"", x},
-                                   {"\" y=\"", y},
-                                   {"\">", (double)NAN},
-                                   {NULL, 0.0}};
-    put_pieces(drawing, pieces);
-}
-
-static void put_words(struct drawing *drawing, const char *classes, const char *anchor, double x,
-                      double y, const char *text)
-{
-    begin_text(drawing, classes, anchor, x, y);
-    markup_text(drawing->out, text);
-    put(drawing, "</text>\n");
-}
-
 /* "c3": the colour of a curve. */
 static void series_class(int series, char *text, size_t size)
 {
@@ -208,6 +126,20 @@ static void y_range(const struct figure *figure, double *low, double *high)
                 *high = fmax(*high, y);
             }
         }
+    }
+    for (int d = 0; d < figure->dots_count; d++) {
+        for (int k = 0; k < figure->dots[d].count; k++) {
+            *low = fmin(*low, isfinite(figure->dots[d].y[k]) ? figure->dots[d].y[k] : *low);
+            *high = fmax(*high, isfinite(figure->dots[d].y[k]) ? figure->dots[d].y[k] : *high);
+        }
+    }
+    for (int k = 0; k < figure->bar_count; k++) {
+        *low = fmin(*low, fmin(figure->bars[k].y, 0.0));
+        *high = fmax(*high, figure->bars[k].y);
+    }
+    for (int k = 0; k < figure->level_count; k++) {
+        *low = fmin(*low, figure->levels[k].y);
+        *high = fmax(*high, figure->levels[k].y);
     }
     if (!(*high >= *low)) {
         *low = 0.0;
@@ -229,6 +161,14 @@ static void x_range(const struct figure *figure, double *low, double *high)
             *high = fmax(*high, figure->series[s].x[k]);
         }
     }
+    for (int k = 0; k < figure->bar_count; k++) {
+        *low = fmin(*low, figure->bars[k].from);
+        *high = fmax(*high, figure->bars[k].to);
+    }
+    for (int k = 0; k < figure->edge_count && figure->bar_count > 0; k++) {
+        *low = fmin(*low, figure->edges[k].x);
+        *high = fmax(*high, figure->edges[k].x);
+    }
     if (!(*high >= *low)) {
         *low = 0.0;
         *high = 1.0;
@@ -240,30 +180,33 @@ static void put_axis_name(struct drawing *drawing, const char *name, const char 
 {
     markup_text(drawing->out, name);
     if (unit[0] != '\0') {
-        put(drawing, " (");
+        ink(drawing, " (");
         markup_text(drawing->out, unit);
-        put(drawing, ")");
+        ink(drawing, ")");
     }
-    put(drawing, "</text>\n");
+    ink(drawing, "</text>\n");
 }
 
 static void draw_grid(struct drawing *drawing, bool with_x_numbers)
 {
     const struct scale *x = &drawing->x, *y = &drawing->y;
-    for (double v = scale_first_tick(y); v <= y->high + 1e-6 * y->step; v += y->step) {
-        double at = scale_pixel(y, v);
-        put_line(drawing, "f-grid", LEFT, at, drawing->right, at);
-        begin_text(drawing, "f-tick", "end", LEFT - 8, at + 4.0);
-        markup_fixed(drawing->out, fabs(v) < 1e-9 * y->step ? 0.0 : v * y->factor, y->decimals);
-        put(drawing, "</text>\n");
+    double ticks[SCALE_TICK_LIMIT];
+    int count = scale_ticks(y, ticks);
+    for (int k = 0; k < count; k++) {
+        double at = scale_pixel(y, ticks[k]);
+        ink_line(drawing, "f-grid", FIGURE_LEFT, at, drawing->right, at);
+        ink_begin_text(drawing, "f-tick", "end", FIGURE_LEFT - 8, at + 4.0);
+        scale_put_tick(y, ticks[k], drawing->out);
+        ink(drawing, "</text>\n");
     }
-    for (double v = scale_first_tick(x); v <= x->high + 1e-6 * x->step; v += x->step) {
-        double at = scale_pixel(x, v);
-        put_line(drawing, "f-grid", at, drawing->top, at, drawing->bottom);
+    count = scale_ticks(x, ticks);
+    for (int k = 0; k < count; k++) {
+        double at = scale_pixel(x, ticks[k]);
+        ink_line(drawing, "f-grid", at, drawing->top, at, drawing->bottom);
         if (with_x_numbers) {
-            begin_text(drawing, "f-tick", "middle", at, drawing->bottom + 18.0);
-            markup_fixed(drawing->out, fabs(v) < 1e-9 * x->step ? 0.0 : v * x->factor, x->decimals);
-            put(drawing, "</text>\n");
+            ink_begin_text(drawing, "f-tick", "middle", at, drawing->bottom + 18.0);
+            scale_put_tick(x, ticks[k], drawing->out);
+            ink(drawing, "</text>\n");
         }
     }
 }
@@ -276,9 +219,9 @@ static void draw_band(struct drawing *drawing, bool with_text)
     }
     double from = scale_pixel(&drawing->x, fmax(band->from, drawing->x.low));
     double to = scale_pixel(&drawing->x, fmin(band->to, drawing->x.high));
-    put_rect(drawing, "f-band", from, drawing->top, to - from, drawing->bottom - drawing->top);
-    if (with_text && (double)strlen(band->text) * glyph_width < to - from) {
-        put_words(drawing, "f-note", "middle", 0.5 * (from + to), drawing->bottom - 8.0,
+    ink_rect(drawing, "f-band", from, drawing->top, to - from, drawing->bottom - drawing->top);
+    if (with_text && (double)strlen(band->text) * INK_GLYPH < to - from) {
+        ink_words(drawing, "f-note", "middle", 0.5 * (from + to), drawing->bottom - 8.0,
                   band->text);
     }
 }
@@ -301,37 +244,95 @@ static void draw_curve(struct drawing *drawing, int index, bool close)
             is_open = false;
             continue;
         }
-        put(drawing, is_open ? "L" : "M");
+        ink(drawing, is_open ? "L" : "M");
         markup_fixed(drawing->out, scale_pixel(&drawing->x, series->x[k]), 2);
-        put(drawing, " ");
+        ink(drawing, " ");
         markup_fixed(drawing->out, scale_pixel(&drawing->y, value), 2);
         is_open = true;
     }
-    put(drawing, "\"/>\n");
+    ink(drawing, "\"/>\n");
+}
+
+static void draw_dots(struct drawing *drawing, const struct figure_dots *dots)
+{
+    char color[8];
+    series_class(dots->series, color, sizeof color);
+    for (int k = 0; k < dots->count; k++) {
+        if (!isfinite(dots->y[k])) {
+            continue;
+        }
+        buffer_format(drawing->out, "<circle class=\"f-mark f-dot %s\" r=\"2\"", color);
+        const struct ink_piece pieces[] = {{" cx=\"", scale_pixel(&drawing->x, dots->x[k])},
+                                           {"\" cy=\"", scale_pixel(&drawing->y, dots->y[k])},
+                                           {"\"/>\n", INK_NONE},
+                                           {NULL, 0.0}};
+        ink_pieces(drawing, pieces);
+    }
 }
 
 /* Curves, cut off at the panel: an inner <svg> clips without a name, which must be unique in a
  * page. */
 static void draw_curves(struct drawing *drawing, bool close)
 {
-    double width = drawing->right - LEFT, height = drawing->bottom - drawing->top;
-    const struct piece pieces[] = {{"<svg x=\"", LEFT},
-                                   {"\" y=\"", drawing->top},
-                                   {"\" width=\"", width},
-                                   {"\" height=\"", height},
-                                   {"\" viewBox=\"", LEFT},
-                                   {" ", drawing->top},
-                                   {" ", width},
-                                   {" ", height},
-                                   {"\">\n", (double)NAN},
-                                   {NULL, 0.0}};
-    put_pieces(drawing, pieces);
+    double width = drawing->right - FIGURE_LEFT, height = drawing->bottom - drawing->top;
+    const struct ink_piece pieces[] = {{"<svg x=\"", FIGURE_LEFT},
+                                       {"\" y=\"", drawing->top},
+                                       {"\" width=\"", width},
+                                       {"\" height=\"", height},
+                                       {"\" viewBox=\"", FIGURE_LEFT},
+                                       {" ", drawing->top},
+                                       {" ", width},
+                                       {" ", height},
+                                       {"\">\n", INK_NONE},
+                                       {NULL, 0.0}};
+    ink_pieces(drawing, pieces);
     for (int s = 0; s < drawing->figure->series_count; s++) {
         if (!close || isfinite(drawing->figure->series[s].reference)) {
             draw_curve(drawing, s, close);
         }
     }
-    put(drawing, "</svg>\n");
+    for (int d = 0; d < drawing->figure->dots_count && !close; d++) {
+        draw_dots(drawing, &drawing->figure->dots[d]);
+    }
+    ink(drawing, "</svg>\n");
+}
+
+/* Bars; what of them lies outside the band is set off. */
+static void draw_bars(struct drawing *drawing)
+{
+    const struct figure *figure = drawing->figure;
+    bool has_band = figure->band.to > figure->band.from;
+    for (int k = 0; k < figure->bar_count; k++) {
+        const struct figure_bar *bar = &figure->bars[k];
+        double from = has_band ? fmin(fmax(figure->band.from, bar->from), bar->to) : bar->from;
+        double to = has_band ? fmax(fmin(figure->band.to, bar->to), from) : bar->to;
+        const double ends[] = {bar->from, from, to, bar->to};
+        double top = scale_pixel(&drawing->y, bar->y), zero = scale_pixel(&drawing->y, 0.0);
+        for (int part = 0; part < 3 && bar->y > 0.0; part++) {
+            double left = scale_pixel(&drawing->x, ends[part]);
+            double right = scale_pixel(&drawing->x, ends[part + 1]);
+            double gap = part == 2 || (part == 1 && to >= bar->to) ? 1.0 : 0.0;
+            if (right - left > 1e-6) {
+                ink_rect(drawing, part == 1 ? "f-bar" : "f-bar f-out", left, top,
+                         fmax(right - left - gap, 0.2), zero - top);
+            }
+        }
+    }
+}
+
+static void draw_levels(struct drawing *drawing)
+{
+    const struct figure *figure = drawing->figure;
+    for (int k = 0; k < figure->level_count; k++) {
+        double at = scale_pixel(&drawing->y, figure->levels[k].y);
+        ink_line(drawing, "f-edge c1", FIGURE_LEFT, at, drawing->right, at);
+        if (figure->levels[k].text[0] != '\0') {
+            bool goes_up = figure->levels[k].is_upper ? at - drawing->top > EDGE_STEP
+                                                      : drawing->bottom - at < EDGE_STEP;
+            ink_words(drawing, "f-halo", "end", drawing->right - 6.0,
+                      goes_up ? at - 5.0 : at + 14.0, figure->levels[k].text);
+        }
+    }
 }
 
 static void draw_edges(struct drawing *drawing, bool with_text)
@@ -347,12 +348,14 @@ static void draw_edges(struct drawing *drawing, bool with_text)
         series_class(edge->series, color, sizeof color);
         snprintf(classes, sizeof classes, "f-edge %s", color);
         double at = scale_pixel(&drawing->x, edge->x);
-        put_line(drawing, classes, at, drawing->top, at, drawing->bottom);
+        ink_line(drawing, classes, at, drawing->top, at, drawing->bottom);
         if (with_text && edge->text[0] != '\0') {
-            double width = (double)strlen(edge->text) * glyph_width;
+            double width = (double)strlen(edge->text) * INK_GLYPH;
             bool goes_left = at + 6.0 + width > drawing->right;
-            put_words(drawing, "f-halo", goes_left ? "end" : "start",
-                      goes_left ? at - 6.0 : at + 6.0, drawing->bottom - 30.0 - EDGE_STEP * row,
+            ink_words(drawing, "f-halo", goes_left ? "end" : "start",
+                      goes_left ? at - 6.0 : at + 6.0,
+                      figure->labels_above ? drawing->top + EDGE_STEP * (row + 1)
+                                           : drawing->bottom - 30.0 - EDGE_STEP * row,
                       edge->text);
             row++;
         }
@@ -372,13 +375,14 @@ static void draw_marks(struct drawing *drawing, bool close)
         char color[8];
         series_class(mark->series, color, sizeof color);
         double px = scale_pixel(&drawing->x, mark->x), py = scale_pixel(&drawing->y, y);
-        buffer_format(drawing->out, "<circle class=\"f-mark %s\" r=\"4.5\"", color);
-        const struct piece pieces[] = {
-            {" cx=\"", px}, {"\" cy=\"", py}, {"\"/>\n", (double)NAN}, {NULL, 0.0}};
-        put_pieces(drawing, pieces);
+        buffer_format(drawing->out, "<circle class=\"f-mark %s%s\" r=\"4.5\"", color,
+                      mark->is_filled ? " f-full" : "");
+        const struct ink_piece pieces[] = {
+            {" cx=\"", px}, {"\" cy=\"", py}, {"\"/>\n", INK_NONE}, {NULL, 0.0}};
+        ink_pieces(drawing, pieces);
         if (!close && mark->text[0] != '\0') {
-            bool goes_left = px > 0.5 * (LEFT + drawing->right);
-            put_words(drawing, "f-halo", goes_left ? "end" : "start",
+            bool goes_left = px > 0.5 * (FIGURE_LEFT + drawing->right);
+            ink_words(drawing, "f-halo", goes_left ? "end" : "start",
                       goes_left ? px - 2.0 : px + 2.0, py < middle ? py + 22.0 : py - 12.0,
                       mark->text);
         }
@@ -430,8 +434,8 @@ static void draw_series_labels(struct drawing *drawing)
     for (int k = 0; k < count; k++) {
         char color[8];
         series_class(order[k], color, sizeof color);
-        put_line(drawing, color, drawing->right + 1.0, wanted[k], drawing->right + 14.0, at[k]);
-        put_words(drawing, "f-label", "start", drawing->right + 18.0, at[k] + 4.0,
+        ink_line(drawing, color, drawing->right + 1.0, wanted[k], drawing->right + 14.0, at[k]);
+        ink_words(drawing, "f-label", "start", drawing->right + 18.0, at[k] + 4.0,
                   figure->series[order[k]].name);
     }
 }
@@ -439,31 +443,49 @@ static void draw_series_labels(struct drawing *drawing)
 static void draw_y_name(struct drawing *drawing, const char *name)
 {
     double middle = 0.5 * (drawing->top + drawing->bottom);
-    const struct piece pieces[] = {
+    const struct ink_piece pieces[] = {
         {"<text class=\"f-name\" text-anchor=\"middle\" transform=\"translate(18 ", middle},
-        {") rotate(-90)\">", (double)NAN},
+        {") rotate(-90)\">", INK_NONE},
         {NULL, 0.0}};
-    put_pieces(drawing, pieces);
-    put_axis_name(drawing, name, drawing->y.unit);
+    ink_pieces(drawing, pieces);
+    put_axis_name(drawing, name, drawing->y.linear > 0.0 ? "" : drawing->y.unit);
+}
+
+/* Px for the labels of upright lines above what is drawn. */
+static double label_rows(const struct figure *figure)
+{
+    int rows = 0;
+    for (int k = 0; k < figure->edge_count && figure->labels_above; k++) {
+        rows += figure->edges[k].text[0] != '\0';
+    }
+    return rows > 0 ? EDGE_STEP * rows + 8.0 : 0.0;
 }
 
 static void draw_panel(struct drawing *drawing, bool close)
 {
     const struct figure *figure = drawing->figure;
     drawing->y.pixel_low = drawing->bottom;
-    drawing->y.pixel_high = drawing->top;
+    drawing->y.pixel_high = drawing->top + (close ? 0.0 : label_rows(figure));
     bool is_last = close || !figure->has_close_up;
     draw_band(drawing, !close);
     draw_grid(drawing, is_last);
-    put_rect(drawing, "f-frame", LEFT, drawing->top, drawing->right - LEFT,
+    ink_rect(drawing, "f-frame", FIGURE_LEFT, drawing->top, drawing->right - FIGURE_LEFT,
              drawing->bottom - drawing->top);
+    if (drawing->y.linear > 0.0) {
+        double zero = scale_pixel(&drawing->y, 0.0);
+        ink_line(drawing, "f-frame", FIGURE_LEFT, zero, drawing->right, zero);
+    }
+    if (!close) {
+        draw_bars(drawing);
+        draw_levels(drawing);
+    }
     draw_edges(drawing, !close);
     draw_curves(drawing, close);
     draw_marks(drawing, close);
     draw_y_name(drawing, close ? "deviation" : figure->y.name);
     if (is_last) {
-        begin_text(drawing, "f-name", "middle", 0.5 * (LEFT + drawing->right),
-                   drawing->bottom + 38.0);
+        ink_begin_text(drawing, "f-name", "middle", 0.5 * (FIGURE_LEFT + drawing->right),
+                       drawing->bottom + 38.0);
         put_axis_name(drawing, figure->x.name, drawing->x.unit);
     }
 }
@@ -478,7 +500,7 @@ static void draw_close_up(struct drawing *drawing)
     drawing->top = drawing->bottom + CLOSE_GAP;
     drawing->bottom = drawing->top + CLOSE_PANEL;
     drawing->y = scale_make_share(low - room, high + room, 4);
-    put_words(drawing, "f-note", "start", LEFT, drawing->top - 9.0,
+    ink_words(drawing, "f-note", "start", FIGURE_LEFT, drawing->top - 9.0,
               drawing->figure->mark_count > 0
                   ? "Close-up of the flat part: deviation from the value at the ring"
                   : "Close-up: deviation from the value in the middle of the sweep");
@@ -489,19 +511,20 @@ static void draw_close_up(struct drawing *drawing)
 static void put_geometry(struct drawing *drawing)
 {
     const struct scale *x = &drawing->x, *y = &drawing->y;
-    const struct piece pieces[] = {{" data-left=\"", LEFT},
-                                   {"\" data-right=\"", drawing->right},
-                                   {"\" data-top=\"", drawing->top},
-                                   {"\" data-bottom=\"", drawing->bottom},
-                                   {NULL, 0.0}};
-    put_pieces(drawing, pieces);
-    const double values[] = {x->low, x->high, y->low, y->high};
-    static const char *const names[] = {"x-low", "x-high", "y-low", "y-high"};
-    for (int k = 0; k < 4; k++) {
+    const struct ink_piece pieces[] = {
+        {" data-left=\"", FIGURE_LEFT},
+        {"\" data-right=\"", drawing->right},
+        {"\" data-top=\"", drawing->top + label_rows(drawing->figure)},
+        {"\" data-bottom=\"", drawing->bottom},
+        {NULL, 0.0}};
+    ink_pieces(drawing, pieces);
+    const double values[] = {x->low, x->high, y->low, y->high, y->linear};
+    static const char *const names[] = {"x-low", "x-high", "y-low", "y-high", "y-linear"};
+    for (int k = 0; k < 5; k++) {
         buffer_format(drawing->out, "\" data-%s=\"", names[k]);
         markup_number(drawing->out, values[k]);
     }
-    put(drawing, "\"");
+    ink(drawing, "\"");
 }
 
 static void begin_figure(struct drawing *drawing, enum figure_use use, int top)
@@ -513,15 +536,28 @@ static void begin_figure(struct drawing *drawing, enum figure_use use, int top)
                   "viewBox=\"0 0 %d %d\" role=\"img\" aria-label=\"",
                   top, FIGURE_WIDTH, height, FIGURE_WIDTH, height);
     markup_text(drawing->out, figure->title);
-    put(drawing, "\"");
+    ink(drawing, "\"");
     if (use == FIGURE_IN_PAGE) {
         put_geometry(drawing);
     }
-    put(drawing, ">\n");
-    put_words(drawing, "f-title", "start", LEFT, HEAD - 6, figure->title);
+    ink(drawing, ">\n");
+    ink_words(drawing, "f-title", "start", FIGURE_LEFT, FIGURE_HEAD - 6, figure->title);
     for (int k = 0; k < figure->note_count; k++) {
-        put_words(drawing, "f-note", "start", LEFT, HEAD + 12 + NOTE_LINE * k, figure->notes[k]);
+        ink_words(drawing, "f-note", "start", FIGURE_LEFT, FIGURE_HEAD + 12 + FIGURE_NOTE_LINE * k,
+                  figure->notes[k]);
     }
+}
+
+static struct scale make_y(const struct figure *figure)
+{
+    double low = 0.0, high = 0.0;
+    y_range(figure, &low, &high);
+    if (figure->linear > 0.0) {
+        return scale_make_signed(&figure->y, low, high, figure->linear);
+    }
+    double room = 0.03 * (high - low); /* no curve runs along the frame */
+    return scale_make(&figure->y, low < 0.0 || !figure->keeps_zero ? low - room : low,
+                      high > 0.0 || !figure->keeps_zero ? high + room : high, 6, true);
 }
 
 void figure_draw(const struct figure *figure, enum figure_use use, int top, struct buffer *out)
@@ -529,17 +565,20 @@ void figure_draw(const struct figure *figure, enum figure_use use, int top, stru
     double low = 0.0, high = 0.0;
     struct drawing drawing = {.figure = figure, .out = out};
     drawing.right = FIGURE_WIDTH - label_room(figure);
-    drawing.top = panel_top(figure);
+    drawing.top = figure_panel_top(figure);
     drawing.bottom = drawing.top + PANEL;
     x_range(figure, &low, &high);
-    drawing.x = scale_make(&figure->x, low, high, 7, false);
-    drawing.x.pixel_low = LEFT;
+    double room = figure->bar_count > 0 ? 0.03 * (high - low) : 0.0;
+    drawing.x = scale_make(&figure->x, low - room, high + room, 7, false);
+    drawing.x.pixel_low = FIGURE_LEFT;
     drawing.x.pixel_high = drawing.right;
-    y_range(figure, &low, &high);
-    double room = 0.03 * (high - low); /* no curve runs along the frame */
-    drawing.y = scale_make(&figure->y, low < 0.0 || !figure->keeps_zero ? low - room : low,
-                           high > 0.0 || !figure->keeps_zero ? high + room : high, 6, true);
+    drawing.y = make_y(figure);
     begin_figure(&drawing, use, top);
+    if (figure->row_count > 0) {
+        figure_rows_draw(&drawing);
+        ink(&drawing, "</svg>\n");
+        return;
+    }
     draw_panel(&drawing, false);
     if (is_labelled(figure)) {
         draw_series_labels(&drawing);
@@ -547,7 +586,7 @@ void figure_draw(const struct figure *figure, enum figure_use use, int top, stru
     if (figure->has_close_up) {
         draw_close_up(&drawing);
     }
-    put(&drawing, "</svg>\n");
+    ink(&drawing, "</svg>\n");
 }
 
 void figures_document(const struct figure *figures, int count, struct buffer *out)

@@ -1,5 +1,5 @@
 /*
- * figure.h: a picture of curves as plain data, and the one function that draws it.
+ * figure.h: a picture of curves or bars as plain data, and the one function that draws it.
  *
  * Everything is borrowed from an arena of the caller. Adding a picture of another result means
  * filling this struct (figures.c); nothing about drawing is repeated.
@@ -23,6 +23,26 @@ struct figure_series {
     double flat_from, flat_to; /* the range of x whose deviations give the close-up its scale */
 };
 
+/* An upright bar from zero to y, of a histogram. */
+struct figure_bar {
+    double from, to, y;
+};
+
+/* One ranked bar, lying, with its name before it and its value in words behind; `detail` is a
+ * second column there, "" where none is. */
+struct figure_row {
+    const char *name, *text, *detail;
+    double value; /* NAN: no bar */
+    bool is_sum;  /* set apart */
+};
+
+/* A line across at y. */
+struct figure_level {
+    double y;
+    const char *text;
+    bool is_upper; /* its text stands above, else below */
+};
+
 /* An upright line at x. */
 struct figure_edge {
     double x;
@@ -35,11 +55,18 @@ struct figure_mark {
     double x, y;
     const char *text; /* "" : no label */
     int series;
+    bool is_filled;
 };
 
-/* A shaded range of x; at most one. */
+/* Readings: small dots in the colour of a curve. */
+struct figure_dots {
+    const double *x, *y; /* [count]; a y that is not finite is left out */
+    int count, series;
+};
+
+/* A shaded range of x; at most one. Bars outside of it have another colour. */
 struct figure_band {
-    double from, to; /* NAN: none */
+    double from, to; /* NAN: none; may be infinite */
     const char *text;
 };
 
@@ -48,14 +75,24 @@ struct figure {
     const char **notes; /* [note_count] lines below the title */
     int note_count;
     struct figure_axis x, y;
-    struct figure_series *series; /* [series_count], at least one */
+    struct figure_series *series; /* [series_count] */
     int series_count;
+    struct figure_bar *bars; /* [bar_count] rising, drawn behind the curves */
+    int bar_count;
+    struct figure_row *rows; /* [row_count]; with any, rows are drawn and nothing else */
+    int row_count;
+    struct figure_level *levels;
+    int level_count;
     struct figure_edge *edges;
     int edge_count;
     struct figure_mark *marks;
     int mark_count;
+    struct figure_dots *dots;
+    int dots_count;
     struct figure_band band;
+    double linear;     /* 0, or the y axis is logarithmic on both sides of zero beyond this */
     bool keeps_zero;   /* the y axis begins at zero */
+    bool labels_above; /* those of upright lines; else near the x axis */
     bool has_close_up; /* set by figure_choose_close_up */
 };
 

@@ -1,61 +1,16 @@
-/* figures.c: results to pictures: load curves of the outputs, and sweeps. */
-#include "report/figures.h"
+/* figures.c: results to pictures: load curves of the outputs, and sweeps; which command has which.
+ */
+#include "report/figures_parts.h"
 
 #include <math.h>
+#include <string.h>
 
-#include "report/markup.h"
 #include "report/show.h"
 
-enum { NOTE_LIMIT = 8, SHARED_LIMIT = 12 };
-
-/* Outputs share a picture while their currents differ by less than this factor. */
-static const double shared_span = 30.0;
+enum { SHARED_LIMIT = 12 };
 
 static const struct figure_axis load_axis = {"load voltage", "V", true};
 static const struct figure_axis current_axis = {"output current", "A", true};
-
-static struct figure *add_figure(struct layout *layout, struct figure_list *figures)
-{
-    struct figure *list =
-        arena_grow(layout->arena, figures->list, figures->count, &figures->capacity, sizeof *list);
-    if (list == NULL) {
-        return NULL;
-    }
-    figures->list = list;
-    list[figures->count] = (struct figure){
-        .title = "",
-        .band = {(double)NAN, (double)NAN, ""},
-    };
-    return &list[figures->count++];
-}
-
-/* Room for `series` curves with an edge and a mark each, and notes. False: memory is short. */
-static bool make_room(struct layout *layout, struct figure *figure, int series)
-{
-    figure->series = arena_new_array(layout->arena, struct figure_series, series);
-    figure->edges = arena_new_array(layout->arena, struct figure_edge, series);
-    figure->marks = arena_new_array(layout->arena, struct figure_mark, series);
-    figure->notes = arena_new_array(layout->arena, const char *, NOTE_LIMIT + 1);
-    return figure->series != NULL && figure->edges != NULL && figure->marks != NULL &&
-           figure->notes != NULL;
-}
-
-static void add_note(struct figure *figure, const char *note)
-{
-    if (figure->note_count < NOTE_LIMIT) {
-        figure->notes[figure->note_count++] = note;
-    }
-}
-
-static const char *value_of(struct layout *layout, double value, struct dimension dimension)
-{
-    return markup_units(layout->arena, show_value(layout, value, dimension));
-}
-
-static const char *round_of(struct layout *layout, double value, struct dimension dimension)
-{
-    return markup_units(layout->arena, show_round(layout, value, dimension));
-}
 
 /* "out sinks 97.13 nA at 0.9 V; resistance 343.7 MΩ; compliance 188.7 mV (M2)" */
 static const char *output_note(struct layout *layout, const struct output_result *row)
@@ -64,20 +19,22 @@ static const char *output_note(struct layout *layout, const struct output_result
         row->resistance_unlimited ? "; resistance unlimited"
         : isfinite(row->resistance)
             ? layout_format(layout, "; resistance %s",
-                            value_of(layout, row->resistance, DIMENSION_RESISTANCE))
+                            figures_value(layout, row->resistance, DIMENSION_RESISTANCE))
             : "";
     const char *compliance = "";
     if (isfinite(row->compliance)) {
         compliance = layout_format(
-            layout, "; compliance %s%s%s%s", value_of(layout, row->compliance, DIMENSION_VOLTAGE),
+            layout, "; compliance %s%s%s%s",
+            figures_value(layout, row->compliance, DIMENSION_VOLTAGE),
             row->compliance_device != NULL ? " (" : "",
             row->compliance_device != NULL ? layout_short(layout, row->compliance_device, 20) : "",
             row->compliance_device != NULL ? ")" : "");
     }
-    return layout_format(
-        layout, "%s %s %s at %s%s%s", layout_short(layout, row->output->name, 24),
-        row->is_sink ? "sinks" : "sources", value_of(layout, fabs(row->current), DIMENSION_CURRENT),
-        round_of(layout, row->output->at, DIMENSION_VOLTAGE), resistance, compliance);
+    return layout_format(layout, "%s %s %s at %s%s%s", layout_short(layout, row->output->name, 24),
+                         row->is_sink ? "sinks" : "sources",
+                         figures_value(layout, fabs(row->current), DIMENSION_CURRENT),
+                         figures_round(layout, row->output->at, DIMENSION_VOLTAGE), resistance,
+                         compliance);
 }
 
 /* The range of load voltages in which an output should be flat: from a little inside the
@@ -115,11 +72,12 @@ static void add_output(struct layout *layout, struct figure *figure,
         figure->edges[figure->edge_count++] =
             (struct figure_edge){.x = row->compliance, .text = "", .series = index};
     }
-    add_note(figure, output_note(layout, row));
+    figures_note(figure, output_note(layout, row));
     for (int k = 0; k < row->event_count; k++) {
-        add_note(figure, layout_format(layout, "at %s: %s",
-                                       value_of(layout, row->events[k].at, DIMENSION_VOLTAGE),
-                                       layout_clean(layout, row->events[k].text)));
+        figures_note(figure,
+                     layout_format(layout, "at %s: %s",
+                                   figures_value(layout, row->events[k].at, DIMENSION_VOLTAGE),
+                                   layout_clean(layout, row->events[k].text)));
     }
 }
 
@@ -130,12 +88,12 @@ static void detail_output(struct layout *layout, struct figure *figure,
     const struct output *output = row->output;
     figure->title = layout_format(layout, "Output %s: current against load voltage",
                                   layout_short(layout, output->name, 30));
-    figure->marks[0].text =
-        layout_format(layout, "%s at %s", value_of(layout, fabs(row->current), DIMENSION_CURRENT),
-                      round_of(layout, output->at, DIMENSION_VOLTAGE));
+    figure->marks[0].text = layout_format(
+        layout, "%s at %s", figures_value(layout, fabs(row->current), DIMENSION_CURRENT),
+        figures_round(layout, output->at, DIMENSION_VOLTAGE));
     if (figure->edge_count > 0) {
-        figure->edges[0].text = layout_format(layout, "compliance %s",
-                                              value_of(layout, row->compliance, DIMENSION_VOLTAGE));
+        figure->edges[0].text = layout_format(
+            layout, "compliance %s", figures_value(layout, row->compliance, DIMENSION_VOLTAGE));
     }
     figure->band.from = isfinite(row->low) ? row->low : output->from;
     figure->band.to = isfinite(row->high) ? row->high : output->to;
@@ -146,7 +104,7 @@ static void detail_output(struct layout *layout, struct figure *figure,
 static bool shares_picture(const struct output_result *first, const struct output_result *row)
 {
     double a = fabs(first->current), b = fabs(row->current);
-    return a > 0.0 && b > 0.0 && a < shared_span * b && b < shared_span * a;
+    return a > 0.0 && b > 0.0 && a < FIGURES_SPAN * b && b < FIGURES_SPAN * a;
 }
 
 static void add_outputs(struct layout *layout, struct figure_list *figures,
@@ -155,8 +113,8 @@ static void add_outputs(struct layout *layout, struct figure_list *figures,
     int k = 0;
     while (k < result->output_count) {
         const struct output_result *first = &result->outputs[k];
-        struct figure *figure = add_figure(layout, figures);
-        if (figure == NULL || !make_room(layout, figure, SHARED_LIMIT)) {
+        struct figure *figure = figures_add(layout, figures);
+        if (figure == NULL || !figures_room(layout, figure, SHARED_LIMIT)) {
             return;
         }
         figure->x = load_axis;
@@ -181,41 +139,6 @@ static void add_outputs(struct layout *layout, struct figure_list *figures,
     }
 }
 
-/* A compound unit takes no prefix, and temperatures are shown in degrees Celsius. */
-static struct figure_axis axis_for(struct layout *layout, const char *name,
-                                   struct dimension dimension)
-{
-    char unit[64];
-    dimension_unit(dimension, unit, sizeof unit);
-    bool is_simple = true;
-    for (const char *at = unit; *at != '\0'; at++) {
-        is_simple = is_simple && *at != '/' && *at != '^' && *at != '*';
-    }
-    return (struct figure_axis){
-        layout_short(layout, name, 40),
-        markup_units(layout->arena, layout_format(layout, "%s", unit)),
-        is_simple,
-    };
-}
-
-static bool is_share(const struct probe *probe)
-{
-    return probe->kind == PROBE_OUTPUT &&
-           (probe->quantity == OUTPUT_FLATNESS || probe->quantity == OUTPUT_SIGMA ||
-            probe->quantity == OUTPUT_LINE || probe->quantity == OUTPUT_TEMPCO);
-}
-
-static struct figure_axis knob_axis(struct layout *layout, const struct sweep *sweep)
-{
-    if (sweep->knob.kind == KNOB_TEMPERATURE) {
-        return (struct figure_axis){"temperature",
-                                    "\xC2\xB0"
-                                    "C",
-                                    false};
-    }
-    return axis_for(layout, sweep->knob.name, sweep->knob.dimension);
-}
-
 /* The middle value of a curve, from which its close-up counts. */
 static double middle_value(const double *values, int count)
 {
@@ -227,7 +150,7 @@ static const char *family_name(struct layout *layout, const struct sweep *sweep,
 {
     const char *shown = sweep->family.kind == KNOB_TEMPERATURE
                             ? show_celsius(layout, value)
-                            : round_of(layout, value, sweep->family.dimension);
+                            : figures_round(layout, value, sweep->family.dimension);
     return layout_format(layout, "%s = %s", layout_short(layout, sweep->family.name, 12), shown);
 }
 
@@ -241,7 +164,7 @@ static bool add_column(struct layout *layout, struct figure *figure, const struc
         return false;
     }
     double zero = sweep->knob.kind == KNOB_TEMPERATURE ? 273.15 : 0.0;
-    double factor = is_share(&sweep->shown[quantity]) ? 100.0 : 1.0;
+    double factor = figures_is_share(&sweep->shown[quantity]) ? 100.0 : 1.0;
     for (int k = 0; k < series->count; k++) {
         x[k] = series->knob[k] - zero;
         y[k] = series->values[k * sweep->shown_count + quantity] * factor;
@@ -257,31 +180,14 @@ static bool add_column(struct layout *layout, struct figure *figure, const struc
         .flat_to = fmax(sweep->from, sweep->to) - zero,
     };
     for (int k = 0; k < series->event_count; k++) {
-        add_note(figure,
-                 layout_format(layout, "at %s: %s",
-                               sweep->knob.kind == KNOB_TEMPERATURE
-                                   ? show_celsius(layout, series->events[k].at)
-                                   : value_of(layout, series->events[k].at, sweep->knob.dimension),
-                               layout_clean(layout, series->events[k].text)));
+        figures_note(figure, layout_format(layout, "at %s: %s",
+                                           sweep->knob.kind == KNOB_TEMPERATURE
+                                               ? show_celsius(layout, series->events[k].at)
+                                               : figures_value(layout, series->events[k].at,
+                                                               sweep->knob.dimension),
+                                           layout_clean(layout, series->events[k].text)));
     }
     return true;
-}
-
-/* Zero stays on the axis unless the curves are far from it and vary little. */
-static bool wants_zero(const struct figure *figure)
-{
-    double low = (double)INFINITY, high = (double)-INFINITY;
-    for (int s = 0; s < figure->series_count; s++) {
-        for (int k = 0; k < figure->series[s].count; k++) {
-            double y = figure->series[s].y[k];
-            if (isfinite(y)) {
-                low = fmin(low, y);
-                high = fmax(high, y);
-            }
-        }
-    }
-    double greatest = fmax(fabs(low), fabs(high));
-    return !(high - low > 0.02 * greatest && high - low < 0.5 * greatest && low * high > 0.0);
 }
 
 static void finish_sweep(struct layout *layout, struct figure *figure, const struct sweep *sweep,
@@ -289,7 +195,7 @@ static void finish_sweep(struct layout *layout, struct figure *figure, const str
 {
     figure->title =
         layout_format(layout, "%s against %s", what, layout_short(layout, sweep->knob.name, 30));
-    figure->keeps_zero = wants_zero(figure);
+    figure->keeps_zero = figures_wants_zero(figure);
     if (figure->keeps_zero) {
         figure_choose_close_up(figure);
     }
@@ -306,13 +212,13 @@ static void add_sweep(struct layout *layout, struct figure_list *figures,
         for (int before = 0; before < q && !sweep->has_family; before++) {
             is_done =
                 is_done || (dimension_equal(sweep->shown[before].dimension, probe->dimension) &&
-                            is_share(&sweep->shown[before]) == is_share(probe));
+                            figures_is_share(&sweep->shown[before]) == figures_is_share(probe));
         }
-        struct figure *figure = is_done ? NULL : add_figure(layout, figures);
+        struct figure *figure = is_done ? NULL : figures_add(layout, figures);
         if (figure == NULL) {
             continue;
         }
-        if (!make_room(layout, figure, table->series_count * sweep->shown_count)) {
+        if (!figures_room(layout, figure, table->series_count * sweep->shown_count)) {
             return;
         }
         const char *name = layout_short(layout, probe->text, 40);
@@ -321,7 +227,7 @@ static void add_sweep(struct layout *layout, struct figure_list *figures,
                 bool fits = other == q ||
                             (!sweep->has_family &&
                              dimension_equal(sweep->shown[other].dimension, probe->dimension) &&
-                             is_share(&sweep->shown[other]) == is_share(probe));
+                             figures_is_share(&sweep->shown[other]) == figures_is_share(probe));
                 if (fits && !add_column(layout, figure, sweep, &table->series[s], other)) {
                     return;
                 }
@@ -329,22 +235,43 @@ static void add_sweep(struct layout *layout, struct figure_list *figures,
         }
         bool is_shared = !sweep->has_family && figure->series_count > 1;
         const char *what = is_shared ? "Quantities" : name;
-        figure->x = knob_axis(layout, sweep);
-        figure->y = is_share(probe)
+        figure->x = figures_knob_axis(layout, &sweep->knob);
+        figure->y = figures_is_share(probe)
                         ? (struct figure_axis){name, "%", false}
-                        : axis_for(layout, is_shared ? "value" : name, probe->dimension);
+                        : figures_axis(layout, is_shared ? "value" : name, probe->dimension);
         finish_sweep(layout, figure, sweep, what);
     }
 }
 
-struct figure_list figures_of(struct layout *layout, const struct result *result)
+struct figure_list figures_of_curves(struct layout *layout, const struct result *result)
 {
     struct figure_list figures = {NULL, 0, 0};
     if (result->point.solver.converged) {
         add_outputs(layout, &figures, result);
-        for (int k = 0; k < result->sweep_count; k++) {
+        /* those of a spread stand as its conditions */
+        const bool has_sweeps = strcmp(result->command, "spread") != 0;
+        for (int k = 0; has_sweeps && k < result->sweep_count; k++) {
             add_sweep(layout, &figures, &result->sweeps[k]);
         }
     }
     return figures;
+}
+
+struct figure_list figures_of(struct layout *layout, const struct result *result)
+{
+    static const struct {
+        const char *command;
+        struct figure_list (*make)(struct layout *layout, const struct result *result);
+    } own[] = {
+        {"states", figures_of_states},
+        {"spread", figures_of_spread},
+        {"explain", figures_of_reasons},
+        {"sensitivity", figures_of_ranking},
+    };
+    for (size_t k = 0; k < sizeof own / sizeof own[0]; k++) {
+        if (strcmp(result->command, own[k].command) == 0) {
+            return own[k].make(layout, result);
+        }
+    }
+    return figures_of_curves(layout, result);
 }

@@ -10,8 +10,19 @@ struct figure_list {
     int count, capacity;
 };
 
-/* All pictures of a result; texts and arrays in the layout's arena, curves borrowed from the
- * result. No figure: the result holds no curve. When memory is short the arena tells. */
+/* All pictures of a result, by its command; texts and arrays in the layout's arena, curves borrowed
+ * from the result. No figure: the result holds nothing to draw. When memory is short the arena
+ * tells. */
 struct figure_list figures_of(struct layout *layout, const struct result *result);
+
+/* Its parts: load curves and sweeps; the loop of `states`; samples, causes and conditions of
+ * `spread`; samples alone; conditions alone; shares of the effects; ranked derivatives. */
+struct figure_list figures_of_curves(struct layout *layout, const struct result *result);
+struct figure_list figures_of_states(struct layout *layout, const struct result *result);
+struct figure_list figures_of_spread(struct layout *layout, const struct result *result);
+struct figure_list figures_of_samples(struct layout *layout, const struct result *result);
+struct figure_list figures_of_conditions(struct layout *layout, const struct result *result);
+struct figure_list figures_of_reasons(struct layout *layout, const struct result *result);
+struct figure_list figures_of_ranking(struct layout *layout, const struct result *result);
 
 #endif

@@ -10,6 +10,7 @@
 #include "report/json_parts.h"
 #include "report/json_states.h"
 #include "report/json_remedies.h"
+#include "report/page_parts.h"
 
 enum { SCHEMA_VERSION = 1, DIGITS = 17 };
 
@@ -140,6 +141,7 @@ static void put_hands(struct writer *writer, json_t *root, const struct result *
         put_number(writer, object, "hand", row->hand->value);
         put_number(writer, object, "computed", row->computed);
         put_number(writer, object, "difference", row->difference);
+        put_number(writer, object, "square_law", row->in_hand_view);
         if (k < result->explanation_count && result->explanations[k].trouble == NULL) {
             const struct explanation *why = &result->explanations[k];
             put_text(writer, object, "shares_as", why->as_conductance ? "conductance" : NULL);
@@ -147,6 +149,19 @@ static void put_hands(struct writer *writer, json_t *root, const struct result *
             put_text(writer, object, "first_with", why->first_with);
             put(writer, object, "shares", json_shares(why));
         }
+    }
+}
+
+static void put_limit(struct writer *writer, json_t *object, const struct requirement *requirement)
+{
+    const bool is_within = requirement->relation == RELATION_WITHIN;
+    put_text(writer, object, "relation",
+             is_within                                 ? "within"
+             : requirement->relation == RELATION_BELOW ? "below"
+                                                       : "above");
+    put_number(writer, object, "limit", requirement->value);
+    if (is_within) {
+        put_number(writer, object, "tolerance", requirement->tolerance);
     }
 }
 
@@ -160,7 +175,9 @@ static void put_requirements(struct writer *writer, json_t *root, const struct r
         put(writer, object, "line",
             json_integer(source_line(&result->circuit->cell->sources, row->requirement->where)));
         put_text(writer, object, "quantity", row->requirement->probe.text);
+        put_limit(writer, object, row->requirement);
         put_number(writer, object, "computed", row->computed);
+        put_number(writer, object, "margin", row->margin);
         if (row->judgement == JUDGED_NOT) {
             put(writer, object, "judged", json_false());
         } else {
@@ -187,6 +204,7 @@ static void put_series(struct writer *writer, json_t *array, const struct sweep 
                     sweep->shown_count);
     }
     put_events(writer, object, series->events, series->event_count);
+    put(writer, object, "lost", json_integer(series->lost));
 }
 
 static void put_sweeps(struct writer *writer, json_t *root, const struct result *result)
@@ -233,19 +251,32 @@ static void put_remedies(struct writer *writer, json_t *root, const struct resul
     }
 }
 
+static void put_caution(struct writer *writer, json_t *array, const struct caution *caution)
+{
+    json_t *object = append_object(writer, array);
+    put_text(writer, object, "code", caution->code);
+    if (caution->line > 0) {
+        put(writer, object, "line", json_integer(caution->line));
+    }
+    put_text(writer, object, "thing", caution->thing);
+    put_text(writer, object, "text", caution->text);
+    put_text(writer, object, "rule", caution->rule);
+}
+
+/* The last is always there: what every text ends with. */
 static void put_cautions(struct writer *writer, json_t *root, const struct caution_list *cautions)
 {
+    const struct caution always = {caution_name(CAUTION_MODEL), "", page_sign_off, NULL, 0};
     json_t *array = put_array(writer, root, "cautions");
     for (int k = 0; k < cautions->count; k++) {
-        const struct caution *caution = &cautions->list[k];
-        json_t *object = append_object(writer, array);
-        put_text(writer, object, "code", caution->code);
-        if (caution->line > 0) {
-            put(writer, object, "line", json_integer(caution->line));
+        put_caution(writer, array, &cautions->list[k]);
+    }
+    put_caution(writer, array, &always);
+    if (cautions->silenced_count > 0) {
+        json_t *silenced = put_array(writer, root, "silenced");
+        for (int k = 0; k < cautions->silenced_count; k++) {
+            put_caution(writer, silenced, &cautions->silenced[k]);
         }
-        put_text(writer, object, "thing", caution->thing);
-        put_text(writer, object, "text", caution->text);
-        put_text(writer, object, "rule", caution->rule);
     }
 }
 

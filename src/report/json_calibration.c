@@ -78,7 +78,7 @@ static json_t *append_object(struct writer *writer, json_t *array)
 
 /* "NAME_rms", "NAME_worst", "NAME_count" */
 static void put_figure(struct writer *writer, json_t *object, const char *name,
-                       const struct figure *figure)
+                       const struct misfit *figure)
 {
     char key[KEY_SIZE];
     if (figure->count == 0) {

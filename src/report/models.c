@@ -38,7 +38,7 @@ static void model_part(struct layout *layout, const struct model *model)
     table_begin(&table, layout);
     table_column(&table, (struct table_column){.head = ""});
     table_column(&table, (struct table_column){.head = "value", .right = true});
-    table_column(&table, (struct table_column){.head = "", .may_drop = false});
+    table_column(&table, (struct table_column){.head = "", .may_drop = 0});
     table_column(&table, (struct table_column){.head = "", .wraps = true});
     for (int k = 0; k < model->type->model_parameter_count; k++) {
         const struct parameter *parameter = &model->type->model_parameters[k];

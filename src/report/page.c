@@ -13,6 +13,20 @@ static bool is_only_solved(const struct result *result)
     return result->verdict == VERDICT_NO_REQUIREMENTS && strcmp(result->command, "review") != 0;
 }
 
+/* Points of the sweeps, and how many of them have no operating point. */
+static int lost_points(const struct result *result, int *all)
+{
+    int lost = 0;
+    *all = 0;
+    for (int k = 0; k < result->sweep_count; k++) {
+        for (int s = 0; s < result->sweeps[k].series_count; s++) {
+            lost += result->sweeps[k].series[s].lost;
+            *all += result->sweeps[k].series[s].count;
+        }
+    }
+    return lost;
+}
+
 const char *page_verdict_word(const struct layout *layout, const struct result *result)
 {
     static const char *const words[] = {
@@ -24,11 +38,19 @@ const char *page_verdict_word(const struct layout *layout, const struct result *
     if (layout->style.stopped) {
         return "STOPPED";
     }
-    return is_only_solved(result) ? "SOLVED" : words[result->verdict];
+    int all = 0;
+    return !is_only_solved(result)         ? words[result->verdict]
+           : lost_points(result, &all) > 0 ? "INCOMPLETE"
+                                           : "SOLVED";
 }
 
-static enum tone verdict_tone(const struct layout *layout, enum verdict verdict)
+static enum tone verdict_tone(const struct layout *layout, const struct result *result)
 {
+    const enum verdict verdict = result->verdict;
+    int all = 0;
+    if (lost_points(result, &all) > 0) {
+        return TONE_WARN;
+    }
     if (layout->style.stopped || verdict == VERDICT_NOT_MET || verdict == VERDICT_UNSOLVED) {
         return TONE_BAD;
     }
@@ -61,6 +83,11 @@ const char *page_verdict_reason(struct layout *layout, const struct result *resu
                      "nearest to it";
     }
     if (result->verdict == VERDICT_NO_REQUIREMENTS) {
+        int all = 0, lost = lost_points(result, &all);
+        if (is_only_solved(result) && lost > 0) {
+            return layout_format(layout, "%d of %d points of the sweep%s have no operating point",
+                                 lost, all, result->sweep_count == 1 ? "" : "s");
+        }
         return is_only_solved(result) ? ""
                                       : "the cell has no `require` line that can be judged here";
     }
@@ -148,7 +175,7 @@ void page_verdict(struct layout *layout, const struct result *result)
     const char *word = page_verdict_word(layout, result);
     int room = LAYOUT_MARGIN - text_width(word);
     struct buffer *out = layout->out;
-    buffer_text(out, layout_tone(layout, verdict_tone(layout, result->verdict)));
+    buffer_text(out, layout_tone(layout, verdict_tone(layout, result)));
     buffer_text(out, word);
     buffer_text(out, layout_tone(layout, TONE_PLAIN));
     buffer_repeat(out, ' ', room);

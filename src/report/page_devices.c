@@ -11,14 +11,14 @@
 enum { DEVICE_LIMIT = 60, NAME_LIMIT = 24 };
 
 const struct quantity_column transistor_columns[TRANSISTOR_COLUMN_COUNT] = {
-    {{"id", "ic"}, false},       {{"vgs", "vbe"}, true},        {{"vds", "vce"}, false},
-    {{"headroom", NULL}, false}, {{"inversion", "beta"}, true}, {{"gm", NULL}, true},
-    {{"ro", NULL}, true},
+    {{"id", "ic"}, 0},        {{"vgs", "vbe"}, 1},     {{"vds", "vce"}, 0},
+    {{"overdrive", NULL}, 1}, {{"headroom", NULL}, 0}, {{"inversion", "beta"}, 1},
+    {{"gm", NULL}, 3},        {{"ro", NULL}, 3},
 };
 const struct quantity_column part_columns[PART_COLUMN_COUNT] = {
-    {{"i", NULL}, false},
-    {{"v", NULL}, false},
-    {{"power", NULL}, false},
+    {{"i", NULL}, 0},
+    {{"v", NULL}, 0},
+    {{"power", NULL}, 0},
 };
 
 int column_quantity(const struct quantity_column *column, const struct device_type *type, int *name)
@@ -55,7 +55,7 @@ static void device_table(struct layout *layout, const struct quantity_column *co
     struct table table;
     table_begin(&table, layout);
     table_column(&table, (struct table_column){.head = ""});
-    table_column(&table, (struct table_column){.head = "kind", .may_drop = true});
+    table_column(&table, (struct table_column){.head = "kind", .may_drop = 2});
     table_column(&table, (struct table_column){.head = "region", .wraps = true});
     for (int c = 0; c < column_count; c++) {
         table_column(&table, (struct table_column){

@@ -10,7 +10,7 @@
 
 enum { BAR_COLUMNS = 40, BAR_ROWS = 16, CAUSES_SHOWN = 6, PROBES_WITH_CAUSES = 2 };
 
-static const char *samples_text(struct layout *layout, const struct mismatch_result *r)
+const char *page_samples(struct layout *layout, const struct mismatch_result *r)
 {
     const char *text = layout_format(layout, "%d random deviates; ", r->deviate_count);
     if (r->wanted == 0) {
@@ -191,7 +191,7 @@ void page_mismatch(struct layout *layout, const struct result *result)
                          "or tol= of a resistor)");
         return;
     }
-    layout_paragraph(layout, r->failed > 0 ? TONE_WARN : TONE_PLAIN, 0, samples_text(layout, r));
+    layout_paragraph(layout, r->failed > 0 ? TONE_WARN : TONE_PLAIN, 0, page_samples(layout, r));
     figures_table(layout, r);
     figures_remarks(layout, r);
     if (r->quantity_count > 0 && r->quantities[0].sampled.count > 1) {

@@ -16,6 +16,11 @@ void page_paper(struct layout *layout, const struct result *result);
 /* The effects behind each line of the paper, and what would meet a requirement that is not met;
  * both continue the part at hand. */
 void page_why(struct layout *layout, const struct result *result);
+/* A value or a change of an explanation, as the quantity itself is shown or as a conductance;
+ * whether its share number k is worth a row. */
+const char *why_value(struct layout *layout, const struct explanation *e, double value);
+const char *why_change(struct layout *layout, const struct explanation *e, double value);
+bool why_matters(const struct explanation *e, int k);
 void page_repairs(struct layout *layout, const struct result *result);
 /* States of a cell with a loop, and whether it starts; nothing where result->states is NULL. */
 void page_states(struct layout *layout, const struct result *result);
@@ -35,10 +40,10 @@ void page_closing(struct layout *layout);
 extern const char page_sign_off[];
 
 /* Columns of the device tables: each shows the first of its quantities that a device has. */
-enum { COLUMN_NAME_LIMIT = 2, TRANSISTOR_COLUMN_COUNT = 7, PART_COLUMN_COUNT = 3 };
+enum { COLUMN_NAME_LIMIT = 2, TRANSISTOR_COLUMN_COUNT = 8, PART_COLUMN_COUNT = 3 };
 struct quantity_column {
     const char *names[COLUMN_NAME_LIMIT];
-    bool may_drop;
+    int may_drop; /* as in table.h */
 };
 extern const struct quantity_column transistor_columns[TRANSISTOR_COLUMN_COUNT];
 extern const struct quantity_column part_columns[PART_COLUMN_COUNT];
@@ -48,6 +53,12 @@ int column_quantity(const struct quantity_column *column, const struct device_ty
 /* "vgs", "vbe" or "vgs, vbe", by what the shown devices have; "" when none has it. */
 const char *column_head(struct layout *layout, const struct quantity_column *column,
                         const struct device_result *const *shown, int count);
+
+/* "11 random deviates; 2000 samples of seed 1, each a full solve; 0 without an operating point" */
+const char *page_samples(struct layout *layout, const struct mismatch_result *mismatch);
+/* The unit that a drift is counted per: only temperatures and voltages have a usual one; else NULL.
+ */
+const char *drift_unit(const struct knob *knob);
 
 /* Samples, causes and yield. */
 void page_mismatch(struct layout *layout, const struct result *result);

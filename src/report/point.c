@@ -64,7 +64,7 @@ static void column_table(struct layout *layout, const struct device_type *type,
                                  .right = true,
                              });
     }
-    table_column(&table, (struct table_column){.head = "", .may_drop = true});
+    table_column(&table, (struct table_column){.head = "", .may_drop = 1});
     for (int q = 0; q < type->quantity_count; q++) {
         table_row(&table, TONE_QUIET);
         table_cell(&table, 0, type->quantities[q].name);

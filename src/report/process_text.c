@@ -115,7 +115,7 @@ static void write_defaults(const struct fit *fit, struct buffer *out)
     buffer_text(out, count > 0 ? "\n" : "");
 }
 
-static void write_figure(const char *name, const struct figure *figure, struct buffer *out)
+static void write_figure(const char *name, const struct misfit *figure, struct buffer *out)
 {
     if (figure->count > 0) {
         buffer_format(out, "%s%.1f %% rms, worst %+.0f %%", name, 100 * figure->rms,

@@ -58,18 +58,24 @@ void report_json(const struct result *result, const char *version, struct buffer
 void report_json_models(const struct circuit *circuit, const char *version, struct buffer *out);
 
 /*
- * report_csv: curves of the outputs (columns output,v,current; V and A), or, when the result has
- * sweeps, one row a point: the swept thing, the family, and each quantity with its SI unit in the
- * header; of a spread, one row a sample. RFC 4180: CRLF, quotes where needed. A value that does not
- * apply is empty.
+ * report_csv: curves of the outputs (columns output, v in V and current in A), or, when the result
+ * has sweeps, one row a point: the swept thing, the family, and each quantity with its SI unit in
+ * the header; of a spread, one row a sample. RFC 4180: CRLF, quotes where needed. A value that does
+ * not apply is empty.
  */
 void report_csv(const struct result *result, struct buffer *out);
 
-/* The curves as one SVG document; nothing when the result has none. */
+/* Curves and bars as one SVG document; nothing when the result has none. */
 void report_plot(const struct result *result, struct buffer *out);
 
-/* The review as one self-contained HTML file. */
-void report_web(const struct result *result, const struct report_style *style, const char *version,
-                struct buffer *out);
+/* What a page shows: a result, and beside a review what other verbs found of the same cell; NULL:
+ * nothing. */
+struct web_results {
+    const struct result *result, *spread, *states;
+};
+
+/* One self-contained HTML file. */
+void report_web(const struct web_results *results, const struct report_style *style,
+                const char *version, struct buffer *out);
 
 #endif

@@ -11,6 +11,8 @@ struct scale {
     double factor;                /* a tick is written as value * factor ... */
     int decimals;                 /* ... with so many digits behind the point */
     char unit[32];                /* "nA", "V", "ppm", "" */
+    double linear;                /* 0, or a logarithmic scale of both signs, straight between
+                                     -linear and linear; its ticks carry their own prefix */
     double pixel_low, pixel_high; /* where low and high are drawn */
 };
 
@@ -25,7 +27,17 @@ struct scale scale_make(const struct figure_axis *axis, double low, double high,
 /* For shares: "%", "ppm" or "ppb", by the size. */
 struct scale scale_make_share(double low, double high, int ticks);
 
+/* Logarithmic on both sides of zero, in whole decades; linear > 0. */
+struct scale scale_make_signed(const struct figure_axis *axis, double low, double high,
+                               double linear);
+
+/* The ticks, rising, at most SCALE_TICK_LIMIT; how many. */
+enum { SCALE_TICK_LIMIT = 40 };
+int scale_ticks(const struct scale *scale, double *ticks);
+
+/* What stands beside a tick: "0.5", or "-10 µA" on a logarithmic scale. */
+void scale_put_tick(const struct scale *scale, double tick, struct buffer *out);
+
 double scale_pixel(const struct scale *scale, double value);
-double scale_first_tick(const struct scale *scale);
 
 #endif

@@ -7,13 +7,19 @@
 
 enum { VALUE_SIZE = 64 };
 
+static void append(char *text, const char *more)
+{
+    const size_t length = strlen(text);
+    snprintf(text + length, VALUE_SIZE - length, "%s", more);
+}
+
 /* Written without a prefix: a plain number and its unit, if any. */
 static void fixed_text(double value, const char *unit, char *text)
 {
     number_show(value, SHOW_DIGITS, "", text, VALUE_SIZE / 2);
     if (unit[0] != '\0') {
-        strcat(text, " ");
-        strcat(text, unit);
+        append(text, " ");
+        append(text, unit);
     }
 }
 
@@ -21,6 +27,21 @@ static void fixed_text(double value, const char *unit, char *text)
 static bool is_prefixed(const char *unit)
 {
     return (unit[0] == 'A' || unit[0] == 'V') && (unit[1] == '/' || unit[1] == '*');
+}
+
+/* Voltages by or over a length are told in micrometres, as process data are: "4 mV*um", "6 V/um".
+ */
+static double in_micrometres(const char **unit)
+{
+    if (strcmp(*unit, "V*m") == 0) {
+        *unit = "V*um";
+        return 1e6;
+    }
+    if (strcmp(*unit, "V/m") == 0) {
+        *unit = "V/um";
+        return 1e-6;
+    }
+    return 1.0;
 }
 
 static void value_text(double value, struct dimension dimension, char *text)
@@ -32,9 +53,10 @@ static void value_text(double value, struct dimension dimension, char *text)
     } else if (isinf(value)) {
         snprintf(text, VALUE_SIZE, "unlimited");
     } else if (is_prefixed(unit)) {
-        const char first[] = {unit[0], '\0'};
-        number_show(value, SHOW_DIGITS, first, text, VALUE_SIZE / 2);
-        strcat(text, unit + 1); /* "170.0 uA/V^2" */
+        const char *shown = unit, first[] = {unit[0], '\0'};
+        double factor = in_micrometres(&shown);
+        number_show(value * factor, SHOW_DIGITS, first, text, VALUE_SIZE / 2);
+        append(text, shown + 1); /* "170.0 uA/V^2" */
     } else if (strpbrk(unit, "/^*") != NULL) {
         fixed_text(value, unit, text); /* "25.10 1/V" */
     } else {

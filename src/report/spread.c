@@ -130,8 +130,7 @@ static void ranges_part(struct layout *layout, const struct result *result)
 
 /* --- drift and supply ------------------------------------------------------------------------- */
 
-/* The unit that a drift is counted per: only temperatures and voltages have a usual one. */
-static const char *drift_unit(const struct knob *knob)
+const char *drift_unit(const struct knob *knob)
 {
     if (knob->kind == KNOB_TEMPERATURE) {
         return "/K";

@@ -1,7 +1,7 @@
 /* table.c: aligned columns. */
 #include "report/table.h"
 
-enum { COLUMN_GAP = 2, FIRST_COLUMN_LEAST = 8, WRAP_LEAST = 16 };
+enum { COLUMN_GAP = 2, DROP_MARKS = 3, FIRST_COLUMN_LEAST = 8, WRAP_LEAST = 16 };
 
 void table_begin(struct table *table, struct layout *layout)
 {
@@ -90,9 +90,11 @@ static void find_widths(const struct table *table, int *widths)
         widths[c] = widest == 0 ? 0 : head > widest ? head : widest;
     }
     int limit = table->layout->width;
-    for (int c = table->column_count - 1; c >= 0 && total_width(table, widths) > limit; c--) {
-        if (table->columns[c].may_drop) {
-            widths[c] = 0;
+    for (int mark = DROP_MARKS; mark > 0; mark--) {
+        for (int c = table->column_count - 1; c >= 0 && total_width(table, widths) > limit; c--) {
+            if (table->columns[c].may_drop == mark) {
+                widths[c] = 0;
+            }
         }
     }
     while (total_width(table, widths) > limit) {
@@ -172,7 +174,7 @@ static void write_line(struct table *table, const int *widths, const char **cell
 
 void table_write(struct table *table)
 {
-    int widths[TABLE_COLUMN_LIMIT];
+    int widths[TABLE_COLUMN_LIMIT] = {0};
     const char *cells[TABLE_COLUMN_LIMIT];
     if (table->row_count == 0 || arena_failed(table->layout->arena)) {
         return;

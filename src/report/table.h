@@ -2,8 +2,9 @@
  * table.h: aligned columns inside a layout.
  *
  * Columns are as wide as their widest cell. When a table is wider than the layout, first the
- * columns marked `may_drop` go, the rightmost first, then those marked `wraps` are broken at
- * spaces, the widest first, then the first column is shortened in its middle.
+ * columns marked `may_drop` go, the highest mark first and of equal ones the rightmost, then those
+ * marked `wraps` are broken at spaces, the widest first, then the first column is shortened in its
+ * middle.
  */
 #ifndef REPORT_TABLE_H
 #define REPORT_TABLE_H
@@ -16,7 +17,7 @@ struct table_column {
     const char *head; /* "" everywhere: the table has no heading line */
     bool right;       /* aligned right */
     bool wraps;
-    bool may_drop;
+    int may_drop; /* 0: never */
 };
 
 struct table {

@@ -33,28 +33,39 @@ static void put_head(struct layout *layout, const struct result *result, const c
     buffer_text(out, "</style>\n</head>\n");
 }
 
-void report_web(const struct result *result, const struct report_style *style, const char *version,
-                struct buffer *out)
+/* The more complete judgement leads: that of the spread, where there is one. */
+static void put_parts(struct layout *layout, const struct web_results *results)
+{
+    const struct result *result = results->result;
+    const struct result *judged = results->spread != NULL ? results->spread : result;
+    buffer_text(layout->out,
+                "<body>\n<a class=\"skip\" href=\"#cell\">Skip to the cell</a>\n<header>\n");
+    web_verdict(layout, judged);
+    buffer_text(layout->out, "</header>\n<main>\n");
+    if (result->point.solver.converged) {
+        web_requirements(layout, judged);
+        web_outputs(layout, result);
+        web_paper(layout, result);
+        web_devices(layout, result);
+        web_spread(layout, judged);
+    }
+    web_states(layout, results->states != NULL ? results->states : result);
+    web_cautions(layout, judged);
+    web_cell(layout, result);
+    web_evidence(layout, result);
+    buffer_text(layout->out, "</main>\n");
+}
+
+void report_web(const struct web_results *results, const struct report_style *style,
+                const char *version, struct buffer *out)
 {
     struct layout layout;
     if (!layout_begin(&layout, style, out)) {
         return;
     }
-    put_head(&layout, result, version);
-    buffer_text(out, "<body>\n<a class=\"skip\" href=\"#cell\">Skip to the cell</a>\n<header>\n");
-    web_verdict(&layout, result);
-    buffer_text(out, "</header>\n<main>\n");
-    if (result->point.solver.converged) {
-        web_requirements(&layout, result);
-        web_outputs(&layout, result);
-        web_paper(&layout, result);
-        web_devices(&layout, result);
-        web_states(&layout, result);
-    }
-    web_cautions(&layout, result);
-    web_cell(&layout, result);
-    web_evidence(&layout, result);
-    buffer_text(out, "</main>\n<script>\n");
+    put_head(&layout, results->result, version);
+    put_parts(&layout, results);
+    buffer_text(out, "<script>\n");
     buffer_text(out, web_script);
     buffer_text(out, "</script>\n</body>\n</html>\n");
     layout_end(&layout);

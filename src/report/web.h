@@ -2,7 +2,7 @@
 #ifndef REPORT_WEB_H
 #define REPORT_WEB_H
 
-#include "report/layout.h"
+#include "report/figures.h"
 
 /* The style sheet and the script of the page, made from web/ by the build. */
 extern const char web_style[];
@@ -26,6 +26,8 @@ void web_table_name(struct web_table *table, const char *text, int line);
 void web_table_value(struct web_table *table, double value, const char *shown);
 /* A bar from the middle, -1 to 1 of its half width. */
 void web_table_bar(struct web_table *table, double share);
+/* A bar from the left, 0 to 1 of its width. */
+void web_table_length(struct web_table *table, double share);
 void web_table_end(struct web_table *table);
 
 /* The parts, in the order they stand; each writes nothing when it has nothing to show. */
@@ -33,11 +35,25 @@ void web_verdict(struct layout *layout, const struct result *result);
 void web_requirements(struct layout *layout, const struct result *result);
 void web_outputs(struct layout *layout, const struct result *result);
 void web_paper(struct layout *layout, const struct result *result);
-void web_devices(struct layout *layout, const struct result *result);
+/* The resting states with the loop curve; `states` only. */
 void web_states(struct layout *layout, const struct result *result);
+/* Conditions and mismatch; `spread` only. */
+void web_spread(struct layout *layout, const struct result *result);
+void web_devices(struct layout *layout, const struct result *result);
 void web_cautions(struct layout *layout, const struct result *result);
 void web_cell(struct layout *layout, const struct result *result);
 void web_evidence(struct layout *layout, const struct result *result);
+
+/* A picture with its crosshair, and all of a list. */
+void web_figure(struct layout *layout, const struct figure *figure);
+void web_figures(struct layout *layout, const struct figure_list *figures);
+
+/* One paragraph; classes "" for none. */
+void web_paragraph(struct layout *layout, const char *classes, const char *text);
+/* A value as show.h makes it, with proper signs in its unit. */
+const char *web_units(struct layout *layout, const char *shown);
+/* Line of the cell file itself, 0 when the span lies elsewhere. */
+int web_line(const struct result *result, struct span where);
 
 /* A heading that can be jumped to. */
 void web_heading(struct layout *layout, const char *id, const char *text);

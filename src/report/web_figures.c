@@ -26,21 +26,38 @@ static void put_axis(struct buffer *out, const char *key, const struct figure_ax
     buffer_format(out, ",\"prefix\":%s},", axis->takes_prefix ? "true" : "false");
 }
 
-/* The picture, the data its crosshair reads, and the line it reads them out on. */
-static void put_figure(struct layout *layout, const struct figure *figure)
+/* Bars as a curve through the middles of their tops, which the crosshair then follows. */
+static void put_bars(struct buffer *out, const struct figure *figure)
 {
-    struct buffer *out = layout->out;
-    buffer_text(out, "<div class=\"plot\" tabindex=\"0\" role=\"group\" aria-label=\"");
-    markup_text(out, figure->title);
-    buffer_text(out, "; arrow keys move the crosshair\">\n");
-    figure_draw(figure, FIGURE_IN_PAGE, 0, out);
+    markup_json(out, figure->y.name);
+    buffer_text(out, ",\"x\":[");
+    for (int k = 0; k < figure->bar_count; k++) {
+        buffer_text(out, k > 0 ? "," : "");
+        markup_number(out, 0.5 * (figure->bars[k].from + figure->bars[k].to));
+    }
+    buffer_text(out, "],\"y\":[");
+    for (int k = 0; k < figure->bar_count; k++) {
+        buffer_text(out, k > 0 ? "," : "");
+        markup_number(out, figure->bars[k].y);
+    }
+    buffer_text(out, "]}");
+}
+
+/* The data that the crosshair of a picture reads. */
+static void put_data(struct buffer *out, const struct figure *figure)
+{
+    const bool has_bars = figure->bar_count > 0;
     buffer_text(out, "<script type=\"application/json\">{");
     put_axis(out, "x", &figure->x);
     put_axis(out, "y", &figure->y);
-    buffer_text(out, "\"series\":[");
+    buffer_format(out, "\"bars\":%s,\"series\":[", has_bars ? "true" : "false");
+    if (has_bars) {
+        buffer_text(out, "{\"name\":");
+        put_bars(out, figure);
+    }
     for (int s = 0; s < figure->series_count; s++) {
         const struct figure_series *series = &figure->series[s];
-        buffer_text(out, s > 0 ? ",{\"name\":" : "{\"name\":");
+        buffer_text(out, s > 0 || has_bars ? ",{\"name\":" : "{\"name\":");
         markup_json(out, series->name);
         buffer_text(out, ",");
         put_numbers(out, "x", series->x, series->count);
@@ -48,8 +65,28 @@ static void put_figure(struct layout *layout, const struct figure *figure)
         put_numbers(out, "y", series->y, series->count);
         buffer_text(out, "}");
     }
-    buffer_text(out, "]}</script>\n<p class=\"readout quiet\" aria-live=\"polite\">Point at the "
-                     "curve, or use the arrow keys, to read values.</p>\n</div>\n");
+    buffer_text(out, "]}</script>\n");
+}
+
+void web_figure(struct layout *layout, const struct figure *figure)
+{
+    struct buffer *out = layout->out;
+    buffer_text(out, "<div class=\"plot\" tabindex=\"0\" role=\"group\" aria-label=\"");
+    markup_text(out, figure->title);
+    buffer_text(out, "; arrow keys move the crosshair\">\n");
+    figure_draw(figure, FIGURE_IN_PAGE, 0, out);
+    put_data(out, figure);
+    buffer_format(out,
+                  "<p class=\"readout quiet\" aria-live=\"polite\">Point at the %s, or use the "
+                  "arrow keys, to read values.</p>\n</div>\n",
+                  figure->bar_count > 0 ? "bars" : "curve");
+}
+
+void web_figures(struct layout *layout, const struct figure_list *figures)
+{
+    for (int k = 0; k < figures->count; k++) {
+        web_figure(layout, &figures->list[k]);
+    }
 }
 
 static void output_row(struct layout *layout, struct web_table *table,
@@ -83,7 +120,7 @@ void web_outputs(struct layout *layout, const struct result *result)
     static const bool numbers[] = {false, false, true, true, true, true,
                                    true,  true,  true, true, true};
     struct web_table table;
-    struct figure_list figures = figures_of(layout, result);
+    struct figure_list figures = figures_of_curves(layout, result);
     if (result->output_count > 0) {
         web_heading(layout, "outputs", result->output_count == 1 ? "Output" : "Outputs");
         web_table_begin(&table, layout->out, "What each output does", heads, numbers, 11);
@@ -92,9 +129,7 @@ void web_outputs(struct layout *layout, const struct result *result)
         }
         web_table_end(&table);
     }
-    for (int k = 0; k < figures.count; k++) {
-        put_figure(layout, &figures.list[k]);
-    }
+    web_figures(layout, &figures);
 }
 
 static void rail_table(struct layout *layout, const struct result *result)

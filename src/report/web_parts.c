@@ -1,4 +1,4 @@
-/* web_parts.c: verdict, requirements, paper, cautions, the cell and the evidence as HTML. */
+/* web_parts.c: verdict, requirements, cautions, the cell and the evidence as HTML. */
 #include <math.h>
 #include <string.h>
 
@@ -20,16 +20,26 @@ void web_heading(struct layout *layout, const char *id, const char *text)
     buffer_text(layout->out, "</h2>\n");
 }
 
-/* Line of the cell file itself, 0 when the span lies elsewhere. */
-static int cell_line(const struct result *result, struct span where)
+int web_line(const struct result *result, struct span where)
 {
     const struct cell *cell = result->circuit->cell;
     return where.file == cell->tree.file ? source_line(&cell->sources, where) : 0;
 }
 
-static const char *units_of(struct layout *layout, const char *shown)
+const char *web_units(struct layout *layout, const char *shown)
 {
     return markup_units(layout->arena, shown);
+}
+
+void web_paragraph(struct layout *layout, const char *classes, const char *text)
+{
+    buffer_text(layout->out, "<p");
+    if (classes[0] != '\0') {
+        buffer_format(layout->out, " class=\"%s\"", classes);
+    }
+    buffer_text(layout->out, ">");
+    web_text(layout, text);
+    buffer_text(layout->out, "</p>\n");
 }
 
 void web_verdict(struct layout *layout, const struct result *result)
@@ -77,7 +87,7 @@ void web_requirements(struct layout *layout, const struct result *result)
         bool is_bad = row->judgement == JUDGED_NOT_MET || row->judgement == JUDGED_UNKNOWN;
         web_table_row(&table);
         web_table_name(&table, requirement_text(layout, row->requirement),
-                       cell_line(result, row->requirement->where));
+                       web_line(result, row->requirement->where));
         buffer_format(layout->out, "<td class=\"%s\"><strong>%s</strong></td>",
                       is_bad                         ? "bad"
                       : row->judgement == JUDGED_MET ? "good"
@@ -87,58 +97,8 @@ void web_requirements(struct layout *layout, const struct result *result)
             &table, row->computed,
             row->judgement == JUDGED_UNKNOWN
                 ? "no value"
-                : units_of(layout, show_probe(layout, &row->requirement->probe, row->computed)));
-        web_table_text(&table, units_of(layout, requirement_margin(layout, result, row)));
-    }
-    web_table_end(&table);
-}
-
-/* The greatest relative difference, for the scale of the bars; at most 1. */
-static double greatest_share(const struct result *result)
-{
-    double greatest = 0.0;
-    for (int k = 0; k < result->hand_count; k++) {
-        double share = fabs(result->hands[k].difference / result->hands[k].hand->value);
-        greatest = isfinite(share) ? fmax(greatest, share) : greatest;
-    }
-    return fmin(greatest, 1.0);
-}
-
-void web_paper(struct layout *layout, const struct result *result)
-{
-    static const char *const heads[] = {"Quantity", "Paper",      "Computed",
-                                        "Differs",  "Square law", "Difference"};
-    static const bool numbers[] = {false, true, true, true, true, false};
-    double scale = greatest_share(result);
-    struct web_table table;
-    if (result->hand_count == 0) {
-        return;
-    }
-    web_heading(layout, "paper", "Paper against computed");
-    web_table_begin(&table, layout->out,
-                    layout_format(layout, "What the paper says; a whole bar is %s or more",
-                                  show_share(layout, scale, "", false)),
-                    heads, numbers, 6);
-    for (int k = 0; k < result->hand_count; k++) {
-        const struct hand_result *row = &result->hands[k];
-        const struct probe *probe = &row->hand->probe;
-        double share = row->difference / fabs(row->hand->value);
-        web_table_row(&table);
-        web_table_name(&table, probe->text, cell_line(result, row->hand->where));
-        web_table_value(&table, row->hand->value,
-                        units_of(layout, show_probe(layout, probe, row->hand->value)));
-        web_table_value(&table, row->computed,
-                        units_of(layout, show_probe(layout, probe, row->computed)));
-        web_table_value(
-            &table, share,
-            layout_format(layout, "%s (%s)",
-                          units_of(layout, show_probe_difference(layout, probe, row->difference)),
-                          isfinite(share) ? show_share(layout, share, "", true) : "-"));
-        web_table_value(&table, row->in_hand_view,
-                        isnan(row->in_hand_view)
-                            ? ""
-                            : units_of(layout, show_probe(layout, probe, row->in_hand_view)));
-        web_table_bar(&table, scale > 0.0 ? share / scale : (double)NAN);
+                : web_units(layout, show_probe(layout, &row->requirement->probe, row->computed)));
+        web_table_text(&table, web_units(layout, requirement_margin(layout, result, row)));
     }
     web_table_end(&table);
 }
@@ -169,41 +129,11 @@ static bool seen_before(const struct caution_list *cautions, int index)
 }
 
 /* Those of one kind stand together, with the rule behind them said once. */
-void web_states(struct layout *layout, const struct result *result)
-{
-    const struct states_result *found = result->states;
-    struct buffer *out = layout->out;
-    if (found == NULL || found->state_count == 0) {
-        return;
-    }
-    web_heading(layout, "states", "States");
-    buffer_text(out, "<p>");
-    web_text(layout, states_proof_text(layout, found));
-    buffer_text(out, "; <b>");
-    web_text(layout, states_startup_text(found));
-    buffer_text(out, "</b>. The loop ");
-    web_text(layout, found->loop_path);
-    buffer_text(out, " could hold more than one.</p>\n<ul>\n");
-    for (int k = 0; k < found->state_count; k++) {
-        const struct state_result *state = &found->states[k];
-        buffer_format(out, "<li>state %d, ", k + 1);
-        web_text(layout, show_value(layout, state->power, DIMENSION_POWER));
-        buffer_format(out, ": %s%s</li>\n", state->can_hold ? "can be held" : "cannot be held",
-                      k == found->wanted ? "; this page shows it" : "");
-    }
-    for (int k = 0; k < found->reason_count; k++) {
-        buffer_text(out, "<li>at risk: ");
-        web_text(layout, found->reasons[k]);
-        buffer_text(out, "</li>\n");
-    }
-    buffer_text(out, "</ul>\n");
-}
-
 void web_cautions(struct layout *layout, const struct result *result)
 {
     const struct caution_list *cautions = &result->cautions;
     struct buffer *out = layout->out;
-    if (cautions->count == 0) {
+    if (cautions->count == 0 && cautions->silenced_count == 0) {
         return;
     }
     web_heading(layout, "cautions", "Cautions");
@@ -221,6 +151,14 @@ void web_cautions(struct layout *layout, const struct result *result)
             if (strcmp(cautions->list[m].code, first->code) == 0) {
                 one_caution(layout, &cautions->list[m]);
             }
+        }
+        buffer_text(out, "</ul>\n");
+    }
+    if (cautions->silenced_count > 0) {
+        web_paragraph(layout, "quiet", "Silenced by `quiet` lines of the cell:");
+        buffer_text(out, "<ul class=\"cautions quiet\" id=\"silenced\">\n");
+        for (int k = 0; k < cautions->silenced_count; k++) {
+            one_caution(layout, &cautions->silenced[k]);
         }
         buffer_text(out, "</ul>\n");
     }

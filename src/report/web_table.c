@@ -76,6 +76,20 @@ void web_table_bar(struct web_table *table, double share)
     buffer_text(out, "%\"></i></div></td>");
 }
 
+void web_table_length(struct web_table *table, double share)
+{
+    struct buffer *out = table->out;
+    if (!isfinite(share)) {
+        buffer_text(out, "<td></td>");
+        return;
+    }
+    buffer_text(out, "<td data-value=\"");
+    markup_number(out, share);
+    buffer_text(out, "\"><div class=\"bar from\" aria-hidden=\"true\"><i style=\"left:0;width:");
+    markup_fixed(out, 100.0 * fmin(fmax(share, 0.0), 1.0), 2);
+    buffer_text(out, "%\"></i></div></td>");
+}
+
 void web_table_end(struct web_table *table)
 {
     buffer_text(table->out, table->row_count > 0 ? "</tr>\n" : "");

@@ -17,14 +17,13 @@ static struct dimension unit_of(const struct explanation *e)
     return e->as_conductance ? DIMENSION_CONDUCTANCE : e->hand->probe.dimension;
 }
 
-/* As the quantity itself is shown, or as a conductance. */
-static const char *show_part(struct layout *layout, const struct explanation *e, double value)
+const char *why_value(struct layout *layout, const struct explanation *e, double value)
 {
     return e->as_conductance ? show_value(layout, value, unit_of(e))
                              : show_probe(layout, &e->hand->probe, value);
 }
 
-static const char *show_change(struct layout *layout, const struct explanation *e, double value)
+const char *why_change(struct layout *layout, const struct explanation *e, double value)
 {
     return e->as_conductance ? show_signed(layout, value, unit_of(e))
                              : show_probe_difference(layout, &e->hand->probe, value);
@@ -41,17 +40,22 @@ static double greatest(const struct explanation *e)
     return e->share_count > 0 ? fabs(e->shares[0].share) : 0;
 }
 
+bool why_matters(const struct explanation *e, int k)
+{
+    return fabs(e->shares[k].share) > least_row * greatest(e);
+}
+
 static void heading(struct layout *layout, const struct explanation *e)
 {
     const double difference = e->computed - e->paper;
-    const char *square_law = isnan(e->hand_view) ? "none" : show_part(layout, e, e->hand_view);
+    const char *square_law = isnan(e->hand_view) ? "none" : why_value(layout, e, e->hand_view);
     layout_paragraph(
         layout, TONE_STRONG, 2,
         layout_format(layout, "%s%s: paper %s, square law %s, computed %s: %s%s%s%s",
                       layout_clean(layout, e->hand->probe.text),
                       e->as_conductance ? " (as the conductance 1/R)" : "",
-                      show_part(layout, e, e->paper), square_law, show_part(layout, e, e->computed),
-                      show_change(layout, e, difference), fabs(e->paper) > 0 ? " (" : "",
+                      why_value(layout, e, e->paper), square_law, why_value(layout, e, e->computed),
+                      why_change(layout, e, difference), fabs(e->paper) > 0 ? " (" : "",
                       show_of_paper(layout, e, difference), fabs(e->paper) > 0 ? ")" : ""));
 }
 
@@ -64,16 +68,16 @@ static void shares_table(struct layout *layout, const struct explanation *e)
     table_column(&table, (struct table_column){.head = "of the paper", .right = true});
     for (int k = 0; k < e->share_count; k++) {
         const struct effect_share *row = &e->shares[k];
-        if (fabs(row->share) > least_row * greatest(e)) {
+        if (why_matters(e, k)) {
             table_row(&table, TONE_PLAIN);
             table_cell(&table, 0, row->effect);
-            table_cell(&table, 1, show_change(layout, e, row->share));
+            table_cell(&table, 1, why_change(layout, e, row->share));
             table_cell(&table, 2, show_of_paper(layout, e, row->share));
         }
     }
     table_row(&table, TONE_STRONG);
     table_cell(&table, 0, "together");
-    table_cell(&table, 1, show_change(layout, e, e->computed - e->paper));
+    table_cell(&table, 1, why_change(layout, e, e->computed - e->paper));
     table_cell(&table, 2, show_of_paper(layout, e, e->computed - e->paper));
     table_write(&table);
 }
@@ -131,7 +135,7 @@ static const char *short_why(struct layout *layout, const struct explanation *e)
         if (fabs(row->share) > least_named * greatest(e)) {
             text = layout_format(layout, "%s%s%s %s", text == NULL ? "" : text,
                                  text == NULL ? "" : ", ", row->effect,
-                                 show_change(layout, e, row->share));
+                                 why_change(layout, e, row->share));
         }
     }
     return text;

@@ -92,6 +92,13 @@ double stencil_step(const struct parameter *parameter, double value);
 /* The same as system_slope in the temperature, 1/K. */
 void system_temperature_slope(struct system *system, const long double *x, long double *slope);
 
+/* The measure of an equation, for whoever assembles on his own: see system.c. */
+struct system_measure {
+    double volts, amperes; /* floors of unknowns */
+    double rounding;       /* share of what the unknowns are multiplied by */
+};
+struct system_measure system_measure(void);
+
 /* Local unknowns of an instance from the whole vector; gnd is 0. */
 void system_gather(const struct instance *instance, const double *x, double *local);
 

@@ -221,6 +221,7 @@ static void test_lost_points(void **state)
     check_near(series->values[2], 3e-3, 1e-15);
     check_near(series->values[3], 1.5e-3, 1e-15);
     assert_int_equal(series->event_count, 2);
+    assert_int_equal(series->lost, 2);
     check_near(series->events[0].at, -1000, 0);
     run_close(&run);
 }

@@ -71,6 +71,30 @@ static void test_grow(void **state)
     arena_destroy(arena);
 }
 
+static void test_give_back(void **state)
+{
+    (void)state;
+    struct arena *arena = arena_create();
+    char *small = arena_copy(arena, "ampere", 6);
+    const size_t before = arena_used(arena);
+    char *large = arena_array(arena, 100000, 1), *other = arena_array(arena, 200000, 1);
+    assert_non_null(large);
+    assert_non_null(other);
+    assert_int_equal(arena_used(arena), before + 300000);
+    other[199999] = 'o';
+    arena_give_back(arena, large);
+    assert_int_equal(arena_used(arena), before + 200000);
+    arena_give_back(arena, small); /* has no memory of its own: stays */
+    arena_give_back(arena, NULL);
+    assert_int_equal(arena_used(arena), before + 200000);
+    assert_string_equal(small, "ampere");
+    assert_int_equal(other[199999], 'o');
+    arena_give_back(arena, other);
+    assert_int_equal(arena_used(arena), before);
+    assert_string_equal(arena_copy(arena, "volt", 4), "volt");
+    arena_destroy(arena);
+}
+
 static void test_text(void **state)
 {
     (void)state;
@@ -107,7 +131,8 @@ static void test_buffer(void **state)
 int main(void)
 {
     const struct CMUnitTest tests[] = {
-        cmocka_unit_test(test_blocks), cmocka_unit_test(test_overflow), cmocka_unit_test(test_grow),
+        cmocka_unit_test(test_blocks), cmocka_unit_test(test_overflow),
+        cmocka_unit_test(test_grow),   cmocka_unit_test(test_give_back),
         cmocka_unit_test(test_text),   cmocka_unit_test(test_buffer),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);

@@ -2,7 +2,7 @@
 of ChromeDriver. Ends with 77 (skipped) where no Chromium is installed.
 
 Checked: opens from a file without console messages and without fetching anything; the crosshair reads
-the values that --json tells; columns sort; links reach their lines; keyboard alone is enough; names
+the values that --json tells, of curves, loops and histograms; bars are as long as their values; columns sort; links reach their lines; keyboard alone is enough; names
 and contrast (WCAG 2.1, 1.4.3) in light and dark; nothing is wider than the paper when printed."""
 import base64
 import json
@@ -175,6 +175,140 @@ def check_reading(browser, name, data):
         place[2], browser.run(reading)))
 
 
+def ask(verb, cell):
+    """What a verb tells as JSON."""
+    data = os.path.join(work, verb + ".json")
+    status = subprocess.run([program, verb, cell, "--json=" + data],
+                            stdout=subprocess.DEVNULL).returncode
+    check(status in (0, 1), "%s %s: status %d" % (verb, cell, status))
+    with open(data, encoding="utf-8") as file:
+        return json.load(file)
+
+
+def is_near(a, b, relative=1e-12):
+    return abs(a - b) <= relative * max(abs(a), abs(b))
+
+
+def table_values(browser, caption):
+    """[row][column] of the table whose caption begins so: its value to sort by, else its text."""
+    return browser.run("""
+        const table = Array.from(document.querySelectorAll('table'))
+            .find((t) => t.caption.textContent.startsWith(arguments[0]));
+        return table && Array.from(table.tBodies[0].rows).map((row) => Array.from(row.cells).map((cell) =>
+            cell.dataset.value !== undefined ? Number(cell.dataset.value) : cell.textContent.trim()))""", caption)
+
+
+def find_plot(browser, title):
+    """Focuses the picture with this title; false when there is none."""
+    return browser.run("""
+        const plot = Array.from(document.querySelectorAll('.plot'))
+            .find((p) => p.querySelector('.f-title').textContent.startsWith(arguments[0]));
+        if (plot) { plot.focus(); }
+        return Boolean(plot)""", title)
+
+
+READING = "return JSON.parse(document.activeElement.querySelector('.readout').dataset.points)"
+
+
+def check_reasons(browser, name, data):
+    """Each share of each effect stands in the table with the bar it should have."""
+    rows = table_values(browser, "Why:")
+    widths = browser.run("""
+        const table = Array.from(document.querySelectorAll('table'))
+            .find((t) => t.caption.textContent.startsWith('Why:'));
+        return Array.from(table.tBodies[0].rows).map((row) => {
+            const bar = row.cells[4].querySelector('i'), all = bar.parentElement.getBoundingClientRect();
+            const box = bar.getBoundingClientRect();
+            return [(box.right - box.left) / all.width, (box.left + box.right) / 2 < all.left + all.width / 2]; })""")
+    at = 0
+    for hand in data["hand"]:
+        shares = {s["effect"]: s["share"] for s in hand["shares"]}
+        scale = max([abs(v) for v in shares.values()] + [abs(sum(shares.values()))])
+        while at < len(rows) and rows[at][1] != "together":
+            check(is_near(rows[at][2], shares.get(rows[at][1], 0.0)), name + ": share of " + rows[at][1])
+            wanted = 0.5 * abs(rows[at][2]) / scale
+            check(abs(widths[at][0] - wanted) < 0.01, name + ": bar of %s: %r" % (rows[at][1], widths[at]))
+            check(wanted < 0.01 or widths[at][1] == (rows[at][2] < 0), name + ": side of " + rows[at][1])
+            at += 1
+        check(at < len(rows) and is_near(rows[at][2], sum(shares.values()), 1e-6), name + ": together")
+        at += 1
+    check(at == len(rows) and at > 1, name + ": %d rows of reasons" % len(rows))
+
+
+def check_histograms(browser, name, data):
+    """The bars are the counts: by the crosshair and by their heights on the screen."""
+    for row in data.get("distributions", []):
+        histogram = row["histogram"]
+        counts, width = histogram["counts"], histogram["to"] - histogram["from"]
+        if not find_plot(browser, row["quantity"] + " over mismatch"):
+            check(len(counts) < 2, name + ": no histogram of " + row["quantity"])
+            continue
+        browser.keys(HOME)
+        for k, count in enumerate(counts):
+            read = browser.run(READING)[0]
+            middle = histogram["from"] + width * (k + 0.5) / len(counts)
+            check(read[1] == count and is_near(read[0], middle, 1e-9),
+                  "%s: bar %d of %s reads %r instead of %r, %d" % (name, k, row["quantity"], read, middle, count))
+            browser.keys(RIGHT)
+        heights = browser.run("""
+            const byplace = new Map();
+            for (const bar of document.activeElement.querySelectorAll('.f-bar')) {
+                const box = bar.getBoundingClientRect(); /* one cut at a limit has two parts of one height */
+                byplace.set(Math.round(box.top * 10), box.height);
+            }
+            return Array.from(byplace.values()).sort((a, b) => a - b)""")
+        unit = heights[-1] / max(counts)
+        wanted = sorted(set(counts) - {0})
+        check(len(heights) == len(wanted) and
+              all(abs(h - unit * c) < 0.5 for h, c in zip(heights, wanted)),
+              "%s: heights of %s: %r" % (name, row["quantity"], heights))
+
+
+def check_spread(browser, name, cell):
+    data = ask("spread", cell)
+    check_histograms(browser, name, data)
+    rows = table_values(browser, "What the variance") or []
+    wanted = [c for c in data.get("contributors", []) if c["share"] >= 1e-3]
+    check(len(rows) == len(wanted), name + ": %d causes instead of %d" % (len(rows), len(wanted)))
+    for row, cause in zip(rows, wanted):
+        check(row[:3] == [cause["quantity"], cause["device"], cause["cause"]] and
+              is_near(row[3], cause["share"]) and is_near(row[4], cause["share"]) and
+              is_near(row[5], cause["per_sigma"]), name + ": cause %r" % row)
+    yields = table_values(browser, "Yield")
+    check([y[1] for y in yields or []] == [y["share"] for y in data.get("yield", [])], name + ": yield")
+    ranges = data["conditions"]["ranges"]
+    for row in table_values(browser, "Least and most") or []:
+        wanted = ranges[row[0]]
+        check(is_near(row[2], wanted["least"]) and is_near(row[4], wanted["most"]), name + ": range %r" % row)
+    if data["conditions"]["varied"] and data["contributors"]:
+        check(find_plot(browser, data["contributors"][0]["quantity"] + " against "), name + ": no condition curve")
+
+
+def check_states(browser, name, cell):
+    data = ask("states", cell)
+    rows = table_values(browser, "Every resting state")
+    check(len(rows) == len(data["states"]), name + ": %d states" % len(rows))
+    for row, state in zip(rows, data["states"]):
+        check(row[1] == ("can be held" if state["can_hold"] else "cannot be held"), name + ": " + row[1])
+        check(is_near(row[3], state["power"], 1e-6), name + ": power of %s" % row[0])
+    curve = data.get("loop", {}).get("curve")
+    if curve:
+        check(find_plot(browser, "Loop at"), name + ": no loop curve")
+        browser.keys(HOME, RIGHT)
+        read = browser.run(READING)[0]
+        check(is_near(read[0], curve["v"][1]) and is_near(read[1], curve["push"][1], 1e-6),
+              name + ": the loop reads %r instead of %r" % (read, (curve["v"][1], curve["push"][1])))
+        dot = browser.run("""
+            const plot = document.activeElement, dot = plot.querySelector('.f-dot').getBoundingClientRect();
+            const path = plot.querySelector('.f-curve'), from = path.getPointAtLength(0);
+            const svg = plot.querySelector('svg').getBoundingClientRect();
+            const scale = svg.width / 760, x = ((dot.left + dot.right) / 2 - svg.left) / scale;
+            const y = ((dot.top + dot.bottom) / 2 - svg.top) / scale;
+            const at = path.getAttribute('d').split(/[ML]/)[2].split(' ').map(Number);
+            return Math.hypot(x - at[0], y - at[1])""")
+        check(dot < 1.0, name + ": the dot lies %g px beside the loop curve" % dot)
+
+
 def check_sorting(browser, name):
     """Each numeric column of each table sorts by value, up and down, by a click."""
     bad = browser.run("""
@@ -251,11 +385,15 @@ def check_page(browser, name):
     page, data, cell = make_page(name)
     browser.open(page)
     time.sleep(0.2)
-    check(browser.messages() == [], name + ": console messages")
+    found = browser.messages()
+    check(found == [], name + ": console messages: %r" % found)
     check(browser.run("return performance.getEntriesByType('resource').length") == 0,
           name + ": something was fetched")
     check(data["title"] in browser.run("return document.querySelector('h1').textContent"), name + ": title")
     check_reading(browser, name, data)
+    check_reasons(browser, name, data)
+    check_spread(browser, name, cell)
+    check_states(browser, name, cell)
     check_sorting(browser, name)
     check_links(browser, name, data, cell)
     check_keyboard(browser, name)
@@ -269,6 +407,21 @@ def check_page(browser, name):
     browser.command("Emulation.setEmulatedMedia", features=[])
     check_print(browser, name)
     check(browser.messages() == [], name + ": console messages at the end")
+
+
+def check_verbs(browser):
+    """The other verbs that have a page open without a message and show their own part."""
+    cell = os.path.join(source, "netlists", "bandgap.cell")
+    for verb, part in (("states", "states"), ("spread", "mismatch"), ("explain", "paper")):
+        page = os.path.join(work, verb + ".html")
+        status = subprocess.run([program, verb, cell, "--page", page], stdout=subprocess.DEVNULL).returncode
+        check(status in (0, 1), verb + ": status %d" % status)
+        browser.open(page)
+        check(browser.messages() == [], verb + ": console messages")
+        check(browser.run("return document.getElementById(arguments[0]) !== null", part), verb + ": no " + part)
+        bad = browser.run(NAMES)
+        check(bad == [], verb + ": without a name: %r" % bad)
+        check_print(browser, verb)
 
 
 def check_live(browser):
@@ -306,8 +459,9 @@ def check_live(browser):
 browser = Browser()
 try:
     check_live(browser)
-    for name in ("widlar_mos_paper", "bias_tree", "bandgap"):
+    for name in ("widlar_mos_paper", "bias_tree", "bandgap", "beta_multiplier"):
         check_page(browser, name)
+    check_verbs(browser)
 finally:
     browser.close()
     shutil.rmtree(work, ignore_errors=True)

@@ -77,6 +77,25 @@ has err 'absent.csv'
 expect 0 calibrate diode.csv --kind diode --json=fit.json
 has fit.json '"i_rms"'
 
+# pictures: 37 gate voltages twice on both axes, negative and zero readings left out of one
+expect 0 calibrate square.csv --kind nmos --size 10u/1u --plot m.svg
+has m.svg 'square.csv: id against vgs'
+has m.svg 'Error of the current by device'
+has m.svg 'vds 1.8 V'
+dots=$(grep -c 'class="f-mark f-dot' m.svg)
+[ "$dots" -ge 140 ] && [ "$dots" -le 148 ] || fail "$dots dots of 4 sweeps of 37 readings"
+[ "$(grep -c 'class="f-curve' m.svg)" -eq 5 ] || fail 'not four curves and one of errors'
+expect 0 calibrate diode.csv --kind diode --plot d.svg
+has d.svg 'diode.csv: i against v'
+[ "$(grep -c 'class="f-mark f-dot' d.svg)" -eq 40 ] || fail 'not 40 dots'
+expect 2 calibrate diode.csv --kind diode --plot d.gif
+has err 'must end with .svg, .pdf or .png'
+if "$program" calibrate diode.csv --kind diode --plot d.png >out 2>err; then
+    head -c 4 d.png | grep -q PNG || fail 'd.png is no PNG'
+else
+    has err 'no librsvg' # a build without it
+fi
+
 # wrong requests
 expect 2 calibrate
 has err 'wants a file'
@@ -105,6 +124,8 @@ expect 0 calibrate mirror.csv --kind pmos --size 10u/1u --columns 'vgs=-vgs, vds
 awk 'BEGIN { print "v,i"; for (k = 1; k < 9; k++) print k / 10, "," k / 1e4 }' >r.csv
 expect 0 calibrate r.csv --kind resistor
 has out 'resistor R1 a -> b 1000'
+expect 0 calibrate r.csv --kind resistor --plot r.svg
+has err 'nothing to draw'
 expect 2 calibrate r.csv --kind resistor --write r.process
 has err 'a process file holds no resistors'
 [ ! -e r.process ] || fail 'r.process was written'

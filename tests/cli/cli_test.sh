@@ -36,7 +36,7 @@ run 2 "$cell" --set && err_begins "ampstead: '--set' wants a value: --set NAME=E
 run 2 "$cell" --view=hnd && err_begins "ampstead: 'hnd' is no value of --view (full|hand); did you mean 'hand'?"
 run 2 "$cell" --color blue && err_begins "ampstead: 'blue' is no value of --color"
 run 2 --help=yes && err_begins "ampstead: '--help=yes' takes no value"
-run 2 point "$cell" --csv x.csv && err_begins "ampstead: '--csv' does not go with \`point\`, only with \`review\` \`sweep\`"
+run 2 point "$cell" --csv x.csv && err_begins "ampstead: '--csv' does not go with \`point\`, only with \`review\`, \`sweep\`"
 run 2 review "$cell" again && err_begins "ampstead: 'again' is one too many: one cell a run"
 run 2 "$cell" y.cell && err_begins "ampstead: 'y.cell' is one too many: one cell a run"
 run 2 "$cell" --json out.txt && err_begins "ampstead: 'out.txt' is one too many; for a file write --json=out.txt"
@@ -77,6 +77,21 @@ law L x -> gnd i = 1 nA * (1 + sqrt((x.v / 1 V)^2)) / (1 + sqrt((x.v / 1 V)^2))
 CELL
 run 3 point "$work/never.cell" && out_has "UNSOLVED" && err_has "no operating point was found"
 
+# Points of a sweep without a state are no "SOLVED"
+printf 'let RX = 1k\nrail vdd 3 V\nresistor R1 vdd -> gnd RX\nsweep RX from -1k to 2k points 4 show R1.i\n' \
+    >"$work/lost.cell"
+run 0 sweep "$work/lost.cell" --json="$work/lost.json" && out_has "INCOMPLETE" && out_lacks "SOLVED" &&
+    out_has "2 of 4 points of the sweep have no operating point" && grep -q '"lost": 2' "$work/lost.json" ||
+    fail "a sweep that lost points"
+
+# Process data as people write them; what `quiet` silences stays on record
+run 0 models "$source/models/n180.process" && out_has "4 mV*um" && out_has "6 V/um"
+cp "$source/models/n180.process" "$work/" && sed 's/^title.*/&\nquiet square-law/' \
+    "$source/netlists/widlar_mos_paper.cell" >"$work/quiet.cell"
+run 0 "$work/quiet.cell" --json="$work/quiet.json" --page "$work/quiet.html" --samples 0 &&
+    out_lacks "[square-law" && grep -q '"silenced"' "$work/quiet.json" &&
+    grep -q 'id="silenced"' "$work/quiet.html" || fail "quiet is not on record"
+
 # Standard input
 "$program" - <"$cell" >"$work/out" 2>"$work/err" || fail "a cell from standard input"
 out_has "MET "
@@ -86,7 +101,7 @@ run 0 "$cell" --json && out_has '"verdict": "met"'
 run 0 --json "$cell" && out_has '"verdict": "met"'
 run 0 "$cell" --json "$work/a.json" && out_has "MET " && [ -s "$work/a.json" ] || fail "--json FILE"
 run 0 "$cell" --json="$work/b.data" && [ -s "$work/b.data" ] || fail "--json=FILE"
-run 0 "$cell" --csv - && out_has "output,v,current"
+run 0 "$cell" --csv - && out_has "output,v [V],current [A]"
 "$program" "$cell" --json >"$work/one" 2>&1
 "$program" "$cell" --json >"$work/two" 2>&1
 cmp -s "$work/one" "$work/two" || fail "two runs differ"

@@ -42,7 +42,7 @@ run 2 spread "$work/half.cell" --samples 10000001 && err_has "'10000001' is no v
 run 2 spread "$work/half.cell" --samples=-1 && err_has "'-1' is no value of --samples"
 run 2 spread "$work/half.cell" --seed 99999999999999999999 && err_has "is no value of --seed"
 run 2 spread "$work/half.cell" --jobs 257 && err_has "'257' is no value of --jobs"
-run 2 point "$work/half.cell" -n 3 && err_has "'--samples' does not go with \`point\`, only with \`spread\`"
+run 2 point "$work/half.cell" -n 3 && err_has "'--samples' does not go with \`point\`, only with \`review\`, \`spread\`"
 
 # Ctrl-C: what was sampled until then, and 130. Each sample finds a compliance, which takes a while.
 cat >"$work/long.cell" <<END

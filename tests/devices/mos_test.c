@@ -549,12 +549,51 @@ static void wrong_geometry_is_told(void **state)
     set_value(&it, "length_offset", 0);
     set_value(&it, "L", 10e-9);
     assert_non_null(strstr(complaint(&it), "halo_body"));
+    set_value(&it, "L", 8e-6);
+    set_value(&it, "narrow_body", 1);
+    assert_non_null(strstr(complaint(&it), "narrow_body"));
+    set_value(&it, "narrow_body", 0);
+    set_value(&it, "narrow_slope", -1);
+    assert_non_null(strstr(complaint(&it), "narrow_slope"));
+}
+
+/*
+ * Short and narrow: halo terms as (sqrt(1 + P/L) - 1)/sqrt(P/1 um), narrow terms as 1 um/W. Values
+ * by hand for P = 3 um, L = 1 um (sqrt(4) - 1 = 1 over sqrt(3)), W = 0.5 um, and
+ * narrow_slope 0.3 times 2/(1 + 0.5/1) = 4/3, which is 0.4.
+ */
+static void short_and_narrow_follow_their_laws(void **state)
+{
+    (void)state;
+    struct subject it = transistor("nmos", BODY_EARLY, 0.5e-6, 1e-6);
+    const struct mos_prepared *p = (const struct mos_prepared *)(const void *)it.prepared;
+    double unit = p->U, body = p->g, halo = 1 / sqrt(3);
+    set_value(&it, "halo_threshold", 0.1);
+    set_value(&it, "halo_body", 0.2);
+    set_value(&it, "halo_length", 3e-6);
+    set_value(&it, "narrow_threshold", 0.01);
+    set_value(&it, "narrow_body", 0.03);
+    set_value(&it, "narrow_slope", 0.3);
+    set_value(&it, "narrow_slope_length", 0.5e-6);
+    prepare(&it);
+    check_relative("vt", p->vt, 0.45 + 0.1 * halo + 0.02, 1e-14);
+    check_relative("g", p->g, body * (1 - 0.2 * halo - 0.06), 1e-14);
+    check_relative("U", p->U, unit * 1.4, 1e-14);
+    /* far below the halo length, and without one: 1/sqrt(L) */
+    set_value(&it, "L", 0.25e-6);
+    set_value(&it, "halo_length", 1e6);
+    prepare(&it);
+    check_relative("vt, short", p->vt, 0.45 + 0.1 * 2 + 0.02, 1e-6);
+    set_value(&it, "halo_length", PARAMETER_NONE);
+    prepare(&it);
+    check_relative("vt, no length", p->vt, 0.45 + 0.1 * 2 + 0.02, 1e-14);
 }
 
 int main(void)
 {
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(meets_check_values),
+        cmocka_unit_test(short_and_narrow_follow_their_laws),
         cmocka_unit_test(derivatives_are_exact),
         cmocka_unit_test(every_effect_has_exact_derivatives),
         cmocka_unit_test(way_to_square_law_is_a_colder_transistor),

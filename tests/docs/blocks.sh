@@ -1,5 +1,5 @@
 #!/bin/sh
-# blocks.sh [--write] PROGRAM[:PROGRAM...] SOURCE_DIR FILE.md...: the examples of a page are real.
+# blocks.sh [--write] [--long] PROGRAM[:PROGRAM...] SOURCE_DIR FILE.md...: the examples of a page are real.
 #
 # A comment in front of a fenced block says what the block is:
 #
@@ -7,16 +7,24 @@
 #   <!-- add: NAME -->     the lines are right when they stand at the end of the file NAME
 #   <!-- run: COMMAND -->  the block is what COMMAND prints, standard error included
 #   <!-- run 2: COMMAND -->  the same, and the exit status is 2 (else 0)
+#   <!-- long: COMMAND -->   as run, but only with --long: it takes minutes
+#
+# A fenced block without such a comment fails: nothing is shown that was not run.
 #
 # Commands run in an empty folder that has netlists/, models/ and docs/, with the programs in the path.
 # --write puts the true output into the pages. The evidence line of a report and the solver's part of
 # the data, whose last digits are rounding errors of the machine, are not compared.
 set -u
 write=false
-if [ "$1" = --write ]; then
-    write=true
+long=false
+while :; do
+    case $1 in
+    --write) write=true ;;
+    --long) long=true ;;
+    *) break ;;
+    esac
     shift
-fi
+done
 programs=$1
 source=$(cd "$2" && pwd)
 shift 2
@@ -41,7 +49,8 @@ split() {
         state == 2 { print > file; next }
         state == 1 && /^```/ { state = 2; file = work "/" count ".body"; printf "" > file; next }
         state == 1 { print FILENAME ":" FNR ": a fenced block is wanted here"; exit 1 }
-        /^<!-- (file|add|run|run [0-9]+): .* -->$/ {
+        /^```/ { print FILENAME ":" FNR ": this block does not tell where it comes from"; exit 1 }
+        /^<!-- (file|add|run|run [0-9]+|long): .* -->$/ {
             count++
             text = substr($0, 6, length($0) - 9)
             colon = index(text, ": ")
@@ -67,14 +76,15 @@ join() {
             while ((getline line < file) > 0) print line
             close(file)
         }
-        /^<!-- (file|add|run|run [0-9]+): .* -->$/ { count++; state = 1 }' "$1"
+        /^<!-- (file|add|run|run [0-9]+|long): .* -->$/ { count++; state = 1 }' "$1"
 }
 
 # A text without what differs from machine to machine.
 steady() {
     sed -e 's/^evidence .*/evidence/' -e 's/"iterations": [0-9]*/"iterations"/' \
         -e 's/"worst_residual": [-0-9.e+]*/"worst_residual"/' -e '/"worst_node": /d' \
-        -e 's/[[:space:]]*$//' "$1"
+        -e 's/^Newton iterations: .*/Newton iterations/' -e 's/^worst_residual at most .*/worst_residual/' \
+        -e 's/, largest difference .*//' -e 's/[[:space:]]*$//' "$1"
 }
 
 fail() {
@@ -124,6 +134,7 @@ for page in "$@"; do
         file) cp "$work/$number.body" "$work/place/$(cat "$work/$number.argument")" ;;
         add) add_block "$page" $number ;;
         run) run_block "$page" $number ;;
+        long) $long && run_block "$page" $number ;;
         esac
         number=$((number + 1))
     done

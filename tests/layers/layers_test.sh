@@ -23,6 +23,7 @@ allowed() {
     report) echo base devices language calibrate circuit solve analyses ;;
     library) echo base devices language calibrate circuit solve analyses report ;;
     cli) echo base library ;;
+    bench) echo base numerics devices language circuit analyses solve library ;;
     *) return 1 ;;
     esac
 }
@@ -68,10 +69,10 @@ only() {
         fail "src/$file: $what belongs in $* only"
     done
 }
-only '^# *include <klu' 'KLU' numerics/linear_klu.c
+only '^# *include <klu' 'KLU' numerics/linear_klu.c bench
 only '^# *include <cminpack' 'cminpack' calibrate/least_squares.c
 only '\b(fopen|freopen|fdopen|open|openat|creat|mkstemp)\(' 'opening files' language/source.c cli
-only '\b(printf|puts|putchar|perror)\(|\b(stdout|stderr)\b' 'printing' cli
+only '\b(printf|puts|putchar|perror)\(|\b(stdout|stderr)\b' 'printing' cli bench
 only '\b(rand|srand|time|clock|setlocale|getenv)\(' 'clock, locale and environment' cli
 
 [ $failures -eq 0 ] && echo "the layers hold"

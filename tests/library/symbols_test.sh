@@ -7,6 +7,7 @@ ampstead_calibrate
 ampstead_calibration_free
 ampstead_calibration_json
 ampstead_calibration_messages
+ampstead_calibration_plot
 ampstead_calibration_process
 ampstead_calibration_text
 ampstead_result_cell

@@ -178,7 +178,8 @@ static void test_page(void **state)
     const struct report_style style = {.columns = 0};
     fixture_make(&f);
     f.circuit.title = "a <script> & \"b\"";
-    report_web(&f.result, &style, "9.9.9", &out);
+    const struct web_results results = {&f.result, NULL, NULL};
+    report_web(&results, &style, "9.9.9", &out);
     assert_false(out.failed);
     assert_non_null(strstr(out.data, "a &lt;script&gt; &amp; &quot;b&quot;"));
     assert_null(strstr(out.data, "a <script>"));

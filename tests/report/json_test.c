@@ -101,6 +101,45 @@ static void absent_keys(void **state)
     json_decref(root);
 }
 
+/* What a requirement asks and how far it is from it; the square law's value; what always holds;
+ * what was silenced; lost points. */
+static void whole_records(void **state)
+{
+    (void)state;
+    struct fixture fixture;
+    fixture_make(&fixture);
+    struct caution silenced = {"hot", "M1", "M1 is hot", NULL, 0};
+    fixture.requirements[0].tolerance = 20e-9;
+    fixture.result.cautions.silenced = &silenced;
+    fixture.result.cautions.silenced_count = 1;
+    fixture.result.sweep_count = 1;
+    fixture.series[0].lost = 2;
+    json_t *root = read_back(&fixture);
+    json_t *requirements = json_object_get(root, "requirements");
+    json_t *within = json_array_get(requirements, 0), *below = json_array_get(requirements, 1);
+    assert_string_equal(json_string_value(json_object_get(within, "relation")), "within");
+    assert_bits(json_object_get(within, "limit"), 800e-9);
+    assert_bits(json_object_get(within, "tolerance"), 20e-9);
+    assert_bits(json_object_get(within, "margin"), 3.6e-9);
+    assert_string_equal(json_string_value(json_object_get(below, "relation")), "below");
+    assert_bits(json_object_get(below, "limit"), 0.15);
+    assert_bits(json_object_get(below, "margin"), -0.0303);
+    assert_null(json_object_get(below, "tolerance"));
+    json_t *hands = json_object_get(root, "hand");
+    assert_bits(json_object_get(json_array_get(hands, 0), "square_law"), 790.1e-9);
+    assert_null(json_object_get(json_array_get(hands, 1), "square_law"));
+    json_t *cautions = json_object_get(root, "cautions");
+    assert_int_equal(json_array_size(cautions), 2);
+    assert_string_equal(json_string_value(json_object_get(json_array_get(cautions, 1), "code")),
+                        "model");
+    json_t *record = json_array_get(json_object_get(root, "silenced"), 0);
+    assert_string_equal(json_string_value(json_object_get(record, "code")), "hot");
+    json_t *sweep = json_array_get(json_object_get(root, "sweeps"), 0);
+    json_t *series = json_array_get(json_object_get(sweep, "series"), 0);
+    assert_int_equal(json_integer_value(json_object_get(series, "lost")), 2);
+    json_decref(root);
+}
+
 static void unsolved_keys(void **state)
 {
     (void)state;
@@ -173,8 +212,8 @@ static void csv_curves(void **state)
     fixture_make(&fixture);
     report_csv(&fixture.result, &out);
     const char *line = out.data;
-    assert_memory_equal(line, "output,v,current\r\n", 18);
-    line += 18;
+    assert_memory_equal(line, "output,v [V],current [A]\r\n", 26);
+    line += 26;
     for (int k = 0; k < FIXTURE_POINTS; k++) {
         char *end;
         assert_memory_equal(line, "tail,", 5);
@@ -209,10 +248,10 @@ int main(void)
 {
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(keys_and_bits), cmocka_unit_test(curve_bits),
-        cmocka_unit_test(absent_keys),   cmocka_unit_test(unsolved_keys),
-        cmocka_unit_test(sweep_keys),    cmocka_unit_test(same_bytes),
-        cmocka_unit_test(odd_file_name), cmocka_unit_test(csv_curves),
-        cmocka_unit_test(csv_sweep),
+        cmocka_unit_test(absent_keys),   cmocka_unit_test(whole_records),
+        cmocka_unit_test(unsolved_keys), cmocka_unit_test(sweep_keys),
+        cmocka_unit_test(same_bytes),    cmocka_unit_test(odd_file_name),
+        cmocka_unit_test(csv_curves),    cmocka_unit_test(csv_sweep),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

@@ -242,13 +242,15 @@ static void models_list(void **state)
         {"threshold", {12, 0, 0, 0}, DEFAULT_REQUIRED, 0, 0, 1, false, "threshold voltage"},
         {"early", {12, 0, 0, 0}, DEFAULT_NONE, 0, 0, 1, false, "Early voltage of 1 um"},
         {"kprime", {-24, 12, 0, 0}, DEFAULT_REQUIRED, 0, 0, 1, false, "gain"},
+        {"match_threshold", {12, 0, 0, 12}, DEFAULT_VALUE, 0, 0, 1, false, "pairs"},
+        {"critical_field", {12, 0, 0, -12}, DEFAULT_VALUE, 0, 0, 1, false, "saturation"},
     };
     static const struct device_type type = {.word = "nmos",
                                             .model_kind = "nmos",
                                             .model_parameters = parameters,
-                                            .model_parameter_count = 3};
-    double values[] = {0.45, NAN, 300e-6};
-    bool given[] = {true, false, true};
+                                            .model_parameter_count = 5};
+    double values[] = {0.45, NAN, 300e-6, 3.5e-9, 6e6};
+    bool given[] = {true, false, true, true, true};
     struct model model = {.name = "core",
                           .type = &type,
                           .values = values,
@@ -268,9 +270,12 @@ static void models_list(void **state)
                                  "measured at 25 \xC2\xB0"
                                  "C, valid temperature -25 \xC2\xB0"
                                  "C to 125",
-                                 "threshold      450 mV  given",
-                                 "early            none  default  Early voltage",
-                                 "kprime     300 uA/V^2",
+                                 "threshold ",
+                                 "450 mV  given",
+                                 "none  default  Early voltage",
+                                 "300 uA/V^2",
+                                 "3.5 mV*um",
+                                 "6 V/um",
                                  NULL};
     assert_in_order(out.data, order);
     buffer_free(&out);

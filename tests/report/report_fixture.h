@@ -225,7 +225,7 @@ static void fixture_sweep(struct fixture *f)
     static const double values[] = {1e-7, 0.5, 1.0 / 3.0 * 1e-6, NAN, 7e-7, 4.25};
     memcpy(f->knob, knob, sizeof knob);
     memcpy(f->values, values, sizeof values);
-    f->series[0] = (struct sweep_series){NAN, 3, f->knob, f->values, f->events, 1};
+    f->series[0] = (struct sweep_series){NAN, 3, f->knob, f->values, f->events, 1, 0};
     f->tables[0] = (struct sweep_table){&f->sweep, f->series, 1};
 }
 
@@ -257,7 +257,7 @@ static void fixture_make(struct fixture *f)
     f->result.hand_count = 2;
     f->result.requirements = f->requirement_results;
     f->result.requirement_count = 4;
-    f->result.cautions = (struct caution_list){NULL, f->cautions, 1, 1};
+    f->result.cautions = (struct caution_list){.list = f->cautions, .count = 1, .capacity = 1};
     f->result.sweeps = f->tables;
 }
 

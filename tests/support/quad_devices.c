@@ -161,22 +161,28 @@ static struct mos mos_values(const struct context *c)
     p.length = own(c, "L") - model_if(c, EFFECT_GEOMETRY, "length_offset");
     p.width = own(c, "W") - model_if(c, EFFECT_GEOMETRY, "width_offset");
     p.h = sqrtq(um / p.length);
+    const quad pile = model(c, "halo_length");
+    const quad halo = is_number(pile) ? (sqrtq(1 + pile / p.length) - 1) / sqrtq(pile / um) : p.h;
+    const quad narrow = um / p.width;
     p.threshold = model(c, "threshold") + shift +
                   model(c, "threshold_tempco") * (c->kelvin - c->measured) +
-                  model_if(c, EFFECT_GEOMETRY, "halo_threshold") * p.h +
-                  model_if(c, EFFECT_GEOMETRY, "narrow_threshold") * um / p.width;
+                  model_if(c, EFFECT_GEOMETRY, "halo_threshold") * halo +
+                  model_if(c, EFFECT_GEOMETRY, "narrow_threshold") * narrow;
     p.beta = gain * model(c, "kprime") *
              powq(c->kelvin / c->measured, -model(c, "mobility_exponent")) * p.width / p.length;
     p.phi = model(c, "phi");
     p.body = model_if(c, EFFECT_BODY, "body_effect") *
-             (1 - model_if(c, EFFECT_GEOMETRY, "halo_body") * p.h);
+             (1 - model_if(c, EFFECT_GEOMETRY, "halo_body") * halo -
+              model_if(c, EFFECT_GEOMETRY, "narrow_body") * narrow);
     if (on(c, EFFECT_BARRIER)) {
         p.dibl = model(c, "dibl") * p.h +
                  model(c, "dibl_short") *
                      expq(-(p.length - model(c, "short_length")) / model(c, "short_decay"));
         p.dibl_body = model(c, "dibl_body");
     }
-    p.unit = model(c, "slope_factor") * c->ut;
+    p.unit = model(c, "slope_factor") * c->ut *
+             (1 + model_if(c, EFFECT_GEOMETRY, "narrow_slope") * narrow /
+                      (1 + model(c, "narrow_slope_length") / p.length));
     p.knee = model(c, "saturation_knee");
     if (on(c, EFFECT_MOBILITY)) {
         const quad field = model(c, "critical_field");

@@ -41,15 +41,17 @@ function prepare_plot(plot) {
     const data = JSON.parse(plot.querySelector("script").textContent);
     const readout = plot.querySelector(".readout");
     const g = {};
-    for (const key of ["left", "right", "top", "bottom", "xLow", "xHigh", "yLow", "yHigh"]) {
+    for (const key of ["left", "right", "top", "bottom", "xLow", "xHigh", "yLow", "yHigh", "yLinear"]) {
         g[key] = Number(svg.dataset[key]);
     }
     const height = svg.viewBox.baseVal.height;
     const line = make("line", { class: "f-cross", y1: g.top, y2: height - 50, visibility: "hidden" }, svg);
     const dots = data.series.map(() => make("circle", { class: "f-dot", r: 3, visibility: "hidden" }, svg));
     const place_x = (x) => g.left + (x - g.xLow) / (g.xHigh - g.xLow) * (g.right - g.left);
-    const place_y = (y) => g.bottom + (y - g.yLow) / (g.yHigh - g.yLow) * (g.top - g.bottom);
-    const guide = data.series.reduce((a, b) => (b.x.length > a.x.length ? b : a));
+    const even = (y) => (g.yLinear > 0 ? Math.asinh(0.5 * y / g.yLinear) : y);
+    const place_y = (y) => g.bottom + (even(y) - even(g.yLow)) / (even(g.yHigh) - even(g.yLow)) * (g.top - g.bottom);
+    const guide = data.bars ? data.series[0]
+        : data.series.reduce((a, b) => (b.x.length > a.x.length ? b : a));
     let at = nearest(guide.x, (g.xLow + g.xHigh) / 2);
 
     function show(x) {

@@ -7,11 +7,11 @@ syntax case match
 syntax match ampsteadComment /#.*$/ contains=@Spell
 syntax region ampsteadText start=/"/ end=/"/ oneline
 " Numbers with prefix and unit, IEC 60062 letters inside the digits too.
-syntax match ampsteadNumber /\<\d\+\(\.\d\+\)\?\([eE][-+]\?\d\+\)\?\( \?\(%\|ppm\|[fpnuµmkMGT]\?\(ohm\|Ω\|[VAWSKCm]\)\?\)\>\)\?/
+syntax match ampsteadNumber /\<\d\+\(\.\d\+\)\?\([eE][-+]\?\d\+\)\?\( \?\(%\|\(ppm\|[fpnuµmkMGT]\?\(ohm\|Ω\|[VAWSKCm]\)\|[fpnuµmkMGT]\)\>\(\s*=\)\@!\)\)\?/
 syntax match ampsteadNumber /\<\d\+[fpnuµmkKMGTR]\d\+\>/
 syntax match ampsteadKey /\<\w\+\ze\s*[+*]\?=/
 syntax match ampsteadArrow /->/
-syntax match ampsteadQuantity /\<\w\+\(\.\w\+\)\+\>/
+syntax match ampsteadQuantity /\<\h\w*\(\.\w\+\)\+\>/
 
 " Words are statements only at the start of a line.
 syntax match ampsteadStatement /^\s*\zs\(title\|process\|let\|temperature\|measured_at\|valid\|model\|corner\|block\|use\|end\|output\|sweep\|hand\|require\|vary\|choose\|quiet\)\>/
