@@ -459,6 +459,7 @@ static void stand_in(const struct lanes_engine *e, int lane)
         memcpy(e->system->prepared + e->system->block[m->instance] + m->place, &value,
                sizeof value);
     }
+    system_blocks_changed(e->system);
 }
 
 static bool is_supported(void)

@@ -22,7 +22,7 @@ static const char text[] = "process \"n180.process\"\n"
                            "nmos M4 d=s2 g=vdd s=gnd W=2u L=2u\n"
                            "resistor RL vdd -> out 30k\n";
 
-enum { UNKNOWN_LIMIT = 16, POINT_LIMIT = 256 };
+enum { UNKNOWN_LIMIT = 16, POINT_LIMIT = 256, GSL = 3 };
 
 struct race {
     struct problem problem;
@@ -119,12 +119,14 @@ static const char *prepare(struct race *r)
     return r->kinsol == NULL || r->gsl == NULL ? "a peer cannot be set up" : NULL;
 }
 
-static void compare(struct race *r, struct bench_result *result)
+static void compare(struct race *r, bool gsl_arrives, struct bench_result *result)
 {
     const int n = r->problem.system->n;
     for (int k = 0; k < n; k++) {
         bench_differs(result, r->theirs[k], r->ours[k], 1e-6);
-        bench_differs(result, r->gsl_x[k], r->ours[k], 1e-6);
+        if (gsl_arrives) {
+            bench_differs(result, r->gsl_x[k], r->ours[k], 1e-6);
+        }
     }
     for (int k = 0; k < HAND_N; k++) {
         bench_differs(result, r->hand_x[k], r->ours[r->node[k]], 1e-6);
@@ -140,6 +142,9 @@ static void measure(struct race *r, const struct bench_options *options,
                               {.run = run_gsl, .self = r},
                               {.run = run_whole, .self = r}};
     double ratios[2];
+    /* GSL has no notion of a longest step: from some starts it does not arrive */
+    const bool gsl_arrives = run_gsl(r);
+    all[GSL].run = gsl_arrives ? run_gsl : run_ours;
     if (!stopwatch_race(all, sizeof all / sizeof all[0], options, CLOCK_WORK, ratios)) {
         result->trouble = "a peer does not converge";
         return;
@@ -149,14 +154,14 @@ static void measure(struct race *r, const struct bench_options *options,
     result->ratio = all[0].seconds / all[1].seconds;
     result->least = ratios[0];
     result->most = ratios[1];
-    compare(r, result);
+    compare(r, gsl_arrives, result);
     bench_add(result, "ampstead", all[1].seconds, "s");
     bench_add(result, "kinsol_klu", all[0].seconds, "s");
     bench_add(result, "by_hand", all[2].seconds, "s");
-    bench_add(result, "gsl_hybrid", all[3].seconds, "s");
+    bench_add(result, "gsl_hybrid", gsl_arrives ? all[GSL].seconds : NAN, "s");
     bench_add(result, "with_guess_and_polish", all[4].seconds, "s");
     bench_add(result, "ratio_to_by_hand", all[1].seconds / all[2].seconds, "");
-    bench_add(result, "ratio_of_gsl", all[3].seconds / all[1].seconds, "");
+    bench_add(result, "ratio_of_gsl", gsl_arrives ? all[GSL].seconds / all[1].seconds : NAN, "");
     bench_add(result, "iterations", r->iterations, "");
     bench_add(result, "iterations_kinsol", peer_kinsol_iterations(r->kinsol), "");
     bench_add(result, "iterations_by_hand", r->hand.iterations, "");

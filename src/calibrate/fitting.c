@@ -7,6 +7,10 @@
 /* Correlations above this are told. */
 static const double correlation_told = 0.95;
 
+/* A search ends when the sum of squares falls by no more than this share: far less than any
+ * statement about the fit can tell, and values that creep towards a bound end soon. */
+static const double least_fall = 1e-8;
+
 /* Threshold offsets stay within this. */
 static const struct bounded offset_bound = {-0.5, 0.5, false}; /* V */
 
@@ -306,6 +310,7 @@ enum status fitting_solve(struct calibration *calibration, struct fitting *fitti
             .parameter_count = fitting->free_count + fitting->offset_count,
             .residual_count = fitting->residual_count,
             .bounds = fitting->bounds,
+            .least_fall = least_fall,
             .evaluate = respond,
             .stopped = ask_stopped,
             .self = fitting,

@@ -221,8 +221,9 @@ enum status least_squares_solve(struct arena *arena, const struct least_squares_
         for (int j = 0; j < n; j++) {
             angles[j] = angle_of(&problem->bounds[j], parameters[j]);
         }
+        double fall = problem->least_fall > 0 ? problem->least_fall : 1e-10;
         int residual_calls = 0, derivative_calls = 0;
-        int info = lmder(respond, &search, m, n, angles, residuals, jacobian, m, 1e-10, 1e-10, 0,
+        int info = lmder(respond, &search, m, n, angles, residuals, jacobian, m, fall, 1e-10, 0,
                          EVALUATION_LIMIT, work, 1, 10, 0, &residual_calls, &derivative_calls,
                          order, work + n, work + 2 * n, work + 3 * n, work + 4 * n, more);
         for (int j = 0; j < n; j++) {

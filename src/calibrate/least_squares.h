@@ -22,6 +22,7 @@ struct bounded {
 struct least_squares_problem {
     int parameter_count, residual_count;
     const struct bounded *bounds; /* [parameter_count] */
+    double least_fall; /* of the sum of squares, relative; less ends the search; 0: 1e-10 */
     /*
      * residuals  [residual_count] out; NULL: not wanted
      * jacobian   [residual_count * parameter_count] out, column by column:

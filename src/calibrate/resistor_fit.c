@@ -72,8 +72,11 @@ enum status resistor_fit(struct calibration *calibration, int device, struct fit
     struct problem problem = {calibration, data, calibration->measured_kelvin, unknowns};
     struct arena *scratch = arena_create();
     struct least_squares_answer answer;
-    struct least_squares_problem search = {unknowns, data->row_count, bounds, evaluate,
-                                           NULL,     &problem};
+    struct least_squares_problem search = {.parameter_count = unknowns,
+                                           .residual_count = data->row_count,
+                                           .bounds = bounds,
+                                           .evaluate = evaluate,
+                                           .self = &problem};
     if (scratch == NULL) {
         return STATUS_MEMORY;
     }

@@ -66,7 +66,8 @@ void part_files_free(struct ampstead_part *parts, int count)
 
 bool part_files_check(const struct options *options)
 {
-    static const enum option results[] = {OPTION_JSON, OPTION_CSV, OPTION_WATCH};
+    static const enum option results[] = {OPTION_JSON, OPTION_CSV, OPTION_PLOT, OPTION_PAGE,
+                                          OPTION_WATCH};
     if (options->verb != VERB_SPREAD) {
         return true;
     }

@@ -511,5 +511,7 @@ enum status format_source(struct arena *arena, const struct source_set *sources,
     }
     settle(&f);
     write_items(&f, out);
-    return f.failed || lexer.out_of_memory || out->failed ? STATUS_MEMORY : STATUS_OK;
+    /* the arena remembers also what only one line was refused, which would stay as it was */
+    const bool is_short = f.failed || lexer.out_of_memory || out->failed || arena_failed(arena);
+    return is_short ? STATUS_MEMORY : STATUS_OK;
 }

@@ -12,10 +12,18 @@ struct drawing {
     bool ink[CHART_COLUMNS][HALF_ROWS]; /* row 0 is the top */
     int columns;
     double x_from, x_to, y_low, y_high;
+    double linear;
+    char letters[CHART_COLUMNS][CHART_ROWS]; /* of a family; 0: none */
 };
 
+/* y in a unit that is even along the axis. */
+static double even(const struct drawing *drawing, double y)
+{
+    return drawing->linear > 0.0 ? asinh(0.5 * y / drawing->linear) : y;
+}
+
 /* The value at x between the points; NAN outside. */
-static double curve_at(const struct chart *chart, double x)
+static double curve_at(const struct chart *chart, const double *y, double x)
 {
     int low = 0, high = chart->count - 1;
     if (!(x >= chart->x[0] && x <= chart->x[high])) {
@@ -31,7 +39,7 @@ static double curve_at(const struct chart *chart, double x)
     }
     double width = chart->x[high] - chart->x[low];
     double share = width > 0.0 ? (x - chart->x[low]) / width : 0.0;
-    return chart->y[low] + share * (chart->y[high] - chart->y[low]);
+    return y[low] + share * (y[high] - y[low]);
 }
 
 /* The next of 1, 1.2, 1.5, 2, ... times a power of ten at or above a positive size. */
@@ -60,14 +68,22 @@ static bool find_ranges(const struct chart *chart, struct drawing *drawing)
     if (chart->count < 2) {
         return false;
     }
+    const double *const one[] = {chart->y};
+    const double *const *curves = chart->family_count > 0 ? chart->family : one;
     for (int k = 0; k < chart->count; k++) {
-        if (isfinite(chart->y[k])) {
-            low = fmin(low, chart->y[k]);
-            high = fmax(high, chart->y[k]);
+        for (int m = 0; m == 0 || m < chart->family_count; m++) {
+            low = isfinite(curves[m][k]) ? fmin(low, curves[m][k]) : low;
+            high = isfinite(curves[m][k]) ? fmax(high, curves[m][k]) : high;
         }
     }
     drawing->x_from = chart->x[0];
     drawing->x_to = chart->x[chart->count - 1];
+    drawing->linear = chart->linear;
+    if (chart->linear > 0.0) { /* whole decades */
+        drawing->y_high = high > 0.0 ? pow(10.0, ceil(log10(fmax(high, chart->linear)) - 1e-9)) : 0;
+        drawing->y_low = low < 0.0 ? -pow(10.0, ceil(log10(fmax(-low, chart->linear)) - 1e-9)) : 0;
+        return drawing->x_to > drawing->x_from && drawing->y_high > drawing->y_low;
+    }
     /* a faint wrong-way current at one end is not worth an axis of its own */
     drawing->y_high = high > -1e-3 * low && high > 0.0 ? round_up(high) : 0.0;
     drawing->y_low = -low > 1e-3 * high && low < 0.0 ? -round_up(-low) : 0.0;
@@ -89,7 +105,8 @@ static int x_column(const struct drawing *drawing, double x)
 
 static int half_row(const struct drawing *drawing, double y)
 {
-    double share = (y - drawing->y_low) / (drawing->y_high - drawing->y_low);
+    double low = even(drawing, drawing->y_low), high = even(drawing, drawing->y_high);
+    double share = (even(drawing, y) - low) / (high - low);
     share = share < 0.0 ? 0.0 : share > 1.0 ? 1.0 : share;
     int row = (int)((1.0 - share) * HALF_ROWS);
     return row >= HALF_ROWS ? HALF_ROWS - 1 : row;
@@ -100,7 +117,7 @@ static void ink_curve(const struct chart *chart, struct drawing *drawing)
 {
     int last = -1;
     for (int c = 0; c < drawing->columns; c++) {
-        double y = curve_at(chart, column_x(drawing, c));
+        double y = curve_at(chart, chart->y, column_x(drawing, c));
         if (!isfinite(y)) {
             last = -1;
             continue;
@@ -114,14 +131,27 @@ static void ink_curve(const struct chart *chart, struct drawing *drawing)
     }
 }
 
+/* The letter of each curve where it passes; where several meet the first stands. */
+static void place_letters(const struct chart *chart, struct drawing *drawing)
+{
+    for (int m = chart->family_count - 1; m >= 0; m--) {
+        for (int c = 0; c < drawing->columns; c++) {
+            double y = curve_at(chart, chart->family[m], column_x(drawing, c));
+            if (isfinite(y)) {
+                drawing->letters[c][half_row(drawing, y) / 2] = (char)('a' + m % 26);
+            }
+        }
+    }
+}
+
 struct glyphs {
-    const char *upper, *lower, *both, *axis, *corner, *floor, *edge, *edge_foot, *point;
+    const char *upper, *lower, *both, *axis, *corner, *floor, *edge, *edge_foot, *point, *empty;
 };
 
-static const struct glyphs unicode_glyphs = {"\xE2\x96\x80", "\xE2\x96\x84", "\xE2\x96\x88",
-                                             "\xE2\x94\x82", "\xE2\x94\x94", "\xE2\x94\x80",
-                                             "\xE2\x94\x8A", "\xE2\x94\xB4", "\xE2\x97\x8F"};
-static const struct glyphs ascii_glyphs = {"'", ".", ":", "|", "+", "-", "|", "^", "o"};
+static const struct glyphs unicode_glyphs = {
+    "\xE2\x96\x80", "\xE2\x96\x84", "\xE2\x96\x88", "\xE2\x94\x82", "\xE2\x94\x94",
+    "\xE2\x94\x80", "\xE2\x94\x8A", "\xE2\x94\xB4", "\xE2\x97\x8F", "\xE2\x97\x8B"};
+static const struct glyphs ascii_glyphs = {"'", ".", ":", "|", "+", "-", "|", "^", "o", "x"};
 
 static const char *glyph_at(const struct drawing *drawing, const struct glyphs *glyphs, int column,
                             int row, int edge, int point_column, int point_row)
@@ -134,6 +164,18 @@ static const char *glyph_at(const struct drawing *drawing, const struct glyphs *
         return upper && lower ? glyphs->both : upper ? glyphs->upper : glyphs->lower;
     }
     return column == edge ? glyphs->edge : " ";
+}
+
+static const char *mark_at(const struct chart *chart, const struct drawing *drawing,
+                           const struct glyphs *glyphs, int column, int row)
+{
+    for (int k = 0; k < chart->mark_count; k++) {
+        const struct chart_mark *mark = &chart->marks[k];
+        if (x_column(drawing, mark->x) == column && half_row(drawing, mark->y) / 2 == row) {
+            return mark->is_filled ? glyphs->point : glyphs->empty;
+        }
+    }
+    return NULL;
 }
 
 static const char *axis_label(struct layout *layout, const struct chart *chart,
@@ -154,13 +196,24 @@ static void draw_body(struct layout *layout, const struct chart *chart,
 {
     int edge = isnan(chart->edge) ? -1 : x_column(drawing, chart->edge);
     int point = isnan(chart->point) ? -1 : x_column(drawing, chart->point);
-    double y = point < 0 ? NAN : curve_at(chart, chart->point);
+    double y = point < 0 ? NAN : curve_at(chart, chart->y, chart->point);
+    /* where both signs are drawn, zero is a line of its own */
+    const int zero_row = drawing->linear > 0.0 ? half_row(drawing, 0.0) / 2 : -1;
     int point_row = isfinite(y) ? half_row(drawing, y) / 2 : -1;
     for (int row = 0; row < CHART_ROWS; row++) {
         char line[4 * CHART_COLUMNS + 1] = "";
         size_t used = 0;
         for (int c = 0; c < drawing->columns; c++) {
-            const char *glyph = glyph_at(drawing, glyphs, c, row, edge, point, point_row);
+            const char letter[] = {drawing->letters[c][row], '\0'};
+            const char *glyph = mark_at(chart, drawing, glyphs, c, row);
+            if (glyph == NULL) {
+                glyph = letter[0] != '\0'
+                            ? letter
+                            : glyph_at(drawing, glyphs, c, row, edge, point, point_row);
+            }
+            if (strcmp(glyph, " ") == 0 && row == zero_row) {
+                glyph = glyphs->floor;
+            }
             size_t length = strlen(glyph);
             memcpy(line + used, glyph, length);
             used += length;
@@ -214,6 +267,19 @@ static void draw_captions(struct layout *layout, const struct chart *chart,
     }
 }
 
+/* "a RE = 10 kohm   b RE = 30 kohm", as many in a line as there is room for. */
+static void draw_family_names(struct layout *layout, const struct chart *chart)
+{
+    const char *text = "";
+    for (int m = 0; m < chart->family_count; m++) {
+        text = layout_format(layout, "%s%s%c %s", text, m > 0 ? "   " : "", 'a' + m % 26,
+                             chart->family_names[m]);
+    }
+    if (chart->family_count > 0) {
+        layout_paragraph(layout, TONE_QUIET, 2, text);
+    }
+}
+
 void chart_draw(struct layout *layout, const struct chart *chart)
 {
     struct drawing drawing = {0};
@@ -226,7 +292,12 @@ void chart_draw(struct layout *layout, const struct chart *chart)
                                      : "no curve: zero all along, or no range");
         return;
     }
-    ink_curve(chart, &drawing);
+    if (chart->family_count > 0) {
+        place_letters(chart, &drawing);
+    } else {
+        ink_curve(chart, &drawing);
+    }
     draw_body(layout, chart, &drawing, glyphs);
     draw_captions(layout, chart, &drawing, glyphs);
+    draw_family_names(layout, chart);
 }

@@ -25,4 +25,12 @@ struct figure_list figures_of_conditions(struct layout *layout, const struct res
 struct figure_list figures_of_reasons(struct layout *layout, const struct result *result);
 struct figure_list figures_of_ranking(struct layout *layout, const struct result *result);
 
+/*
+ * figures_loop_linear: A, where the axis of a loop curve stops being logarithmic.
+ *
+ * A push spans many decades on both sides of zero, and the least one decides whether the cell
+ * starts: the axis is straight only below that push or the bound it is judged by.
+ */
+double figures_loop_linear(const struct states_result *found);
+
 #endif

@@ -6,10 +6,11 @@
 #include <string.h>
 
 #include "analyses/spread_result.h"
+#include "report/limits.h"
 #include "report/markup.h"
 #include "report/show.h"
 
-enum { LIMITS_SHOWN = 6, CAUSES_SHOWN = 10, CURVE_STEPS = 4, SHARED_LIMIT = 12 };
+enum { CAUSES_SHOWN = 10, CURVE_STEPS = 4, SHARED_LIMIT = 12 };
 
 /* A smaller share of the variance is not worth a row. */
 #define CAUSE_LEAST 5e-4
@@ -33,55 +34,11 @@ static struct figure_axis probe_axis(struct layout *layout, const struct probe *
 
 /* --- limits ----------------------------------------------------------------------------------- */
 
-struct limit {
-    double value;
-    bool is_upper;
-};
-
-/* What the `require` lines of a quantity allow; how many. Signed slopes are wanted small in either
- * direction. */
-static int find_limits(const struct circuit *circuit, const struct probe *probe,
-                       bool everywhere_only, struct limit *limits)
-{
-    int count = 0;
-    for (int k = 0; k < circuit->requirement_count && count + 2 <= LIMITS_SHOWN; k++) {
-        const struct requirement *r = &circuit->requirements[k];
-        if (strcmp(r->probe.text, probe->text) != 0 ||
-            (everywhere_only && r->scope != SCOPE_EVERYWHERE)) {
-            continue;
-        }
-        const bool by_size = probe->kind == PROBE_OUTPUT &&
-                             (probe->quantity == OUTPUT_LINE || probe->quantity == OUTPUT_TEMPCO);
-        if (by_size && r->relation == RELATION_BELOW) {
-            limits[count++] = (struct limit){-r->value, false};
-        }
-        if (r->relation != RELATION_BELOW) {
-            double slack = r->relation == RELATION_WITHIN ? r->tolerance : 0.0;
-            limits[count++] = (struct limit){r->value - slack, false};
-        }
-        if (r->relation != RELATION_ABOVE) {
-            double slack = r->relation == RELATION_WITHIN ? r->tolerance : 0.0;
-            limits[count++] = (struct limit){r->value + slack, true};
-        }
-    }
-    return count;
-}
-
 static const char *limit_text(struct layout *layout, const struct probe *probe,
                               const struct limit *limit)
 {
     return layout_format(layout, "at %s %s", limit->is_upper ? "most" : "least",
                          probe_text(layout, probe, limit->value));
-}
-
-static bool seen_before(const struct limit *limits, int k)
-{
-    bool seen = false;
-    for (int m = 0; m < k; m++) {
-        seen = seen || (limits[m].is_upper == limits[k].is_upper &&
-                        fabs(limits[m].value - limits[k].value) <= 1e-9 * fabs(limits[k].value));
-    }
-    return seen;
 }
 
 /* --- histograms ------------------------------------------------------------------------------- */
@@ -90,8 +47,8 @@ static bool seen_before(const struct limit *limits, int k)
 static void mark_limits(struct layout *layout, struct figure *figure, const struct circuit *circuit,
                         const struct spread_of_probe *row)
 {
-    struct limit limits[LIMITS_SHOWN];
-    const int count = find_limits(circuit, row->probe, false, limits);
+    struct limit limits[LIMIT_COUNT];
+    const int count = limits_find(circuit, row->probe, false, limits);
     const double factor = shown_factor(row->probe);
     const double from = row->histogram.from, to = row->histogram.to, width = to - from;
     if (count > 0) {
@@ -105,7 +62,7 @@ static void mark_limits(struct layout *layout, struct figure *figure, const stru
         } else {
             figure->band.from = fmax(figure->band.from, value * factor);
         }
-        if (seen_before(limits, k)) {
+        if (limits_seen(limits, k)) {
             continue;
         }
         if (value >= from - width && value <= to + width) {
@@ -167,7 +124,7 @@ static bool add_histogram(struct layout *layout, struct figure_list *figures,
     const struct histogram *h = &row->histogram;
     const double factor = shown_factor(row->probe), bin = (h->to - h->from) / h->bins;
     struct figure *figure = figures_add(layout, figures);
-    if (figure == NULL || !figures_room(layout, figure, LIMITS_SHOWN + 1)) {
+    if (figure == NULL || !figures_room(layout, figure, LIMIT_COUNT + 1)) {
         return false;
     }
     figure->bars = arena_new_array(layout->arena, struct figure_bar, h->bins);
@@ -257,11 +214,11 @@ static bool fits(const struct result *result, int a, int b)
     const struct conditions_result *r = result->conditions;
     const struct probe *x = &r->probes[a], *y = &r->probes[b];
     const double own = fabs(r->ranges[a].own), other = fabs(r->ranges[b].own);
-    struct limit limits[LIMITS_SHOWN];
+    struct limit limits[LIMIT_COUNT];
     return a == b || (x->kind == y->kind && x->quantity == y->quantity && x->kind != PROBE_DEVICE &&
                       own < FIGURES_SPAN * other && other < FIGURES_SPAN * own &&
-                      find_limits(result->circuit, x, true, limits) == 0 &&
-                      find_limits(result->circuit, y, true, limits) == 0);
+                      limits_find(result->circuit, x, true, limits) == 0 &&
+                      limits_find(result->circuit, y, true, limits) == 0);
 }
 
 static bool add_curve(struct layout *layout, struct figure *figure,
@@ -299,9 +256,9 @@ static void level_limits(struct layout *layout, struct figure *figure,
 {
     const struct figure_series *curve = &figure->series[0];
     double low = (double)INFINITY, high = (double)-INFINITY;
-    struct limit limits[LIMITS_SHOWN];
-    const int count = find_limits(circuit, probe, true, limits);
-    figure->levels = arena_new_array(layout->arena, struct figure_level, LIMITS_SHOWN);
+    struct limit limits[LIMIT_COUNT];
+    const int count = limits_find(circuit, probe, true, limits);
+    figure->levels = arena_new_array(layout->arena, struct figure_level, LIMIT_COUNT);
     for (int k = 0; k < curve->count; k++) {
         low = isfinite(curve->y[k]) ? fmin(low, curve->y[k]) : low;
         high = isfinite(curve->y[k]) ? fmax(high, curve->y[k]) : high;
@@ -309,7 +266,7 @@ static void level_limits(struct layout *layout, struct figure *figure,
     for (int k = 0; k < count && figure->levels != NULL; k++) {
         const double value = limits[k].value * shown_factor(probe);
         const double room = fmax(high - low, 0.05 * fmax(fabs(low), fabs(high)));
-        if (value >= low - room && value <= high + room && !seen_before(limits, k)) {
+        if (value >= low - room && value <= high + room && !limits_seen(limits, k)) {
             figure->levels[figure->level_count++] = (struct figure_level){
                 value, limit_text(layout, probe, &limits[k]), limits[k].is_upper};
         }

@@ -10,11 +10,7 @@
 /* Decades that a push may span in the picture. */
 static const double widest = 1e12;
 
-/*
- * A push spans many decades on both sides of zero, and the least one decides whether the cell
- * starts: the axis is straight only below a tenth of that push or of the bound it is judged by.
- */
-static double linear_part(const struct states_result *found)
+double figures_loop_linear(const struct states_result *found)
 {
     double greatest = 0.0, least = isfinite(found->push_bound) ? found->push_bound : 1e-9;
     for (int k = 0; k < found->curve_count; k++) {
@@ -88,7 +84,7 @@ struct figure_list figures_of_states(struct layout *layout, const struct result 
     figure->x = (struct figure_axis){
         layout_format(layout, "voltage of %s", layout_short(layout, found->probe, 30)), "V", true};
     figure->y = (struct figure_axis){"push into the node", "A", true};
-    figure->linear = linear_part(found);
+    figure->linear = figures_loop_linear(found);
     figure->labels_above = true;
     figure->keeps_zero = true;
     figure->series[figure->series_count++] = (struct figure_series){

@@ -5,6 +5,7 @@
 #include <string.h>
 
 #include "analyses/spread_result.h"
+#include "report/limits.h"
 #include "report/show.h"
 #include "report/table.h"
 
@@ -36,11 +37,12 @@ static const char *of_own(struct layout *layout, double sigma, const struct spre
 static void figures_table(struct layout *layout, const struct mismatch_result *r)
 {
     static const char *const heads[] = {"", "here", "mean", "sigma", "", "first order", ""};
+    static const int drops[] = {0, 0, 2, 0, 0, 1, 3};
     struct table table;
     table_begin(&table, layout);
     for (int c = 0; c < 7; c++) {
         table_column(&table,
-                     (struct table_column){.head = heads[c], .right = c > 0, .may_drop = c == 6});
+                     (struct table_column){.head = heads[c], .right = c > 0, .may_drop = drops[c]});
     }
     for (int q = 0; q < r->quantity_count; q++) {
         const struct spread_of_probe *row = &r->quantities[q];
@@ -82,12 +84,34 @@ static void figures_remarks(struct layout *layout, const struct mismatch_result 
     }
 }
 
+/* The limits between the lower end of this bar and that of the next. */
+static void limit_lines(struct layout *layout, const struct spread_of_probe *row,
+                        const struct limit *limits, int count, double from, double to)
+{
+    for (int k = 0; k < count; k++) {
+        if (limits[k].value >= from && limits[k].value < to && !limits_seen(limits, k)) {
+            const char *value = show_probe(layout, row->probe, limits[k].value);
+            const int blank = 12 - text_width(value);
+            layout_line(layout, TONE_WARN,
+                        layout_format(layout, "%*s%s  %s the requirement wants at %s this",
+                                      blank > 0 ? blank : 0, "", value,
+                                      layout->style.ascii
+                                          ? "----"
+                                          : "\xE2\x94\x84\xE2\x94\x84\xE2\x94\x84\xE2\x94\x84",
+                                      limits[k].is_upper ? "most" : "least"));
+        }
+    }
+}
+
 /* One bar a row; neighbouring bins are joined until BAR_ROWS are left. */
-static void draw_histogram(struct layout *layout, const struct spread_of_probe *row)
+static void draw_histogram(struct layout *layout, const struct circuit *circuit,
+                           const struct spread_of_probe *row)
 {
     const struct histogram *h = &row->histogram;
     const int join = (h->bins + BAR_ROWS - 1) / BAR_ROWS;
     const char *ink = layout->style.ascii ? "#" : "\xE2\x96\x88";
+    struct limit limits[LIMIT_COUNT];
+    const int count = limits_find(circuit, row->probe, false, limits);
     int most = 1;
     for (int b = 0; b < h->bins; b += join) {
         int sum = 0;
@@ -115,6 +139,8 @@ static void draw_histogram(struct layout *layout, const struct spread_of_probe *
         layout_line(layout, TONE_PLAIN,
                     layout_format(layout, "%*s%s  %s%s%d", blank > 0 ? blank : 0, "", value, bar,
                                   length > 0 ? " " : "", sum));
+        limit_lines(layout, row, limits, count, from,
+                    h->from + (h->to - h->from) * (b + join) / h->bins);
     }
 }
 
@@ -196,7 +222,7 @@ void page_mismatch(struct layout *layout, const struct result *result)
     figures_remarks(layout, r);
     if (r->quantity_count > 0 && r->quantities[0].sampled.count > 1) {
         layout_gap(layout);
-        draw_histogram(layout, &r->quantities[0]);
+        draw_histogram(layout, result->circuit, &r->quantities[0]);
     }
     int shown = 0;
     for (int q = 0; q < r->quantity_count && shown < PROBES_WITH_CAUSES; q++) {

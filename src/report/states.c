@@ -4,6 +4,8 @@
 #include <math.h>
 #include <string.h>
 
+#include "report/chart.h"
+#include "report/figures.h"
 #include "report/page_parts.h"
 #include "report/show.h"
 #include "report/table.h"
@@ -124,10 +126,10 @@ static void state_lines(struct layout *layout, const struct result *result)
                 ? layout_format(layout, "proved unique within %s at every node",
                                 width_text(layout, state->widest))
                 : "found, but not certified: the equations are nearly singular there";
-        layout_line(layout, state->can_hold ? TONE_PLAIN : TONE_WARN,
-                    layout_format(layout, "%s: %s%s%s", state_name(layout, k), proof,
-                                  state->can_hold ? "" : "; cannot be held",
-                                  k == found->wanted ? wanted : ""));
+        layout_paragraph(layout, state->can_hold ? TONE_PLAIN : TONE_WARN, 2,
+                         layout_format(layout, "%s: %s%s%s", state_name(layout, k), proof,
+                                       state->can_hold ? "" : "; cannot be held",
+                                       k == found->wanted ? wanted : ""));
         all_hold = all_hold && state->can_hold;
     }
     layout_paragraph(layout, TONE_QUIET, 0,
@@ -193,6 +195,47 @@ static void loop_lines(struct layout *layout, const struct states_result *found)
     }
 }
 
+/* The push against the voltage where the loop is opened, on an axis of decades of both signs. */
+static void loop_chart(struct layout *layout, const struct states_result *found)
+{
+    struct chart_mark *marks =
+        arena_new_array(layout->arena, struct chart_mark, found->state_count);
+    bool has_unheld = false;
+    if (marks == NULL || found->curve_count < 2 || found->probe == NULL) {
+        return;
+    }
+    for (int k = 0; k < found->state_count; k++) {
+        marks[k] = (struct chart_mark){found->states[k].x[found->probe_unknown], 0.0,
+                                       found->states[k].can_hold};
+        has_unheld = has_unheld || !marks[k].is_filled;
+    }
+    const struct chart chart = {
+        .x = found->curve_v,
+        .y = found->curve_push,
+        .count = found->curve_count,
+        .x_dimension = DIMENSION_VOLTAGE,
+        .y_dimension = DIMENSION_CURRENT,
+        .x_name = layout_format(layout, "voltage of %s", layout_short(layout, found->probe, 24)),
+        .edge = NAN,
+        .point = NAN,
+        .linear = figures_loop_linear(found),
+        .marks = marks,
+        .mark_count = found->state_count,
+    };
+    layout_gap(layout);
+    layout_line(layout, TONE_STRONG,
+                layout_format(layout, "push into %s, in decades of both signs",
+                              layout_short(layout, found->probe, 24)));
+    chart_draw(layout, &chart);
+    layout_line(layout, TONE_QUIET,
+                layout_format(layout, "%*s  %s a state%s", 10, "",
+                              layout->style.ascii ? "o" : "\xE2\x97\x8F",
+                              !has_unheld           ? ""
+                              : layout->style.ascii ? "   x one that cannot be held"
+                                                    : "   \xE2\x97\x8B one that cannot be held"));
+    layout_gap(layout);
+}
+
 static void ramp_line(struct layout *layout, const struct states_result *found)
 {
     if (!found->ramp_begins) {
@@ -248,6 +291,9 @@ static void startup_part(struct layout *layout, const struct states_result *foun
     }
     ramp_line(layout, found);
     loop_lines(layout, found);
+    if (found->has_loop) {
+        loop_chart(layout, found);
+    }
     starter_rows(layout, found);
     for (int k = 0; k < found->supply_count; k++) {
         const struct supply_result *row = &found->supplies[k];

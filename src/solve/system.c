@@ -11,6 +11,7 @@
 #include <string.h>
 
 #include "numerics/continuation.h"
+#include "solve/groups.h"
 
 enum { LOCAL = DEVICE_LOCAL_LIMIT };
 
@@ -52,12 +53,21 @@ static void prepare(struct system *s, int k)
     const struct device_values values = {s->own[k], model_values(s, k), instance->extra,
                                          s->circuit->resistor_factor};
     instance->type->prepare(&values, &conditions, s->prepared + s->block[k]);
+    if (s->groups != NULL && !s->groups_are_old) {
+        groups_update(s->groups, k);
+    }
+}
+
+void system_blocks_changed(struct system *s)
+{
+    s->groups_are_old = true;
 }
 
 void system_conditions(struct system *s, double kelvin, unsigned effects)
 {
     s->conditions.kelvin = kelvin;
     s->conditions.effects = effects;
+    system_blocks_changed(s);
     for (int k = 0; k < s->circuit->instance_count; k++) {
         prepare(s, k);
     }
@@ -225,6 +235,63 @@ struct system_measure system_measure(void)
     return (struct system_measure){volts_floor, amperes_floor, rounding_share};
 }
 
+/* Adds one device. */
+static void add_device(const struct system *s, int k, const double *x, double *f, double *scale,
+                       double *values)
+{
+    const struct instance *instance = &s->circuit->instances[k];
+    const int n = instance->local_count;
+    const int *slot = s->slots + s->first_slot[k];
+    double local[LOCAL], part[LOCAL], jac[LOCAL * LOCAL];
+    system_gather(instance, x, local);
+    instance->type->evaluate(system_block(s, k), local, part, jac);
+    for (int r = 0; r < n; r++) {
+        const int row = instance->local[r];
+        if (row < 0) {
+            continue;
+        }
+        f[row] += part[r];
+        double size = fabs(part[r]);
+        for (int q = 0; q < n; q++) {
+            const int place = *slot++;
+            if (place >= 0) {
+                values[place] += jac[n * r + q];
+            }
+            const double slope = fabs(jac[n * r + q]);
+            size += row < s->node_count ? slope * floor_of(s, instance->local[q])
+                                        : fmin(slope, 1) * (fabs(local[q]) + volts_floor);
+            size += rounding_share * slope * fabs(local[q]);
+        }
+        scale[row] += size;
+    }
+}
+
+/* Adds all devices, like ones side by side. */
+static void add_devices(struct system *s, const double *x, double *f, double *scale, double *values)
+{
+    const int count = s->circuit->instance_count;
+    struct groups *groups = s->groups;
+    if (groups == NULL) {
+        for (int k = 0; k < count; k++) {
+            add_device(s, k, x, f, scale, values);
+        }
+        return;
+    }
+    if (s->groups_are_old) {
+        groups_make(groups);
+        s->groups_are_old = false;
+    }
+    groups_evaluate(groups, x, f, scale, values);
+    for (int k = 0; k < groups->single_count; k++) {
+        add_device(s, groups->singles[k], x, f, scale, values);
+    }
+    for (int k = 0; groups->left_out_count > 0 && k < count; k++) {
+        if (groups_left_out(groups, k)) {
+            add_device(s, k, x, f, scale, values);
+        }
+    }
+}
+
 static bool evaluate(void *self, const double *x, double *f, double *scale, double *values)
 {
     struct system *s = self;
@@ -233,33 +300,7 @@ static bool evaluate(void *self, const double *x, double *f, double *scale, doub
     memset(scale, 0, (size_t)s->n * sizeof *scale);
     memset(values, 0, (size_t)s->nonzeros * sizeof *values);
     s->evaluations++;
-    for (int k = 0; k < c->instance_count; k++) {
-        const struct instance *instance = &c->instances[k];
-        const int n = instance->local_count;
-        const int *slot = s->slots + s->first_slot[k];
-        double local[LOCAL], part[LOCAL], jac[LOCAL * LOCAL];
-        system_gather(instance, x, local);
-        instance->type->evaluate(system_block(s, k), local, part, jac);
-        for (int r = 0; r < n; r++) {
-            const int row = instance->local[r];
-            if (row < 0) {
-                continue;
-            }
-            f[row] += part[r];
-            double size = fabs(part[r]);
-            for (int q = 0; q < n; q++) {
-                const int place = *slot++;
-                if (place >= 0) {
-                    values[place] += jac[n * r + q];
-                }
-                const double slope = fabs(jac[n * r + q]);
-                size += row < s->node_count ? slope * floor_of(s, instance->local[q])
-                                            : fmin(slope, 1) * (fabs(local[q]) + volts_floor);
-                size += rounding_share * slope * fabs(local[q]);
-            }
-            scale[row] += size;
-        }
-    }
+    add_devices(s, x, f, scale, values);
     if (s->embedding == EMBED_SOURCES && s->lambda != 1) {
         add_drive(s, s->lambda - 1, f);
     }
@@ -548,6 +589,7 @@ struct system *system_create(const struct circuit *circuit, double kelvin, unsig
         system_free(s);
         return NULL;
     }
+    s->groups = groups_create(s);
     system_conditions(s, kelvin, effects);
     return s;
 }

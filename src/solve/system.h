@@ -43,6 +43,8 @@ struct system {
     double *work;               /* of the solvers */
     long double *extended_work; /* of the polish and of linear_refine */
     int evaluations;
+    struct groups *groups; /* like devices side by side; NULL: none */
+    bool groups_are_old;   /* blocks have changed since they were made */
 };
 
 /* A system for the conditions; owned by the caller (system_free). NULL when memory is short. */
@@ -68,6 +70,9 @@ void system_swap_model(struct system *system, const double *values, const double
 
 /* The prepared block of an instance. */
 const void *system_block(const struct system *system, int instance);
+
+/* To be called after blocks were changed otherwise than by the functions above. */
+void system_blocks_changed(struct system *system);
 
 /* The branch unknown of an instance that has one. */
 int system_branch(const struct instance *instance);

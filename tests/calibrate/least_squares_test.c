@@ -41,7 +41,7 @@ static void check_misra(const struct bounded *bounds, const double *start)
     struct arena *arena = arena_create();
     double b[2] = {start[0], start[1]};
     struct least_squares_answer answer;
-    struct least_squares_problem problem = {2, MISRA, bounds, misra, NULL, NULL};
+    struct least_squares_problem problem = {2, MISRA, bounds, 0, misra, NULL, NULL};
     assert_int_equal(least_squares_solve(arena, &problem, b, &answer), STATUS_OK);
     check_near(b[0], 2.3894212918e+02, 1e-6);
     check_near(b[1], 5.5015643181e-04, 1e-6);
@@ -87,7 +87,7 @@ static void stops_at_a_bound(void **state)
     const struct bounded bounds[2] = {{-5, 1, false}, {-5, 5, false}};
     double p[2] = {-3, 3};
     struct least_squares_answer answer;
-    struct least_squares_problem problem = {2, 2, bounds, corner, NULL, NULL};
+    struct least_squares_problem problem = {2, 2, bounds, 0, corner, NULL, NULL};
     assert_int_equal(least_squares_solve(arena, &problem, p, &answer), STATUS_OK);
     check_near(p[0], 1, 1e-6);
     check_near(p[1], 1, 1e-6);
@@ -120,7 +120,7 @@ static void tells_the_rank(void **state)
     const struct bounded bounds[2] = {{-10, 10, false}, {-10, 10, false}};
     double p[2] = {0, 0};
     struct least_squares_answer answer;
-    struct least_squares_problem problem = {2, 4, bounds, sum_only, NULL, NULL};
+    struct least_squares_problem problem = {2, 4, bounds, 0, sum_only, NULL, NULL};
     assert_int_equal(least_squares_solve(arena, &problem, p, &answer), STATUS_OK);
     check_near(p[0] + p[1], 3, 0.01);
     assert_int_equal(answer.rank, 1);
@@ -141,7 +141,7 @@ static void can_be_stopped(void **state)
     const struct bounded bounds[2] = {{0, 1000, false}, {0, 0.01, false}};
     double b[2] = {500, 1e-4};
     struct least_squares_answer answer;
-    struct least_squares_problem problem = {2, MISRA, bounds, misra, always, NULL};
+    struct least_squares_problem problem = {2, MISRA, bounds, 0, misra, always, NULL};
     assert_int_equal(least_squares_solve(arena, &problem, b, &answer), STATUS_STOPPED);
     arena_destroy(arena);
 }

@@ -91,6 +91,7 @@ run 2 spread tail.cell --part 0/3 && err_has "a part is written as 3/16"
 run 2 spread tail.cell --part 4/3 && err_has "a part is written as 3/16"
 run 2 spread tail.cell --write x && err_has "'--write' writes a part of a spread: it wants --part K/N"
 run 2 spread tail.cell --part 1/2 --json && err_has "'--json' does not go with --part"
+run 2 spread tail.cell --part 1/2 --page x.html && err_has "'--page' does not go with --part"
 run 2 merge && err_has "wants a file: ampstead merge PART..."
 printf 'rail vdd 1 V\nresistor R vdd -> gnd 1k\n' >plain.cell
 run 2 spread plain.cell --part 1/2 && err_has "the cell has no mismatch to sample"

@@ -36,6 +36,20 @@ run 0 spread "$work/half.cell" -n 5 --csv -
 [ "$(head -1 "$work/out" | tr -d '\r')" = "sample,state,mid.v [V]" ] || fail "heading of the samples"
 grep -q '^4,solved,[01]\.[0-9]*' "$work/out" || fail "row of sample 4"
 
+# Pictures and pages of verbs beside the review
+run 0 spread "$work/half.cell" -n 200 --plot "$work/h.svg" && grep -q 'mid.v over mismatch' "$work/h.svg" &&
+    grep -q 'class="f-bar' "$work/h.svg" && grep -q 'mid.v against vdd' "$work/h.svg" || fail "picture of a spread"
+run 0 states "$source/netlists/bandgap.cell" --plot "$work/l.svg" && grep -q ': can be held' "$work/l.svg" ||
+    fail "picture of the states"
+run 0 states "$work/half.cell" --plot "$work/none.svg" && err_has "nothing to draw" && [ ! -e "$work/none.svg" ] ||
+    fail "a picture of nothing"
+# A page of a review shows what is known of a `for` line too; the review itself stays as without it.
+run 0 review "$work/half.cell" && cp "$work/out" "$work/without"
+run 0 review "$work/half.cell" -n 200 --page "$work/h.html" && cmp -s "$work/without" "$work/out" ||
+    fail "a page changes the review"
+grep -q 'id="mismatch"' "$work/h.html" && grep -q 'id="states"' "$work/h.html" &&
+    ! grep -q 'not judged' "$work/h.html" || fail "the page of a review is not whole"
+
 # Numbers that are none
 run 2 spread "$work/half.cell" -n 3x && err_has "'3x' is no value of --samples: a whole number from 0 to 10000000"
 run 2 spread "$work/half.cell" --samples 10000001 && err_has "'10000001' is no value of --samples"

@@ -26,8 +26,9 @@ def read_exceptions():
 
 def measure(build, layer):
     report = subprocess.run(
-        ["gcovr", "-r", str(ROOT), "--json", "-f", f"{ROOT}/src/{layer}/.*", str(build)],
-        capture_output=True, text=True, check=True, cwd=build).stdout
+        ["gcovr", "-r", str(ROOT), "--json", "-f", f"{ROOT}/src/{layer}/.*",
+         "--object-directory", str(build / "src" / layer), str(build / "src" / layer)],
+        stdout=subprocess.PIPE, text=True, check=True, cwd=build).stdout
     return json.loads(report)["files"]
 
 

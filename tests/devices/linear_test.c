@@ -4,6 +4,7 @@
 #include "device_check.h"
 
 #include "devices/resistor.h"
+#include "devices/series.h"
 
 static struct subject resistor(double ohms)
 {
@@ -63,6 +64,21 @@ static void resistor_takes_corner_and_deviate(void **state)
     prepare(&it);
     assert_true(resistor_at(&it.values, &it.conditions) < 0);
     check_relative("floor", 1 / quantity(&it, "i", x) * 2, 2e-3, 1e-12);
+}
+
+/* The resistance in a lead, a branch of its own: its quantities by Ohm's law. */
+static void series_describes_itself(void **state)
+{
+    (void)state;
+    struct subject it = subject_of(&device_series);
+    set_value(&it, "resistance", 50);
+    prepare(&it);
+    const double x[3] = {1.5, 1, 0.01}; /* both ends, the current of the branch */
+    double q[3];
+    assert_int_equal(it.type->describe(it.prepared, x, x, q), REGION_NONE);
+    check_relative("i", q[0], 0.01, 0);
+    check_relative("v", q[1], 0.5, 0);
+    check_relative("power", q[2], 5e-3, 1e-15);
 }
 
 static void sources_drive_along_their_arrow(void **state)
@@ -161,6 +177,7 @@ int main(void)
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(resistor_follows_published_temperature_laws),
         cmocka_unit_test(resistor_takes_corner_and_deviate),
+        cmocka_unit_test(series_describes_itself),
         cmocka_unit_test(sources_drive_along_their_arrow),
         cmocka_unit_test(opamp_amplifies_and_saturates),
         cmocka_unit_test(opamp_derivatives_are_exact),

@@ -117,6 +117,15 @@ static void check_point(struct subject *it, double vgs, double vds, double vsb)
     }
 }
 
+/* Far below threshold the charges are plain exponentials (-50 and below in units of UT). */
+static void follows_the_current_far_below(void **state)
+{
+    (void)state;
+    struct subject it = measured_set("nmos", 1e-6, 8e-6);
+    check_point(&it, -1.6, 0.9, 0);
+    check_point(&it, -2.2, 0.05, 0.45);
+}
+
 static void follows_the_current(void **state)
 {
     (void)state;
@@ -162,6 +171,7 @@ int main(void)
 {
     const struct CMUnitTest tests[] = {
         cmocka_unit_test(follows_the_current),
+        cmocka_unit_test(follows_the_current_far_below),
         cmocka_unit_test(follows_the_bare_core),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);

@@ -7,7 +7,7 @@
 #   <!-- add: NAME -->     the lines are right when they stand at the end of the file NAME
 #   <!-- run: COMMAND -->  the block is what COMMAND prints, standard error included
 #   <!-- run 2: COMMAND -->  the same, and the exit status is 2 (else 0)
-#   <!-- long: COMMAND -->   as run, but only with --long: it takes minutes
+#   <!-- long: COMMAND -->   as run, but only with --long: it takes a while
 #
 # A fenced block without such a comment fails: nothing is shown that was not run.
 #

@@ -1,6 +1,6 @@
 #!/bin/sh
-# fuzz.sh SOURCE_DIR BUILD_DIR [SECONDS | INPUTSi]: builds the fuzz targets with clang and runs each
-# for SECONDS (60), or for a number of inputs ("4000000i"), from the seeds of tests and netlists.
+# fuzz.sh SOURCE_DIR BUILD_DIR [SECONDS | INPUTSi]: builds the fuzz targets with clang and runs each,
+# two at a time on two processors, for SECONDS (60), or for a number of inputs ("4000000i"), from the seeds of tests and netlists.
 # Fails when one finds a crash, a leak, an input that takes 10 s, or one that takes 1 GB.
 set -eu
 source=$(cd "$1" && pwd)
@@ -19,6 +19,7 @@ ninja -C "$build" fuzz_tree fuzz_cell fuzz_curve >"$build/log" || { cat "$build/
 
 cd "$build"
 mkdir -p tree cell curve
+rm -f ./*.status
 for file in "$source"/netlists/*.cell "$source"/tests/language/*/*.cell; do
     { printf 0; cat "$file"; } >"tree/$(basename "$file")"
     { cat "$file"; printf 0; } >"cell/$(basename "$file")"
@@ -33,12 +34,15 @@ for file in $(find "$source/tests" "$source/netlists" -name '*.csv' -size -4k); 
 done
 printf 'v,i\n0,0\n0.5,1e-6\n# knee\n1, 1e-3\n' >curve/plain.csv
 
+# one target a processor at a time; each leaves its status beside its log
 failed=0
+printf '%s\n' tree cell curve | xargs -P "$(nproc)" -I TARGET sh -c '
+    tests/fuzz/fuzz_TARGET TARGET "$1" -max_len=4000 -timeout=10 -rss_limit_mb=1024 \
+        -dict="$2" -artifact_prefix="$PWD/found-TARGET-" -print_final_stats=1 -verbosity=0 \
+        >TARGET.log 2>&1
+    echo $? >TARGET.status' fuzz "$limit" "$source/tests/fuzz/words.dict"
 for target in tree cell curve; do
-    length=4000
-    if ! tests/fuzz/fuzz_$target $target "$limit" -max_len=$length -timeout=10 -rss_limit_mb=1024 \
-        -dict="$source/tests/fuzz/words.dict" -artifact_prefix="$build/found-$target-" \
-        -print_final_stats=1 -verbosity=0 >"$target.log" 2>&1; then
+    if [ "$(cat "$target.status")" != 0 ]; then
         echo "fuzz_$target FAILED:"
         tail -40 "$target.log"
         failed=1

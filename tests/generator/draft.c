@@ -193,6 +193,14 @@ void put_resistor(struct draft *d, int a, int b, double ohms)
     draft_write(d, "resistor R%d %s -> %s %.5g\n", ++d->parts, NAME(d, a), NAME(d, b), ohms);
 }
 
+void note_loop(struct draft *d, double amperes)
+{
+    struct generated *cell = d->cell;
+    if (cell->loop_count < GENERATOR_LOOP_LIMIT) {
+        cell->loops[cell->loop_count++] = (struct self_biased){d->parts, amperes};
+    }
+}
+
 void put_feed(struct draft *d, enum side side, int node, double amperes)
 {
     const int rail = rail_of(opposite(side));

@@ -49,6 +49,7 @@ struct draft {
     double celsius, kelvin; /* kelvin: what the equations see */
     double supply, low;     /* V between the rails, V of the low rail */
     int nodes, parts, devices, device_target, outputs;
+    struct generated *cell; /* the loops are noted there */
 };
 
 /* A transistor for a current: what is written, and what voltages it takes. */
@@ -85,6 +86,8 @@ void put_transistor(struct draft *d, const struct size *size, int out, int contr
 /* Between `a` and `b`; for a side, current flows from `a` to `b` on the low side and back on the
  * high side. */
 void put_resistor(struct draft *d, int a, int b, double ohms);
+/* The resistor just put carries `amperes` when the loop around it runs. */
+void note_loop(struct draft *d, double amperes);
 /* Drives `amperes` from the opposite rail into `node` of a side. */
 void put_feed(struct draft *d, enum side side, int node, double amperes);
 /* Holds `node` at `volts` from the rail of a side. */

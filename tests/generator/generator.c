@@ -173,7 +173,7 @@ static void compose(struct draft *d)
 void generator_make(uint64_t seed, uint64_t number, struct generated *cell)
 {
     memset(cell, 0, sizeof *cell);
-    struct draft d = {.draw = draw_begin(seed, number), .text = cell->text};
+    struct draft d = {.draw = draw_begin(seed, number), .text = cell->text, .cell = cell};
     struct technology technology =
         technologies[draw_index(&d.draw, (int)(sizeof technologies / sizeof technologies[0]))];
     draw_conditions(&d, &technology);

@@ -7,13 +7,21 @@
 #include <stdbool.h>
 #include <stdint.h>
 
-enum { GENERATOR_TEXT_LIMIT = 32768 };
+enum { GENERATOR_TEXT_LIMIT = 32768, GENERATOR_LOOP_LIMIT = 8 };
+
+/* A reference that biases itself: its own resistor tells whether it runs. */
+struct self_biased {
+    int resistor;   /* R<number> of the text */
+    double current; /* A, what it was sized for */
+};
 
 struct generated {
     char text[GENERATOR_TEXT_LIMIT];
     bool is_hand; /* to be solved in the hand view */
     int device_count;
     const char *technology; /* family */
+    struct self_biased loops[GENERATOR_LOOP_LIMIT];
+    int loop_count;
 };
 
 /* Cell `number` of the series `seed`; the same on every machine with IEEE arithmetic. */

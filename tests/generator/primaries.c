@@ -66,6 +66,7 @@ static bool put_self_biased(struct draft *d, struct branches *out)
     put_transistor(d, &lower, a, a, rail_of(side), 1);
     put_transistor(d, &lower, b, a, end, k);
     put_resistor(d, end, rail_of(side), drop / current);
+    note_loop(d, current);
     put_transistor(d, &upper, a, b, rail_of(other), 1);
     put_transistor(d, &upper, b, b, rail_of(other), 1);
     put_transistor(d, &upper, node, b, rail_of(other), 1);
@@ -230,6 +231,7 @@ static bool put_bandgap(struct draft *d, struct branches *out)
     put_junction(d, number, number - 1, z, area);
     const double own = low_supply ? current / 2 : current;
     put_resistor(d, y, z, u * log(area) / own);
+    note_loop(d, own);
     if (low_supply) {
         put_resistor(d, x, NODE_LOW, 0.7 / own);
         put_resistor(d, y, NODE_LOW, 0.7 / own);

@@ -23,7 +23,8 @@ static const uint64_t seed = 20260;
 static const double agreement = 1e-9;
 static const double residual_limit = 1e-12;
 static const double least_volts = 1e-3;
-enum { METHOD_LIMIT = 12, SHOWN_FAILURES = 20 };
+static const double runs_from = 1e-3; /* share of the current that a loop was sized for */
+enum { METHOD_LIMIT = 12, SHOWN_FAILURES = 20, SHOWN_RESTING = 8 };
 
 struct method_count {
     const char *name;
@@ -32,6 +33,8 @@ struct method_count {
 
 struct tally {
     int cells, failures, hand, limited, compared;
+    int loops, resting; /* references that bias themselves; those without current */
+    uint64_t first_resting[SHOWN_RESTING];
     int *iterations; /* [cells] */
     double worst_residual, worst_difference;
     struct method_count methods[METHOD_LIMIT];
@@ -133,6 +136,37 @@ static double difference_from_quad(const struct trial *trial)
 }
 #endif
 
+static double resistor_current(const struct trial *trial, int number)
+{
+    char name[16];
+    const struct point_result *point = &trial->result->point;
+    snprintf(name, sizeof name, "R%d", number);
+    for (int k = 0; k < point->device_count; k++) {
+        const struct instance *instance = point->devices[k].instance;
+        if (strcmp(instance->name, name) == 0) {
+            return point->devices[k].q[instance->type->quantity_current];
+        }
+    }
+    return NAN;
+}
+
+/* Zero current is a solution of a self-biased reference too, and no fault of the search; which one
+ * was found is counted, so that a change of the search cannot move cells there unseen. */
+static void check_loops(struct tally *tally, const struct trial *trial)
+{
+    for (int k = 0; k < trial->generated.loop_count; k++) {
+        const struct self_biased *loop = &trial->generated.loops[k];
+        const double current = fabs(resistor_current(trial, loop->resistor));
+        tally->loops++;
+        if (!(current >= runs_from * loop->current)) {
+            if (tally->resting < SHOWN_RESTING) {
+                tally->first_resting[tally->resting] = trial->number;
+            }
+            tally->resting++;
+        }
+    }
+}
+
 static void check_trial(struct tally *tally, const struct trial *trial, bool compare)
 {
     char what[300];
@@ -171,6 +205,7 @@ static void run_cell(struct tally *tally, uint64_t number, bool compare)
         tally->iterations[tally->cells++] = trial.result->point.solver.iterations;
         count_method(tally, trial.result->point.solver.method);
         check_trial(tally, &trial, compare);
+        check_loops(tally, &trial);
     } else {
         fail_with(tally, &trial,
                   trial.result == NULL ? "was not read" : trial.result->point.solver.trouble);
@@ -200,6 +235,12 @@ static void print_table(const struct tally *tally, int count)
     }
     printf("worst_residual at most %.1e; above 1e-12: %d, each with its reason\n",
            tally->worst_residual, tally->limited);
+    printf("references that bias themselves: %d; at rest without current: %d", tally->loops,
+           tally->resting);
+    for (int k = 0; k < tally->resting && k < SHOWN_RESTING; k++) {
+        printf("%s%" PRIu64, k == 0 ? " (cells " : ", ", tally->first_resting[k]);
+    }
+    puts(tally->resting > SHOWN_RESTING ? ", ...)" : tally->resting > 0 ? ")" : "");
     if (tally->compared > 0) {
         printf("against quadruple precision: %d cells, largest difference %.1e\n", tally->compared,
                tally->worst_difference);

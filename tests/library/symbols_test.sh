@@ -17,6 +17,7 @@ ampstead_result_free
 ampstead_result_json
 ampstead_result_messages
 ampstead_result_page
+ampstead_result_part
 ampstead_result_plot
 ampstead_result_status
 ampstead_result_text

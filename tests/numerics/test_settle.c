@@ -26,8 +26,14 @@ static bool evaluate(void *self, const double *x, double *f, double *scale, doub
     return isfinite(f[0]);
 }
 
-static enum newton_status run(void (*f)(double, double *, double *), double start, bool patient,
-                              double *x)
+static bool always(void *self)
+{
+    (void)self;
+    return true;
+}
+
+static enum newton_status run_until(void (*f)(double, double *, double *), double start,
+                                    bool patient, bool (*stopped)(void *), double *x)
 {
     struct arena *arena = arena_create();
     const struct entry entry = {0, 0};
@@ -41,7 +47,8 @@ static enum newton_status run(void (*f)(double, double *, double *), double star
     struct linear_solver *solver = linear_create(system.pattern);
     double *work = calloc(newton_work_size(&system), sizeof *work);
     struct newton_report report = {0};
-    const struct newton_options options = newton_default_options();
+    struct newton_options options = newton_default_options();
+    options.stopped = stopped;
     assert_non_null(work);
     *x = start;
     const enum newton_status status =
@@ -50,6 +57,12 @@ static enum newton_status run(void (*f)(double, double *, double *), double star
     linear_destroy(solver);
     arena_destroy(arena);
     return status;
+}
+
+static enum newton_status run(void (*f)(double, double *, double *), double start, bool patient,
+                              double *x)
+{
+    return run_until(f, start, patient, NULL, x);
 }
 
 /* dx/dt = x - x^3: rests in 1 and -1; 0 is a root that nothing comes to rest in. */
@@ -116,6 +129,13 @@ static void nan_is_no_success(void **state)
     assert_int_equal(run(not_a_number, 0, false, &x), NEWTON_NOT_FINITE);
 }
 
+static void stops_when_told(void **state)
+{
+    (void)state;
+    double x;
+    assert_int_equal(run_until(pitchfork, 0.1, false, always, &x), NEWTON_STOPPED);
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -123,6 +143,7 @@ int main(void)
         cmocka_unit_test(passes_where_the_jacobian_is_singular),
         cmocka_unit_test(no_root_is_no_success),
         cmocka_unit_test(nan_is_no_success),
+        cmocka_unit_test(stops_when_told),
     };
     return cmocka_run_group_tests(tests, NULL, NULL) == 0 ? 0 : 1;
 }

@@ -141,6 +141,71 @@ static void values_in_words(void **state)
     buffer_free(&out);
 }
 
+/* Two curves of a family, by their letters: 1 A all along in the top row, 0.05 A in the lowest;
+ * where both would stand in one place the first one does. */
+static void family(void **state)
+{
+    (void)state;
+    const double x[] = {0.0, 0.5, 1.0}, high[] = {1.0, 1.0, 1.0}, low[] = {1.0, 0.05, 0.05};
+    const double *const curves[] = {high, low};
+    const char *const names[] = {"R = 1 kohm", "R = 2 kohm"};
+    struct buffer out = BUFFER_EMPTY;
+    struct layout layout;
+    const struct chart chart = {.x = x,
+                                .count = 3,
+                                .x_dimension = DIMENSION_VOLTAGE,
+                                .y_dimension = DIMENSION_CURRENT,
+                                .x_name = "load",
+                                .edge = NAN,
+                                .point = NAN,
+                                .family = curves,
+                                .family_names = names,
+                                .family_count = 2};
+    assert_true(layout_begin(&layout, &ascii, &out));
+    chart_draw(&layout, &chart);
+    layout_end(&layout);
+    assert_int_equal(strspn(field(out.data, 0), "a"), CHART_COLUMNS);
+    const char *lowest = field(out.data, CHART_ROWS - 1);
+    assert_int_equal(strcspn(lowest, "\n"), CHART_COLUMNS);
+    assert_int_equal(strspn(lowest + CHART_COLUMNS / 2, "b"), CHART_COLUMNS / 2);
+    assert_non_null(strstr(out.data, "a R = 1 kohm   b R = 2 kohm"));
+    buffer_free(&out);
+}
+
+/* Decades of both signs: from -1 mA to 1 nA with a straight part of 1 pA are 9 and 3 decades, so
+ * that zero stands 3/12 below the top, in the third of ten rows; a state that can be held is an o
+ * there, one that cannot an x. */
+static void both_signs(void **state)
+{
+    (void)state;
+    const double x[] = {0.0, 0.5, 1.0}, y[] = {1e-9, 0.0, -1e-3};
+    const struct chart_mark dots[] = {{0.5, 0.0, true}, {0.75, 0.0, false}};
+    struct buffer out = BUFFER_EMPTY;
+    struct layout layout;
+    const struct chart chart = {.x = x,
+                                .y = y,
+                                .count = 3,
+                                .x_dimension = DIMENSION_VOLTAGE,
+                                .y_dimension = DIMENSION_CURRENT,
+                                .x_name = "probe",
+                                .edge = NAN,
+                                .point = NAN,
+                                .linear = 1e-12,
+                                .marks = dots,
+                                .mark_count = 2};
+    assert_true(layout_begin(&layout, &ascii, &out));
+    chart_draw(&layout, &chart);
+    layout_end(&layout);
+    assert_non_null(strstr(out.data, " 1 nA |"));
+    assert_non_null(strstr(out.data, "-1 mA |"));
+    const char *zero = field(out.data, 2);
+    assert_memory_equal(zero - 2, " |", 1);
+    assert_int_equal(zero[CHART_COLUMNS / 2], 'o');
+    assert_int_equal(zero[CHART_COLUMNS * 3 / 4], 'x');
+    assert_int_equal(zero[CHART_COLUMNS * 3 / 4 + 1], '-');
+    buffer_free(&out);
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -149,6 +214,8 @@ int main(void)
         cmocka_unit_test(nothing_to_draw),
         cmocka_unit_test(extremes),
         cmocka_unit_test(values_in_words),
+        cmocka_unit_test(family),
+        cmocka_unit_test(both_signs),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
