@@ -27,12 +27,12 @@ struct lanes_kind {
      * system       with the values of the cell itself in force, its solver holding the factors
      * there home         [n] the own point home_values  [nonzeros] the Jacobian there
      *
-     * NULL when memory is short (arena_failed) or the system is not for lanes: the caller goes on
-     * without.
+     * NULL when memory is short (then *status is STATUS_MEMORY), or when the system is not for
+     * lanes and the caller goes on without (STATUS_OK).
      */
     struct lanes_engine *(*begin)(struct system *system, const struct mismatch *mismatch,
                                   const double *home, const double *home_values,
-                                  struct arena *arena);
+                                  struct arena *arena, enum status *status);
 
     /*
      * solve: samples first to first + width - 1.

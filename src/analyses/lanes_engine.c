@@ -173,27 +173,46 @@ static bool find_slopes(struct lanes_engine *e, const struct mismatch *m, const 
     return wide != NULL;
 }
 
-static struct lanes_engine *begin_engine(struct system *s, const struct mismatch *mismatch,
-                                         const double *home, const double *home_values,
-                                         struct arena *arena)
+/* False when memory is short, or a deviate is not for lanes. */
+static bool open_arrays(struct lanes_engine *e, const struct mismatch *mismatch, const double *home,
+                        struct arena *arena)
 {
-    const size_t n = (size_t)s->n;
-    struct lanes_engine *e = arena_new(arena, struct lanes_engine);
-    struct replay *replay = replay_make(s->solver, s->face.pattern, home_values, arena);
-    if (e == NULL || replay == NULL) {
-        return NULL;
-    }
-    *e = (struct lanes_engine){.system = s, .replay = replay, .measure = system_measure()};
+    const size_t n = (size_t)e->system->n;
     e->home = new_reals(arena, n);
     e->x = new_reals(arena, n);
     e->dx = new_reals(arena, n);
     e->f = new_reals(arena, n);
     e->scale = new_reals(arena, n);
     e->inverse = new_reals(arena, n);
-    e->values = new_reals(arena, (size_t)replay->size);
-    if (e->home == NULL || e->x == NULL || e->dx == NULL || e->f == NULL || e->scale == NULL ||
-        e->inverse == NULL || e->values == NULL || !open_parts(e, arena) ||
-        !open_moved(e, mismatch, arena) || !find_slopes(e, mismatch, home, arena)) {
+    e->values = new_reals(arena, (size_t)e->replay->size);
+    return e->home != NULL && e->x != NULL && e->dx != NULL && e->f != NULL && e->scale != NULL &&
+           e->inverse != NULL && e->values != NULL && open_parts(e, arena) &&
+           open_moved(e, mismatch, arena) && find_slopes(e, mismatch, home, arena);
+}
+
+static struct lanes_engine *begin_engine(struct system *s, const struct mismatch *mismatch,
+                                         const double *home, const double *home_values,
+                                         struct arena *arena, enum status *status)
+{
+    const size_t n = (size_t)s->n;
+    int *order = arena_new_array(arena, int, 2 * n);
+    *status = STATUS_MEMORY;
+    if (order == NULL) {
+        return NULL;
+    }
+    if (s->n > REPLAY_LIMIT || !linear_pivots(s->solver, order, order + n)) {
+        *status = STATUS_OK;
+        return NULL;
+    }
+    struct lanes_engine *e = arena_new(arena, struct lanes_engine);
+    struct replay *replay = replay_make(s->solver, s->face.pattern, home_values, arena);
+    if (e == NULL || replay == NULL) {
+        return NULL;
+    }
+    *e = (struct lanes_engine){.system = s, .replay = replay, .measure = system_measure()};
+    const bool is_ready = open_arrays(e, mismatch, home, arena);
+    *status = arena_failed(arena) ? STATUS_MEMORY : STATUS_OK;
+    if (!is_ready) {
         return NULL;
     }
     e->weight = s->weight;

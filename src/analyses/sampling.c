@@ -63,12 +63,12 @@ static enum status open_lanes(struct engine *e, const struct sampling_plan *plan
     if (e->kind == NULL) {
         return STATUS_OK;
     }
-    const enum status status = restore_pivots(e);
+    enum status status = restore_pivots(e);
     if (status == STATUS_OK) {
         e->lanes = e->kind->begin(e->setup.system, plan->mismatch, plan->home, e->home_values,
-                                 e->setup.arena);
+                                  e->setup.arena, &status);
     }
-    return arena_failed(e->setup.arena) ? STATUS_MEMORY : status;
+    return status;
 }
 
 static enum status open_engine(struct engine *e, const struct sampling_plan *plan)

@@ -164,8 +164,9 @@ static unsigned lanes_solved(struct samples *s, const struct lanes_kind *kind, u
     double *values = arena_new_array(s->arena, double, system->nonzeros);
     assert_true(system->face.evaluate(system, s->setup.point.x, f, f + n, values));
     assert_int_equal(linear_factor(system->solver, values), LINEAR_OK);
+    enum status status;
     struct lanes_engine *engine =
-        kind->begin(system, &s->mismatch, s->setup.point.x, values, s->arena);
+        kind->begin(system, &s->mismatch, s->setup.point.x, values, s->arena, &status);
     assert_non_null(engine);
     return kind->solve(engine, 7, first);
 }

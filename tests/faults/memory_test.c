@@ -21,7 +21,7 @@
 struct scenario {
     const char *name, *command, *cell;
     enum ampstead_view view;
-    const char *temperature, *set, *sweep, *text;
+    const char *temperature, *set, *sweep, *text, *part;
     bool is_whole;       /* short enough that each request is refused in every run */
     bool is_brief;       /* only one request refused: the same lines as another one for the rest */
     bool has_whole_page; /* a page of a review also with states and spread */
@@ -82,6 +82,7 @@ static const struct scenario scenarios[] = {
     {.name = "states", .command = "states", .cell = "latch.cell", .text = latch_cell},
     {.name = "spread", .command = "spread", .cell = "range.cell", .text = range_cell},
     {.name = "whole page", .cell = "range.cell", .text = range_cell, .has_whole_page = true},
+    {.name = "part", .command = "spread", .cell = "range.cell", .text = range_cell, .part = "2/2"},
     {.name = "corners", .command = "spread", .cell = "corner.cell", .text = corner_cell},
     {.name = "models", .command = "models", .cell = "netlists/mirror.cell"},
     {.name = "everything", .cell = "tests/faults/everything.cell"},
@@ -134,16 +135,18 @@ static struct outcome run(const struct scenario *s)
     request.set_count = s->set != NULL;
     request.jobs = 1; /* request k is then the same one in each run */
     request.samples = 3;
+    request.part = s->part;
     request.whole = s->has_whole_page;
     (void)ampstead_run(&request, &result);
-    const char *parts[6];
+    const char *parts[7];
     parts[1] = ampstead_result_text(result, 0, 100);
     parts[2] = ampstead_result_json(result);
     parts[3] = ampstead_result_csv(result);
     parts[4] = ampstead_result_plot(result);
     parts[5] = ampstead_result_page(result);
+    parts[6] = ampstead_result_part(result);
     parts[0] = ampstead_result_messages(result, 0);
-    struct outcome outcome = {ampstead_result_status(result), joined(parts, 6)};
+    struct outcome outcome = {ampstead_result_status(result), joined(parts, 7)};
     ampstead_result_free(result);
     return outcome;
 }
