@@ -16,6 +16,8 @@ struct figure *figures_add(struct layout *layout, struct figure_list *figures)
     figures->list = list;
     list[figures->count] = (struct figure){
         .title = "",
+        .x = {"", "", false}, /* a picture that memory was too short to finish can be drawn */
+        .y = {"", "", false},
         .band = {(double)NAN, (double)NAN, ""},
     };
     return &list[figures->count++];
