@@ -8,7 +8,8 @@
 
 void markup_text(struct buffer *out, const char *text)
 {
-    for (const char *at = text; *at != '\0'; at++) {
+    /* NULL: memory was short, which the arena tells at the end */
+    for (const char *at = text; at != NULL && *at != '\0'; at++) {
         switch (*at) {
         case '&':
             buffer_text(out, "&amp;");
