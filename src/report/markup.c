@@ -68,7 +68,7 @@ void markup_number(struct buffer *out, double value)
 void markup_json(struct buffer *out, const char *text)
 {
     buffer_text(out, "\"");
-    for (const char *at = text; *at != '\0'; at++) {
+    for (const char *at = text; at != NULL && *at != '\0'; at++) { /* NULL as above */
         unsigned char c = (unsigned char)*at;
         if (c < 0x20 || c == '"' || c == '\\' || c == '<' || c == '>' || c == '&' || c == 0x7f) {
             buffer_format(out, "\\u%04x", c);
