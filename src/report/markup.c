@@ -8,7 +8,8 @@
 
 void markup_text(struct buffer *out, const char *text)
 {
-    for (const char *at = text; *at != '\0'; at++) {
+    /* NULL: memory was short, which the arena tells at the end */
+    for (const char *at = text; at != NULL && *at != '\0'; at++) {
         switch (*at) {
         case '&':
             buffer_text(out, "&amp;");
@@ -67,7 +68,7 @@ void markup_number(struct buffer *out, double value)
 void markup_json(struct buffer *out, const char *text)
 {
     buffer_text(out, "\"");
-    for (const char *at = text; *at != '\0'; at++) {
+    for (const char *at = text; at != NULL && *at != '\0'; at++) { /* NULL as above */
         unsigned char c = (unsigned char)*at;
         if (c < 0x20 || c == '"' || c == '\\' || c == '<' || c == '>' || c == '&' || c == 0x7f) {
             buffer_format(out, "\\u%04x", c);

@@ -1,6 +1,7 @@
 /* page_test.c: the text reports of a result made by hand. */
 #include "report/text_check.h"
 
+#include "analyses/states.h"
 #include "report/report_fixture.h"
 
 static const struct report_style plain = {false, false, false, 0};
@@ -68,6 +69,54 @@ static void figures(void **state)
                                  "9 Newton iterations; worst residual 3.100e-17",
                                  NULL};
     assert_in_order(text, order);
+    free(text);
+}
+
+/* A loop: its states, what was proved, and the verdict; a search that was not finished says so. */
+static void states_of_a_loop(void **state)
+{
+    (void)state;
+    struct fixture fixture;
+    fixture_make(&fixture);
+    const double currents[] = {2e-9, 3e-6};
+    struct state_result states[] = {
+        {.is_certified = true, .can_hold = true, .outputs = &currents[0], .power = 4e-9},
+        {.is_certified = true, .can_hold = false, .outputs = &currents[1], .power = 5e-6},
+    };
+    struct states_result found = {.states = states,
+                                  .state_count = 2,
+                                  .is_complete = true,
+                                  .is_brief = true,
+                                  .has_loop = true,
+                                  .loop_path = "nb -> pb -> nb",
+                                  .probe = "nb",
+                                  .box_limit = 400,
+                                  .push = 6e-12,
+                                  .startup = STARTUP_AT_RISK,
+                                  .reasons = {"the loop is pushed by little"},
+                                  .reason_count = 1};
+    fixture.result.states = &found;
+    char *text = make(report_page, &fixture, plain);
+    const char *const proved[] = {"states ",
+                                  "2 states, and no other: proved",
+                                  "the loop nb -> pb -> nb could hold more than one",
+                                  "2.000 nA",
+                                  "this page; can be held",
+                                  "3.000 uA",
+                                  "cannot be held",
+                                  "start-up AT RISK",
+                                  "- the loop is pushed by little",
+                                  "start-up push 6.000 pA",
+                                  NULL};
+    assert_in_order(text, proved);
+    free(text);
+    found.is_complete = false;
+    found.startup = STARTUP_CERTAIN;
+    found.reason_count = 0;
+    text = make(report_page, &fixture, plain);
+    const char *const open[] = {"2 states found; the proof was not finished within the 400 boxes",
+                                "start-up certain", NULL};
+    assert_in_order(text, open);
     free(text);
 }
 
@@ -289,7 +338,7 @@ int main(void)
         cmocka_unit_test(unsolved),         cmocka_unit_test(color_only_adds),
         cmocka_unit_test(narrow_and_clean), cmocka_unit_test(many_devices),
         cmocka_unit_test(point_shows_all),  cmocka_unit_test(sweep_tells_events),
-        cmocka_unit_test(models_list),
+        cmocka_unit_test(models_list),      cmocka_unit_test(states_of_a_loop),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }
