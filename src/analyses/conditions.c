@@ -295,9 +295,9 @@ enum status analyse_conditions(struct circuit *circuit, const struct operating_p
     }
     enum status status = make_points(r, circuit, &list, result->arena);
     if (status == STATUS_INPUT) {
-        diagnostics_add(&circuit->cell->diagnostics, circuit->conditions[0].where,
-                        "vary fewer things", "the `vary` lines make more than %d combinations, the limit",
-                        CONDITION_POINT_LIMIT);
+        diagnostics_add(
+            &circuit->cell->diagnostics, circuit->conditions[0].where, "vary fewer things",
+            "the `vary` lines make more than %d combinations, the limit", CONDITION_POINT_LIMIT);
     }
     if (status != STATUS_OK) {
         return status;

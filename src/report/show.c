@@ -7,6 +7,9 @@
 
 enum { VALUE_SIZE = 64 };
 
+/* Less than this is a zero that was rounded outwards by a proof. */
+static const double least_shown = 1e-300;
+
 static void append(char *text, const char *more)
 {
     const size_t length = strlen(text);
@@ -48,6 +51,7 @@ static void value_text(double value, struct dimension dimension, char *text)
 {
     char unit[VALUE_SIZE / 2];
     dimension_unit(dimension, unit, sizeof unit);
+    value = fabs(value) < least_shown ? 0.0 : value;
     if (isnan(value)) {
         snprintf(text, VALUE_SIZE, "-");
     } else if (isinf(value)) {

@@ -375,6 +375,18 @@ def check_print(browser, name):
         return Array.from(document.querySelectorAll('tr, .plot'))
             .filter((n) => getComputedStyle(n).breakInside !== 'avoid').length""")
     check(cut == 0, name + ": %d rows may be cut" % cut)
+    cut = browser.run("""
+        return Array.from(document.querySelectorAll('.wide')).filter((n) =>
+            n.querySelectorAll('tbody tr').length < 40 && getComputedStyle(n).breakInside !== 'avoid' ||
+            getComputedStyle(n.querySelector('thead')).breakInside !== 'avoid').length""")
+    check(cut == 0, name + ": %d tables may be cut" % cut)
+    folded = browser.run("""
+        return Array.from(document.querySelectorAll('td.n')).filter((n) => {
+            const range = document.createRange();
+            range.selectNodeContents(n);
+            return n.textContent && new Set(Array.from(range.getClientRects()).map((r) => r.top)).size > 1;
+        }).map((n) => n.textContent)""")
+    check(folded == [], name + ": numbers on two lines: %r" % folded)
     browser.command("Emulation.clearDeviceMetricsOverride")
     browser.command("Emulation.setEmulatedMedia", media="")
     pdf = base64.b64decode(browser.command("Page.printToPDF", preferCSSPageSize=True)["data"])
@@ -454,6 +466,8 @@ def check_live(browser):
     browser.open(page)
     check(browser.run("return performance.getEntriesByType('resource').length") == 0,
           "the page after the watch fetches something")
+    time.sleep(0.2)
+    browser.messages()  # the page before may still have asked for news when the watch ended
 
 
 browser = Browser()

@@ -330,6 +330,57 @@ static void version(void **state)
     assert_int_equal(strncmp(ampstead_build(), "KLU ", 4), 0);
 }
 
+/* Parts of a run in memory, and what is no request for one. */
+static void parts_of_a_run(void **state)
+{
+    (void)state;
+    static const char matched[] = "rail vcc 3 V\nresistor RA vcc -> mid 10k match=1%\n"
+                                  "resistor RB mid -> gnd 20k match=1%\n"
+                                  "require mid.v within 1% of 2 V for 90%\n";
+    struct ampstead_result *part[2], *whole, *joined;
+    struct ampstead_part given[2];
+    for (int k = 0; k < 2; k++) {
+        struct ampstead_request request = request_of("spread", matched);
+        request.samples = 101;
+        request.part = k == 0 ? "1/2" : "2/2";
+        assert_int_equal(ampstead_run(&request, &part[k]), AMPSTEAD_WELL);
+        const char *text = ampstead_result_part(part[k]);
+        assert_non_null(text);
+        assert_null(ampstead_result_json(part[k])); /* a part is no report */
+        given[k] = (struct ampstead_part){k == 0 ? "first" : "second", text, strlen(text)};
+    }
+    struct ampstead_request request = request_of("spread", matched);
+    request.samples = 101;
+    const enum ampstead_status status = ampstead_run(&request, &whole);
+    assert_null(ampstead_result_part(whole));
+    struct ampstead_request merge = request_of("merge", matched);
+    merge.path = NULL;
+    merge.parts = given;
+    merge.part_count = 2;
+    assert_int_equal(ampstead_run(&merge, &joined), status);
+    assert_string_equal(ampstead_result_json(joined), ampstead_result_json(whole));
+    assert_string_equal(ampstead_result_text(joined, 0, 100), ampstead_result_text(whole, 0, 100));
+    ampstead_result_free(joined);
+    merge.part_count = 1;
+    assert_int_equal(ampstead_run(&merge, &joined), AMPSTEAD_INPUT);
+    assert_string_equal(ampstead_result_messages(joined, 0),
+                        "ampstead: 1 of 2 parts is missing: part 2/2\n");
+    ampstead_result_free(joined);
+    merge.parts = NULL;
+    assert_int_equal(ampstead_run(&merge, &joined), AMPSTEAD_INPUT);
+    ampstead_result_free(joined);
+    request.part = "3/2";
+    assert_int_equal(ampstead_run(&request, &joined), AMPSTEAD_INPUT);
+    ampstead_result_free(joined);
+    request.part = NULL;
+    request.lanes = 9;
+    assert_int_equal(ampstead_run(&request, &joined), AMPSTEAD_INPUT);
+    ampstead_result_free(joined);
+    ampstead_result_free(whole);
+    ampstead_result_free(part[0]);
+    ampstead_result_free(part[1]);
+}
+
 int main(void)
 {
     const struct CMUnitTest tests[] = {
@@ -339,7 +390,7 @@ int main(void)
         cmocka_unit_test(cell_error),     cmocka_unit_test(sweep_csv),
         cmocka_unit_test(stopped),        cmocka_unit_test(same_bytes),
         cmocka_unit_test(models),         cmocka_unit_test(version),
-        cmocka_unit_test(shows),
+        cmocka_unit_test(shows),          cmocka_unit_test(parts_of_a_run),
     };
     return cmocka_run_group_tests(tests, NULL, NULL);
 }

@@ -121,6 +121,7 @@ static void values_in_words(void **state)
         {NAN, {12, 0, 0, 0}, "-"},
         {INFINITY, {12, -12, 0, 0}, "unlimited"},
         {0.0, {12, 0, 0, 0}, "0 V"},
+        {-5e-324, {12, 0, 0, 0}, "0 V"}, /* a zero that a proof rounded outwards */
         {0.99996, {12, 0, 0, 0}, "1.000 V"},
     };
     struct buffer out = BUFFER_EMPTY;
