@@ -66,7 +66,7 @@ static enum status open_lanes(struct engine *e, const struct sampling_plan *plan
     const enum status status = restore_pivots(e);
     if (status == STATUS_OK) {
         e->lanes = e->kind->begin(e->setup.system, plan->mismatch, plan->home, e->home_values,
-                                 e->setup.arena);
+                                  e->setup.arena);
     }
     return arena_failed(e->setup.arena) ? STATUS_MEMORY : status;
 }
