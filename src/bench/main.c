@@ -162,7 +162,7 @@ static const char *read_arguments(int count, char **arguments, struct request *r
             request->options.quick = true;
         } else if (strcmp(text, "--repeats") == 0 && a + 1 < count) {
             text = arguments[++a];
-            request->options.repeats = atoi(text);
+            request->options.repeats = (int)strtol(text, NULL, 10);
             if (request->options.repeats < 1 || request->options.repeats > REPEAT_LIMIT) {
                 return text;
             }
@@ -210,7 +210,7 @@ int main(int count, char **arguments)
             print_text(&rows[k], &result);
         }
         first = false;
-        fflush(stdout);
+        (void)fflush(stdout); /* only that rows show as they come */
     }
     if (request.json) {
         printf("\n]}\n");

@@ -65,7 +65,7 @@ static bool set_up(struct peer_kinsol *p, const double *scale, double tolerance)
     p->ones = N_VNew_Serial(s->n, p->context);
     p->weights = N_VNew_Serial(s->n, p->context);
     p->matrix = SUNSparseMatrix(s->n, s->n, s->nonzeros, CSC_MAT, p->context);
-    p->at = calloc((size_t)(3 * s->n + s->nonzeros), sizeof *p->at);
+    p->at = calloc(3 * (size_t)s->n + (size_t)s->nonzeros, sizeof *p->at);
     if (p->x == NULL || p->ones == NULL || p->weights == NULL || p->matrix == NULL ||
         p->at == NULL) {
         return false;

@@ -117,7 +117,7 @@ void bench_grow(const struct bench_options *options, struct bench_result *result
     static double solves[SIZES][REPEAT_LIMIT], reads[SIZES][REPEAT_LIMIT];
     static const int devices[SIZES] = {100, 1000, 10000, 100000, 1000000};
     const int sizes = options->quick ? 3 : SIZES;
-    struct growth all[SIZES];
+    struct growth all[SIZES] = {{.is_good = false}};
     result->least = INFINITY;
     result->most = -INFINITY;
     for (int r = 0; r < options->repeats; r++) {

@@ -20,7 +20,12 @@ static bool run_process(void *self)
     const struct process *process = self;
     char *arguments[4] = {NULL};
     for (int k = 0; k < 3 && process->arguments[k] != NULL; k++) {
-        arguments[k] = (char *)(size_t)process->arguments[k]; /* posix_spawn only reads them */
+        /* posix_spawn only reads them */
+        arguments[k] =
+            (char *)(size_t)process->arguments[k]; /* NOLINT(performance-no-int-to-ptr) */
+    }
+    if (arguments[0] == NULL) {
+        return false;
     }
     posix_spawn_file_actions_t actions;
     if (posix_spawn_file_actions_init(&actions) != 0) {

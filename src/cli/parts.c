@@ -59,7 +59,7 @@ struct ampstead_part *part_files_read(const struct options *options, int *status
 void part_files_free(struct ampstead_part *parts, int count)
 {
     for (int k = 0; parts != NULL && k < count; k++) {
-        free((void *)(uintptr_t)parts[k].text);
+        free((void *)(uintptr_t)parts[k].text); /* NOLINT(performance-no-int-to-ptr) */
     }
     free(parts);
 }

@@ -27,6 +27,8 @@ def read_exceptions():
 def measure(build, layer):
     report = subprocess.run(
         ["gcovr", "-r", str(ROOT), "--json", "-f", f"{ROOT}/src/{layer}/.*",
+         # gcovr 5.2 cannot merge a function that stands on two lines, one for lanes
+         "-e", ".*/devices/real\\.h",
          "--object-directory", str(build / "src" / layer), str(build / "src" / layer)],
         stdout=subprocess.PIPE, text=True, check=True, cwd=build).stdout
     return json.loads(report)["files"]

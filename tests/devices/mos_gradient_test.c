@@ -122,8 +122,8 @@ static void follows_the_current_far_below(void **state)
 {
     (void)state;
     struct subject it = measured_set("nmos", 1e-6, 8e-6);
-    check_point(&it, -1.6, 0.9, 0);
-    check_point(&it, -2.2, 0.05, 0.45);
+    check_point(&it, -4, 0.9, 0);
+    check_point(&it, -6, 0.05, 0.45);
 }
 
 static void follows_the_current(void **state)
