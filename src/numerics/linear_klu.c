@@ -147,8 +147,13 @@ enum linear_status linear_factor(struct linear_solver *solver, const double *val
         linear_forget(solver);
         return LINEAR_NOT_FINITE;
     }
-    /* KLU's own factors serve until the next values; without memory for the list they always do */
-    solver->direct = direct_create(solver, p, values);
+    if (p->n <= DIRECT_LIMIT) { /* KLU's own factors serve until the next values */
+        solver->direct = direct_create(solver, p, values);
+        if (solver->direct == NULL) {
+            linear_forget(solver);
+            return LINEAR_MEMORY;
+        }
+    }
     return LINEAR_OK;
 }
 
