@@ -55,7 +55,8 @@ char *arena_format_list(struct arena *arena, const char *format, va_list argumen
 void *arena_grow(struct arena *arena, void *list, int count, int *capacity, size_t size);
 
 /* arena_give_back: frees a block now when it is large enough to have memory of its own; a smaller
- * one stays until the arena goes. For what has been replaced and nothing points to. NULL is allowed.
+ * one stays until the arena goes. For what has been replaced and nothing points to. NULL is
+ * allowed.
  */
 void arena_give_back(struct arena *arena, void *block);
 

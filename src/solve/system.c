@@ -590,6 +590,10 @@ struct system *system_create(const struct circuit *circuit, double kelvin, unsig
         return NULL;
     }
     s->groups = groups_create(s);
+    if (arena_failed(arena)) {
+        system_free(s);
+        return NULL;
+    }
     system_conditions(s, kelvin, effects);
     return s;
 }
