@@ -11,11 +11,14 @@
 struct direct {
     struct arena *arena;
     const struct replay *replay;
+    const int *start, *row; /* of the pattern, which stays */
     int nonzeros;
     bool is_factored;
     double *values;  /* [replay->size] the factors */
     double *inverse; /* [n] of the pivots */
     double *work;    /* [n] */
+    double *scale;   /* [n] of the equations */
+    double *most;    /* [n] how large an entry of an unknown may grow */
 };
 
 struct direct *direct_create(const struct linear_solver *solver, const struct pattern *pattern,
@@ -28,12 +31,19 @@ struct direct *direct_create(const struct linear_solver *solver, const struct pa
     struct direct *d = arena == NULL ? NULL : arena_new(arena, struct direct);
     const struct replay *r = d == NULL ? NULL : replay_make(solver, pattern, values, arena);
     if (r != NULL) {
-        *d = (struct direct){.arena = arena, .replay = r, .nonzeros = pattern->start[pattern->n]};
+        *d = (struct direct){.arena = arena,
+                             .replay = r,
+                             .start = pattern->start,
+                             .row = pattern->row,
+                             .nonzeros = pattern->start[pattern->n]};
         d->values = arena_new_array(arena, double, r->size);
         d->inverse = arena_new_array(arena, double, r->n);
         d->work = arena_new_array(arena, double, r->n);
+        d->scale = arena_new_array(arena, double, r->n);
+        d->most = arena_new_array(arena, double, r->n);
     }
-    if (r == NULL || d->values == NULL || d->inverse == NULL || d->work == NULL) {
+    if (r == NULL || d->values == NULL || d->inverse == NULL || d->work == NULL ||
+        d->scale == NULL || d->most == NULL) {
         arena_destroy(arena);
         return NULL;
     }
@@ -47,15 +57,45 @@ void direct_destroy(struct direct *direct)
     }
 }
 
+/*
+ * Each equation over its largest entry: where one conductance is all that matters, its entries are
+ * 1 and products with them are exact. Then the largest entry of each unknown. False: an equation is
+ * empty.
+ */
+static bool scale(struct direct *d, const double *values)
+{
+    const int n = d->replay->n;
+    double *v = d->values;
+    memset(d->scale, 0, (size_t)n * sizeof *d->scale);
+    for (int k = 0; k < d->nonzeros; k++) {
+        double *most = &d->scale[d->row[k]];
+        const double size = fabs(values[k]);
+        *most = size > *most ? size : *most;
+    }
+    bool good = true;
+    for (int i = 0; i < n; i++) {
+        good = good && d->scale[i] > 0;
+        d->scale[i] = 1 / d->scale[i];
+    }
+    for (int j = 0; j < n; j++) {
+        double most = 0;
+        for (int k = d->start[j]; k < d->start[j + 1]; k++) {
+            v[k] = values[k] * d->scale[d->row[k]];
+            most = fabs(v[k]) > most ? fabs(v[k]) : most;
+        }
+        d->most[j] = most / LINEAR_GROWTH_LIMIT;
+    }
+    return good;
+}
+
 bool direct_factor(struct direct *d, const double *values)
 {
     const struct replay *r = d->replay;
     const int *below = r->below, *right = r->right, *target = r->target;
-    const double *largest = r->largest;
+    const int *right_column = r->right_column;
     double *v = d->values;
-    bool good = true;
     d->is_factored = false;
-    memcpy(v, values, (size_t)d->nonzeros * sizeof *v);
+    bool good = scale(d, values);
     memset(v + d->nonzeros, 0, (size_t)(r->size - d->nonzeros) * sizeof *v);
     for (int k = 0; k < r->n; k++) {
         const struct replay_pivot *p = &r->pivots[k];
@@ -63,17 +103,21 @@ bool direct_factor(struct direct *d, const double *values)
         d->inverse[k] = inverse;
         /* neither zero nor too large: the pivot is neither; NaN is both */
         good = good && fabs(inverse) > 0 && fabs(inverse) < INFINITY;
+        good = good && fabs(v[p->place]) <= d->most[p->column];
+        for (int j = 0; j < p->right_count; j++) {
+            good = good && fabs(v[right[j]]) <= d->most[right_column[j]];
+        }
         for (int i = 0; i < p->below_count; i++) {
             const double multiplier = v[below[i]] * inverse;
             v[below[i]] = multiplier;
-            good = good && fabs(multiplier) <= largest[i];
+            good = good && fabs(multiplier) <= REPLAY_GROWTH_LIMIT;
             for (int j = 0; j < p->right_count; j++) {
                 v[*target++] -= multiplier * v[right[j]];
             }
         }
         below += p->below_count;
-        largest += p->below_count;
         right += p->right_count;
+        right_column += p->right_count;
     }
     d->is_factored = good;
     return good;
@@ -91,6 +135,9 @@ void direct_solve(struct direct *d, double *b)
     const double *v = d->values;
     double *x = d->work;
     int rights = 0;
+    for (int i = 0; i < r->n; i++) {
+        b[i] *= d->scale[i];
+    }
     for (int k = 0; k < r->n; k++) {
         const struct replay_pivot *p = &r->pivots[k];
         const double known = b[p->row];
@@ -135,6 +182,9 @@ void direct_solve_transposed(struct direct *d, double *b)
             sum -= v[r->below[i]] * y[r->below_row[i]];
         }
         y[p->row] = sum;
+    }
+    for (int i = 0; i < r->n; i++) {
+        y[i] *= d->scale[i];
     }
     memcpy(b, y, (size_t)r->n * sizeof *b);
 }

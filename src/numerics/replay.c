@@ -112,7 +112,7 @@ static bool list(const struct maker *m, struct arena *arena, struct replay *r)
             *below++ = m->at[i * n + k];
             *below_row++ = m->row[i];
             *largest++ =
-                ratio_of(m->largest[m->row[i]], m->largest[m->row[k]]) / LINEAR_GROWTH_LIMIT;
+                ratio_of(m->largest[m->row[i]], m->largest[m->row[k]]) * REPLAY_GROWTH_LIMIT;
             for (int j = k + 1; j < n; j++) {
                 if (m->at[k * n + j] >= 0) {
                     *target++ = m->at[i * n + j];

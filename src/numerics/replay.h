@@ -33,13 +33,16 @@ struct replay {
 /* Above this many unknowns no list is made. */
 enum { REPLAY_LIMIT = 400 };
 
+/* A multiplier may exceed the ratio of its equations this often: ten times what KLU lets itself. */
+#define REPLAY_GROWTH_LIMIT 1e4
+
 /*
  * replay_make: from the pivots that the solver last chose.
  *
  * values  [nonzeros] of that factorisation, for the sizes of the equations
  *
- * A multiplier may grow to 1/LINEAR_GROWTH_LIMIT of the ratio of its equations. NULL when memory is
- * short, nothing is factored or the system is too large.
+ * A multiplier may grow to REPLAY_GROWTH_LIMIT times the ratio of its equations. NULL when memory
+ * is short, nothing is factored or the system is too large.
  */
 struct replay *replay_make(const struct linear_solver *solver, const struct pattern *pattern,
                            const double *values, struct arena *arena);
