@@ -11,14 +11,13 @@
 struct direct {
     struct arena *arena;
     const struct replay *replay;
-    const int *start, *row; /* of the pattern, which stays */
+    const int *row; /* [nonzeros] of the pattern, which stays */
     int nonzeros;
     bool is_factored;
     double *values;  /* [replay->size] the factors */
     double *inverse; /* [n] of the pivots */
     double *work;    /* [n] */
     double *scale;   /* [n] of the equations */
-    double *most;    /* [n] how large an entry of an unknown may grow */
 };
 
 struct direct *direct_create(const struct linear_solver *solver, const struct pattern *pattern,
@@ -33,17 +32,15 @@ struct direct *direct_create(const struct linear_solver *solver, const struct pa
     if (r != NULL) {
         *d = (struct direct){.arena = arena,
                              .replay = r,
-                             .start = pattern->start,
                              .row = pattern->row,
                              .nonzeros = pattern->start[pattern->n]};
         d->values = arena_new_array(arena, double, r->size);
         d->inverse = arena_new_array(arena, double, r->n);
         d->work = arena_new_array(arena, double, r->n);
         d->scale = arena_new_array(arena, double, r->n);
-        d->most = arena_new_array(arena, double, r->n);
     }
     if (r == NULL || d->values == NULL || d->inverse == NULL || d->work == NULL ||
-        d->scale == NULL || d->most == NULL) {
+        d->scale == NULL) {
         arena_destroy(arena);
         return NULL;
     }
@@ -77,13 +74,8 @@ static bool scale(struct direct *d, const double *values)
         good = good && d->scale[i] > 0;
         d->scale[i] = 1 / d->scale[i];
     }
-    for (int j = 0; j < n; j++) {
-        double most = 0;
-        for (int k = d->start[j]; k < d->start[j + 1]; k++) {
-            v[k] = values[k] * d->scale[d->row[k]];
-            most = fabs(v[k]) > most ? fabs(v[k]) : most;
-        }
-        d->most[j] = most / LINEAR_GROWTH_LIMIT;
+    for (int k = 0; k < d->nonzeros; k++) {
+        v[k] = values[k] * d->scale[d->row[k]];
     }
     return good;
 }
@@ -92,7 +84,6 @@ bool direct_factor(struct direct *d, const double *values)
 {
     const struct replay *r = d->replay;
     const int *below = r->below, *right = r->right, *target = r->target;
-    const int *right_column = r->right_column;
     double *v = d->values;
     d->is_factored = false;
     bool good = scale(d, values);
@@ -103,10 +94,6 @@ bool direct_factor(struct direct *d, const double *values)
         d->inverse[k] = inverse;
         /* neither zero nor too large: the pivot is neither; NaN is both */
         good = good && fabs(inverse) > 0 && fabs(inverse) < INFINITY;
-        good = good && fabs(v[p->place]) <= d->most[p->column];
-        for (int j = 0; j < p->right_count; j++) {
-            good = good && fabs(v[right[j]]) <= d->most[right_column[j]];
-        }
         for (int i = 0; i < p->below_count; i++) {
             const double multiplier = v[below[i]] * inverse;
             v[below[i]] = multiplier;
@@ -117,7 +104,6 @@ bool direct_factor(struct direct *d, const double *values)
         }
         below += p->below_count;
         right += p->right_count;
-        right_column += p->right_count;
     }
     d->is_factored = good;
     return good;

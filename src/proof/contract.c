@@ -226,8 +226,7 @@ bool contract_propagate(struct contractor *c, struct interval *box)
     return true;
 }
 
-/* --- planes -------------------------------------------------------------------------------------
- */
+/* --- planes ----------------------------------------------------------------------------------- */
 
 /*
  * sign y <= sign (value + sum slope (argument - corner)), with value the end of the range at the
@@ -272,8 +271,8 @@ static void corner_planes(struct contractor *c, int index, const struct interval
 {
     const struct element *e = &c->network->elements[index];
     struct interval at[ELEMENT_ARGUMENT_LIMIT], unused[ELEMENT_ARGUMENT_LIMIT], value;
-    double corner[ELEMENT_ARGUMENT_LIMIT], above[ELEMENT_ARGUMENT_LIMIT],
-        below[ELEMENT_ARGUMENT_LIMIT];
+    double corner[ELEMENT_ARGUMENT_LIMIT] = {0}, above[ELEMENT_ARGUMENT_LIMIT] = {0},
+           below[ELEMENT_ARGUMENT_LIMIT] = {0};
     assert(e->argument_count <= ELEMENT_ARGUMENT_LIMIT);
     for (int k = 0; k < e->argument_count; k++) {
         corner[k] = high ? arguments[k].hi : arguments[k].lo;
