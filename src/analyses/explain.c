@@ -471,7 +471,7 @@ static bool add_paper(struct explanation *e, double first, struct arena *arena)
     const double share = first - e->paper;
     const char *name =
         e->first_with == NULL
-            ? "the paper beside its own square law"
+            ? "the paper beside the hand view"
             : arena_format(arena, "the paper beside the square law with %s", e->first_with);
     if (fabs(share) > 0) {
         e->shares[e->share_count++] = (struct effect_share){.effect = name, .share = share};

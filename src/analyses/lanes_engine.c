@@ -481,16 +481,6 @@ static void stand_in(const struct lanes_engine *e, int lane)
     system_blocks_changed(e->system);
 }
 
-static bool is_supported(void)
-{
-#if LANES == 8
-    return __builtin_cpu_supports("avx512f") && __builtin_cpu_supports("avx512dq") &&
-           __builtin_cpu_supports("fma");
-#else
-    return __builtin_cpu_supports("avx2") && __builtin_cpu_supports("fma");
-#endif
-}
-
 #if LANES == 8
 #define KIND lanes_kind_8
 #define KIND_NAME "avx512"
@@ -502,7 +492,7 @@ static bool is_supported(void)
 extern const struct lanes_kind KIND;
 const struct lanes_kind KIND = {.name = KIND_NAME,
                                 .width = LANES,
-                                .is_supported = is_supported,
+                                .is_supported = lanes_supported,
                                 .begin = begin_engine,
                                 .solve = solve,
                                 .read = read_lane,

@@ -13,6 +13,7 @@
 
 #include <immintrin.h>
 #include <math.h>
+#include <stdbool.h>
 #include <stdint.h>
 
 #if LANES == 8
@@ -178,6 +179,17 @@ static inline lanes lanes_tanh(lanes u)
     const lanes less = lanes_expm1(-2 * lanes_abs(u), &exponential);
     const lanes value = -less / (less + 2);
     return lanes_choose(u < lanes_of(0), -value, value);
+}
+
+/* Whether this processor has what the file was compiled for. */
+static inline bool lanes_supported(void)
+{
+#if LANES == 8
+    return __builtin_cpu_supports("avx512f") && __builtin_cpu_supports("avx512dq") &&
+           __builtin_cpu_supports("fma");
+#else
+    return __builtin_cpu_supports("avx2") && __builtin_cpu_supports("fma");
+#endif
 }
 
 #endif

@@ -15,16 +15,6 @@ static int moved_of(const struct device_type *type, const size_t **moved)
     return known == NULL ? -1 : known->moved_count;
 }
 
-static bool is_supported(void)
-{
-#if LANES == 8
-    return __builtin_cpu_supports("avx512f") && __builtin_cpu_supports("avx512dq") &&
-           __builtin_cpu_supports("fma");
-#else
-    return __builtin_cpu_supports("avx2") && __builtin_cpu_supports("fma");
-#endif
-}
-
 static real load(const double *values)
 {
     real vector;
@@ -139,4 +129,4 @@ static void evaluate(const struct system *system, const struct group_class *clas
 
 extern const struct groups_kind KIND;
 const struct groups_kind KIND = {
-    .width = LANES, .is_supported = is_supported, .moved = moved_of, .evaluate = evaluate};
+    .width = LANES, .is_supported = lanes_supported, .moved = moved_of, .evaluate = evaluate};

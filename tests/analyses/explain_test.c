@@ -73,7 +73,7 @@ static void two_effects(void **state)
                ((one - none) + (both - two)) / 2, 1e-7);
     check_near(share_of(e, "finite beta and series resistance"), ((two - none) + (both - one)) / 2,
                1e-7);
-    check_near(share_of(e, "the paper beside its own square law"), 1e-6, 1e-7);
+    check_near(share_of(e, "the paper beside the hand view"), 1e-6, 1e-7);
     close_all(cell, circuit, result);
 }
 
